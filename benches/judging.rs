@@ -1,0 +1,4 @@
+//! (to be written)
+fn main() {
+    divan::main();
+}

@@ -1,0 +1,110 @@
+//! Figures: what a circuit costs, counted from its gates. No formula of any construction is used here.
+
+use serde::Serialize;
+
+use crate::circuit::{Circuit, Gate, Op, PerQubit};
+use crate::id::Id;
+
+/// Counts over a circuit, every block as often as it is applied.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Default, Serialize)]
+pub struct Figures {
+    /// Qubits.
+    pub qubits: u64,
+    /// Gates of every kind, measurements and resets included.
+    pub gates: u64,
+    /// T gates and their inverses; those that depend on a measured bit count in full (the worst case).
+    pub t_count: u64,
+    /// Layers that hold a T gate, when every gate starts as soon as its qubits and its measured bit are ready.
+    pub t_depth: u64,
+    /// CNOT gates: X with one control.
+    pub cx_count: u64,
+    /// X and Z gates with two controls or more, each counted as the two-input ANDs it stands for (controls less one).
+    pub and_gates: u64,
+    /// Layers, when every gate starts as soon as its qubits and its measured bit are ready.
+    pub depth: u64,
+    /// Gates with an angle.
+    pub rotations: u64,
+    /// Measurements.
+    pub measurements: u64,
+}
+
+/// Counts the gates of a circuit.
+///
+/// Depths of a repeated block are those of the block on its own times the number of repetitions, added to what stands
+/// before and after: exact where a block begins and ends on a layer that all its qubits share, as the loop of a search
+/// does (it ends with Hadamards on the whole search register), and an upper bound otherwise.
+pub fn figures(circuit: &Circuit) -> Figures {
+    let mut total = Figures { qubits: circuit.qubit_count() as u64, ..Figures::default() };
+    for block in circuit.blocks() {
+        let mut one = Figures::default();
+        let mut layers = Layers::new(circuit);
+        for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
+            count(&mut one, gate);
+            layers.place(circuit, gate);
+        }
+        total.gates += one.gates * block.repeat;
+        total.t_count += one.t_count * block.repeat;
+        total.cx_count += one.cx_count * block.repeat;
+        total.and_gates += one.and_gates * block.repeat;
+        total.rotations += one.rotations * block.repeat;
+        total.measurements += one.measurements * block.repeat;
+        total.depth += layers.depth * block.repeat;
+        total.t_depth += layers.t_depth * block.repeat;
+    }
+    total
+}
+
+fn count(figures: &mut Figures, gate: &Gate) {
+    figures.gates += 1;
+    match gate.op() {
+        Op::T | Op::Tdg => figures.t_count += 1,
+        Op::X if gate.control_count() == 1 => figures.cx_count += 1,
+        Op::X | Op::Z if gate.control_count() >= 2 => figures.and_gates += gate.control_count() as u64 - 1,
+        Op::P | Op::Rz | Op::Ry => figures.rotations += 1,
+        Op::Measure => figures.measurements += 1,
+        _ => {}
+    }
+}
+
+/// As-soon-as-possible scheduling: for each qubit and measured bit, the layer after its last use.
+struct Layers {
+    /// Per qubit: the next free layer, and the next free T layer.
+    qubits: PerQubit<(u64, u64)>,
+    measured: Vec<(u64, u64)>,
+    depth: u64,
+    t_depth: u64,
+}
+
+impl Layers {
+    fn new(circuit: &Circuit) -> Self {
+        Self {
+            qubits: vec![(0, 0); circuit.qubit_count()].into(),
+            measured: vec![(0, 0); circuit.measured_count()],
+            depth: 0,
+            t_depth: 0,
+        }
+    }
+
+    fn place(&mut self, circuit: &Circuit, gate: &Gate) {
+        let is_t = u64::from(matches!(gate.op(), Op::T | Op::Tdg));
+        let mut start = self.qubits[gate.target()];
+        let mut wait = |other: (u64, u64)| start = (start.0.max(other.0), start.1.max(other.1));
+        circuit.controls(gate).iter().for_each(|control| wait(self.qubits[control.qubit()]));
+        if let Some(condition) = gate.condition() {
+            wait(self.measured[condition.bit().index()]);
+        }
+        if let Some(bit) = gate.measured() {
+            wait(self.measured[bit.index()]);
+        }
+        let end = (start.0 + 1, start.1 + is_t);
+        self.qubits[gate.target()] = end;
+        for control in circuit.controls(gate) {
+            self.qubits[control.qubit()] = end;
+        }
+        if let Some(bit) = gate.measured() {
+            self.measured[bit.index()] = end;
+        }
+        self.depth = self.depth.max(end.0);
+        self.t_depth = self.t_depth.max(end.1);
+    }
+}

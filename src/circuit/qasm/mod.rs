@@ -1,0 +1,4 @@
+//! OpenQASM: [`write`] gives text, [`read`] takes it; neither imports the other.
+
+pub mod read;
+pub mod write;

@@ -1,0 +1,69 @@
+//! The verdict on a circuit.
+
+use serde::Serialize;
+
+use crate::problem::Bits;
+
+/// What was found.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum Outcome {
+    /// The circuit is the oracle of the problem, on every input.
+    Equal,
+    /// It is not; there is a witness.
+    Differs,
+    /// No difference was found, but not every input was covered.
+    Undecided,
+}
+
+/// How it was found.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum How {
+    /// Every input, gate by gate. Complete: the gates permute basis states up to signs.
+    Exhaustive,
+    /// Every input in superposition, gate by gate, for several drawn strings of measurement outcomes.
+    Superposition,
+    /// Some inputs: all known solutions, their one-bit neighbours, and drawn ones.
+    Sample,
+}
+
+/// Whether the signs are those of the solutions or of their complement, which is a global sign.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum Phases {
+    /// Solutions get -1.
+    Equal,
+    /// Everything but the solutions gets -1.
+    Complement,
+}
+
+/// An input on which circuit and problem differ.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Witness {
+    /// The input, over the bits of the problem.
+    pub bits: Bits,
+    /// What the oracle must do, in words.
+    pub expected: String,
+    /// What the circuit does, in words.
+    pub got: String,
+}
+
+/// The verdict.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Verdict {
+    /// What was found.
+    pub outcome: Outcome,
+    /// How.
+    pub how: How,
+    /// How many inputs were covered.
+    pub inputs: u128,
+    /// Whether every work qubit was clean again on all of them.
+    pub work_clean: bool,
+    /// The signs; `Equal` for a bit oracle that is right.
+    pub phases: Phases,
+    /// An input on which they differ.
+    pub witness: Option<Witness>,
+    /// What the verdict rests on, for people: drawn outcomes, seeds, limits.
+    pub notes: Vec<String>,
+}

@@ -1,0 +1,42 @@
+//! The tally: how many solutions, how that is known, and who confirmed it.
+
+use num_bigint::BigUint;
+use serde::Serialize;
+
+use crate::problem::Bits;
+
+/// A way of counting.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum Method {
+    /// Every bit string tried, many at a time.
+    Sweep,
+    /// Solutions listed one by one by the first solver (varisat).
+    Listing,
+    /// Solutions listed one by one by the second solver (batsat).
+    SecondListing,
+}
+
+/// A number of solutions, or the bounds that are proven.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Tally {
+    /// At least so many.
+    pub low: BigUint,
+    /// At most so many; equal to `low` where the tally is exact.
+    pub high: BigUint,
+    /// How it was obtained.
+    pub method: Method,
+    /// Other ways that gave the same number.
+    pub checked_by: Vec<Method>,
+    /// Some of the solutions, over all bits of the problem, in increasing order; all of them where `complete`.
+    pub solutions: Vec<Bits>,
+    /// Whether `solutions` lists every solution.
+    pub complete: bool,
+}
+
+impl Tally {
+    /// The number, where it is known exactly.
+    pub fn exact(&self) -> Option<&BigUint> {
+        (self.low == self.high).then_some(&self.low)
+    }
+}

@@ -1,0 +1,28 @@
+//! Tallymark turns a constraint problem into a quantum search that can be trusted: it *tallies* the solutions with
+//! classical solvers and builds the reversible circuit that *marks* them, then proves that the two agree.
+
+// The floor: every room may use these, and these use no room.
+pub mod budget;
+pub mod diag;
+pub mod id;
+pub mod random;
+pub mod span;
+
+// The rooms, in the order data flows through them.
+pub mod source;
+// Text became the one meaning.
+pub mod problem;
+// Which bits are searched is plain data.
+pub mod places;
+// The maker turns the problem into a circuit.
+pub mod circuit;
+pub mod make;
+// The judge counts and audits, without the maker.
+pub mod judge;
+pub mod sat;
+// Oracle and tally become a search.
+pub mod search;
+
+pub mod cli;
+pub mod pipeline;
+pub mod report;

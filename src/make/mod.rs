@@ -1,0 +1,4 @@
+//! The maker: from a problem to an oracle circuit.
+
+pub mod lower;
+pub mod network;

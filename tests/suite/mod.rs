@@ -1,0 +1,6 @@
+mod counting;
+mod dimacs;
+mod judging;
+mod language;
+mod making;
+mod states;
