@@ -119,7 +119,8 @@ fn large_iterations(space: &BigUint, marked: &BigUint) -> BigUint {
     (pi.pow(2) * space / (scale.pow(2) * 16u32 * marked)).sqrt()
 }
 
-const PI_DIGITS: &str = "31415926535897932384626433832795028841971693993751058209749445923078164062862089986280348253421170679";
+const PI_DIGITS: &str =
+    "31415926535897932384626433832795028841971693993751058209749445923078164062862089986280348253421170679";
 
 fn exact_success(space: &BigUint, marked: &BigUint, iterations: &BigUint) -> Option<(BigUint, BigUint)> {
     let k = iterations.to_u64().filter(|k| (2 * k + 1).saturating_mul(space.bits()) <= MAX_EXACT_BITS)?;
@@ -286,7 +287,11 @@ mod tests {
             let (mut sum, mut power, mut k) = (BigInt::zero(), &one / x, 0u32);
             while !power.is_zero() {
                 let term = &power / (2 * k + 1);
-                if k % 2 == 0 { sum += term } else { sum -= term }
+                if k % 2 == 0 {
+                    sum += term
+                } else {
+                    sum -= term
+                }
                 power /= x * x;
                 k += 1;
             }

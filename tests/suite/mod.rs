@@ -4,3 +4,4 @@ mod judging;
 mod language;
 mod making;
 mod states;
+mod walls;
