@@ -14,11 +14,12 @@ use thiserror::Error;
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Level, Mark, Product, qasm};
 use crate::diag::{Code, Diagnostic};
-use crate::judge::audit::{self, AuditError, SearchVerdict, Verdict};
+use crate::judge::audit::{self, AuditError, Verdict};
 use crate::judge::count::{self, CountError, Counted, Over};
 use crate::make::{lower, network};
 use crate::places::{Places, PlacesError};
 use crate::problem::Problem;
+use crate::report::dossier::{Dossier, Judged};
 use crate::report::files::{WriteError, write_whole};
 use crate::report::header::header;
 use crate::report::places::places_json;
@@ -102,32 +103,6 @@ pub fn plan_for(problem: &Problem, counted: &Counted) -> (Option<Plan>, Vec<Advi
     advice.append(&mut plan.advice);
     plan.advice.clone_from(&advice);
     (Some(plan), advice)
-}
-
-/// Everything that the main job finds out.
-#[derive(Clone, Debug)]
-pub struct Dossier {
-    /// The tally.
-    pub counted: Counted,
-    /// The oracle with its verdict, or why there is none.
-    pub oracle: Result<Judged<Verdict>, Advice>,
-    /// The oracle at every level, for its cost.
-    pub levels: Vec<Product>,
-    /// The plan, where the number of marked states is known.
-    pub plan: Option<Plan>,
-    /// The whole search with its verdict, where there is something to search.
-    pub search: Option<Judged<SearchVerdict>>,
-    /// When the search is pointless, and what the figures do not say.
-    pub advice: Vec<Advice>,
-}
-
-/// A circuit as it was written, and the verdict on the file that was read back.
-#[derive(Clone, Debug)]
-pub struct Judged<V> {
-    /// The circuit.
-    pub product: Product,
-    /// The verdict.
-    pub verdict: V,
 }
 
 /// The main job: counts, compiles, audits what is on the disk, plans, and writes the folder.

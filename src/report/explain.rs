@@ -8,7 +8,7 @@ use serde_json::{Value, json};
 use crate::diag::plural;
 use crate::id::{Id, IdVec};
 use crate::problem::check::{Interval, ranges};
-use crate::problem::{Compare, Expr, ExprId, Origin, Problem};
+use crate::problem::{Compare, Expr, ExprId, Origin, Problem, Type};
 use crate::report::places::domain;
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -54,8 +54,9 @@ pub fn reading(problem: &Problem, sources: &Sources, most: usize) -> Reading {
         width: var.width,
     });
     let (ranges, _) = ranges(problem);
+    let types = problem.types();
     let expressions = problem.constraints.iter().enumerate().map(|(at, constraint)| {
-        constraint_line(problem, sources, &ranges, at.to_string(), &constraint.origin, constraint.expr)
+        constraint_line(problem, sources, (&ranges, &types), at.to_string(), &constraint.origin, constraint.expr)
     });
     let first = problem.constraints.len();
     let clauses = problem.clauses.iter().enumerate().map(|(at, clause)| ConstraintLine {
@@ -67,7 +68,7 @@ pub fn reading(problem: &Problem, sources: &Sources, most: usize) -> Reading {
     });
     let objective = problem.objective.as_ref().map(|objective| {
         let origin = Origin { span: objective.span, bindings: Vec::new() };
-        constraint_line(problem, sources, &ranges, "objective".to_owned(), &origin, objective.expr)
+        constraint_line(problem, sources, (&ranges, &types), "objective".to_owned(), &origin, objective.expr)
     });
     Reading {
         variables: variables.collect(),
@@ -80,7 +81,7 @@ pub fn reading(problem: &Problem, sources: &Sources, most: usize) -> Reading {
 fn constraint_line(
     problem: &Problem,
     sources: &Sources,
-    ranges: &IdVec<ExprId, Interval>,
+    (ranges, types): (&IdVec<ExprId, Interval>, &IdVec<ExprId, Type>),
     number: String,
     origin: &Origin,
     expr: ExprId,
@@ -92,12 +93,17 @@ fn constraint_line(
         line: origin.span.map(|span| sources.position(span).line),
         text: text.split_whitespace().collect::<Vec<_>>().join(" "),
         bindings: bindings.join(", "),
-        ranges: ranges_of(problem, ranges, expr),
+        ranges: ranges_of(problem, ranges, types, expr),
     }
 }
 
 /// The ranges of the two sides of a comparison, or of a number.
-fn ranges_of(problem: &Problem, ranges: &IdVec<ExprId, Interval>, expr: ExprId) -> String {
+fn ranges_of(
+    problem: &Problem,
+    ranges: &IdVec<ExprId, Interval>,
+    types: &IdVec<ExprId, Type>,
+    expr: ExprId,
+) -> String {
     let range = |id: ExprId| {
         let Interval { lo, hi } = ranges[id];
         if lo == hi { lo.to_string() } else { format!("{lo} to {hi}") }
@@ -112,7 +118,7 @@ fn ranges_of(problem: &Problem, ranges: &IdVec<ExprId, Interval>, expr: ExprId) 
             };
             format!("{} {sign} {}", range(a), range(b))
         }
-        _ if problem.types()[expr] == crate::problem::Type::Number => range(expr),
+        _ if types[expr] == Type::Number => range(expr),
         _ => String::new(),
     }
 }

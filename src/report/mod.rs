@@ -1,5 +1,6 @@
 //! Results as files and text: nothing is computed here.
 
+pub mod dossier;
 pub mod explain;
 pub mod files;
 pub mod header;

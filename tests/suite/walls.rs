@@ -26,7 +26,7 @@ const MATRIX: &[(&str, &[&str])] = &[
     // The wall of the house: the judge never names the maker.
     ("judge", &["problem", "places", "circuit", "sat"]),
     ("search", &["problem", "places", "circuit", "make", "judge"]),
-    ("report", &["source", "problem", "places", "circuit", "judge", "search", "make", "pipeline"]),
+    ("report", &["source", "problem", "places", "circuit", "judge", "search"]),
     ("pipeline", &["source", "problem", "places", "circuit", "make", "judge", "search", "report"]),
     ("cli", &["source", "problem", "places", "circuit", "make", "judge", "search", "report", "pipeline"]),
 ];
