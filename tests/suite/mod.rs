@@ -1,3 +1,4 @@
+mod command;
 mod counting;
 mod dimacs;
 mod judging;
