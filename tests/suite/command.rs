@@ -278,7 +278,7 @@ fn time_that_runs_out_gives_what_was_reached() {
 #[test]
 fn hidden_bits_that_are_searched_are_said_to_be() {
     let desk = Desk::new();
-    // One-sided: x3 may be anything where x1 holds. Shown on 1 and 2: three solutions; over all bits: four.
+    // One-sided: x3 may be anything where x1 holds. Shown on 1 and 2: three solutions; over all bits: five.
     desk.file("shown.cnf", "p cnf 3 2\nc p show 1 2 0\n1 2 0\n1 3 0\n");
     let (exit, object) = desk.json(&["dossier", "shown.cnf"]);
     assert_eq!(exit, 0, "{object:#}");
