@@ -4,5 +4,6 @@ mod dimacs;
 mod judging;
 mod language;
 mod making;
+mod random_problem;
 mod states;
 mod walls;
