@@ -224,7 +224,10 @@ impl Anchor {
         let rest = &bytes[line_start.unwrap_or(0)..];
         let (column, blank) = line_start.map_or((self.at.column, self.blank), |_| (1, true));
         Self {
-            at: Position { line: self.at.line + lines, column: column + rest.iter().filter(|&&byte| !is_continuation(byte)).count() },
+            at: Position {
+                line: self.at.line + lines,
+                column: column + rest.iter().filter(|&&byte| !is_continuation(byte)).count(),
+            },
             blank: blank && rest.iter().all(|&byte| is_blank(byte)),
         }
     }

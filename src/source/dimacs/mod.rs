@@ -41,7 +41,7 @@ pub const MAX_CLAUSES: u64 = 1 << 30;
 /// Literals a file may have: the pool of [`Clauses`] counts them in 32 bits.
 pub const MAX_LITERALS: u64 = 1 << 31;
 /// Clauses for which memory is reserved on the word of the header.
-const RESERVE: u64 = 1 << 16;
+const RESERVE: u64 = 1 << 20;
 /// Characters of a word that a message quotes.
 const QUOTED: usize = 40;
 
@@ -196,9 +196,7 @@ impl<R: Read> Reader<R> {
             }
             Part::After { .. } => Err(self.refuse(start, end, Mistake::AfterEnd)),
             Part::Before if word == b"p" && begins_line => self.header(start),
-            Part::Before if numbers::parse(word).is_some() => {
-                Err(self.refuse(start, end, Mistake::ClauseBeforeHeader))
-            }
+            Part::Before if numbers::parse(word).is_some() => Err(self.refuse(start, end, Mistake::ClauseBeforeHeader)),
             Part::Before => Err(self.refuse(start, end, Mistake::NotHeader)),
             Part::Clauses if word == b"p" && begins_line => {
                 let place = self.blocks.place(start, end);

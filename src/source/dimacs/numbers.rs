@@ -3,12 +3,13 @@
 //! Input:  a window whose words are whole before `limit`, with eight readable bytes after any of them.
 //! Output: literals in `clauses`, and the place of the first thing that is not a plain number in range.
 //!
-//! A number of up to seven digits is found and read without a loop, all digits in one 64-bit word: the first byte that
-//! is no digit gives the length, a shift aligns the digits, and three multiplications add them up. The method is
+//! A number of up to seven bytes, its sign among them, is found and read without a loop, all digits in one 64-bit word:
+//! the first byte that is no digit gives the length, a shift aligns the digits, and three multiplications add them up. The method is
 //! widely published (D. Lemire, "Quickly parsing eight digits", 2018, from memory).
 
 use super::blocks::is_blank;
-use crate::problem::{BitLit, Clauses};
+use crate::id::Id;
+use crate::problem::{BitId, BitLit, Clauses};
 
 const ZEROS: u64 = u64::from_ne_bytes([b'0'; 8]);
 const HIGH: u64 = u64::from_ne_bytes([0x80; 8]);
@@ -30,39 +31,46 @@ fn add_up(digits: u64) -> u64 {
 /// Takes numbers from `pos` on and returns where it stopped: at or beyond `limit`, or at a word that needs care.
 pub(super) fn take(bytes: &[u8], mut pos: usize, limit: usize, vars: u64, clauses: &mut Clauses) -> usize {
     while pos < limit {
-        let first = bytes[pos];
-        let negative = first == b'-';
-        let start = pos + usize::from(negative);
-        let digits = load(bytes, start) ^ ZEROS;
+        let word = load(bytes, pos);
+        let digits = word ^ ZEROS;
         let others = (digits.wrapping_add(ABOVE_NINE) | digits) & HIGH;
-        let length = others.trailing_zeros() as usize / 8;
-        if length == 0 {
-            if is_blank(first) {
+        let negative = word as u8 == b'-';
+        // The sign is the lowest byte that is no digit. Only the length waits for the load: it is what the next
+        // number has to wait for.
+        let others = if negative { others & others.wrapping_sub(1) } else { others };
+        let total = others.trailing_zeros() as usize / 8;
+        let sign = usize::from(negative);
+        if total == sign {
+            if is_blank(word as u8) {
                 pos += 1;
                 continue;
             }
             break;
         }
-        if length == 8 || !is_blank(bytes[start + length]) {
+        let (value, total) = match total {
+            8 => long(&bytes[pos..], sign),
+            _ => (add_up(digits >> (8 * sign) << (64 - 8 * (total - sign))), total),
+        };
+        if !is_blank(bytes[pos + total]) || value > vars || (value == 0 && negative) {
             break;
         }
-        let value = add_up(digits << (64 - 8 * length));
         if value == 0 {
-            if negative {
-                break;
-            }
             clauses.end_clause();
         } else {
-            if value > vars {
-                break;
-            }
-            let number = if negative { -(value as i64) } else { value as i64 };
-            let Some(lit) = BitLit::from_dimacs(number) else { break };
-            clauses.push_lit(lit);
+            clauses.push_lit(BitLit::new(BitId::new(value as usize - 1), !negative));
         }
-        pos = start + length + 1;
+        pos += total + 1;
     }
     pos
+}
+
+/// A number that fills eight bytes, with its sign: its size, saturating, and its length.
+#[cold]
+fn long(bytes: &[u8], sign: usize) -> (u64, usize) {
+    let digits = bytes[sign..].iter().take_while(|byte| byte.is_ascii_digit());
+    let add = |size: u64, digit: &u8| size.saturating_mul(10).saturating_add(u64::from(digit - b'0'));
+    let (size, count) = digits.fold((0, 0), |(size, count), digit| (add(size, digit), count + 1));
+    (size, sign + count)
 }
 
 /// A word as a whole number, saturating; `None` where it is not digits with at most one `-` before them.
@@ -97,7 +105,20 @@ mod tests {
     #[test]
     fn stops_where_care_is_needed() {
         for (text, at) in [
-            ("1 2 x", 4), ("-0 ", 0), ("1 +2", 2), ("4 ", 0), ("12345678 ", 0), ("1- ", 0), ("- ", 0), ("1\u{b2} ", 0), ("1\0 ", 0),
+            ("1 2 x", 4),
+            ("-0 ", 0),
+            ("1 +2", 2),
+            ("4 ", 0),
+            ("12345678 ", 0),
+            ("-1234567 ", 0),
+            ("00000000000000003 1 -00000003 4 ", 30),
+            ("99999999999999999999999 ", 0),
+            ("1- ", 0),
+            ("-", 0),
+            ("--1 ", 0),
+            ("- ", 0),
+            ("1\u{b2} ", 0),
+            ("1\0 ", 0),
         ] {
             let mut bytes = text.as_bytes().to_vec();
             let limit = bytes.len();
