@@ -1,1 +1,3 @@
-//! (to be written)
+//! The OpenQASM reader, and the audits in superposition.
+
+mod reader;
