@@ -1,7 +1,7 @@
 //! `if` on a measured bit, and `for` with constant bounds.
 
 use super::operand::Sort;
-use super::{Builder, Checked, constant};
+use super::{Builder, Checked, MAX_TURNS, constant};
 use crate::circuit::qasm::read::MAX_MISTAKES;
 use crate::circuit::qasm::read::ast::{For, If, Place, Statement, Step};
 use crate::circuit::qasm::read::fault::Fault;
@@ -83,8 +83,8 @@ impl<'a, 'p> Builder<'a, 'p> {
                 break;
             }
             self.turns += 1;
-            if self.turns > super::MAX_GATES {
-                return Err((place, Fault::Limit { what: "the number of turns of all loops", most: super::MAX_GATES }));
+            if self.turns > MAX_TURNS {
+                return Err((place, Fault::Limit { what: "the number of turns of all loops", most: MAX_TURNS }));
             }
         }
         Ok(())

@@ -23,6 +23,8 @@ use crate::id::Id;
 const MAX_REGISTER_ELEMENTS: u64 = 1 << 24;
 /// Gates of one file, after broadcasts and loops that must be unrolled.
 const MAX_GATES: u64 = 1 << 25;
+/// Turns of all loops that must be unrolled.
+const MAX_TURNS: u64 = 1 << 20;
 /// Controls of all these gates together.
 const MAX_CONTROLS: u64 = 1 << 28;
 
