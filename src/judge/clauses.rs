@@ -76,9 +76,7 @@ impl Writer {
                 Node::Odd(a, b) if self.needed[at] => {
                     let defined = self.new_var(at);
                     let (a, b) = (self.lit(a), self.lit(b));
-                    for clause in
-                        [[!defined, a, b], [!defined, !a, !b], [defined, a, !b], [defined, !a, b]]
-                    {
+                    for clause in [[!defined, a, b], [!defined, !a, !b], [defined, a, !b], [defined, !a, b]] {
                         self.clauses.push(&clause);
                     }
                 }

@@ -1,3 +1,4 @@
 //! The OpenQASM reader, and the audits in superposition.
 
+mod oracles;
 mod reader;

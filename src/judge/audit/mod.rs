@@ -9,8 +9,14 @@
 
 pub mod exhaustive;
 mod kernel;
+pub mod labelled;
+mod labelled_inputs;
+mod labelled_run;
 pub mod oracle;
 pub mod sample;
+pub mod search;
+mod state;
+mod state_amplitude;
 pub mod verdict;
 
 pub use verdict::{How, Outcome, Phases, Verdict, Witness};

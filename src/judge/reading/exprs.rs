@@ -178,7 +178,8 @@ impl<'a> Reader<'a> {
     /// late variables change slowly in a sweep.
     fn sum(&mut self, numbers: &[Number]) -> Number {
         if !numbers.is_empty() && numbers.iter().all(|number| number.unary().is_some()) {
-            let truths: Vec<Signal> = numbers.iter().flat_map(|number| number.unary().unwrap_or(&[])).copied().collect();
+            let truths: Vec<Signal> =
+                numbers.iter().flat_map(|number| number.unary().unwrap_or(&[])).copied().collect();
             return Number::count(self.graph, &truths);
         }
         numbers.iter().rev().fold(Number::constant(0), |sum, number| sum.plus(self.graph, number))
@@ -187,9 +188,7 @@ impl<'a> Reader<'a> {
     fn choose(&mut self, condition: ExprId, yes: ExprId, no: ExprId) -> Meaning {
         let condition = self.truth(condition);
         match &self.meanings[yes.index()] {
-            Some(Meaning::Truth(_)) => {
-                Meaning::Truth(self.graph.choose(condition, self.truth(yes), self.truth(no)))
-            }
+            Some(Meaning::Truth(_)) => Meaning::Truth(self.graph.choose(condition, self.truth(yes), self.truth(no))),
             _ => Meaning::Number(Number::choose(self.graph, condition, &self.number(yes), &self.number(no))),
         }
     }

@@ -158,8 +158,7 @@ impl Number {
         if q_lo == 0 && q_hi == 0 {
             return (Self::constant(0), self.clone());
         }
-        let (r_lo, r_hi) =
-            if q_lo == q_hi { (self.lo.rem_euclid(by), self.hi.rem_euclid(by)) } else { (0, by - 1) };
+        let (r_lo, r_hi) = if q_lo == q_hi { (self.lo.rem_euclid(by), self.hi.rem_euclid(by)) } else { (0, by - 1) };
         let sign = self.sign();
         let size: Vec<Signal> = self.bits[..self.bits.len() - 1].iter().map(|&bit| graph.odd(bit, sign)).collect();
         let (quotient, rest) = divide(graph, &size, by);
