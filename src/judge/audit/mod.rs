@@ -12,6 +12,12 @@ pub(crate) mod findings;
 pub(crate) mod kernel;
 pub(crate) mod oracle;
 pub(crate) mod sample;
+pub(crate) mod labelled;
+mod labelled_inputs;
+mod labelled_run;
+pub(crate) mod search;
+mod state;
+mod state_amplitude;
 pub mod verdict;
 
 pub use verdict::{How, Outcome, Phases, Verdict, Witness};
