@@ -184,6 +184,25 @@ pub struct Register {
     pub len: u32,
 }
 
+/// How an oracle marks.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum Mark {
+    /// It flips the sign of what is marked.
+    Phase,
+    /// It flips the qubit of the register [`MARK`].
+    Bit,
+}
+
+impl Mark {
+    /// The name on the command line and in files.
+    pub fn name(self) -> &'static str {
+        match self {
+            Mark::Phase => "phase",
+            Mark::Bit => "bit",
+        }
+    }
+}
+
 /// What a run of gates is for.
 #[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
 pub enum Part {
