@@ -3,4 +3,5 @@ mod dimacs;
 mod judging;
 mod language;
 mod making;
+mod random_problem;
 mod states;

@@ -56,7 +56,7 @@ pub enum LowerError {
 
 impl LowerError {
     /// The message with its stable code.
-    pub fn to_diagnostic(self) -> Diagnostic {
+    pub fn diagnostic(&self) -> Diagnostic {
         let (code, help) = match self {
             Self::NoBits => ("C001", "every variable has one value only: `count` says whether the constraints hold"),
             Self::NothingMarked => ("C002", "there is nothing to search for; `count` gives the tally, which is 0"),
@@ -82,17 +82,17 @@ pub fn lower(network: &Network, options: &Options, budget: &Budget) -> Result<Ci
     emit::emit(&plan, &steps, options, budget)
 }
 
-/// The ANDs that an oracle of the levels `wide` and `toffoli` computes on its way to the mark, undoing not included:
-/// measured on the gates, where an X or a Z with *c* controls stands for *c* - 1 of them. A CZ, which marks an AND of
-/// two without computing it, is none.
+/// The ANDs that an oracle computes or marks, those it undoes not included, measured on the gates of the network's
+/// `toffoli` oracle: an X or a Z with *c* controls stands for *c* - 1 of them. So a CZ, which marks an AND of two
+/// without computing it, is none, and four times this number is the T count at `feedback`.
 ///
-/// At `feedback` four times this number is the T count. The gates of that level and of `clifford-t` no longer show which
-/// of them make up an AND: there, take the number from the same network's `toffoli` oracle.
-pub fn computed_ands(oracle: &Circuit) -> u64 {
+/// The gates of `clifford-t` and `feedback` no longer show which of them make up an AND, so all levels are measured here.
+pub fn and_count(network: &Network, mark: Mark, budget: &Budget) -> Result<u64, LowerError> {
+    let oracle = lower(network, &Options { level: Level::Toffoli, mark }, budget)?;
     let ands = |gate: &Gate| match gate.op() {
         Op::X | Op::Z => gate.control_count().saturating_sub(1) as u64,
         _ => 0,
     };
     let counted = oracle.regions.iter().filter(|region| matches!(region.part, Part::Compute | Part::Mark));
-    counted.flat_map(|r| &oracle.gates()[r.gates.start as usize..r.gates.end as usize]).map(ands).sum()
+    Ok(counted.flat_map(|r| &oracle.gates()[r.gates.start as usize..r.gates.end as usize]).map(ands).sum())
 }
