@@ -16,7 +16,8 @@ use crate::circuit::{Circuit, Level, Mark, Product, qasm};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::audit::{self, AuditError, Verdict};
 use crate::judge::count::{self, CountError, Counted, Over};
-use crate::make::{lower, network};
+use crate::make::lower::{self, LowerError};
+use crate::make::network;
 use crate::places::{Places, PlacesError};
 use crate::problem::Problem;
 use crate::report::dossier::{Dossier, Judged};
@@ -123,7 +124,7 @@ pub fn dossier(
             let levels = every_level(problem, places, settings, budget)?;
             (Ok(Judged { product, verdict }), levels)
         }
-        Err(Error::Lower(error)) => (Err(error.advice()), Vec::new()),
+        Err(Error::Lower(error)) => (Err(why_no_oracle(error)?), Vec::new()),
         Err(error) => return Err(error),
     };
     let (plan, mut advice) = plan_for(problem, &counted);
@@ -137,10 +138,22 @@ pub fn dossier(
         }
         _ => None,
     };
-    if let Err(reason) = &oracle {
+    if let Err(reason) = &oracle
+        && !advice.contains(reason)
+    {
         advice.push(reason.clone());
     }
     Ok(Dossier { counted, oracle, levels, plan, search, advice })
+}
+
+/// A problem without an oracle is an answer with advice; a budget that ran out is not.
+fn why_no_oracle(error: LowerError) -> Result<Advice, Error> {
+    match error {
+        LowerError::NoBits => Ok(Advice::nothing_to_search()),
+        LowerError::NothingMarked => Ok(Advice::no_solution()),
+        LowerError::EverythingMarked => Ok(Advice::everything_marked()),
+        LowerError::OutOfTime => Err(error.into()),
+    }
 }
 
 /// Amplitude updates that the audit of a search file may spend: some tenths of a second.
@@ -205,7 +218,7 @@ pub enum Error {
     Count(#[from] CountError),
     /// There is no circuit for this problem.
     #[error(transparent)]
-    Lower(#[from] lower::LowerError),
+    Lower(#[from] LowerError),
     /// The circuit cannot be judged as it is.
     #[error(transparent)]
     Audit(#[from] AuditError),
@@ -239,6 +252,11 @@ impl Error {
             Error::Fault(_) => Diagnostic::error(Code("A090"), self.to_string())
                 .help("please report it with the input file and the command line"),
         }
+    }
+
+    /// Whether a budget ran out, rather than anything being wrong.
+    pub fn is_unfinished(&self) -> bool {
+        matches!(self, Error::Lower(LowerError::OutOfTime))
     }
 
     /// Whether tallymark itself is at fault, rather than its input.

@@ -60,7 +60,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             sample: options.sample.unwrap_or(defaults.sample),
             ..defaults
         };
-        if loaded.problem.bit_count() > judged.exhaustive_bits {
+        if loaded.problem.bit_count() > judged.exhaustive_bits as usize {
             let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
         }

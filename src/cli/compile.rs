@@ -137,12 +137,12 @@ fn one_output() -> Diagnostic {
 }
 
 fn nothing_to_find() -> Diagnostic {
-    Diagnostic::error(Code("C003"), "no state or every state is marked, so a search finds nothing new")
+    Diagnostic::error(Code("C091"), "no state or every state is marked, so a search finds nothing new")
         .expected("at least one marked and one unmarked state")
         .help("`tallymark plan` says more; compile without --whole gives the oracle")
 }
 
 fn unknown_count() -> Diagnostic {
-    Diagnostic::error(Code("C004"), "the number of marked states is not known, so no iteration count follows")
+    Diagnostic::error(Code("C092"), "the number of marked states is not known, so no iteration count follows")
         .help("allow more time with --time, or give the number with --count")
 }

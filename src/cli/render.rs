@@ -37,7 +37,11 @@ impl Failure {
 
     /// A stage that failed.
     pub(super) fn stage(error: &pipeline::Error, sources: &Sources) -> Box<Self> {
-        let exit = if error.is_fault() { Exit::Fault } else { Exit::Input };
+        let exit = match error {
+            _ if error.is_fault() => Exit::Fault,
+            _ if error.is_unfinished() => Exit::Unfinished,
+            _ => Exit::Input,
+        };
         Box::new(Self { diagnostics: vec![error.diagnostic()], sources: sources.clone(), exit })
     }
 

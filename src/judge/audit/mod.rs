@@ -143,7 +143,7 @@ pub fn audit(
     let roles = oracle::roles(problem, places, circuit)?;
     oracle::check_gates(circuit)?;
     if !oracle::keeps_basis_states(circuit) {
-        return other_circuit(circuit);
+        return labelled::audit_superposition(problem, places, circuit, options, budget);
     }
     let first = oracle::trace(circuit, &roles, &Bits::zeros(places.search_len()), false);
     let program = Program::new(circuit, &first);
@@ -165,13 +165,6 @@ pub fn audit(
 
 /// The most bits for which every input is tried, whatever the options say: beyond, the work is in the years.
 const MAX_EXHAUSTIVE_BITS: u32 = 48;
-
-/// Audits a circuit with other gates than those that keep basis states.
-fn other_circuit(circuit: &Circuit) -> Result<Verdict, AuditError> {
-    let other = circuit.gates().iter().find(|gate| !oracle::keeps_basis_state(gate)).expect("some gate is another");
-    let gate = format!("{:?} on {}", other.op(), circuit.qubit_name(other.target()));
-    Err(AuditError::Gate { gate })
-}
 
 fn by_sample(case: &Case, program: &Program, why: String, budget: &Budget) -> Verdict {
     let sample = sample::draw(case);
