@@ -65,7 +65,7 @@ fn bad_texts_have_their_mistakes_at_their_places() {
 fn every_code_has_a_case() {
     let messages = cases(GOOD).into_iter().chain(cases(BAD)).flat_map(|case| case.messages());
     let seen: BTreeSet<String> = messages.filter_map(|m| m.split(' ').nth(1).map(str::to_owned)).collect();
-    // Two need texts too large for a file; `limits_of_size_have_their_errors` has them.
+    // It needs a text too large for a file; `limits_of_size_have_their_errors` has it.
     let elsewhere = ["T034"];
     for (code, meaning) in CODES {
         assert!(seen.contains(code) || elsewhere.contains(&code), "no case for {code}: {meaning}");
