@@ -135,7 +135,6 @@ impl<'t> Reader<'t> {
         let ty = self.checked(|checker| {
             let ty = domain.map_or(Ty::YesNo, |domain| checker.domain(domain));
             checker.indices(indices);
-            checker.leave(indices.len());
             ty
         });
         let Some(ty) = ty.filter(|_| self.out.len() == before) else { return self.declare(name, What::Broken) };
@@ -221,13 +220,9 @@ impl<'t> Reader<'t> {
             }
             checker.indices(&definition.indices);
             if is_list {
-                checker.leave(wanted);
+                checker.hide();
             }
-            let shape = checker.shape(value);
-            if !is_list {
-                checker.leave(wanted);
-            }
-            Some(shape)
+            Some(checker.shape(value))
         })??;
         if is_list && wanted > 0 && shape.depth != wanted {
             let lists = |depth| crate::diag::plural(depth, "level of lists", "levels of lists");
@@ -418,7 +413,9 @@ impl<'t> Lowering<'_, 't> {
     ) -> Lowered<()> {
         let ast = self.ast;
         let Kind::List(list) = &ast.get(node).kind else {
-            self.room(cells.len() + 1, ast.get(node).span)?;
+            if cells.len() == MAX_ROW {
+                return self.mistake(values::too_long(ast.get(node).span, &format!("more than {MAX_ROW}")));
+            }
             cells.push(self.cell(node, maker)?);
             return Ok(());
         };

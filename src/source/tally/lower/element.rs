@@ -56,7 +56,7 @@ impl<'t> Lowering<'_, 't> {
         Ok(Reach { first: (lo - first) as usize, len: (hi - lo + 1) as usize, chooser })
     }
 
-    /// The picks that an index depends on, with their ranges: ` (x in 0 to 4)`; empty for a pick itself or for many.
+    /// The picks that an index depends on, with their ranges: ` (x in 0 to 4)`; empty for many.
     fn causes(&self, id: ExprId) -> String {
         const MANY: usize = 4;
         let problem = &self.build.problem;
@@ -75,7 +75,7 @@ impl<'t> Lowering<'_, 't> {
             Domain::Range { lo, hi } => format!("{} in {lo} to {hi}", problem.vars()[var].name),
             _ => problem.vars()[var].name.to_string(),
         };
-        if matches!(problem.exprs.get(id), Expr::Var(_)) || vars.is_empty() || vars.len() > MANY || !open.is_empty() {
+        if vars.is_empty() || vars.len() > MANY || !open.is_empty() {
             return String::new();
         }
         format!(" ({})", vars.iter().map(range).collect::<Vec<_>>().join(", "))

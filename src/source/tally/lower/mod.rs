@@ -161,6 +161,8 @@ impl<'t> Lowering<'_, 't> {
 
     /// Reports a mistake and stops.
     pub(crate) fn mistake<T>(&mut self, mistake: Diagnostic) -> Lowered<T> {
+        // A message takes as long as many steps; loops of mistakes that may still be killed must end too.
+        self.build.step(50);
         self.out.push(mistake);
         Err(Stop::Mistake)
     }
