@@ -4,7 +4,7 @@ use tallymark::problem::{Compare, Domain, Expr, ExprId, Kind, Origin, Problem, T
 use tallymark::random::SplitMix64;
 
 /// A problem of at most `max_bits` bits that passes the checker.
-pub fn random_problem(seed: u64, max_bits: usize) -> Problem {
+pub(crate) fn random_problem(seed: u64, max_bits: usize) -> Problem {
     let mut random = SplitMix64::new(seed);
     loop {
         let mut worker = Worker { problem: Problem::new(), random: &mut random };
