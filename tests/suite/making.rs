@@ -5,6 +5,7 @@ mod costs;
 mod golden;
 mod problems;
 mod simulate;
+mod whole;
 
 use super::random_problem::random_problem;
 use simulate::{Classical, Quantum};

@@ -2,7 +2,7 @@
 //! sparse state vector with measurements.
 
 use rustc_hash::FxHashMap;
-use tallymark::circuit::{Circuit, Gate, Op, QubitId};
+use tallymark::circuit::{Circuit, FOUND, Gate, Op, QubitId};
 use tallymark::id::Id;
 use tallymark::random::SplitMix64;
 
@@ -76,6 +76,20 @@ impl Quantum {
             for _ in 0..block.repeat {
                 for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
                     self.gate(circuit, gate);
+                }
+            }
+        }
+    }
+
+    /// Runs a whole search up to its last measurement.
+    pub(crate) fn run_before_found(&mut self, circuit: &Circuit) {
+        let found = circuit.measured.iter().find(|register| register.name == FOUND).unwrap();
+        for block in circuit.blocks() {
+            for _ in 0..block.repeat {
+                for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
+                    if gate.measured().is_none_or(|bit| bit.index() < found.start as usize) {
+                        self.gate(circuit, gate);
+                    }
                 }
             }
         }
