@@ -53,8 +53,13 @@ impl Worker<'_> {
     }
 
     fn variable(&mut self, yes_no: bool) -> Option<ExprId> {
-        let fitting: Vec<_> =
-            self.problem.vars().iter().filter(|(_, v)| (v.domain == Domain::YesNo) == yes_no).map(|(id, _)| id).collect();
+        let fitting: Vec<_> = self
+            .problem
+            .vars()
+            .iter()
+            .filter(|(_, v)| (v.domain == Domain::YesNo) == yes_no)
+            .map(|(id, _)| id)
+            .collect();
         let at = self.random.below(fitting.len().max(1) as u64) as usize;
         fitting.get(at).map(|&var| self.problem.exprs.node(Expr::Var(var)))
     }

@@ -110,7 +110,8 @@ impl Quantum {
             }
             op => {
                 let held = |state: u128| {
-                    let holds = |c: &tallymark::circuit::Control| (state >> c.qubit().index() & 1 == 1) != c.is_negated();
+                    let holds =
+                        |c: &tallymark::circuit::Control| (state >> c.qubit().index() & 1 == 1) != c.is_negated();
                     circuit.controls(gate).iter().all(holds)
                 };
                 let mut after: FxHashMap<u128, Complex> = FxHashMap::default();
