@@ -236,7 +236,7 @@ fn domains_of_64_bits_are_compared_and_divided() {
         problem.must(expr, Origin::default());
         tallymark::problem::check::check(&problem).unwrap();
         let network = network_of(&problem);
-        let mut check = |values: [i64; 2]| {
+        let check = |values: [i64; 2]| {
             let bits = problem.encode(&values).unwrap();
             assert_eq!(network.holds(&bits), problem.holds(&bits), "kind {kind} at {values:?}");
         };
