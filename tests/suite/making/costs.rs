@@ -204,7 +204,7 @@ fn domains_of_64_bits_are_compared_and_divided() {
     let mut random = SplitMix64::new(11);
     let wide = Domain::Range { lo: i64::MIN, hi: i64::MAX };
     let edges = [i64::MIN, i64::MIN + 1, -7, -1, 0, 1, 6, i64::MAX - 1, i64::MAX];
-    for kind in 0..7 {
+    for kind in 0..8 {
         let mut problem = Problem::new();
         let vars = ["a", "b"].map(|name| problem.add_var(name, wide, None));
         let [a, b] = vars.map(|var| problem.exprs.node(Expr::Var(var)));
@@ -225,6 +225,17 @@ fn domains_of_64_bits_are_compared_and_divided() {
                 let half = node(Expr::Quotient(a, 2));
                 let (p, q) = (node(Expr::Abs(half)), node(Expr::Quotient(b, 1 << 20)));
                 Expr::Compare(Compare::Le, p, q)
+            }
+            6 => {
+                // Sums of products whose digits reach far beyond their range.
+                let (one, large) = (node(Expr::Number(1)), node(Expr::Number(1 << 60)));
+                let half = node(Expr::Quotient(a, 2));
+                let size = node(Expr::Abs(half));
+                let list = problem.exprs.list(&[size, one]);
+                let bit = problem.exprs.node(Expr::Smallest(list));
+                let product = problem.exprs.node(Expr::Product(bit, large));
+                let sum = problem.exprs.over(Expr::Sum, &[product; 7]);
+                Expr::Compare(Compare::Lt, b, sum)
             }
             _ => {
                 let list = problem.exprs.list(&[a, b]);
