@@ -24,6 +24,16 @@ impl Advice {
         Self::new("nothing-to-search", "The problem has no bit to choose; its tally is the whole answer.")
     }
 
+    /// Nothing is marked.
+    pub fn no_solution() -> Self {
+        Self::new("no-solution", "Nothing is marked: no number of iterations finds anything.")
+    }
+
+    /// Everything is marked.
+    pub fn everything_marked() -> Self {
+        Self::new("everything-marked", "Every state is marked: any guess is a solution.")
+    }
+
     /// How many marked states there are could not be found out within the budget.
     pub fn marked_unknown() -> Self {
         Self::new(
@@ -59,9 +69,9 @@ impl Advice {
     pub(super) fn on_numbers(space: &BigUint, marked: &BigUint) -> Vec<Self> {
         let mut advice = Vec::new();
         if marked.is_zero() {
-            advice.push(Self::new("no-solution", "Nothing is marked: no number of iterations finds anything."));
+            advice.push(Self::no_solution());
         } else if marked == space {
-            advice.push(Self::new("everything-marked", "Every state is marked: any guess is a solution."));
+            advice.push(Self::everything_marked());
         } else if marked * 2u32 >= *space {
             advice.push(Self::new(
                 "guess-instead",

@@ -1,3 +1,4 @@
+mod command;
 mod counting;
 mod dimacs;
 mod judging;
@@ -5,3 +6,4 @@ mod language;
 mod making;
 mod random_problem;
 mod states;
+mod walls;

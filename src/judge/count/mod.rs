@@ -1,5 +1,7 @@
 //! Counting: the tally of a problem.
 
+pub mod counted;
 pub mod tally;
 
+pub use counted::Counted;
 pub use tally::{Method, Tally};
