@@ -5,6 +5,7 @@ mod costs;
 mod golden;
 mod problems;
 mod simulate;
+mod whole;
 
 use super::random_problem::random_problem;
 use simulate::{Classical, Quantum};
@@ -14,7 +15,7 @@ use tallymark::id::Id;
 use tallymark::make::lower::{LowerError, Options, lower};
 use tallymark::make::network::{Network, build};
 use tallymark::places::Places;
-use tallymark::problem::{Bits, Problem};
+use tallymark::problem::{BitLit, Bits, Problem};
 
 fn network_of(problem: &Problem) -> Network {
     build(problem, &Places::as_given(problem))
@@ -79,7 +80,8 @@ fn check_quantum(circuit: &Circuit, expected: &[bool], seed: u64) {
     assert_eq!(state.amplitudes.len(), expected.len() * marks as usize, "the ancillas are clean");
     for s in states() {
         let marked = expected[(s as usize) & (expected.len() - 1)];
-        let (to, sign) = if marks == 2 { (s ^ u128::from(marked) << n, 1.0) } else { (s, 1.0 - 2.0 * f64::from(marked as u8)) };
+        let (to, sign) =
+            if marks == 2 { (s ^ u128::from(marked) << n, 1.0) } else { (s, 1.0 - 2.0 * f64::from(marked as u8)) };
         let (wanted, got) = (amplitude(s), state.amplitudes[&to]);
         let error = (wanted.0 * sign - got.0).abs() + (wanted.1 * sign - got.1).abs();
         assert!(error < 1e-9, "state {s:b}: wanted {wanted:?} times {sign}, got {got:?}");
@@ -132,4 +134,82 @@ fn oracles_of_random_problems_mark_the_solutions_in_superposition() {
         }
     }
     assert!(checked > 150, "{checked}");
+}
+
+/// A problem of `n` bits with these clauses, in DIMACS numbers.
+fn clauses(n: usize, list: &[&[i64]]) -> Problem {
+    let mut problem = Problem::new();
+    problem.add_numbered_vars(n);
+    for clause in list {
+        let lits: Vec<BitLit> = clause.iter().map(|&lit| BitLit::from_dimacs(lit).unwrap()).collect();
+        problem.clauses.push(&lits);
+    }
+    problem
+}
+
+#[test]
+fn where_there_is_nothing_to_search_there_is_no_circuit() {
+    let lowered = |problem: &Problem, budget: &Budget| {
+        let options = Options { level: Level::Toffoli, mark: Mark::Phase };
+        lower(&network_of(problem), &options, budget).map(|_| ()).map_err(|error| error.diagnostic().code.0)
+    };
+    let budget = Budget::unlimited();
+    assert_eq!(lowered(&Problem::new(), &budget), Err("C001"));
+    assert_eq!(lowered(&clauses(2, &[&[1], &[-1]]), &budget), Err("C002"));
+    assert_eq!(lowered(&clauses(2, &[&[]]), &budget), Err("C002"));
+    assert_eq!(lowered(&clauses(2, &[]), &budget), Err("C003"));
+    assert_eq!(lowered(&clauses(2, &[&[1, -1, 2]]), &budget), Err("C003"));
+    assert_eq!(lowered(&clauses(2, &[&[1, 2]]), &budget), Ok(()));
+    budget.cancel();
+    assert_eq!(lowered(&clauses(2, &[&[1, 2]]), &budget), Err("C004"));
+    // Two ways to write one XOR are two nodes; only expanding them shows that their XOR is constant.
+    let hidden = "search b0 b1 b2\nn4 = xor n1 n2\nn5 = xor n3 n4\nn6 = xor n2 n3\nn7 = xor n1 n6\nn8 = xor n5 n7\n";
+    for (root, expected) in [("n8", LowerError::NothingMarked), ("!n8", LowerError::EverythingMarked)] {
+        let network: Network = format!("{hidden}root {root}\n").parse().unwrap();
+        let options = Options { level: Level::Wide, mark: Mark::Phase };
+        assert_eq!(lower(&network, &options, &Budget::unlimited()), Err(expected));
+    }
+}
+
+/// Shapes that are rare in random problems: roots that are one literal, a XOR, an AND of equal or opposite XORs; ANDs
+/// that one XOR uses; long XORs used twice.
+#[test]
+fn special_shapes_are_lowered_right() {
+    let inputs = "search b0 b1 b2 b3 b4 b5 b6 b7 b8\n";
+    let same = "n10 = xor n1 n2\nn11 = xor n3 n10\nn12 = xor n2 n3\nn13 = xor n1 n12\n";
+    let long = "n10 = xor n1 n2\nn11 = xor n3 n10\nn12 = xor n4 n11\nn13 = xor n5 n12\nn14 = xor n6 n13\n\
+                n15 = xor n7 n14\nn16 = xor n8 n15\n";
+    let texts = [
+        format!("{inputs}root n3\n"),
+        format!("{inputs}root !n9\n"),
+        format!("{inputs}n10 = xor n1 n9\nroot !n10\n"),
+        format!("{inputs}{same}n14 = and n11 n13\nroot n14\n"),
+        format!("{inputs}{same}n14 = and n11 !n13\nn15 = xor n4 n14\nroot n15\n"),
+        format!("{inputs}{same}n14 = and n11 n13\nn15 = and n14 !n4\nn16 = and n5 n15\nroot !n16\n"),
+        format!("{inputs}n10 = and n1 !n2\nn11 = xor n3 n10\nn12 = and !n11 n4\nn13 = xor n12 n5\nroot n13\n"),
+        format!("{inputs}n10 = and n1 n2\nn11 = and n3 n4\nn12 = xor n10 n11\nn13 = xor n12 n5\nroot !n13\n"),
+        format!("{inputs}n10 = and n1 n2\nn11 = xor n3 n10\nn12 = and n4 n10\nn13 = and !n11 !n12\nroot n13\n"),
+        format!("{inputs}{long}n17 = and n16 n9\nn18 = and !n16 n1\nn19 = and !n17 !n18\nroot n19\n"),
+        format!("{inputs}{long}n17 = and n16 n15\nn18 = and n14 !n13\nn19 = xor n17 n18\nroot n19\n"),
+        format!(
+            "{inputs}n10 = xor n1 n2\nn11 = xor n2 n3\nn12 = xor n1 n3\nn13 = and n10 n11\nn14 = and n12 n13\nn15 = xor n4 n14\nroot n15\n"
+        ),
+        format!(
+            "{inputs}n10 = xor n1 n2\nn11 = xor n2 n3\nn12 = xor n1 n3\nn13 = and n10 n11\nn14 = and !n12 n13\nroot n14\n"
+        ),
+    ];
+    for text in texts {
+        let network: Network = text.parse().unwrap();
+        let expected: Vec<bool> = (0..512).map(|input| network.holds(&Bits::from_number(input, 9))).collect();
+        for level in Level::ALL {
+            for mark in [Mark::Phase, Mark::Bit] {
+                let circuit = oracle(&network, level, mark).unwrap();
+                check_level(&circuit, level);
+                if level <= Level::Toffoli {
+                    check_classical(&circuit, &expected);
+                }
+                (0..2).for_each(|seed| check_quantum(&circuit, &expected, seed));
+            }
+        }
+    }
 }

@@ -4,8 +4,8 @@
 //! After:  read back, the text gives the same registers, gates and blocks. Regions become comments.
 //!
 //! Controls are modifiers where the standard library has no gate: `ctrl(n) @` for a run of controls on 1, one
-//! `negctrl @` for each control on 0 (the language text is at odds with itself on `negctrl(n)`). A run of the same
-//! operation over a whole register is written as one statement on the register.
+//! `negctrl @` for each control on 0 (the language text is at odds with itself on `negctrl(n)`). Outside
+//! oracles a run of the same operation over a whole register is written as one statement on the register.
 
 use std::f64::consts::PI;
 use std::io::{self, Write};
@@ -32,6 +32,7 @@ pub fn write(circuit: &Circuit, header: &[String], out: &mut impl Write) -> io::
         qubits: Names::new(&circuit.qubits),
         bits: Names::new(&circuit.measured),
         regions: circuit.regions.iter().peekable(),
+        part: None,
         indent: "",
     };
     for block in circuit.blocks() {
@@ -81,6 +82,8 @@ struct Writer<'a> {
     bits: Names,
     /// The regions that begin at or after the next gate, in order.
     regions: std::iter::Peekable<std::slice::Iter<'a, Region>>,
+    /// What the gates being written are for.
+    part: Option<Part>,
     indent: &'static str,
 }
 
@@ -93,6 +96,7 @@ impl Writer<'_> {
         let mut at = gates.start;
         while at < gates.end {
             while let Some(region) = self.regions.next_if(|region| region.gates.start as usize <= at) {
+                self.part = Some(region.part);
                 self.comment(out, region)?;
             }
             out.write_all(self.indent.as_bytes())?;
@@ -127,8 +131,12 @@ impl Writer<'_> {
         }
     }
 
-    /// The register of at least two qubits over which the gates from `at` run in order, all before `limit`.
+    /// The register of at least two qubits over which the gates from `at` run in order, all before `limit`. Within an
+    /// oracle such a run is a coincidence and stays as it is.
     fn whole_register(&self, at: usize, limit: usize) -> Option<&Register> {
+        if matches!(self.part, Some(Part::Compute | Part::Mark | Part::Undo)) {
+            return None;
+        }
         let gates = self.circuit.gates();
         let first = &gates[at];
         let plain = first.control_count() == 0 && first.condition().is_none() && !first.op().has_angle();

@@ -142,9 +142,8 @@ mod tests {
     fn controls_hold_exactly_where_the_operands_do() {
         let mut random = SplitMix64::new(1);
         for _ in 0..2000 {
-            let operands: Vec<(u32, bool)> = (0..1 + random.below(4))
-                .map(|_| (1 + random.below(31) as u32, random.coin()))
-                .collect();
+            let operands: Vec<(u32, bool)> =
+                (0..1 + random.below(4)).map(|_| (1 + random.below(31) as u32, random.coin())).collect();
             check(&operands, 5);
         }
     }

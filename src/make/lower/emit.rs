@@ -16,12 +16,7 @@ pub(super) const OUTCOME: &str = "outcome";
 const RUNS_BETWEEN_LOOKS: usize = 1024;
 
 /// Writes the oracle.
-pub(super) fn emit(
-    plan: &Plan<'_>,
-    steps: &Steps,
-    options: &Options,
-    budget: &Budget,
-) -> Result<Circuit, LowerError> {
+pub(super) fn emit(plan: &Plan<'_>, steps: &Steps, options: &Options, budget: &Budget) -> Result<Circuit, LowerError> {
     let mut circuit = Circuit::new();
     circuit.add_qubits(SEARCH, plan.search);
     if plan.mark.is_some() {
@@ -33,11 +28,8 @@ pub(super) fn emit(
         circuit.note(0, Part::Prepare, None);
     }
     let erased = steps.compute.iter().filter(|step| matches!(step, Step::And(..))).count();
-    let outcomes = if options.level == Level::Feedback && erased > 0 {
-        circuit.add_measured(OUTCOME, erased)
-    } else {
-        Vec::new()
-    };
+    let outcomes =
+        if options.level == Level::Feedback && erased > 0 { circuit.add_measured(OUTCOME, erased) } else { Vec::new() };
     let mut writer = Writer { circuit, level: options.level, outcomes: outcomes.into_iter() };
     let ends = steps.runs.iter().skip(1).map(|run| run.start).chain([steps.compute.len()]);
     let runs: Vec<(std::ops::Range<usize>, _)> =

@@ -23,7 +23,7 @@ impl Builder {
             let digit = |number: &Binary| number.digits.get(at).copied().unwrap_or(Lit::NO);
             terms.push((self.choose(condition, digit(&a), digit(&b)), 1 << at));
         }
-        Linear::of(b.base, terms, yes.range().join(no.range()))
+        Linear::of(b.base, terms, yes.range().join(no.range())).trimmed(self)
     }
 
     /// The product: `(c + A)(d + B) = cd + cB + dA + AB`, with one AND for each pair of digits.
@@ -79,10 +79,12 @@ impl Builder {
     /// Restoring division: from the highest digit down, double the remainder, add the digit, and take the divisor away
     /// where it fits. For a power of two nothing is to be decided: the digits are split.
     fn long_division(&mut self, x: &Linear, by: i128) -> (Linear, Linear) {
-        let digits = match x.as_binary() {
+        let count = width(x.range().hi as u128);
+        let mut digits = match x.as_binary() {
             Some(Binary { base: 0, digits }) => digits,
-            _ => self.digits(x, 0, width(x.range().hi as u128)).digits,
+            _ => self.digits(x, 0, count).digits,
         };
+        digits.truncate(count);
         let (quotient_range, remainder_range) = (Range::new(0, x.range().hi / by), Range::new(0, by - 1));
         if by.count_ones() == 1 {
             let (low, high) = digits.split_at((by.trailing_zeros() as usize).min(digits.len()));
@@ -138,7 +140,7 @@ impl Builder {
         } else {
             Range::new(p.lo.min(q.lo), p.hi.min(q.hi))
         };
-        self.choose_number(left, &a, &b).within(range)
+        self.choose_number(left, &a, &b).within(range).trimmed(self)
     }
 
     /// The index of an element in binary, and which part of a row of `len` elements it can reach.
@@ -167,6 +169,6 @@ impl Builder {
         let chosen: Vec<Lit> = (0..longest).map(|at| self.select(&digits, &digit_at(at))).collect();
         let reach = Range::new(0, (1i128 << longest) - 1);
         let range = items.iter().map(Linear::range).reduce(Range::join).expect("a row has an element");
-        Linear::sum([&base, &Linear::binary(0, &chosen, reach)]).within(range)
+        Linear::sum([&base, &Linear::binary(0, &chosen, reach)]).within(range).trimmed(self)
     }
 }

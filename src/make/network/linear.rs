@@ -164,12 +164,28 @@ impl Linear {
         Some(Binary { base, digits })
     }
 
-    /// The binary form: columns are added where they must be.
+    /// The binary form: columns are added where they must be, and where the digits would be many more than the range
+    /// needs.
     pub(super) fn to_binary(&self, builder: &mut Builder) -> Binary {
         if let Some(value) = self.value() {
             return Binary { base: value, digits: Vec::new() };
         }
-        self.as_binary().unwrap_or_else(|| builder.digits(self, self.range.lo, width(self.range.span())))
+        let needed = width(self.range.span());
+        match self.as_binary() {
+            Some(mut binary) if binary.base == self.range.lo => {
+                // Higher digits are set for no assignment within the domains.
+                binary.digits.truncate(needed);
+                binary
+            }
+            Some(binary) if binary.digits.len() <= needed + 1 => binary,
+            _ => builder.digits(self, self.range.lo, needed),
+        }
+    }
+
+    /// The same number, in binary where its terms reach far beyond its range: so weights stay below some 2^70 whatever
+    /// is built on top.
+    pub(super) fn trimmed(self, builder: &mut Builder) -> Self {
+        if width(self.reach().span()) > width(self.range.span()) + 2 { self.to_compact(builder) } else { self }
     }
 
     /// The same number as a form with one literal a digit.

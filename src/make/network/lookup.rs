@@ -23,8 +23,7 @@ impl Builder {
         let digits: Vec<Vec<Option<bool>>> = (0..width(range.span())).map(digit).collect();
         let choices = |b: &mut Builder| digits.iter().map(|values| b.choices(index, values)).collect::<Vec<Lit>>();
         let products = |b: &mut Builder| digits.iter().map(|values| b.products(index, values)).collect::<Vec<Lit>>();
-        let lits =
-            if index.len() > MAX_PRODUCT_BITS { choices(self) } else { self.cheapest(&[&choices, &products]) };
+        let lits = if index.len() > MAX_PRODUCT_BITS { choices(self) } else { self.cheapest(&[&choices, &products]) };
         Linear::binary(range.lo, &lits, range)
     }
 

@@ -4,7 +4,7 @@ use tallymark::problem::{Compare, Domain, Expr, ExprId, Kind, Origin, Problem, T
 use tallymark::random::SplitMix64;
 
 /// A problem of at most `max_bits` bits that passes the checker.
-pub fn random_problem(seed: u64, max_bits: usize) -> Problem {
+pub(crate) fn random_problem(seed: u64, max_bits: usize) -> Problem {
     let mut random = SplitMix64::new(seed);
     loop {
         let mut worker = Worker { problem: Problem::new(), random: &mut random };
@@ -53,8 +53,13 @@ impl Worker<'_> {
     }
 
     fn variable(&mut self, yes_no: bool) -> Option<ExprId> {
-        let fitting: Vec<_> =
-            self.problem.vars().iter().filter(|(_, v)| (v.domain == Domain::YesNo) == yes_no).map(|(id, _)| id).collect();
+        let fitting: Vec<_> = self
+            .problem
+            .vars()
+            .iter()
+            .filter(|(_, v)| (v.domain == Domain::YesNo) == yes_no)
+            .map(|(id, _)| id)
+            .collect();
         let at = self.random.below(fitting.len().max(1) as u64) as usize;
         fitting.get(at).map(|&var| self.problem.exprs.node(Expr::Var(var)))
     }

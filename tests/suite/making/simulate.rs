@@ -2,19 +2,19 @@
 //! sparse state vector with measurements.
 
 use rustc_hash::FxHashMap;
-use tallymark::circuit::{Circuit, Gate, Op, QubitId};
+use tallymark::circuit::{Circuit, FOUND, Gate, Op, QubitId};
 use tallymark::id::Id;
 use tallymark::random::SplitMix64;
 
 /// One bit for each input, for each qubit; and the sign of each input.
-pub struct Classical {
-    pub qubits: Vec<Vec<u64>>,
-    pub sign: Vec<u64>,
+pub(crate) struct Classical {
+    pub(crate) qubits: Vec<Vec<u64>>,
+    pub(crate) sign: Vec<u64>,
 }
 
 impl Classical {
     /// All inputs of the search register (register 0 of the circuit); the other qubits are 0.
-    pub fn new(circuit: &Circuit) -> Self {
+    pub(crate) fn new(circuit: &Circuit) -> Self {
         let n = circuit.qubits[0].len as usize;
         let words = (1usize << n).div_ceil(64);
         let mut qubits = vec![vec![0u64; words]; circuit.qubit_count()];
@@ -26,7 +26,7 @@ impl Classical {
         Self { qubits, sign: vec![0; words] }
     }
 
-    pub fn run(&mut self, circuit: &Circuit) {
+    pub(crate) fn run(&mut self, circuit: &Circuit) {
         for gate in circuit.gates() {
             let mut hold = vec![u64::MAX; self.sign.len()];
             for control in circuit.controls(gate) {
@@ -47,7 +47,7 @@ impl Classical {
     }
 }
 
-pub type Complex = (f64, f64);
+pub(crate) type Complex = (f64, f64);
 
 fn times(a: Complex, b: Complex) -> Complex {
     (a.0 * b.0 - a.1 * b.1, a.0 * b.1 + a.1 * b.0)
@@ -55,14 +55,14 @@ fn times(a: Complex, b: Complex) -> Complex {
 
 /// Amplitudes that are not zero, by basis state; qubit 0 is the lowest bit.
 #[derive(Clone)]
-pub struct Quantum {
-    pub amplitudes: FxHashMap<u128, Complex>,
+pub(crate) struct Quantum {
+    pub(crate) amplitudes: FxHashMap<u128, Complex>,
     outcomes: Vec<bool>,
     random: SplitMix64,
 }
 
 impl Quantum {
-    pub fn new(amplitudes: impl IntoIterator<Item = (u128, Complex)>, circuit: &Circuit, seed: u64) -> Self {
+    pub(crate) fn new(amplitudes: impl IntoIterator<Item = (u128, Complex)>, circuit: &Circuit, seed: u64) -> Self {
         assert!(circuit.qubit_count() <= 128);
         Self {
             amplitudes: amplitudes.into_iter().collect(),
@@ -71,11 +71,25 @@ impl Quantum {
         }
     }
 
-    pub fn run(&mut self, circuit: &Circuit) {
+    pub(crate) fn run(&mut self, circuit: &Circuit) {
         for block in circuit.blocks() {
             for _ in 0..block.repeat {
                 for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
                     self.gate(circuit, gate);
+                }
+            }
+        }
+    }
+
+    /// Runs a whole search up to its last measurement.
+    pub(crate) fn run_before_found(&mut self, circuit: &Circuit) {
+        let found = circuit.measured.iter().find(|register| register.name == FOUND).unwrap();
+        for block in circuit.blocks() {
+            for _ in 0..block.repeat {
+                for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
+                    if gate.measured().is_none_or(|bit| bit.index() < found.start as usize) {
+                        self.gate(circuit, gate);
+                    }
                 }
             }
         }
@@ -96,7 +110,8 @@ impl Quantum {
             }
             op => {
                 let held = |state: u128| {
-                    let holds = |c: &tallymark::circuit::Control| (state >> c.qubit().index() & 1 == 1) != c.is_negated();
+                    let holds =
+                        |c: &tallymark::circuit::Control| (state >> c.qubit().index() & 1 == 1) != c.is_negated();
                     circuit.controls(gate).iter().all(holds)
                 };
                 let mut after: FxHashMap<u128, Complex> = FxHashMap::default();
