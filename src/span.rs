@@ -53,6 +53,8 @@ pub struct SourceFile {
     pub text: Arc<str>,
     /// The number of the first line of `text` in the file, from 1.
     pub first_line: usize,
+    /// The column of the first character of `text`, from 1: an excerpt of a very long line begins inside it.
+    pub first_column: usize,
 }
 
 /// Every file of a run.
@@ -75,7 +77,13 @@ impl Sources {
     /// Adds an excerpt whose first line is line `first_line` of the file. Readers of large files keep only the lines
     /// that an error shows.
     pub fn add_excerpt(&mut self, name: &str, text: impl Into<Arc<str>>, first_line: usize) -> FileId {
-        self.files.push(SourceFile { name: name.into(), text: text.into(), first_line })
+        self.add_excerpt_at(name, text, Position { line: first_line, column: 1 })
+    }
+
+    /// Adds an excerpt that begins at this position of the file.
+    pub fn add_excerpt_at(&mut self, name: &str, text: impl Into<Arc<str>>, first: Position) -> FileId {
+        let (first_line, first_column) = (first.line, first.column);
+        self.files.push(SourceFile { name: name.into(), text: text.into(), first_line, first_column })
     }
 
     /// The file.
@@ -92,9 +100,10 @@ impl Sources {
         }
         let before = &file.text[..lo];
         let line_start = before.rfind('\n').map_or(0, |at| at + 1);
+        let start_column = if line_start == 0 { file.first_column } else { 1 };
         Position {
             line: file.first_line + before.matches('\n').count(),
-            column: before[line_start..].chars().count() + 1,
+            column: start_column + before[line_start..].chars().count(),
         }
     }
 
