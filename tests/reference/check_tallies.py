@@ -38,6 +38,8 @@ class Case:
         if self.path.suffix == ".tally":
             problem = tally_reference.read_file(self.path, dict(setting.split("=", 1) for setting in self.settings))
             return tally_reference.count(problem), problem.bits
+        if self.path.suffix != ".cnf":
+            return f"a {self.path.suffix} file"
         formula = dimacs_reference.read(self.path.read_text())
         if formula.variables > dimacs_reference.MOST_VARIABLES:
             return f"{formula.variables} variables, more than {dimacs_reference.MOST_VARIABLES}"
@@ -66,7 +68,7 @@ def check(command, path):
 
 def main():
     given = options(__doc__.splitlines()[0])
-    demos = sorted(path for path in (ROOT / "problems").glob("*") if path.suffix in (".tally", ".cnf"))
+    demos = sorted((ROOT / "problems").glob("*.*"))
     tallies = [path for path in demos if path.suffix == ".tally"]
     cases = sorted((ROOT / "tests/cases/language/good").glob("*.tally"))
     if len(tallies) < FEWEST_DEMOS or len(cases) < FEWEST_CASES:

@@ -3,9 +3,10 @@
     python3 fuzz_tallies.py NUMBER [--seed FIRST] [--circuits M]
 
 For `NUMBER` texts of `tally_generator`, from seed `FIRST` on, the tally and the number of bits must agree. For the first
-`M` of them the oracle of one level and mark (they take turns) is written too, read with the standard's reference
-parser, and run on every input in superposition, as `check_qasm` does. Texts that nothing or everything satisfies are
-kept once in four times. A difference is printed with its text; `--seed` then brings it back.
+`M` of them that some but not all assignments solve, the oracle of one level and mark (they take turns) is written too,
+read with the standard's reference parser, and run on every input in superposition, as `check_qasm` does. Texts that
+nothing or everything satisfies are kept once in four times. A difference is printed with its text; `--seed` then brings
+it back.
 """
 
 import pathlib
@@ -60,8 +61,8 @@ def main():
                 said = (int(found["tally"]["count"]), found["problem"]["bits"])
                 if said != (number, problem.bits):
                     raise check_qasm.Differs(f"{number} solutions over {problem.bits} bits, the command says {said}")
-                if done["compared"] < given.circuits and 0 < number < 1 << problem.bits:
-                    done += check_oracle(given.command, path, problem, settings, done["compared"])
+                if done["oracles run"] < given.circuits and 0 < number < 1 << problem.bits:
+                    done += check_oracle(given.command, path, problem, settings, done["oracles run"])
             except (CommandFailed, check_qasm.Differs, check_qasm.QasmError) as error:
                 failed += 1
                 print(f"FAIL seed {seed} {' '.join(settings)}: {error}\n{text}")

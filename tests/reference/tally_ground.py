@@ -159,12 +159,8 @@ def choice(pos, condition, yes, no):
 
 
 def select(pos, index, first, items):
-    """Element `index` of a row whose first index is `first`; every value the index can take must be in the row."""
+    """Element `index` (not a constant) of a row whose first index is `first`; every value the index can take must be in the row."""
     last = first + len(items) - 1
-    if index.value is not None:
-        if not first <= index.value <= last:
-            raise OutOfRange(pos, f"index {index.value} is outside {first} to {last}")
-        return items[index.value - first]
     low, high = index.low, index.high
     if low < first or high > last:
         low, high = exact_range(index)
