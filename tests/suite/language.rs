@@ -1,9 +1,10 @@
-//! The tally language: case files, the demo puzzles, the text form of problems, damaged texts.
+//! The tally language: case files, the demo puzzles, random expressions, the text form of problems, damaged texts.
 
 mod cases;
 mod count;
 mod damage;
 mod demos;
+mod random;
 
 use std::collections::BTreeSet;
 
