@@ -1,3 +1,4 @@
+mod auditing;
 mod counting;
 mod dimacs;
 mod judging;

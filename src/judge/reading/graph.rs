@@ -204,6 +204,11 @@ impl Graph {
 
     /// At least two of the three hold.
     pub(crate) fn most(&mut self, a: Signal, b: Signal, c: Signal) -> Signal {
+        match c.as_constant() {
+            Some(true) => return self.or(a, b),
+            Some(false) => return self.and(a, b),
+            None => {}
+        }
         let both = self.and(a, b);
         let either = self.or(a, b);
         let carried = self.and(c, either);

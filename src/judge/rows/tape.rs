@@ -164,8 +164,8 @@ impl<'a> Builder<'a> {
                 }
             }
             // What faster levels need of this one.
-            for node in 0..needed.len() {
-                if needed[node] && self.level_of[node] == level {
+            for (node, _) in needed.iter().enumerate().filter(|(_, needed)| **needed) {
+                if self.level_of[node] == level {
                     self.plan_node(node, level);
                 }
             }
