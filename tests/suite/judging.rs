@@ -126,6 +126,18 @@ fn clause_problems_are_copied_as_they_are() {
     assert_eq!(rows::count(&problem, 1, 9, &Budget::unlimited()).expect("no budget is set").count, 8);
 }
 
+#[test]
+fn a_sweep_over_nothing_and_a_sweep_that_is_stopped() {
+    let mut problem = Problem::new();
+    let sweep = rows::count(&problem, 2, 9, &Budget::unlimited()).expect("no budget is set");
+    assert_eq!((sweep.count, sweep.solutions, sweep.complete), (1, vec![Bits::zeros(0)], true));
+    problem.clauses.end_clause();
+    assert_eq!(rows::count(&problem, 2, 9, &Budget::unlimited()).expect("no budget is set").count, 0);
+    let budget = Budget::unlimited();
+    budget.cancel();
+    assert_eq!(rows::count(&problem, 2, 9, &budget), None);
+}
+
 /// Values that need all 64 bits, far too many to try: chosen ones, by unit propagation in the clause form.
 #[test]
 fn wide_values_are_read_exactly() {
