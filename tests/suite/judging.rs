@@ -64,7 +64,7 @@ fn models(cnf: &Cnf, bits: usize) -> (BTreeSet<u128>, usize) {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 300, failure_persistence: None, ..ProptestConfig::default() })]
+    #![proptest_config(ProptestConfig { cases: 600, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn rows_read_a_problem_as_the_evaluator_does(seed: u64) {
