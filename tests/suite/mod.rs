@@ -1,3 +1,4 @@
+mod auditing;
 mod command;
 mod counting;
 mod dimacs;

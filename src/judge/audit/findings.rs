@@ -63,24 +63,22 @@ impl Findings {
             }
             self.work_dirty |= !(dirty & lanes).is_zero();
             note(&mut self.fault, &(wrong & lanes), batch.first);
-            self.phases(machine, &owed, &lanes, batch.first);
+            self.phases(machine, &owed, &lanes, batch);
             if is_tidy { machine.clear_phases() } else { machine.clear() }
         }
         self.inputs += batch.lanes;
     }
 
     /// Compares the phases with those owed: a sign in the lanes of `owed`.
-    fn phases(&mut self, machine: &Machine, owed: &Row, lanes: &Row, first: u64) {
-        let sign = *machine.phase(2) ^ *owed;
-        if !machine.has_fine_phases() {
-            for (global, fits) in [(0, !sign & *lanes), (4, sign & *lanes)] {
-                self.phase(global, &fits, lanes, first);
-            }
-            // No other global phase fits any lane.
-            [1, 2, 3, 5, 6, 7].iter().for_each(|&global| note(&mut self.misfit[global], lanes, first));
+    fn phases(&mut self, machine: &Machine, owed: &Row, lanes: &Row, batch: &Batch) {
+        let first = batch.first;
+        let bits = [*machine.phase(0), *machine.phase(1), *machine.phase(2) ^ *owed];
+        // The usual case first, because counting lanes is slow.
+        if bits.iter().all(Row::is_zero) {
+            self.fitting[0] += batch.lanes;
+            (1..8).for_each(|global| note(&mut self.misfit[global], lanes, first));
             return;
         }
-        let bits = [*machine.phase(0), *machine.phase(1), sign];
         for global in 0..8 {
             let same = |bit: usize| if global >> bit & 1 == 1 { bits[bit] } else { !bits[bit] };
             let fits = same(0) & same(1) & same(2) & *lanes;

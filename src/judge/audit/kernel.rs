@@ -16,19 +16,17 @@ use crate::id::Id;
 use crate::judge::audit::oracle::{Trace, eighths};
 use crate::judge::rows::lanes::{Row, WORDS, wide_fn};
 
-/// Flip row `to` where rows `a` and `b` both hold; a mask of ones complements its operand. The masks are whole words, so
-/// that the loop loads them into vectors as they are: a fifth fewer instructions than with two flags.
-#[derive(Clone, Copy, PartialEq, Eq, Debug)]
-struct Pair {
-    a: u32,
-    b: u32,
-    to: u32,
-    mask_a: u64,
-    mask_b: u64,
-}
-
 /// A row or its complement: `row << 1 | negated`.
 type Operand = u32;
+
+/// Flip row `to` where both operands hold. Twelve bytes: together with the rows of some hundred qubits, the pairs of some
+/// thousand gates should stay in the first cache.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+struct Pair {
+    a: Operand,
+    b: Operand,
+    to: u32,
+}
 
 /// A run of work.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -50,22 +48,14 @@ pub(crate) struct Program {
     segments: Vec<Segment>,
     /// Which qubits end as the complement of their row.
     flipped: Vec<bool>,
-    /// Whether there are phases other than signs.
-    has_fine_phases: bool,
 }
 
 impl Program {
     /// Translates a circuit. `first` is the run of one input, which says what every `reset` must find.
     pub(crate) fn new(circuit: &Circuit, first: &Trace) -> Self {
         let qubits = circuit.qubit_count();
-        let program = Program {
-            qubits,
-            pairs: Vec::new(),
-            pool: Vec::new(),
-            segments: Vec::new(),
-            flipped: vec![false; qubits],
-            has_fine_phases: false,
-        };
+        let program =
+            Program { qubits, pairs: Vec::new(), pool: Vec::new(), segments: Vec::new(), flipped: vec![false; qubits] };
         let resets = first.resets.iter().map(|&(_, value)| value);
         let mut writer = Writer { circuit, program, touched: vec![false; qubits], operands: Vec::new() };
         writer.write(resets);
@@ -145,7 +135,6 @@ impl Writer<'_> {
         self.take_controls(gate);
         let target = self.operand(gate.target(), false);
         self.operands.push(target);
-        self.program.has_fine_phases |= eighths != 4;
         for from in (0..3).filter(|from| eighths >> from & 1 == 1) {
             for to in (from..3).rev() {
                 let phases = (from..to).map(|bit| self.program.phase(bit) << 1);
@@ -171,8 +160,7 @@ impl Writer<'_> {
                 return self.program.segments.push(Segment::Wide { to, start, end });
             }
         };
-        let mask = |operand: Operand| 0u64.wrapping_sub(u64::from(operand & 1));
-        self.program.pairs.push(Pair { a: a >> 1, b: b >> 1, to, mask_a: mask(a), mask_b: mask(b) });
+        self.program.pairs.push(Pair { a, b, to });
     }
 
     fn end_pairs(&mut self) {
@@ -235,14 +223,9 @@ impl<'a> Machine<'a> {
         if self.program.flipped[qubit.index()] { !row } else { row }
     }
 
-    /// A bit of the phase after a run: 2 is the sign, and 0 and 1 are there only with [`Machine::has_fine_phases`].
+    /// A bit of the phase after a run, the phase being a multiple of pi/4: bit 2 is the sign.
     pub(crate) fn phase(&self, bit: usize) -> &Row {
         &self.rows[self.program.phase(bit) as usize]
-    }
-
-    /// Whether some gate turns by less than a sign.
-    pub(crate) fn has_fine_phases(&self) -> bool {
-        self.program.has_fine_phases
     }
 
     /// Runs the circuit; returns the lanes in which some `reset` found another value than it must.
@@ -314,15 +297,20 @@ wide_fn! {
     }
 }
 
+/// What an operand is combined with: nothing, or all ones for a complement. A load of one of these is cheaper than
+/// making it from the flag.
+static MASKS: [u64; 2] = [0, !0];
+
 #[inline(always)]
 fn run_pairs(pairs: &[Pair], rows: &mut [Row]) {
-    for pair in pairs {
-        let (a, b) = (&rows[pair.a as usize], &rows[pair.b as usize]);
-        let mut to = rows[pair.to as usize];
+    for &Pair { a, b, to } in pairs {
+        let (mask_a, mask_b) = (MASKS[(a & 1) as usize], MASKS[(b & 1) as usize]);
+        let (a, b) = (&rows[(a >> 1) as usize], &rows[(b >> 1) as usize]);
+        let mut result = rows[to as usize];
         for word in 0..WORDS {
-            to.0[word] ^= (a.0[word] ^ pair.mask_a) & (b.0[word] ^ pair.mask_b);
+            result.0[word] ^= (a.0[word] ^ mask_a) & (b.0[word] ^ mask_b);
         }
-        rows[pair.to as usize] = to;
+        rows[to as usize] = result;
     }
 }
 

@@ -4,7 +4,7 @@
 //! [`Verdict`]. The circuit's gates are interpreted one by one; no sequence of gates is recognised.
 //!
 //! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases, so running
-//!   every basis state is complete ([`exhaustive`]); where that is too much, a stated [`sample`] is run.
+//!   every basis state is complete (`exhaustive`); where that is too much, a stated `sample` is run.
 //! - Every other circuit is run on a superposition of all inputs.
 
 pub(crate) mod exhaustive;
