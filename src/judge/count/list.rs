@@ -7,11 +7,16 @@
 //! for few solutions and slows down with their number, so after [`BLOCKED`] of them the part is begun anew, depth
 //! first: the counted variables are fixed in order by assumptions, to the values of the last model, and each is
 //! flipped once on the way back. The unflipped branch needs no call, and what was not searched yet is known exactly.
+//!
+//! Where the search is [`Pruned`](Search::Pruned), unit propagation of our own tells which flips are impossible and
+//! saves their calls, which are most of them where variables are coded one-hot. The way that confirms is plain, so that
+//! the two share no more than this file.
 
 use num_bigint::BigUint;
 use num_traits::{One, Zero};
 
 use super::parts::Part;
+use super::path::{Flip, Path};
 use crate::budget::Budget;
 use crate::problem::Bits;
 use crate::sat::{Answer, Engine, Lit};
@@ -40,6 +45,19 @@ impl Limits {
     }
 }
 
+/// How to search depth first.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) enum Search {
+    /// With unit propagation.
+    Pruned,
+    /// By calls only.
+    Plain,
+}
+
+/// A model of an engine that breaks a clause.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) struct WrongModel;
+
 /// What was found in a part.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Listing {
@@ -63,8 +81,17 @@ impl Listing {
     }
 }
 
+/// How to list.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Plan {
+    pub(super) search: Search,
+    /// Solutions to keep of each part.
+    pub(super) keep: usize,
+    pub(super) limits: Limits,
+}
+
 /// Lists the solutions of all parts. Once a part has none, the others are left as they are.
-pub(super) fn list_all<E: Engine>(parts: &[Part], keep: usize, limits: Limits, budget: &Budget) -> Vec<Listing> {
+pub(super) fn list_all<E: Engine>(parts: &[Part], plan: Plan, budget: &Budget) -> Result<Vec<Listing>, WrongModel> {
     let mut listings: Vec<Listing> = parts.iter().map(Listing::unknown).collect();
     // A part without solutions decides at once: look for one before listing any.
     if parts.len() > 1 {
@@ -76,24 +103,23 @@ pub(super) fn list_all<E: Engine>(parts: &[Part], keep: usize, limits: Limits, b
                 }
                 Answer::Unsat => {
                     listing.rest.set_zero();
-                    return listings;
+                    return Ok(listings);
                 }
-                Answer::Stopped => return listings,
+                Answer::Stopped => return Ok(listings),
             }
         }
     }
-    let mut left = limits;
+    let mut left = plan.limits;
     for (part, listing) in parts.iter().zip(&mut listings) {
-        let known = std::mem::take(listing);
-        let mut lister = Lister::<E>::new(part, keep, left, budget);
-        *listing = lister.run();
-        if listing.found < known.found {
-            *listing = known;
-        }
-        left.solutions = left.solutions.saturating_sub(listing.found);
+        let mut lister = Lister::<E>::new(part, Plan { limits: left, ..plan }, budget);
+        let listed = lister.run()?;
+        left.solutions = left.solutions.saturating_sub(listed.found);
         left.work = lister.left.work;
+        if listed.found >= listing.found {
+            *listing = listed;
+        }
     }
-    listings
+    Ok(listings)
 }
 
 fn engine_for<E: Engine>(part: &Part) -> E {
@@ -105,26 +131,26 @@ fn engine_for<E: Engine>(part: &Part) -> E {
 struct Lister<'a, E> {
     part: &'a Part,
     engine: E,
-    keep: usize,
+    plan: Plan,
     left: Limits,
     budget: &'a Budget,
     listing: Listing,
 }
 
 impl<'a, E: Engine> Lister<'a, E> {
-    fn new(part: &'a Part, keep: usize, left: Limits, budget: &'a Budget) -> Self {
-        Self { part, engine: engine_for(part), keep, left, budget, listing: Listing::default() }
+    fn new(part: &'a Part, plan: Plan, budget: &'a Budget) -> Self {
+        Self { part, engine: engine_for(part), plan, left: plan.limits, budget, listing: Listing::default() }
     }
 
-    fn run(&mut self) -> Listing {
+    fn run(&mut self) -> Result<Listing, WrongModel> {
         let blocked = self.block();
         if blocked.rest.is_zero() || self.is_spent() {
-            return blocked;
+            return Ok(blocked);
         }
         self.engine = engine_for(self.part);
-        let searched = self.search();
+        let searched = self.search()?;
         // A search that was stopped early may know less than what was blocked before.
-        if searched.found < blocked.found { blocked } else { searched }
+        Ok(if searched.found < blocked.found { blocked } else { searched })
     }
 
     /// Lists with blocking clauses, up to [`BLOCKED`] solutions.
@@ -148,45 +174,29 @@ impl<'a, E: Engine> Lister<'a, E> {
     }
 
     /// Lists depth first.
-    fn search(&mut self) -> Listing {
-        let counted = &self.part.counted;
-        // The counted variables fixed so far, and whether each was flipped.
-        let mut prefix: Vec<Lit> = Vec::new();
-        let mut flipped: Vec<bool> = Vec::new();
-        let mut answer = self.call(&prefix);
+    fn search(&mut self) -> Result<Listing, WrongModel> {
+        let mut path = Path::new(self.part, self.plan.search);
+        let mut answer = self.call(&path.assumed());
         loop {
-            match answer {
-                Answer::Sat => {
-                    for &var in &counted[prefix.len()..] {
-                        prefix.push(Lit::new(var, self.engine.value(var)));
-                        flipped.push(false);
-                    }
-                    self.note();
-                }
-                Answer::Unsat => {}
-                Answer::Stopped => {
-                    self.listing.rest = unsearched(&flipped, counted.len(), true);
-                    break;
-                }
-            }
-            if answer == Answer::Unsat && prefix.is_empty() {
+            if answer == Answer::Sat {
+                path.descend(self.part, &self.engine)?;
+                self.note();
+            } else if answer == Answer::Stopped || path.is_empty() {
                 break;
             }
-            while flipped.last() == Some(&true) {
-                flipped.pop();
-                prefix.pop();
+            let stops = self.is_spent();
+            match path.flip_next(stops) {
+                Flip::None => return Ok(std::mem::take(&mut self.listing)),
+                Flip::Left => break,
+                Flip::Possible => answer = self.call(&path.assumed()),
+                Flip::Impossible => {
+                    self.left.work = self.left.work.saturating_sub(1);
+                    answer = Answer::Unsat;
+                }
             }
-            let Some(last) = flipped.last_mut() else { break };
-            if self.is_spent() {
-                self.listing.rest = unsearched(&flipped, counted.len(), false);
-                break;
-            }
-            *last = true;
-            let lit = prefix.pop().expect("as long as the flips");
-            prefix.push(!lit);
-            answer = self.call(&prefix);
         }
-        std::mem::take(&mut self.listing)
+        self.listing.rest = path.unsearched(self.part.counted.len(), answer == Answer::Stopped);
+        Ok(std::mem::take(&mut self.listing))
     }
 
     fn is_spent(&self) -> bool {
@@ -203,20 +213,11 @@ impl<'a, E: Engine> Lister<'a, E> {
     /// Notes the solution in the engine's model.
     fn note(&mut self) {
         self.listing.found += 1;
-        if self.listing.kept.len() < self.keep {
+        if self.listing.kept.len() < self.plan.keep {
             self.listing.kept.push((0..self.part.bit_count).map(|var| self.engine.value(var)).collect());
         }
         if self.listing.found % REPORTED == 0 {
             self.budget.report("listing solutions", self.listing.found, None);
         }
     }
-}
-
-/// How many assignments to the counted variables were not searched: for each unflipped variable those under its flip,
-/// and, where the last call was stopped, those under the prefix itself.
-fn unsearched(flipped: &[bool], counted: usize, stopped: bool) -> BigUint {
-    let under = |level: usize| BigUint::one() << (counted - 1 - level);
-    let flips = flipped.iter().enumerate().filter(|&(_, &flipped)| !flipped).map(|(level, _)| under(level));
-    let prefix = BigUint::one() << (counted - flipped.len());
-    flips.sum::<BigUint>() + if stopped { prefix } else { BigUint::zero() }
 }
