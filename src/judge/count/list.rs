@@ -221,3 +221,135 @@ impl<'a, E: Engine> Lister<'a, E> {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::id::Id;
+    use crate::judge::clauses::Cnf;
+    use crate::judge::count::parts::Split;
+    use crate::problem::{BitId, BitLit, Clauses};
+    use crate::random::SplitMix64;
+    use crate::sat::{Batsat, Varisat};
+
+    const VARS: usize = 12;
+
+    /// A part of twelve variables, of which those in `counted` are counted, with few clauses and so many solutions.
+    fn random_part(random: &mut SplitMix64, counted: &[usize]) -> Part {
+        let mut clauses = Clauses::new();
+        // A clause that holds all variables together.
+        clauses.push(&(0..VARS).map(|var| BitLit::new(BitId::new(var), true)).collect::<Vec<_>>());
+        for _ in 0..random.below(14) {
+            let length = 2 + random.below(3);
+            let lit = |_| BitLit::new(BitId::new(random.below(VARS as u64) as usize), random.coin());
+            clauses.push(&(0..length).map(lit).collect::<Vec<_>>());
+        }
+        let counted: Vec<BitId> = counted.iter().map(|&var| BitId::new(var)).collect();
+        let mut split = Split::of(&Cnf { var_count: VARS, clauses }, VARS, &counted);
+        assert_eq!(split.parts.len(), 1);
+        split.parts.remove(0)
+    }
+
+    fn holds(part: &Part, code: usize) -> bool {
+        part.clauses().all(|clause| clause.iter().any(|lit| (code >> lit.var() & 1 == 1) != lit.is_negated()))
+    }
+
+    fn brute_force(part: &Part) -> u64 {
+        let mask = part.counted.iter().fold(0, |mask, &var| mask | 1 << var);
+        let mut seen: Vec<usize> = (0..1 << VARS).filter(|&code| holds(part, code)).map(|code| code & mask).collect();
+        seen.sort_unstable();
+        seen.dedup();
+        seen.len() as u64
+    }
+
+    fn plan(search: Search, limits: Limits) -> Plan {
+        Plan { search, keep: 10, limits }
+    }
+
+    fn search<E: Engine>(part: &Part, plan: Plan) -> Listing {
+        Lister::<E>::new(part, plan, &Budget::unlimited()).search().expect("right models")
+    }
+
+    #[test]
+    fn both_engines_and_both_searches_find_every_solution() {
+        let mut random = SplitMix64::new(3);
+        for counted in [&(0..VARS).collect::<Vec<_>>()[..], &[1, 4, 5, 9], &[]] {
+            for _ in 0..12 {
+                let part = random_part(&mut random, counted);
+                let expected = brute_force(&part);
+                for kind in [Search::Pruned, Search::Plain] {
+                    let plan = plan(kind, Limits::none());
+                    for listing in [search::<Varisat>(&part, plan), search::<Batsat>(&part, plan)] {
+                        assert_eq!((listing.found, listing.rest), (expected, BigUint::zero()));
+                        assert_eq!(listing.kept.len() as u64, expected.min(10));
+                    }
+                }
+                let listed = list_all::<Batsat>(&[part], plan(Search::Pruned, Limits::none()), &Budget::unlimited());
+                assert_eq!(listed.unwrap()[0].found, expected);
+            }
+        }
+    }
+
+    #[test]
+    fn a_limit_leaves_bounds_that_hold() {
+        let mut random = SplitMix64::new(4);
+        let counted: Vec<usize> = (0..VARS).collect();
+        for (solutions, work) in [(0, u64::MAX), (7, u64::MAX), (2500, u64::MAX), (u64::MAX, 300), (u64::MAX, 0)] {
+            let part = random_part(&mut random, &counted);
+            let expected = brute_force(&part);
+            let plan = plan(Search::Pruned, Limits { solutions, work });
+            let whole = list_all::<Varisat>(std::slice::from_ref(&part), plan, &Budget::unlimited()).unwrap().remove(0);
+            for listing in [search::<Varisat>(&part, plan), whole] {
+                assert!(
+                    listing.found <= expected && BigUint::from(expected) <= listing.high(),
+                    "{listing:?}, {expected}"
+                );
+                assert!(listing.found <= solutions.saturating_add(1));
+            }
+        }
+    }
+
+    #[test]
+    fn a_part_without_solutions_decides() {
+        let lit = |var: usize, value| BitLit::new(BitId::new(var), value);
+        let mut clauses = Clauses::new();
+        clauses.push(&[lit(0, true), lit(1, true)]);
+        for (a, b) in [(true, true), (true, false), (false, true), (false, false)] {
+            clauses.push(&[lit(2, a), lit(3, b)]);
+        }
+        let bits: Vec<BitId> = (0..4).map(BitId::new).collect();
+        let split = Split::of(&Cnf { var_count: 4, clauses }, 4, &bits);
+        assert_eq!(split.parts.len(), 2);
+        let plan = plan(Search::Pruned, Limits::none());
+        let listings = list_all::<Varisat>(&split.parts, plan, &Budget::unlimited()).unwrap();
+        assert!(listings.iter().any(|listing| listing.high().is_zero()));
+    }
+
+    /// An engine that says that everything is true.
+    struct Optimist;
+
+    impl Engine for Optimist {
+        fn new() -> Self {
+            Self
+        }
+        fn add_clause(&mut self, _: &[Lit]) {}
+        fn solve(&mut self, _: &[Lit], _: &Budget) -> Answer {
+            Answer::Sat
+        }
+        fn value(&self, _: usize) -> bool {
+            true
+        }
+    }
+
+    #[test]
+    fn a_wrong_model_is_noticed() {
+        let lit = |var: usize, value| BitLit::new(BitId::new(var), value);
+        let mut clauses = Clauses::new();
+        clauses.push(&[lit(0, false), lit(1, false)]);
+        let bits = [BitId::new(0), BitId::new(1)];
+        let split = Split::of(&Cnf { var_count: 2, clauses }, 2, &bits);
+        let plan = plan(Search::Pruned, Limits::none());
+        let searched = Lister::<Optimist>::new(&split.parts[0], plan, &Budget::unlimited()).search();
+        assert!(searched.is_err());
+    }
+}

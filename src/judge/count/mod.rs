@@ -244,3 +244,38 @@ fn check_solutions(problem: &Problem, tally: &Tally) -> Result<(), Fault> {
         Some(bits) => Err(Fault::NotASolution { method: tally.method, bits: bits.clone() }),
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn tally(low: u32, high: u32, method: Method) -> Tally {
+        let (low, high) = (low.into(), high.into());
+        Tally { low, high, method, checked_by: Vec::new(), solutions: Vec::new(), complete: false }
+    }
+
+    #[test]
+    fn ways_that_disagree_are_a_fault() {
+        let swept = || tally(5, 5, Method::Sweep);
+        let mut first = swept();
+        assert_eq!(agree(&mut first, &tally(5, 5, Method::Listing)), Ok(()));
+        assert_eq!(first.checked_by, [Method::Listing]);
+        // Bounds confirm nothing, but they must hold.
+        assert_eq!(agree(&mut first, &tally(2, 9, Method::Listing)), Ok(()));
+        assert_eq!(first.checked_by, [Method::Listing]);
+        for (low, high) in [(6, 6), (4, 4), (6, 9), (0, 4)] {
+            let fault = agree(&mut swept(), &tally(low, high, Method::Listing)).unwrap_err();
+            assert!(matches!(fault, Fault::Disagree { .. }), "{fault}");
+        }
+    }
+
+    #[test]
+    fn what_is_no_solution_is_a_fault() {
+        let mut problem = Problem::new();
+        problem.add_numbered_vars(1);
+        problem.clauses.push(&[crate::problem::BitLit::from_dimacs(1).expect("a literal")]);
+        let mut found = tally(1, 1, Method::Listing);
+        found.solutions = vec![Bits::zeros(1)];
+        assert!(matches!(check_solutions(&problem, &found), Err(Fault::NotASolution { .. })));
+    }
+}
