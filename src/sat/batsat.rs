@@ -102,7 +102,7 @@ mod tests {
     fn stops_inside_a_call_and_goes_on_afterwards() {
         let mut engine = Batsat::new();
         let (pigeons, holes) = (12, 11);
-        let sits = |pigeon, hole, value| Lit::new(pigeon * holes + hole, value);
+        let sits = |pigeon: usize, hole: usize, value| Lit::new(pigeon * holes + hole, value);
         for pigeon in 0..pigeons {
             engine.add_clause(&(0..holes).map(|hole| sits(pigeon, hole, true)).collect::<Vec<_>>());
         }
