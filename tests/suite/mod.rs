@@ -1,6 +1,7 @@
 mod counting;
 mod dimacs;
 mod judging;
+mod known_counts;
 mod language;
 mod making;
 mod random_problem;

@@ -4,6 +4,32 @@
 //! `1024 b + j`, so the low ten bits of the number have the same rows in every block, and every other bit is all zeros or
 //! all ones.
 
+/// Defines a function over rows that is compiled twice, for the target's default features and for AVX2; the second one
+/// is chosen when the program runs on a processor that has it. The body is plain Rust over sixteen words.
+macro_rules! wide_fn {
+    ($(#[$doc:meta])* $vis:vis fn $name:ident($($arg:ident: $ty:ty),* $(,)?) -> $ret:ty $body:block) => {
+        $(#[$doc])*
+        $vis fn $name($($arg: $ty),*) -> $ret {
+            #[inline(always)]
+            fn here($($arg: $ty),*) -> $ret $body
+
+            #[cfg(any(target_arch = "x86_64", target_arch = "x86"))]
+            {
+                #[target_feature(enable = "avx2")]
+                fn avx2($($arg: $ty),*) -> $ret {
+                    here($($arg),*)
+                }
+                if is_x86_feature_detected!("avx2") {
+                    // SAFETY: the processor has AVX2.
+                    return unsafe { avx2($($arg),*) };
+                }
+            }
+            here($($arg),*)
+        }
+    };
+}
+pub(crate) use wide_fn;
+
 /// Words in a row.
 pub(crate) const WORDS: usize = 16;
 /// The low bits of an input that its lane gives.

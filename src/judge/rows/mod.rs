@@ -5,17 +5,19 @@
 //! which operations that depend on slowly changing bits run seldom, and blocks that a slow requirement empties are
 //! skipped together.
 
+pub(crate) mod in_order;
 pub(crate) mod lanes;
 pub(crate) mod sweep;
 pub(crate) mod tape;
 
-use std::sync::Mutex;
-use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
+use std::ops::Range;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 use crate::budget::Budget;
 use crate::id::Id;
 use crate::judge::reading::read;
 use crate::problem::{BitId, Bits, Problem};
+use in_order::{Then, in_order};
 use lanes::{LANE_BITS, LANES, Row, WORDS};
 use sweep::Sweep;
 use tape::Tape;
@@ -55,107 +57,56 @@ pub fn count(problem: &Problem, threads: usize, keep: usize, budget: &Budget) ->
     let tape = tape(problem, &problem.bits().collect::<Vec<_>>());
     let blocks = 1u64 << bits.saturating_sub(LANE_BITS);
     let runs = RUNS.min(blocks);
-    let counter = Counter {
-        tape: &tape,
-        run_len: blocks / runs,
-        runs,
-        lanes: Row::first_lanes(LANES.min(1 << bits)),
-        next: AtomicU64::new(0),
-        is_full: AtomicBool::new(keep == 0),
-        found: Mutex::new(Found { keep, count: 0, numbers: Vec::new(), merged: 0, waiting: Vec::new() }),
-        budget,
+    let lanes = Row::first_lanes(LANES.min(1 << bits));
+    let (mut count, mut numbers) = (0, Vec::new());
+    let is_full = AtomicBool::new(keep == 0);
+    let work = |sweep: &mut Sweep, run| {
+        let keep = if is_full.load(Ordering::Relaxed) { 0 } else { keep };
+        let len = blocks / runs;
+        count_run(sweep, run * len..(run + 1) * len, &lanes, keep, budget)
     };
-    let threads = threads.clamp(1, runs as usize);
-    std::thread::scope(|scope| {
-        (1..threads).for_each(|_| drop(scope.spawn(|| counter.work())));
-        counter.work();
-    });
-    let found = counter.found.into_inner().expect("no thread panicked");
-    (found.merged == runs).then(|| SweepCount {
-        count: found.count,
-        complete: found.numbers.len() as u64 == found.count,
-        solutions: found.numbers.iter().map(|&number| Bits::from_number(number.into(), bits)).collect(),
+    let merge = |run, (solutions, found): (u64, Vec<u64>)| {
+        count += solutions;
+        numbers.extend(found.into_iter().take(keep - numbers.len()));
+        is_full.store(numbers.len() == keep, Ordering::Relaxed);
+        budget.report("sweep", run + 1, Some(runs));
+        Then::GoOn
+    };
+    let merged = in_order(threads, runs, || Sweep::new(&tape), work, merge);
+    (merged == runs).then(|| SweepCount {
+        count,
+        complete: numbers.len() as u64 == count,
+        solutions: numbers.iter().map(|&number| Bits::from_number(number.into(), bits)).collect(),
     })
 }
 
-struct Counter<'a> {
-    tape: &'a Tape,
-    run_len: u64,
-    runs: u64,
-    /// The lanes that are inputs.
-    lanes: Row,
-    next: AtomicU64,
-    /// Whether enough solutions are kept already.
-    is_full: AtomicBool,
-    found: Mutex<Found>,
-    budget: &'a Budget,
-}
-
-/// The runs merged so far, in order, and those that wait for one before them.
-struct Found {
+/// The solutions in some blocks: their number, and the first `keep` of them.
+fn count_run(
+    sweep: &mut Sweep,
+    blocks: Range<u64>,
+    lanes: &Row,
     keep: usize,
-    count: u64,
-    numbers: Vec<u64>,
-    merged: u64,
-    waiting: Vec<(u64, u64, Vec<u64>)>,
-}
-
-impl Counter<'_> {
-    fn work(&self) {
-        let mut sweep = Sweep::new(self.tape);
-        loop {
-            let run = self.next.fetch_add(1, Ordering::Relaxed);
-            if run >= self.runs {
-                return;
-            }
-            let Some((count, numbers)) = self.run(&mut sweep, run) else { return };
-            let mut found = self.found.lock().expect("no thread panicked");
-            found.add(run, count, numbers);
-            if found.numbers.len() >= found.keep {
-                self.is_full.store(true, Ordering::Relaxed);
-            }
-            self.budget.report("sweep", found.merged, Some(self.runs));
+    budget: &Budget,
+) -> Option<(u64, Vec<u64>)> {
+    let (mut count, mut numbers) = (0, Vec::new());
+    let mut block = blocks.start;
+    let mut steps: u64 = 0;
+    while block < blocks.end {
+        if steps.is_multiple_of(BLOCKS_A_LOOK) && budget.spent() {
+            return None;
         }
+        steps += 1;
+        let Some(row) = sweep.block(block) else {
+            block = sweep.dead_until(block);
+            continue;
+        };
+        let row = *row & *lanes;
+        count += row.count();
+        let room = keep - numbers.len();
+        numbers.extend(row.lanes().take(room).map(|lane| block * LANES + lane));
+        block += 1;
     }
-
-    fn run(&self, sweep: &mut Sweep, run: u64) -> Option<(u64, Vec<u64>)> {
-        let keep = if self.is_full.load(Ordering::Relaxed) { 0 } else { self.found.lock().expect("no panic").keep };
-        let (mut count, mut numbers) = (0, Vec::new());
-        let (mut block, end) = (run * self.run_len, (run + 1) * self.run_len);
-        let mut steps: u64 = 0;
-        while block < end {
-            if steps.is_multiple_of(BLOCKS_A_LOOK) && self.budget.spent() {
-                return None;
-            }
-            steps += 1;
-            match sweep.block(block) {
-                Some(row) => {
-                    let row = *row & self.lanes;
-                    count += row.count();
-                    if numbers.len() < keep {
-                        let room = keep - numbers.len();
-                        numbers.extend(row.lanes().take(room).map(|lane| block * LANES + lane));
-                    }
-                    block += 1;
-                }
-                None => block = sweep.dead_until(block),
-            }
-        }
-        Some((count, numbers))
-    }
-}
-
-impl Found {
-    fn add(&mut self, run: u64, count: u64, numbers: Vec<u64>) {
-        self.waiting.push((run, count, numbers));
-        while let Some(at) = self.waiting.iter().position(|(run, ..)| *run == self.merged) {
-            let (_, count, numbers) = self.waiting.swap_remove(at);
-            self.count += count;
-            let room = self.keep - self.numbers.len();
-            self.numbers.extend(numbers.into_iter().take(room));
-            self.merged += 1;
-        }
-    }
+    Some((count, numbers))
 }
 
 /// The truth table over a search register: bit `x` of the table (bit `x % 64` of word `x / 64`) says whether the value

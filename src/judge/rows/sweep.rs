@@ -1,9 +1,6 @@
 //! Running a tape over blocks of inputs.
-//!
-//! The loops are plain Rust over rows of sixteen words. They are compiled twice: for the target's default features, and
-//! for AVX2, which is chosen when the program runs on a processor that has it.
 
-use crate::judge::rows::lanes::{LANE_BITS, Row, WORDS};
+use crate::judge::rows::lanes::{LANE_BITS, Row, WORDS, wide_fn};
 use crate::judge::rows::tape::{Operand, Step, Tape};
 
 /// A run of a tape: the rows as they are after the last block.
@@ -82,72 +79,58 @@ impl<'a> Sweep<'a> {
     }
 }
 
-/// Runs the steps of one level; false as soon as no lane is left.
-fn run_level(steps: &[Step], pool: &[Operand], rows: &mut [Row], left: &mut Row) -> bool {
-    #[cfg(any(target_arch = "x86_64", target_arch = "x86"))]
-    if is_x86_feature_detected!("avx2") {
-        // SAFETY: the processor has AVX2.
-        return unsafe { run_level_avx2(steps, pool, rows, left) };
-    }
-    run_level_here(steps, pool, rows, left)
-}
-
-#[cfg(any(target_arch = "x86_64", target_arch = "x86"))]
-#[target_feature(enable = "avx2")]
-fn run_level_avx2(steps: &[Step], pool: &[Operand], rows: &mut [Row], left: &mut Row) -> bool {
-    run_level_here(steps, pool, rows, left)
-}
-
-#[inline(always)]
-fn run_level_here(steps: &[Step], pool: &[Operand], rows: &mut [Row], left: &mut Row) -> bool {
-    for &step in steps {
-        match step {
-            Step::And { to, a, b } => {
-                let mut result = Row::ZEROS;
-                let ((a, flip_a), (b, flip_b)) = (operand(rows, a), operand(rows, b));
-                for word in 0..WORDS {
-                    result.0[word] = (a.0[word] ^ flip_a) & (b.0[word] ^ flip_b);
-                }
-                rows[to as usize] = result;
-            }
-            Step::Odd { to, a, b } => {
-                let mut result = Row::ZEROS;
-                let ((a, flip_a), (b, flip_b)) = (operand(rows, a), operand(rows, b));
-                for word in 0..WORDS {
-                    result.0[word] = a.0[word] ^ b.0[word] ^ (flip_a ^ flip_b);
-                }
-                rows[to as usize] = result;
-            }
-            Step::All { to, start, end } => {
-                let mut result = Row::ONES;
-                for &signal in &pool[start as usize..end as usize] {
-                    let (row, flip) = operand(rows, signal);
+wide_fn! {
+    /// Runs the steps of one level; false as soon as no lane is left.
+    fn run_level(steps: &[Step], pool: &[Operand], rows: &mut [Row], left: &mut Row) -> bool {
+        for &step in steps {
+            match step {
+                Step::And { to, a, b } => {
+                    let mut result = Row::ZEROS;
+                    let ((a, flip_a), (b, flip_b)) = (operand(rows, a), operand(rows, b));
                     for word in 0..WORDS {
-                        result.0[word] &= row.0[word] ^ flip;
+                        result.0[word] = (a.0[word] ^ flip_a) & (b.0[word] ^ flip_b);
+                    }
+                    rows[to as usize] = result;
+                }
+                Step::Odd { to, a, b } => {
+                    let mut result = Row::ZEROS;
+                    let ((a, flip_a), (b, flip_b)) = (operand(rows, a), operand(rows, b));
+                    for word in 0..WORDS {
+                        result.0[word] = a.0[word] ^ b.0[word] ^ (flip_a ^ flip_b);
+                    }
+                    rows[to as usize] = result;
+                }
+                Step::All { to, start, end } => {
+                    let mut result = Row::ONES;
+                    for &signal in &pool[start as usize..end as usize] {
+                        let (row, flip) = operand(rows, signal);
+                        for word in 0..WORDS {
+                            result.0[word] &= row.0[word] ^ flip;
+                        }
+                    }
+                    rows[to as usize] = result;
+                }
+                Step::Require { start, end } => {
+                    let mut some = Row::ZEROS;
+                    for &signal in &pool[start as usize..end as usize] {
+                        let (row, flip) = operand(rows, signal);
+                        for word in 0..WORDS {
+                            some.0[word] |= row.0[word] ^ flip;
+                        }
+                    }
+                    for word in 0..WORDS {
+                        left.0[word] &= some.0[word];
                     }
                 }
-                rows[to as usize] = result;
-            }
-            Step::Require { start, end } => {
-                let mut some = Row::ZEROS;
-                for &signal in &pool[start as usize..end as usize] {
-                    let (row, flip) = operand(rows, signal);
-                    for word in 0..WORDS {
-                        some.0[word] |= row.0[word] ^ flip;
+                Step::Look => {
+                    if left.is_zero() {
+                        return false;
                     }
-                }
-                for word in 0..WORDS {
-                    left.0[word] &= some.0[word];
-                }
-            }
-            Step::Look => {
-                if left.is_zero() {
-                    return false;
                 }
             }
         }
+        true
     }
-    true
 }
 
 #[inline(always)]
