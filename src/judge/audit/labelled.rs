@@ -14,12 +14,13 @@
 //! A circuit without free outcomes is covered by one run, and one with a few by all strings of outcomes; otherwise
 //! the verdict holds for the strings drawn, and its notes say which.
 
-use super::labelled_inputs::{Input, Inputs, Registers};
+use super::labelled_inputs::{Input, Inputs};
 use super::labelled_run::{Draw, End, Run};
+use super::oracle::{self, Roles};
 use super::state_amplitude::{Amplitude, Exact};
 use super::{AuditError, How, Options, Outcome, Phases, Verdict, Witness};
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Op};
+use crate::circuit::Circuit;
 use crate::places::Places;
 use crate::problem::Problem;
 
@@ -38,32 +39,18 @@ pub fn audit_superposition(
     options: &Options,
     budget: &Budget,
 ) -> Result<Verdict, AuditError> {
-    let registers = Registers::of(problem, places, circuit)?;
-    let gates = check_gates(circuit, &registers)?;
+    let roles = oracle::roles(problem, places, circuit)?;
+    oracle::check_gates(circuit)?;
+    let blocks = circuit.blocks().iter();
+    let gates = blocks.map(|block| block.repeat * block.gates.len() as u64).sum::<u64>();
     let measures = circuit.gates().iter().any(|gate| !gate.op().is_unitary());
     let labels = MOST_STEPS / (gates.max(1) * if measures { STRINGS as u64 } else { 1 });
-    let has_mark = registers.mark.is_some();
+    let has_mark = roles.mark.is_some();
     let most = (labels >> u32::from(has_mark)).clamp(16, 1 << ALL_BITS) as usize;
     let all_bits = ALL_BITS.min(options.exhaustive_bits as usize).min(most.ilog2() as usize);
     let inputs = Inputs::choose(problem, places, has_mark, options, all_bits, most);
-    let audit = Audit { places, circuit, options, budget, registers, inputs };
+    let audit = Audit { places, circuit, options, budget, roles, inputs };
     audit.judge()
-}
-
-/// The gates in all; none of them destroys an input.
-fn check_gates(circuit: &Circuit, registers: &Registers) -> Result<u64, AuditError> {
-    let is_input = |gate: &&crate::circuit::Gate| {
-        gate.op() == Op::Reset && (registers.search.contains(&gate.target()) || registers.mark == Some(gate.target()))
-    };
-    if let Some(gate) = circuit.gates().iter().find(is_input) {
-        return Err(AuditError::ResetOfInput { qubit: circuit.qubit_name(gate.target()) });
-    }
-    let total = circuit.blocks().iter().try_fold(0u64, |sum, block| {
-        sum.checked_add(u64::from(block.gates.end - block.gates.start).checked_mul(block.repeat)?)
-    });
-    total
-        .filter(|&total| total <= MOST_STEPS / 16)
-        .ok_or_else(|| AuditError::TooLarge { what: format!("more than {} gates", MOST_STEPS / 16) })
 }
 
 struct Audit<'p> {
@@ -71,7 +58,7 @@ struct Audit<'p> {
     circuit: &'p Circuit,
     options: &'p Options,
     budget: &'p Budget,
-    registers: Registers,
+    roles: Roles,
     inputs: Inputs,
 }
 
@@ -93,7 +80,7 @@ impl Audit<'_> {
     fn judge(&self) -> Result<Verdict, AuditError> {
         let qubits = self.circuit.qubit_count();
         let starts: Vec<_> =
-            self.inputs.list.iter().map(|input| input.start(self.places, &self.registers, qubits)).collect();
+            self.inputs.list.iter().map(|input| input.start(self.places, &self.roles, qubits)).collect();
         let mut constants = Vec::new();
         // The number of free outcomes of the first run; whether every run had as many.
         let (mut free, mut even) = (0, true);
@@ -154,7 +141,7 @@ impl Audit<'_> {
             if let Some((expected, got, clean)) = self.compare_qubits(input, |qubit| entry.qubit(qubit)) {
                 return Finding::Differs { input: at, expected, got, clean };
             }
-            let sign = input.holds && self.registers.mark.is_none();
+            let sign = input.holds && self.roles.mark.is_none();
             factors.push(if sign { entry.amplitude.negated() } else { entry.amplitude });
         }
         let constant = majority(&factors);
@@ -181,16 +168,16 @@ impl Audit<'_> {
     ) -> Option<(String, String, bool)> {
         let name = |id| self.circuit.qubit_name(id);
         let bit = u8::from;
-        let dirty = self.registers.work.iter().find(|&&work| qubit(work));
+        let dirty = self.roles.work.iter().find(|&&work| qubit(work));
         if let Some(&dirty) = dirty {
             return Some((format!("{} is 0 again", name(dirty)), format!("{} is 1", name(dirty)), false));
         }
-        let mut search = self.registers.search.iter().zip(&self.places.searched);
+        let mut search = self.roles.search.iter().zip(&self.places.searched);
         if let Some((&changed, &was)) = search.find(|&(&id, &was)| qubit(id) != input.bits.get(was)) {
             let was = bit(input.bits.get(was));
             return Some((format!("{} stays {was}", name(changed)), format!("{} is {}", name(changed), 1 - was), true));
         }
-        let mark = self.registers.mark?;
+        let mark = self.roles.mark?;
         let wanted = input.mark != input.holds;
         (qubit(mark) != wanted).then(|| {
             let from = bit(input.mark);
@@ -203,7 +190,7 @@ impl Audit<'_> {
     }
 
     fn wrong_phase(&self, input: usize, factor: Exact, wanted: Option<Exact>) -> Finding {
-        let holds = self.inputs.list[input].holds && self.registers.mark.is_none();
+        let holds = self.inputs.list[input].holds && self.roles.mark.is_none();
         let expected = if holds { "phase -1" } else { "phase +1" };
         let against = if wanted.is_some() { ", against most other inputs" } else { "" };
         // The phase of the factor against the constant, where it is a multiple of pi/4.
@@ -255,7 +242,7 @@ impl Audit<'_> {
 
     fn agrees(&self, constants: &[Constant], free: usize, all_strings: bool) -> Verdict {
         let mut verdict = self.verdict(if self.inputs.are_all { Outcome::Equal } else { Outcome::Undecided });
-        if constants.iter().all(|&constant| constant == Constant::Negative) && self.registers.mark.is_none() {
+        if constants.iter().all(|&constant| constant == Constant::Negative) && self.roles.mark.is_none() {
             verdict.phases = Phases::Complement;
         } else if constants.iter().any(|&constant| constant != Constant::Positive) {
             verdict.notes.push("right up to a global phase other than 1".to_owned());

@@ -1,45 +1,13 @@
-//! The inputs of an audit in superposition: where they are in the circuit, which are tried, what each must do.
+//! The inputs of an audit in superposition: which are tried, what each must do.
 
 use rustc_hash::FxHashSet;
 
-use super::{AuditError, Options};
-use crate::circuit::{Circuit, MARK, QubitId, SEARCH, WORK};
+use super::Options;
+use super::oracle::Roles;
 use crate::id::Id;
 use crate::places::Places;
 use crate::problem::{Bits, Problem};
 use crate::random::SplitMix64;
-
-/// The registers of an oracle.
-pub(super) struct Registers {
-    pub(super) search: Vec<QubitId>,
-    pub(super) mark: Option<QubitId>,
-    pub(super) work: Vec<QubitId>,
-}
-
-impl Registers {
-    /// The registers, where they fit the places and the places fit the problem.
-    pub(super) fn of(problem: &Problem, places: &Places, circuit: &Circuit) -> Result<Self, AuditError> {
-        places.check(problem)?;
-        if places.search_len() == 0 {
-            return Err(AuditError::NothingToSearch);
-        }
-        let unknown = circuit.qubits.iter().find(|register| ![SEARCH, MARK, WORK].contains(&register.name.as_str()));
-        if let Some(unknown) = unknown {
-            return Err(AuditError::UnknownRegister(unknown.name.clone()));
-        }
-        let search = circuit.register(SEARCH);
-        if search.is_empty() {
-            return Err(AuditError::NoRegister(SEARCH));
-        }
-        let sized = |name, found: usize, expected: usize| {
-            if found == expected { Ok(()) } else { Err(AuditError::RegisterSize { name, found, expected }) }
-        };
-        sized(SEARCH, search.len(), places.search_len())?;
-        let mark = circuit.register(MARK);
-        sized(MARK, mark.len().max(1), 1)?;
-        Ok(Self { search, mark: mark.first().copied(), work: circuit.register(WORK) })
-    }
-}
 
 /// One basis state of the inputs.
 pub(super) struct Input {
@@ -53,12 +21,12 @@ pub(super) struct Input {
 
 impl Input {
     /// All qubits at the start.
-    pub(super) fn start(&self, places: &Places, registers: &Registers, qubits: usize) -> Bits {
+    pub(super) fn start(&self, places: &Places, roles: &Roles, qubits: usize) -> Bits {
         let mut state = Bits::zeros(qubits);
-        for (qubit, &bit) in registers.search.iter().zip(&places.searched) {
+        for (qubit, &bit) in roles.search.iter().zip(&places.searched) {
             state.set_at(qubit.index(), self.bits.get(bit));
         }
-        if let Some(mark) = registers.mark {
+        if let Some(mark) = roles.mark {
             state.set_at(mark.index(), self.mark);
         }
         state

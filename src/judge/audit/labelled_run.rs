@@ -145,7 +145,7 @@ impl<'c> Run<'c> {
                 Ok(()) => Ok(None),
                 Err(Stop::Entries) => Ok(Some(End::TooMany(self.most))),
                 Err(Stop::Gate) => Err(AuditError::Gate { gate: in_words(self.circuit, gate) }),
-                Err(Stop::Overflow) => Err(AuditError::TooLarge { what: "its exact amplitudes".to_owned() }),
+                Err(Stop::Overflow) => Err(too_fine()),
             },
         }
     }
@@ -175,11 +175,10 @@ impl<'c> Run<'c> {
         let outcome = self.draw.next(self.free);
         self.free += 1;
         self.state.project(qubit, outcome);
-        let mut first = None;
-        for label in 0..self.labels {
-            let weight =
-                self.weight(label).ok_or_else(|| AuditError::TooLarge { what: "its exact amplitudes".into() })?;
-            if *first.get_or_insert(weight) != weight {
+        let first = self.weight(0).ok_or_else(too_fine)?;
+        for label in 1..self.labels {
+            let is_same = self.state.sizes(label) == self.state.sizes(label - 1);
+            if !is_same && self.weight(label).ok_or_else(too_fine)? != first {
                 return Ok((outcome, Some(End::Telling { input: label, bit: name() })));
             }
         }
@@ -188,11 +187,16 @@ impl<'c> Run<'c> {
 
     /// The squared norm of what a label has left, as x + y sqrt(2).
     fn weight(&self, label: usize) -> Option<(i128, i128)> {
-        self.state.entries(label).try_fold((0i128, 0i128), |sum, entry| {
-            let norm = entry.amplitude.norm()?;
+        self.state.sizes(label).iter().try_fold((0i128, 0i128), |sum, amplitude| {
+            let norm = amplitude.norm()?;
             Some((sum.0.checked_add(norm.0)?, sum.1.checked_add(norm.1)?))
         })
     }
+}
+
+/// Exact amplitudes that do not fit their integers.
+fn too_fine() -> AuditError {
+    AuditError::TooLarge { what: "its exact amplitudes do not fit 64 bits".to_owned() }
 }
 
 /// A gate as a message would write it.

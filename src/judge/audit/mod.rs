@@ -5,12 +5,13 @@
 //!
 //! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases, so running
 //!   every basis state is complete (`exhaustive`); where that is too much, a stated `sample` is run.
-//! - Every other circuit is run on a superposition of all inputs.
+//! - Every other circuit is run on a superposition of all inputs ([`labelled`]).
+//! - A whole search is followed from its start to its measurement ([`search`]).
 
 pub(crate) mod exhaustive;
 pub(crate) mod findings;
 pub(crate) mod kernel;
-pub(crate) mod labelled;
+pub mod labelled;
 mod labelled_inputs;
 mod labelled_run;
 pub(crate) mod oracle;

@@ -48,8 +48,36 @@ pub(super) struct State<A> {
 struct Spare<A> {
     rows: Vec<u64>,
     amplitudes: Vec<A>,
+    turns: Vec<u8>,
     starts: Vec<u32>,
-    order: Vec<u32>,
+}
+
+impl<A> Default for Spare<A> {
+    fn default() -> Self {
+        Self { rows: Vec::new(), amplitudes: Vec::new(), turns: Vec::new(), starts: Vec::new() }
+    }
+}
+
+impl<A> Spare<A> {
+    fn clear(&mut self) {
+        self.rows.clear();
+        self.amplitudes.clear();
+        self.turns.clear();
+        self.starts.clear();
+    }
+
+    /// Appends an entry: a row whose bits `mask` of one word become `value`.
+    fn put(&mut self, row: &[u64], (word, mask, value): (usize, u64, u64), amplitude: A, turn: u8) {
+        if let &[only] = row {
+            self.rows.push(only & !mask | value);
+        } else {
+            let start = self.rows.len();
+            self.rows.extend_from_slice(row);
+            self.rows[start + word] = row[word] & !mask | value;
+        }
+        self.amplitudes.push(amplitude);
+        self.turns.push(turn);
+    }
 }
 
 /// A basis state of a label.
@@ -104,7 +132,7 @@ impl<A: Amplitude> State<A> {
             turns: vec![0; labels.len()],
             starts: (0..=labels.len() as u32).collect(),
             most,
-            spare: Spare { rows: Vec::new(), amplitudes: Vec::new(), starts: Vec::new(), order: Vec::new() },
+            spare: Spare::default(),
         }
     }
 
@@ -129,6 +157,11 @@ impl<A: Amplitude> State<A> {
             row: &self.rows[at * self.width..(at + 1) * self.width],
             amplitude: self.amplitudes[at].turned(self.turns[at]),
         })
+    }
+
+    /// The amplitudes of a label, each up to a power of w.
+    pub(super) fn sizes(&self, label: usize) -> &[A] {
+        &self.amplitudes[self.starts[label] as usize..self.starts[label + 1] as usize]
     }
 
     /// Applies a unitary gate; its condition is the caller's.
@@ -167,23 +200,42 @@ impl<A: Amplitude> State<A> {
 
     fn flip(&mut self, masks: &Masks, target: QubitId) {
         let (word, bit) = (target.index() / 64, 1u64 << (target.index() % 64));
-        // The commonest gates on few qubits have their own loop.
-        if let (1, &[(0, mask, want)]) = (self.width, &masks.0[..]) {
-            self.rows.iter_mut().for_each(|row| *row ^= if *row & mask == want { bit } else { 0 });
-            return;
-        }
-        for row in self.rows.chunks_exact_mut(self.width) {
-            if masks.hold(row) {
-                row[word] ^= bit;
+        match masks.0[..] {
+            // The commonest gates have their own loops.
+            [(0, mask, want)] if self.width == 1 => {
+                self.rows.iter_mut().for_each(|row| *row ^= if *row & mask == want { bit } else { 0 });
+            }
+            [(from, mask, want)] => {
+                for row in self.rows.chunks_exact_mut(self.width) {
+                    row[word] ^= if row[from] & mask == want { bit } else { 0 };
+                }
+            }
+            _ => {
+                for row in self.rows.chunks_exact_mut(self.width) {
+                    row[word] ^= if masks.hold(row) { bit } else { 0 };
+                }
             }
         }
     }
 
     fn turn(&mut self, controls: &[Control], target: QubitId, eighths: u8) {
         let masks = Masks::new(&with(controls, target, true));
-        for (row, turn) in self.rows.chunks_exact(self.width).zip(&mut self.turns) {
-            if masks.hold(row) {
-                *turn = (*turn + eighths) & 7;
+        let turned = |turn: u8, holds: bool| (turn + if holds { eighths } else { 0 }) & 7;
+        match masks.0[..] {
+            [(0, mask, want)] if self.width == 1 => {
+                for (row, turn) in self.rows.iter().zip(&mut self.turns) {
+                    *turn = turned(*turn, row & mask == want);
+                }
+            }
+            [(from, mask, want)] => {
+                for (row, turn) in self.rows.chunks_exact(self.width).zip(&mut self.turns) {
+                    *turn = turned(*turn, row[from] & mask == want);
+                }
+            }
+            _ => {
+                for (row, turn) in self.rows.chunks_exact(self.width).zip(&mut self.turns) {
+                    *turn = turned(*turn, masks.hold(row));
+                }
             }
         }
     }
@@ -202,52 +254,65 @@ impl<A: Amplitude> State<A> {
         if A::mixed(mix, A::ONE, A::ZERO).is_none() {
             return Err(Stop::Gate);
         }
-        let mut spare = std::mem::replace(
-            &mut self.spare,
-            Spare { rows: Vec::new(), amplitudes: Vec::new(), starts: Vec::new(), order: Vec::new() },
-        );
-        spare.rows.clear();
-        spare.amplitudes.clear();
-        spare.starts.clear();
-        let result = self.mix_into(mix, masks, target, &mut spare);
+        let mut out = std::mem::take(&mut self.spare);
+        out.clear();
+        let result = self.mix_into(mix, masks, target, &mut out);
         if result.is_ok() {
-            std::mem::swap(&mut self.rows, &mut spare.rows);
-            std::mem::swap(&mut self.amplitudes, &mut spare.amplitudes);
-            std::mem::swap(&mut self.starts, &mut spare.starts);
-            self.turns.clear();
-            self.turns.resize(self.amplitudes.len(), 0);
+            std::mem::swap(&mut self.rows, &mut out.rows);
+            std::mem::swap(&mut self.amplitudes, &mut out.amplitudes);
+            std::mem::swap(&mut self.turns, &mut out.turns);
+            std::mem::swap(&mut self.starts, &mut out.starts);
             A::reduce(&mut self.amplitudes);
         }
-        self.spare = spare;
+        self.spare = out;
         result
     }
 
     fn mix_into(&mut self, mix: Mix, masks: &Masks, target: QubitId, out: &mut Spare<A>) -> Result<(), Stop> {
-        let (word, bit) = (target.index() / 64, 1u64 << (target.index() % 64));
+        let place = (target.index() / 64, 1u64 << (target.index() % 64));
+        let mut order: Vec<u32> = Vec::new();
         for label in 0..self.starts.len() - 1 {
             out.starts.push(out.amplitudes.len() as u32);
-            let range = self.starts[label] as usize..self.starts[label + 1] as usize;
-            // Order the entries so that partners stand together; one or two always do.
-            out.order.clear();
-            out.order.extend(range.start as u32..range.end as u32);
-            let mut order = std::mem::take(&mut out.order);
-            if order.len() > 2 {
-                order.sort_unstable_by(|&a, &b| self.key(a, word, bit).cmp(self.key(b, word, bit)));
+            let (start, end) = (self.starts[label] as usize, self.starts[label + 1] as usize);
+            match end - start {
+                0 => {}
+                1 => self.mix_pair(mix, masks, (start, None), place, out)?,
+                2 if self.are_partners(start, start + 1, place.0, place.1) => {
+                    self.mix_pair(mix, masks, (start, Some(start + 1)), place, out)?;
+                }
+                _ => {
+                    // Order the entries so that partners stand together.
+                    order.clear();
+                    order.extend(start as u32..end as u32);
+                    let key = |at: u32| self.key(at, place.0, place.1);
+                    order.sort_unstable_by(|&a, &b| key(a).cmp(key(b)));
+                    self.mix_ordered(mix, masks, &order, place, out)?;
+                }
             }
-            let mut at = 0;
-            while at < order.len() {
-                let first = order[at] as usize;
-                let second = order.get(at + 1).map(|&next| next as usize);
-                let partner = second.filter(|&second| self.are_partners(first, second, word, bit));
-                at += 1 + usize::from(partner.is_some());
-                self.mix_pair(mix, masks, (first, partner), (word, bit), out)?;
-            }
-            out.order = order;
             if out.amplitudes.len() > self.most {
                 return Err(Stop::Entries);
             }
         }
         out.starts.push(out.amplitudes.len() as u32);
+        Ok(())
+    }
+
+    fn mix_ordered(
+        &self,
+        mix: Mix,
+        masks: &Masks,
+        order: &[u32],
+        place: (usize, u64),
+        out: &mut Spare<A>,
+    ) -> Result<(), Stop> {
+        let mut at = 0;
+        while at < order.len() {
+            let first = order[at] as usize;
+            let second = order.get(at + 1).map(|&next| next as usize);
+            let partner = second.filter(|&second| self.are_partners(first, second, place.0, place.1));
+            at += 1 + usize::from(partner.is_some());
+            self.mix_pair(mix, masks, (first, partner), place, out)?;
+        }
         Ok(())
     }
 
@@ -272,33 +337,32 @@ impl<A: Amplitude> State<A> {
         out: &mut Spare<A>,
     ) -> Result<(), Stop> {
         let row = &self.rows[first * self.width..(first + 1) * self.width];
-        let amplitude = |at: usize| self.amplitudes[at].turned(self.turns[at]);
-        let mut put = |value: Option<bool>, at: usize, amplitude: A| {
-            if amplitude.is_zero() {
-                return;
-            }
-            let start = out.rows.len();
-            out.rows.extend_from_slice(&self.rows[at * self.width..(at + 1) * self.width]);
-            match value {
-                Some(true) => out.rows[start + word] |= bit,
-                Some(false) => out.rows[start + word] &= !bit,
-                None => {}
-            }
-            out.amplitudes.push(amplitude);
-        };
         if !masks.hold(row) {
-            put(None, first, amplitude(first).untouched().ok_or(Stop::Overflow)?);
-            if let Some(second) = second {
-                put(None, second, amplitude(second).untouched().ok_or(Stop::Overflow)?);
+            for at in [Some(first), second].into_iter().flatten() {
+                let row = &self.rows[at * self.width..(at + 1) * self.width];
+                let amplitude = self.amplitudes[at].untouched().ok_or(Stop::Overflow)?;
+                out.put(row, (word, 0, 0), amplitude, self.turns[at]);
             }
             return Ok(());
         }
-        let other = second.map_or(A::ZERO, amplitude);
         let is_one = row[word] & bit != 0;
-        let (zero, one) = if is_one { (other, amplitude(first)) } else { (amplitude(first), other) };
+        let (zero, one, turn) = match second {
+            // A lone entry keeps its turns; they count for both that it becomes.
+            None if is_one => (A::ZERO, self.amplitudes[first], self.turns[first]),
+            None => (self.amplitudes[first], A::ZERO, self.turns[first]),
+            Some(second) => {
+                let first = self.amplitudes[first].turned(self.turns[first]);
+                let second = self.amplitudes[second].turned(self.turns[second]);
+                if is_one { (second, first, 0) } else { (first, second, 0) }
+            }
+        };
         let (zero, one) = A::mixed(mix, zero, one).ok_or(Stop::Overflow)?;
-        put(Some(false), first, zero);
-        put(Some(true), first, one);
+        if !zero.is_zero() {
+            out.put(row, (word, bit, 0), zero, turn);
+        }
+        if !one.is_zero() {
+            out.put(row, (word, bit, bit), one, turn);
+        }
         Ok(())
     }
 

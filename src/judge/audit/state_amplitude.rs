@@ -116,19 +116,12 @@ impl Amplitude for Exact {
     }
 
     fn turned(self, eighths: u8) -> Self {
-        let mut out = self.0;
-        // Sums never give i64::MIN (see `zip`), so this never wraps.
+        // Sums never give i64::MIN (see `zip`), so the negatives never wrap. Coefficients move up by one place a turn
+        // and come back negated; looking them up in both signs needs no branch.
+        let [a, b, c, d] = self.0;
         let minus = |x: i64| x.wrapping_neg();
-        if eighths & 1 != 0 {
-            out = [minus(out[3]), out[0], out[1], out[2]];
-        }
-        if eighths & 2 != 0 {
-            out = [minus(out[2]), minus(out[3]), out[0], out[1]];
-        }
-        if eighths & 4 != 0 {
-            out = out.map(minus);
-        }
-        Self(out)
+        let both = [a, b, c, d, minus(a), minus(b), minus(c), minus(d)];
+        Self(std::array::from_fn(|at| both[(at + 8 - usize::from(eighths & 7)) & 7]))
     }
 
     fn rotated(self, angle: f64) -> Option<Self> {
