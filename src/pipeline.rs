@@ -15,7 +15,7 @@ use crate::budget::Budget;
 use crate::circuit::{Circuit, Level, Mark, Product, qasm};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::audit::{self, AuditError, Verdict};
-use crate::judge::count::{self, CountError, Counted, Over};
+use crate::judge::count::{self, Counted, Over};
 use crate::make::lower::{self, LowerError};
 use crate::make::network;
 use crate::places::{Places, PlacesError};
@@ -213,9 +213,9 @@ pub fn write_json(path: &Path, value: &serde_json::Value) -> Result<(), WriteErr
 /// A stage that could not do its work.
 #[derive(Debug, Error)]
 pub enum Error {
-    /// Counting failed.
-    #[error(transparent)]
-    Count(#[from] CountError),
+    /// Two ways of counting do not agree.
+    #[error("a fault of tallymark: {0}")]
+    Count(#[from] count::Fault),
     /// There is no circuit for this problem.
     #[error(transparent)]
     Lower(#[from] LowerError),
@@ -240,7 +240,6 @@ impl Error {
     /// The message for the user.
     pub fn diagnostic(&self) -> Diagnostic {
         match self {
-            Error::Count(error) => error.diagnostic(),
             Error::Lower(error) => error.diagnostic(),
             Error::Audit(error) => error.diagnostic(),
             Error::Places(error) => Diagnostic::error(Code("P001"), error.to_string())
@@ -249,7 +248,7 @@ impl Error {
             Error::Write(error) => error.diagnostic(),
             Error::TooManyIterations(_) => Diagnostic::error(Code("C090"), self.to_string())
                 .help("plan still gives the count; a search of this length will not be run"),
-            Error::Fault(_) => Diagnostic::error(Code("A090"), self.to_string())
+            Error::Count(_) | Error::Fault(_) => Diagnostic::error(Code("A090"), self.to_string())
                 .help("please report it with the input file and the command line"),
         }
     }
@@ -261,6 +260,6 @@ impl Error {
 
     /// Whether tallymark itself is at fault, rather than its input.
     pub fn is_fault(&self) -> bool {
-        matches!(self, Error::Fault(_)) || matches!(self, Error::Count(error) if error.is_fault())
+        matches!(self, Error::Fault(_) | Error::Count(_))
     }
 }

@@ -2,6 +2,7 @@ mod command;
 mod counting;
 mod dimacs;
 mod judging;
+mod known_counts;
 mod language;
 mod making;
 mod random_problem;

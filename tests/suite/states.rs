@@ -2,3 +2,4 @@
 
 mod oracles;
 mod reader;
+mod searches;

@@ -10,16 +10,20 @@
 pub(crate) mod exhaustive;
 pub(crate) mod findings;
 pub(crate) mod kernel;
-pub(crate) mod oracle;
-pub(crate) mod sample;
 pub(crate) mod labelled;
 mod labelled_inputs;
 mod labelled_run;
-pub(crate) mod search;
+pub(crate) mod oracle;
+pub(crate) mod sample;
+pub mod search;
+mod search_machine;
+mod search_profile;
+mod search_rows;
 mod state;
 mod state_amplitude;
 pub mod verdict;
 
+pub use search::{SearchVerdict, audit_search};
 pub use verdict::{How, Outcome, Phases, Verdict, Witness};
 
 use thiserror::Error;

@@ -9,7 +9,7 @@ use crate::judge::audit::AuditError;
 use crate::places::Places;
 use crate::problem::{Bits, Problem};
 
-/// The most gates of a circuit, its repeated blocks written out: half a gigabyte of row operations.
+/// The most gates of a circuit, its repeated blocks written out: about a gigabyte of row operations.
 const MAX_GATES: u64 = 1 << 25;
 
 /// The qubits of an oracle by what they are for.

@@ -108,6 +108,15 @@ impl<A: Amplitude> State<A> {
         }
     }
 
+    /// These different basis states with their amplitudes, all of one label.
+    pub(super) fn superposition(qubits: usize, basis: &[(Bits, A)], most: usize) -> Self {
+        let states: Vec<Bits> = basis.iter().map(|(state, _)| state.clone()).collect();
+        let mut state = Self::new(qubits, &states, most);
+        state.amplitudes = basis.iter().map(|&(_, amplitude)| amplitude).collect();
+        state.starts = vec![0, basis.len() as u32];
+        state
+    }
+
     /// How many basis states there are, of all labels.
     pub(super) fn len(&self) -> usize {
         self.amplitudes.len()
@@ -331,11 +340,6 @@ impl<A: Amplitude> State<A> {
     /// The amplitudes themselves, to scale them.
     pub(super) fn amplitudes_mut(&mut self) -> &mut [A] {
         &mut self.amplitudes
-    }
-
-    /// How many words an entry has.
-    pub(super) fn width(&self) -> usize {
-        self.width
     }
 }
 

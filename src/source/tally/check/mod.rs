@@ -16,7 +16,7 @@ use crate::diag::Diagnostic;
 use crate::id::{Id, IdVec};
 use crate::problem::{Kind as ProblemKind, KindId};
 use crate::source::tally::ast::{Ast, Kind, Name, NodeId};
-use crate::source::tally::limits::MAX_NESTING;
+use crate::source::tally::limits::{MAX_MESSAGES, MAX_NESTING};
 use crate::source::tally::mistakes::types::Typed;
 use crate::source::tally::mistakes::{names, syntax, types};
 use crate::source::tally::scope::{EntityId, Scope, Ty, What};
@@ -72,6 +72,8 @@ pub(crate) struct Checker<'a, 't> {
     unknown: &'a mut FxHashSet<&'t str>,
     out: &'a mut Vec<Diagnostic>,
     loops: Vec<Loop<'t>>,
+    /// Indices that are out of force inside the list of their row.
+    hidden: Vec<Name<'t>>,
     /// Whether something without a message of its own stops the expansion: a broken name, or an unknown one again.
     broken: bool,
 }
@@ -86,7 +88,7 @@ impl<'a, 't> Checker<'a, 't> {
         unknown: &'a mut FxHashSet<&'t str>,
         out: &'a mut Vec<Diagnostic>,
     ) -> Self {
-        Self { ast, scope, kinds, facts, unknown, out, loops: Vec::new(), broken: false }
+        Self { ast, scope, kinds, facts, unknown, out, loops: Vec::new(), hidden: Vec::new(), broken: false }
     }
 
     /// Whether an expression that was checked uses a name whose declaration is broken or missing.
@@ -279,9 +281,14 @@ impl<'a, 't> Checker<'a, 't> {
             Some(entity) => self.facts.meanings[id.index()] = Meaning::Entity(entity),
             None => {
                 // Once for each name; the later places are broken all the same.
-                if self.unknown.insert(name.text) {
+                let hidden = self.hidden.iter().find(|index| index.text == name.text);
+                if let Some(index) = hidden {
+                    self.out.push(names::index_in_list(name.span, name.text, index.span));
+                } else if self.unknown.insert(name.text) {
                     let later = self.scope.later(name.text);
-                    self.out.push(names::unknown(name.span, name.text, later, self.scope.like(name.text)));
+                    // Looking for a name that is alike takes time; after many messages nobody reads it.
+                    let like = (self.out.len() < MAX_MESSAGES).then(|| self.scope.like(name.text)).flatten();
+                    self.out.push(names::unknown(name.span, name.text, later, like));
                 }
                 self.broken = true;
             }

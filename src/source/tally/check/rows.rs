@@ -78,9 +78,7 @@ impl<'t> Checker<'_, 't> {
                 _ => false,
             };
             if !kind && ty != Ty::Unknown {
-                let help = "for single values write a range and a `must x one of [ … ]`";
-                let span = self.ast.get(node).span;
-                self.out.push(names::no_source(span, "a row", self.declared(node)).help(help));
+                self.out.push(names::no_domain(self.ast.get(node).span, self.declared(node)));
                 return Ty::Unknown;
             }
         }
@@ -95,6 +93,11 @@ impl<'t> Checker<'_, 't> {
             self.out.push(names::hides(name.text, name.span, other));
         }
         self.loops.push(Loop { name, ty });
+    }
+
+    /// Puts all indices out of force for a list whose places they are.
+    pub(crate) fn hide(&mut self) {
+        self.hidden = std::mem::take(&mut self.loops).into_iter().map(|index| index.name).collect();
     }
 
     /// Puts the innermost indices out of force.

@@ -48,13 +48,15 @@ pub(crate) fn number_too_large(span: Span) -> Diagnostic {
 
 /// T005.
 pub(crate) fn foreign(span: Span, found: &str, meant: Option<&str>) -> Diagnostic {
-    let base = Diagnostic::error(Code("T005"), format!("`{found}` is not a sign of this language"))
-        .at(span, "")
-        .found(format!("`{found}`"));
-    match meant {
-        Some(word) => base.expected(format!("`{word}`")).help(format!("write `{word}`")),
-        None => base.expected("an operator").help("there are no powers: write the product out, as in `x * x`"),
-    }
+    let (expected, help) = match meant {
+        Some(word) => (format!("`{word}`"), format!("write `{word}`")),
+        None => ("an operator".to_owned(), "there are no powers: write the product out, as in `x * x`".to_owned()),
+    };
+    Diagnostic::error(Code("T005"), format!("`{found}` is not a sign of this language"))
+        .at(span, format!("expected {expected}"))
+        .found(format!("`{found}`"))
+        .expected(expected)
+        .help(help)
 }
 
 /// T034.

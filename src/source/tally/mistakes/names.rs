@@ -20,6 +20,16 @@ pub(crate) fn unknown(span: Span, name: &str, later: Option<Span>, like: Option<
     }
 }
 
+/// T014: the name of an index, in a list whose places are the indices.
+pub(crate) fn index_in_list(span: Span, name: &str, index: Span) -> Diagnostic {
+    Diagnostic::error(Code("T014"), format!("the index `{name}` is not known inside the list"))
+        .at(span, "not known here")
+        .at(index, "index of the row")
+        .found(format!("`{name}`"))
+        .expected("elements in the order of the index")
+        .help(format!("write one expression for all elements, such as `{name} * 2`, or a list without `{name}`"))
+}
+
 /// T015.
 pub(crate) fn twice(name: &str, again: Span, first: Span) -> Diagnostic {
     Diagnostic::error(Code("T015"), format!("`{name}` is declared twice"))
@@ -92,6 +102,19 @@ pub(crate) fn no_source(span: Span, found: &str, declared: Option<Span>) -> Diag
         .found(found)
         .expected("a range `a to b`, a kind, or a row of constants with one index")
         .help("write a range such as `1 to 4`, or the name of a kind");
+    match declared {
+        Some(declared) => mistake.at(declared, "declared here"),
+        None => mistake,
+    }
+}
+
+/// T020: a pick has a range or a kind.
+pub(crate) fn no_domain(span: Span, declared: Option<Span>) -> Diagnostic {
+    let mistake = Diagnostic::error(Code("T020"), "a pick or an index goes over a range or a kind, not over a row")
+        .at(span, "a row")
+        .found("a row")
+        .expected("a range `a to b` or a kind")
+        .help("for single values write a range and a `must x one of [ … ]`");
     match declared {
         Some(declared) => mistake.at(declared, "declared here"),
         None => mistake,

@@ -8,14 +8,12 @@ use crate::span::Span;
 
 /// T006.
 pub(crate) fn unexpected(span: Span, found: &str, expected: String, help: Option<String>) -> Diagnostic {
-    let mistake = Diagnostic::error(Code("T006"), format!("`{found}` cannot stand here"))
+    let help = help.unwrap_or_else(|| format!("put {expected} before `{found}`, or take `{found}` out"));
+    Diagnostic::error(Code("T006"), format!("`{found}` cannot stand here"))
         .at(span, format!("expected {expected}"))
         .found(format!("`{found}`"))
-        .expected(expected);
-    match help {
-        Some(help) => mistake.help(help),
-        None => mistake.help("compare with the examples of the language"),
-    }
+        .expected(expected)
+        .help(help)
 }
 
 /// T007.

@@ -46,7 +46,7 @@ pub(crate) fn tuple_width(span: Span, found: usize, tuple: Span, wanted: usize) 
 
 /// T025.
 pub(crate) fn shape(span: Span, found: &str, expected: &str, other: Span, other_text: &str) -> Diagnostic {
-    Diagnostic::error(Code("T025"), format!("the list has {found}, but {expected} are needed"))
+    Diagnostic::error(Code("T025"), format!("the list has {found}, but needs {expected}"))
         .at(span, found)
         .at(other, other_text)
         .found(found)
