@@ -19,6 +19,7 @@ import math
 import multiprocessing
 import pathlib
 import random
+import re
 import sys
 import tempfile
 from collections import Counter
@@ -34,6 +35,8 @@ from qasm_machine import Program, QasmError, Run, labelled_start, undefined_star
 LEVELS = ("wide", "toffoli", "clifford-t", "feedback")
 MARKS = ("phase", "bit")
 MOST_STATEMENTS = 4_000  # of one file that are parsed: the parser reads some 1,000 to 3,000 a second
+MOST_TOKENS = 40_000  # likewise: a gate with many operands takes the parser as long as many gates
+TOKEN = re.compile(r"//[^\n]*|\w+|[^\w\s]")
 MOST_STEPS = 6_000_000  # gates times inputs of one run
 MOST_SEARCH = 14  # qubits of a search register whose inputs are all run
 OUTCOME_STRINGS = 3  # runs of a file with measurements in mid-circuit
@@ -48,19 +51,20 @@ class Differs(Exception):
 class Subject:
     """A problem file and what the reference says of it: how many bits, and which codes are solutions."""
 
-    def __init__(self, path):
-        self.path = path
-        self.marked = None  # unknown: too large to list
+    def __init__(self, path, bits, codes):
+        self.path, self.bits = path, bits
+        self.marked = codes() if bits <= MOST_SEARCH else None  # None: too many to list
+
+    @classmethod
+    def of_problem(cls, path, problem):
+        return cls(path, problem.bits, lambda: tally_reference.codes(problem))
+
+    @classmethod
+    def of_file(cls, path):
         if path.suffix == ".tally":
-            problem = tally_reference.read_file(path)
-            self.bits = problem.bits
-            if self.bits <= MOST_SEARCH:
-                self.marked = tally_reference.codes(problem)
-        else:
-            formula = dimacs_reference.read(path.read_text())
-            self.bits = formula.variables
-            if self.bits <= MOST_SEARCH:
-                self.marked = {int(code) for code in dimacs_reference.models(formula)}
+            return cls.of_problem(path, tally_reference.read_file(path))
+        formula = dimacs_reference.read(path.read_text())
+        return cls(path, formula.variables, lambda: {int(code) for code in dimacs_reference.models(formula)})
 
     def table(self, placed):
         """f by value of the search register, whose qubit i carries bit `placed[i]`; other bits are free to be found."""
@@ -68,29 +72,21 @@ class Subject:
         return np.array([code in marked for code in range(1 << len(placed))])
 
 
-def statement_ends(text):
-    """The ends of all statements of a text, each with the depth of braces there. Comments are of the kind `//`."""
-    depth, at, found = 0, 0, []
-    while at < len(text):
-        if text.startswith("//", at):
-            at = text.find("\n", at)
-            if at < 0:
-                break
-        elif text[at] in ";{}":
-            depth += {"{": 1, "}": -1, ";": 0}[text[at]]
-            if text[at] != "{":
-                found.append((at + 1, depth))
-        at += 1
-    return found
-
-
 def head(text):
-    """The text itself, or its first `MOST_STATEMENTS` statements with the open braces closed; and whether it is whole."""
-    ends = statement_ends(text)
-    if len(ends) <= MOST_STATEMENTS:
-        return text, True, len(ends)
-    end, depth = ends[MOST_STATEMENTS - 1]
-    return text[:end] + "}" * depth, False, MOST_STATEMENTS
+    """The text itself, or its start within the limits with the open braces closed; whether it is whole; its statements."""
+    depth = tokens = statements = 0
+    for token in TOKEN.finditer(text):
+        if token.group().startswith("//"):
+            continue
+        tokens += 1
+        if token.group() in "{}":
+            depth += 1 if token.group() == "{" else -1
+        elif token.group() == ";":
+            statements += 1
+            if statements == MOST_STATEMENTS or tokens > MOST_TOKENS:
+                complete = text[token.end() :].strip(" \t\r\n}") == ""
+                return text[: token.end()] + "}" * depth, complete, statements
+    return text, True, statements
 
 
 def gates(statements):
@@ -222,12 +218,17 @@ def refusal_expected(subject, mark, whole):
     return None
 
 
+def in_words(done):
+    """A tally of what was done, as a sentence."""
+    return ", ".join(f"{number} {what}" for what, number in sorted(done.items()) if number)
+
+
 def check_problem(task):
     """All files of one problem; gives lines to print and a tally of what was done."""
     command, path = task
     name, lines, done = path.name, [], Counter()
     try:
-        subject = Subject(path)
+        subject = Subject.of_file(path)
     except Exception as error:  # a worker reports, whatever happened
         return [f"FAIL {name}: the reference refuses it: {error}"], Counter(failed=1)
     with tempfile.TemporaryDirectory() as folder:
@@ -243,8 +244,7 @@ def check_problem(task):
                         done["failed"] += 1
                         lines.append(f"FAIL {name}, {level}, {mark}, {kind}: {type(error).__name__}: {error}")
     marked = "solutions not listed" if subject.marked is None else f"{len(subject.marked)} marked"
-    words = ", ".join(f"{number} {what}" for what, number in sorted(done.items()) if number)
-    lines.append(f"     {name} ({subject.bits} bits, {marked}): {words}")
+    lines.append(f"     {name} ({subject.bits} bits, {marked}): {in_words(done)}")
     return lines, done
 
 
@@ -273,8 +273,7 @@ def main():
         for lines, done in pool.imap(check_problem, tasks):
             print("\n".join(lines), flush=True)
             total += done
-    words = ", ".join(f"{number} {what}" for what, number in sorted(total.items()) if number)
-    print(f"OpenQASM of {len(tasks)} problems: {words}")
+    print(f"OpenQASM of {len(tasks)} problems: {in_words(total)}")
     if total["oracles run"] < 8 * len(tiny) or total["searches run"] < 4 * (len(tiny) - 3):
         print(f"FAIL too few were run: {total['oracles run']} oracles, {total['searches run']} searches")
         return 1

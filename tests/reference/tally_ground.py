@@ -8,7 +8,7 @@ assignment; yes/no are Boolean arrays, all else is int64. The range check makes 
 
 import numpy as np
 
-from tally_syntax import TallyError
+from tally_syntax import OutOfRange, TallyError
 
 YESNO, INTEGER = "yes/no", "integer"
 LOWEST, HIGHEST = -(2**63), 2**63 - 1
@@ -42,7 +42,7 @@ def variable(index, type, low, high):
 def make(pos, op, type, low, high, *args):
     """An operation over grounds; folded when all of them are constants."""
     if type == INTEGER and not (LOWEST <= low and high <= HIGHEST):
-        raise TallyError(pos, f"this could reach {low} to {high}, which does not fit 64 bits")
+        raise OutOfRange(pos, f"this could reach {low} to {high}, which does not fit 64 bits")
     reads = frozenset().union(*(arg.reads for arg in flat(args)))
     made = Ground(op, args, type, low, high, reads)
     if all(arg.value is not None for arg in flat(args)):
@@ -127,7 +127,7 @@ def extreme(pos, word, grounds):
     """The smallest or the largest of a row."""
     items = [as_integer(pos, ground) for ground in grounds]
     if not items:
-        raise TallyError(pos, f"the {word} of nothing")
+        raise OutOfRange(pos, f"the {word} of nothing")
     choose = min if word == "smallest" else max
     low, high = choose(i.low for i in items), choose(i.high for i in items)
     return make(pos, word, INTEGER, low, high, items)
@@ -163,13 +163,13 @@ def select(pos, index, first, items):
     last = first + len(items) - 1
     if index.value is not None:
         if not first <= index.value <= last:
-            raise TallyError(pos, f"index {index.value} is outside {first} to {last}")
+            raise OutOfRange(pos, f"index {index.value} is outside {first} to {last}")
         return items[index.value - first]
     low, high = index.low, index.high
     if low < first or high > last:
         low, high = exact_range(index)
         if low < first or high > last:
-            raise TallyError(pos, f"an index of {low} to {high} could fall outside {first} to {last}")
+            raise OutOfRange(pos, f"an index of {low} to {high} could fall outside {first} to {last}")
     reach = items[low - first : high - first + 1]
     lows, highs = [i.low for i in reach], [i.high for i in reach]
     return make(pos, "select", reach[0].type, min(lows), max(highs), index, low, reach)
@@ -246,7 +246,6 @@ RULES = {
     "not": np.logical_not,
     "and": all_of,
     "or": any_of,
-    "needs": lambda a, b: np.logical_not(a) | b,
     "if": np.where,
     "select": chosen,
 }

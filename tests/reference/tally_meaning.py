@@ -10,7 +10,7 @@ from itertools import product as cartesian
 
 import tally_ground as ground
 from tally_ground import INTEGER, YESNO
-from tally_syntax import Node, Parser, TallyError
+from tally_syntax import OutOfRange, Parser, TallyError
 
 # More things than this in one row or comprehension is refused (this is a checker for small problems).
 MOST_ELEMENTS = 200_000
@@ -182,6 +182,11 @@ class Reader:
         name, axes, value = node.args
         if axes:
             self.declare(name, self.row(axes, lambda scope: self.value(value, scope), False))
+        elif value.op in ("list", "comprehension"):
+            items = self.entries(value, {}, self.value)
+            if len({item.type for item in items}) > 1:
+                raise TallyError(node.pos, f"the values of '{name.text}' are of several types")
+            self.declare(name, Row([Axis(INTEGER, 1, len(items))], items, False))
         else:
             self.declare(name, self.value(value, {}))
 
@@ -224,6 +229,8 @@ class Reader:
 
     def span(self, domain, scope):
         """A range or a kind, as consecutive values."""
+        if domain.op in ("list", "comprehension"):
+            raise TallyError(domain.pos, "expected a range 'a to b' or a kind")
         if domain.op == "range":
             low, high = (self.constant_integer(bound, scope) for bound in domain.args)
             return Axis(INTEGER, low, max(0, high - low + 1))
@@ -240,6 +247,11 @@ class Reader:
 
     def generated(self, domain, scope):
         """The constants that a generator runs over: a range, a kind, or a row of constants."""
+        if domain.op in ("list", "comprehension"):
+            items = self.entries(domain, scope, self.value)
+            if any(item.value is None for item in items):
+                raise TallyError(domain.pos, "a generator runs over constants")
+            return items
         if domain.op == "name":
             row = self.names.get(domain.args[0])
             if isinstance(row, Row) and row.constant:
@@ -286,7 +298,7 @@ class Reader:
 
     def of_number(self, node, scope):
         value = node.args[0]
-        if value > ground.HIGHEST:
+        if not ground.LOWEST <= value <= ground.HIGHEST:
             raise TallyError(node.pos, f"{value} does not fit 64 bits")
         return ground.constant(value, INTEGER)
 
@@ -322,28 +334,40 @@ class Reader:
         value = places[0].value
         if value is not None:  # a constant index: the other slices play no part
             if value not in axes[0].values():
-                raise TallyError(pos, f"index {value} is outside the row")
+                raise OutOfRange(pos, f"index {value} is outside the row")
             at = (value - axes[0].first) * step
             return self.element(pos, places[1:], axes[1:], items[at : at + step])
         slices = [items[at * step : (at + 1) * step] for at in range(axes[0].size)]
         each = [self.element(pos, places[1:], axes[1:], part) for part in slices]
         return ground.select(pos, places[0], axes[0].first, each)
 
+    def unless_decided(self, decides, makers):
+        """The conditions that the makers give; or None if one of them is the constant `decides`, whatever the others.
+
+        A value out of range in one of them counts only if no constant condition beside it kills that part.
+        """
+        items, fault = [], None
+        for maker in makers:
+            try:
+                items.append(maker())
+            except OutOfRange as error:
+                fault = fault or error
+        if any(item.value == decides for item in items):
+            return None
+        if fault:
+            raise fault
+        return items
+
     def of_needs(self, node, scope):
-        left = self.yesno(node.args[0], scope)
-        if left.value == 0:
-            return ground.constant(1, YESNO)
-        return ground.yesno(node.pos, "needs", left, self.yesno(node.args[1], scope))
+        left, right = node.args
+        no_left = lambda: ground.yesno(node.pos, "not", self.yesno(left, scope))
+        items = self.unless_decided(1, [no_left, lambda: self.yesno(right, scope)])
+        return ground.constant(1, YESNO) if items is None else ground.yesno(node.pos, "or", items)
 
     def of_junction(self, node, scope):
-        """`and`, `or`: from the left, until a constant decides."""
         decides = 0 if node.op == "and" else 1
-        items = []
-        for arg in node.args[0]:
-            items.append(self.yesno(arg, scope))
-            if items[-1].value == decides:
-                return ground.constant(decides, YESNO)
-        return ground.yesno(node.pos, node.op, items)
+        items = self.unless_decided(decides, [lambda arg=arg: self.yesno(arg, scope) for arg in node.args[0]])
+        return ground.constant(decides, YESNO) if items is None else ground.yesno(node.pos, node.op, items)
 
     def of_not(self, node, scope):
         return ground.yesno(node.pos, "not", self.yesno(node.args[0], scope))
@@ -400,11 +424,9 @@ class Reader:
             return ground.total(node.pos, items) if word == "sum" else ground.extreme(node.pos, word, items)
         if word == "different":
             return ground.different(node.pos, self.entries(row, scope, self.value))
+        if word in ("all", "some", "none"):
+            return self.of_all_or_some(node.pos, word, self.entries(row, scope, self.later))
         items = self.entries(row, scope, self.yesno)
-        if word in ("all", "some"):
-            return ground.yesno(node.pos, "and" if word == "all" else "or", items)
-        if word == "none":
-            return ground.yesno(node.pos, "and", [ground.yesno(node.pos, "not", item) for item in items])
         number = ground.total(node.pos, items)
         if word == "number":
             return number
@@ -413,6 +435,17 @@ class Reader:
             return ground.compare(node.pos, "=", rest, ground.constant(word == "odd", INTEGER))
         sign = {"exactly": "=", "at least": ">=", "at most": "<="}[word]
         return ground.compare(node.pos, sign, number, self.integer(bound, scope))
+
+
+    def later(self, node, scope):
+        return lambda: self.yesno(node, scope)
+
+    def of_all_or_some(self, pos, word, makers):
+        if word == "none":
+            makers = [lambda maker=maker: ground.yesno(pos, "not", maker()) for maker in makers]
+        decides = 1 if word == "some" else 0
+        items = self.unless_decided(decides, makers)
+        return ground.constant(decides, YESNO) if items is None else ground.yesno(pos, "or" if decides else "and", items)
 
 
 def count_of(sizes):

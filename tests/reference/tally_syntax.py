@@ -29,7 +29,7 @@ TOKEN = re.compile(
     r"""(?P<blank>[ \t\r\n]+|\#[^\n]*)
       | (?P<number>[0-9]+(?![A-Za-z0-9_.]))
       | (?P<word>[A-Za-z][A-Za-z0-9_]*)
-      | (?P<string>"[^"\n]*")
+      | (?P<string>"(?:\\.|[^"\\\n])*")
       | (?P<sign>!=|<=|>=|[-=<>+*/()\[\],|])""",
     re.VERBOSE,
 )
@@ -40,6 +40,10 @@ class TallyError(Exception):
 
     def __init__(self, pos, message):
         super().__init__(f"line {pos[0]}, column {pos[1]}: {message}" if pos else message)
+
+
+class OutOfRange(TallyError):
+    """A value that could leave its bounds. It matters only in a part that no constant condition kills."""
 
 
 def tokenize(text):
@@ -114,7 +118,7 @@ class Parser:
         token = self.next()
         if token.kind != "string":
             raise TallyError(token.pos, f"expected the title in quotes, found '{token.text}'")
-        return Node("title", pos, (token.text[1:-1],))
+        return Node("title", pos, (re.sub(r"\\(.)", r"\1", token.text[1:-1]),))
 
     def statement_known(self, pos):
         name, axes = self.name(), self.axes()
@@ -136,7 +140,8 @@ class Parser:
     def statement_let(self, pos):
         name, axes = self.name(), self.axes()
         self.expect("=")
-        return Node("let", pos, (name, axes, self.expression()))
+        value = self.row(self.expression) if self.sees("[") and not axes else self.expression()
+        return Node("let", pos, (name, axes, value))
 
     def statement_must(self, pos):
         return Node("must", pos, (self.expression(),))
@@ -165,7 +170,9 @@ class Parser:
                 return found
 
     def domain(self):
-        """`a to b`, or the name of a kind or of a row of constants."""
+        """`a to b`, or the name of a kind or of a row of constants, or such a row written out."""
+        if self.sees("["):
+            return self.row(self.expression)
         first = self.sum()
         if self.accept("to"):
             return Node("range", first.pos, (first, self.sum()))
@@ -183,7 +190,7 @@ class Parser:
         items = [self.constant()]
         if self.accept("for"):
             return self.comprehension(pos, items[0])
-        while self.accept(","):
+        while self.accept(",") and not self.sees("]"):
             items.append(self.constant())
         self.expect("]")
         return Node("list", pos, (items,))
@@ -260,7 +267,11 @@ class Parser:
 
     def sign(self):
         token = self.accept("-")
-        return Node("negate", token.pos, (self.no_tuple(self.sign()),)) if token else self.atom()
+        if not token:
+            return self.atom()
+        if self.here.kind == "number":  # at once, so that the least 64-bit number can be written
+            return Node("number", token.pos, (-int(self.next().text),))
+        return Node("negate", token.pos, (self.no_tuple(self.sign()),))
 
     def atom(self):
         token = self.here
@@ -325,14 +336,14 @@ class Parser:
         return Node("row word", token.pos, (word, bound, self.row(self.expression)))
 
     def row(self, entry):
-        """`[a, b, c]` or `[e for i in …, j in … with c]`."""
+        """`[a, b, c]` (a comma may follow the last) or `[e for i in …, j in … with c]`."""
         pos = self.expect("[").pos
         if self.accept("]"):
             return Node("list", pos, ([],))
         items = [entry()]
         if self.accept("for"):
             return self.comprehension(pos, items[0])
-        while self.accept(","):
+        while self.accept(",") and not self.sees("]"):
             items.append(entry())
         self.expect("]")
         return Node("list", pos, (items,))

@@ -265,6 +265,16 @@ class Meaning(unittest.TestCase):
         self.check(1, "known w = [1, 2] must if 1 = 2 then w[9] = 1 else yes")
         self.check(1, "known w = [1, 2] must all of [i < 2 needs w[i + 1] = 2 for i in 1 to 2]")
 
+    def test_constant_conditions_kill_on_either_side(self):
+        self.check(1, "known w = [1, 2] must all of [w[i + 1] = 2 or i = 2 for i in 1 to 2]")
+        self.check(0, "known w = [1, 2] must w[9] = 1 and no")
+        self.check(1, "known w = [1, 2] must some of [w[9] = 1, yes] must not all of [w[9] = 1, no]")
+
+    def test_where_the_description_is_silent(self):
+        self.check(2, "pick a pick b let both = [a, b,] must odd [both[1], both[2],]")
+        self.check(2, "pick x in 1 to 4 must some of [x = v for v in [2, 4, 6]]")
+        self.check(1, 'title "a \\"b\\"" must -9223372036854775808 < 0')
+
     def test_settings(self):
         text = "known n = 3 known m = n + 1 pick x in 1 to m"
         self.assertEqual(count(text), 4)
@@ -291,7 +301,8 @@ class Refused(unittest.TestCase):
         "known w = [1, 2] pick i in 1 to 3 must w[i] = 1", "known w = [1, 2] must w[3] = 1",
         "known w = [1, 2] must w[1, 1] = 1", "pick sum", "pick i must all of [yes for i in 1 to 2]",
         "title \"a\" title \"b\"", "pick a least a most a", "must (1, 2)", "must (1, 2) = (1, 2)",
-        "must (1, 2) one of [(1, 2, 3)]", "must 9999999999999999999 > 1", "must 3000000000 * 4000000000 > 1",
+        "must (1, 2) one of [(1, 2, 3)]", "must 9999999999999999999 > 1", "must -9223372036854775809 < 1",
+        "known w = [1, 2] pick a must a and w[3] = 1", "known w = [1, 2] must no and v[1] = 1", "must 3000000000 * 4000000000 > 1",
         "pick a must some of [yes for i in 1 to 2 with a]", "known w = [1, yes]", "must if yes then 1 else no",
         "pick x in 1 to 3 must odd [x]", "must all [yes]", "must 1 ? 2", "pick a known k = a", "pick a let b = a pick b",
         "known w[i in 1 to 3] = [1, 2]", "must 1.5 = 2", "must", "must 1 + if no then 1 else 2 * 3 = 7 or yes", "title buoy",
