@@ -346,22 +346,22 @@ impl<A: Amplitude> State<A> {
             return Ok(());
         }
         let is_one = row[word] & bit != 0;
-        let (zero, one, turn) = match second {
-            // A lone entry keeps its turns; they count for both that it becomes.
-            None if is_one => (A::ZERO, self.amplitudes[first], self.turns[first]),
-            None => (self.amplitudes[first], A::ZERO, self.turns[first]),
-            Some(second) => {
-                let first = self.amplitudes[first].turned(self.turns[first]);
-                let second = self.amplitudes[second].turned(self.turns[second]);
-                if is_one { (second, first, 0) } else { (first, second, 0) }
-            }
-        };
+        if second.is_none() && mix == Mix::H {
+            // The commonest case: one entry becomes two of the same size, the second with a sign where it was 1.
+            let (amplitude, turn) = (self.amplitudes[first].halved(), self.turns[first]);
+            out.put(row, (word, bit, 0), amplitude, turn);
+            out.put(row, (word, bit, bit), amplitude, (turn + if is_one { 4 } else { 0 }) & 7);
+            return Ok(());
+        }
+        let first = self.amplitudes[first].turned(self.turns[first]);
+        let second = second.map_or(A::ZERO, |at| self.amplitudes[at].turned(self.turns[at]));
+        let (zero, one) = if is_one { (second, first) } else { (first, second) };
         let (zero, one) = A::mixed(mix, zero, one).ok_or(Stop::Overflow)?;
         if !zero.is_zero() {
-            out.put(row, (word, bit, 0), zero, turn);
+            out.put(row, (word, bit, 0), zero, 0);
         }
         if !one.is_zero() {
-            out.put(row, (word, bit, bit), one, turn);
+            out.put(row, (word, bit, bit), one, 0);
         }
         Ok(())
     }

@@ -36,30 +36,34 @@ pub(super) trait Amplitude: Copy + std::fmt::Debug {
     fn rotated(self, angle: f64) -> Option<Self>;
     /// The two amplitudes of a qubit after a gate, from those for 0 and for 1.
     fn mixed(mix: Mix, zero: Self, one: Self) -> Option<(Self, Self)>;
+    /// The size of both amplitudes that a Hadamard gate makes of one.
+    fn halved(self) -> Self;
     /// The amplitude of a state that a mixing gate does not touch.
     fn untouched(self) -> Option<Self>;
     /// Takes out a common factor of all.
     fn reduce(all: &mut [Self]);
 }
 
+/// Coefficients of exact amplitudes are from minus this up to this, the upper end excluded.
+const BOUND: i64 = 1 << 61;
+
 /// a + b w + c w^2 + d w^3.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub(super) struct Exact(pub(super) [i64; 4]);
 
 impl Exact {
-    fn zip(self, other: Self, apply: fn(i64, i64) -> Option<i64>) -> Option<Self> {
-        // i64::MIN is refused too: it has no negative.
-        let both = |x: i64, y: i64| apply(x, y).filter(|&value| value != i64::MIN);
-        let (x, y) = (self.0, other.0);
-        Some(Self([both(x[0], y[0])?, both(x[1], y[1])?, both(x[2], y[2])?, both(x[3], y[3])?]))
+    /// Coefficients within [`BOUND`], so that sums and negatives of two of them never overflow.
+    fn checked(coefficients: [i64; 4]) -> Option<Self> {
+        let beyond = coefficients.iter().fold(0, |beyond, &x| beyond | x.wrapping_add(BOUND) as u64 >> 62);
+        (beyond == 0).then_some(Self(coefficients))
     }
 
     fn plus(self, other: Self) -> Option<Self> {
-        self.zip(other, i64::checked_add)
+        Self::checked(std::array::from_fn(|at| self.0[at].wrapping_add(other.0[at])))
     }
 
     fn minus(self, other: Self) -> Option<Self> {
-        self.zip(other, i64::checked_sub)
+        Self::checked(std::array::from_fn(|at| self.0[at].wrapping_sub(other.0[at])))
     }
 
     /// Times sqrt(2) = w - w^3.
@@ -75,10 +79,8 @@ impl Exact {
 
     /// Divided by sqrt(2), where that divides it.
     fn divided(self) -> Self {
-        let half = |a: i64, b: i64| ((i128::from(a) + i128::from(b)) / 2) as i64;
-        let difference = |a: i64, b: i64| ((i128::from(a) - i128::from(b)) / 2) as i64;
         let [a, b, c, d] = self.0;
-        Self([difference(b, d), half(a, c), half(b, d), difference(c, a)])
+        Self([(b - d) / 2, (a + c) / 2, (b + d) / 2, (c - a) / 2])
     }
 
     /// The squared absolute value: x + y sqrt(2).
@@ -116,11 +118,9 @@ impl Amplitude for Exact {
     }
 
     fn turned(self, eighths: u8) -> Self {
-        // Sums never give i64::MIN (see `zip`), so the negatives never wrap. Coefficients move up by one place a turn
-        // and come back negated; looking them up in both signs needs no branch.
+        // Coefficients move up by one place a turn and come back negated; looking them up in both signs needs no branch.
         let [a, b, c, d] = self.0;
-        let minus = |x: i64| x.wrapping_neg();
-        let both = [a, b, c, d, minus(a), minus(b), minus(c), minus(d)];
+        let both = [a, b, c, d, -a, -b, -c, -d];
         Self(std::array::from_fn(|at| both[(at + 8 - usize::from(eighths & 7)) & 7]))
     }
 
@@ -144,6 +144,10 @@ impl Amplitude for Exact {
             pair = (pair.1.negated(), pair.0);
         }
         Some(pair)
+    }
+
+    fn halved(self) -> Self {
+        self
     }
 
     fn untouched(self) -> Option<Self> {
@@ -220,6 +224,10 @@ impl Amplitude for Complex {
         })
     }
 
+    fn halved(self) -> Self {
+        self.scaled(FRAC_1_SQRT_2)
+    }
+
     fn untouched(self) -> Option<Self> {
         Some(self)
     }
@@ -279,7 +287,7 @@ mod tests {
 
     #[test]
     fn what_does_not_fit_is_refused() {
-        let large = Exact([i64::MAX - 1, 0, 0, 0]);
+        let large = Exact([BOUND - 1, 0, 0, 0]);
         assert_eq!(Exact::mixed(Mix::H, large, large), None);
         assert_eq!(Exact::ONE.rotated(0.3), None);
     }
