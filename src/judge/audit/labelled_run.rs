@@ -106,7 +106,7 @@ impl<'c> Run<'c> {
             let gates = &circuit.gates()[block.gates.start as usize..block.gates.end as usize];
             for _ in 0..block.repeat {
                 for gate in gates {
-                    if done % 64 == 0 {
+                    if done.is_multiple_of(64) {
                         self.budget.report("audit in superposition", done, None);
                         if self.budget.spent() {
                             return Ok(End::Spent);

@@ -310,7 +310,7 @@ impl<'c> Follower<'c> {
     fn run(&mut self, gates: &[Gate]) -> Result<(), End> {
         for gate in gates {
             self.since_check += 1;
-            if self.since_check % 16 == 0 {
+            if self.since_check.is_multiple_of(16) {
                 self.budget.report("audit of the search", self.verdict.iterations_checked, None);
                 if self.budget.spent() {
                     return Err(End::Undecided("the budget ran out".to_owned()));
