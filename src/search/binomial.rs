@@ -27,7 +27,9 @@ fn term(hits: u64, trials: u64, p: f64, q: f64) -> f64 {
         () if hits == 0 => (n * log(q, p)).exp(),
         () if hits == trials => (n * log(p, q)).exp(),
         () => {
-            let exponent = stirling_rest(trials) - stirling_rest(hits) - stirling_rest(trials - hits)
+            let exponent = stirling_rest(trials)
+                - stirling_rest(hits)
+                - stirling_rest(trials - hits)
                 - deviance(x, n * p)
                 - deviance(n - x, n * q);
             (n / (2.0 * PI * x * (n - x))).sqrt() * exponent.exp()
@@ -48,7 +50,8 @@ fn stirling_rest(n: u64) -> f64 {
         return factorial.ln() - ((x + 0.5) * x.ln() - x + 0.5 * (2.0 * PI).ln());
     }
     let square = x * x;
-    (1.0 / 12.0 - (1.0 / 360.0 - (1.0 / 1260.0 - (1.0 / 1680.0 - 1.0 / 1188.0 / square) / square) / square) / square) / x
+    (1.0 / 12.0 - (1.0 / 360.0 - (1.0 / 1260.0 - (1.0 / 1680.0 - 1.0 / 1188.0 / square) / square) / square) / square)
+        / x
 }
 
 /// `x ln(x / m) + m - x`, without cancellation where both are close.

@@ -1,3 +1,4 @@
+mod aims;
 mod command;
 mod counting;
 mod dimacs;

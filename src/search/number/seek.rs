@@ -3,13 +3,13 @@
 use super::Wide;
 
 /// A range of at most this many integers is tried one by one.
-const SCANNED: u64 = 1 << 13;
+const SCANNED: u64 = 1 << 10;
 /// A longer range is tried at this many places first.
-const PLACES: u64 = 1 << 10;
+const PLACES: u64 = 1 << 8;
 
 /// The smallest integer of `low..=high` whose cost is least.
 ///
-/// A short range is tried whole. In a longer one the neighbourhood of the best of 1024 places is searched by thirds,
+/// A short range is tried whole. In a longer one the neighbourhood of the best of 256 places is searched by thirds,
 /// down to a range that is tried whole: that is exact where the cost falls and then rises between the two places
 /// beside the best one, which is so for every cost of this room (smooth in k, with one valley on a first rise).
 pub fn least(low: u64, high: u64, cost: impl Fn(u64) -> Wide) -> u64 {

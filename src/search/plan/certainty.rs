@@ -123,7 +123,8 @@ mod tests {
 
     #[test]
     fn the_weakened_start_of_known_cases() {
-        let near = |found: f64, wanted: f64| assert!((found / wanted - 1.0).abs() < 2e-15 * 10.0, "{found} not {wanted}");
+        let near =
+            |found: f64, wanted: f64| assert!((found / wanted - 1.0).abs() < 2e-15 * 10.0, "{found} not {wanted}");
         for &(n, m, iterations, omega, kept, sine) in WEAKENED {
             let found = certainty(&big(n), &big(m)).unwrap();
             assert_eq!(found.iterations, big(iterations), "{m} in {n}");

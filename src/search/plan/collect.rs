@@ -15,8 +15,7 @@ use num_bigint::BigUint;
 use num_traits::{ToPrimitive, Zero};
 use serde::Serialize;
 
-use super::restart::least_work;
-use super::{Aim, Plan};
+use super::restart::least_work_figure;
 use crate::search::number::Wide;
 
 /// Up to so many solutions the sums are taken term by term.
@@ -41,10 +40,7 @@ pub fn find_all(space: &BigUint, marked: &BigUint, try_cost: f64) -> Option<Find
     if marked.is_zero() {
         return None;
     }
-    let work = |left: &BigUint| {
-        let plan = Plan::of(Aim::LeastWork, space, left, least_work(space, left, try_cost));
-        plan.expected_work(try_cost).expect("something is marked")
-    };
+    let work = |left: &BigUint| least_work_figure(space, left, try_cost).expect("something is marked");
     let successes = Wide::of(marked) * harmonic(marked);
     // Each of M solutions is missed by n successes with a chance of (1 - 1/M)^n <= e^{-n/M}; together at most 1%.
     let sure = Wide::of(marked) * Wide::new(Wide::of(marked).ln() + 100f64.ln());

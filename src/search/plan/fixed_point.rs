@@ -211,7 +211,9 @@ mod tests {
     /// N, failure, L; same source.
     #[test]
     fn the_fewest_iterations_of_known_cases() {
-        for (space, failure, length) in [(8, 0.1, 5), (16, 0.1, 9), (1024, 0.1, 59), (1024, 0.01, 97), (1 << 20, 0.01, 3067)] {
+        for (space, failure, length) in
+            [(8, 0.1, 5), (16, 0.1, 9), (1024, 0.1, 59), (1024, 0.01, 97), (1 << 20, 0.01, 3067)]
+        {
             let sequence = fixed_point(&big(space), &big(1), failure).unwrap();
             assert_eq!(sequence.iterations, big((length - 1) / 2), "one in {space}, {failure}");
             assert!(sequence.promised_from <= Wide::ratio(&big(1), &big(space)));

@@ -84,7 +84,8 @@ mod tests {
     /// Every k up to the first peak of the lower end, over a fine grid of real counts.
     #[test]
     fn no_k_has_a_better_worst_case() {
-        for (n, low, high) in [(16u64, 1u64, 3u64), (64, 1, 8), (64, 3, 60), (1024, 2, 9), (1024, 5, 5), (256, 1, 256)] {
+        for (n, low, high) in [(16u64, 1u64, 3u64), (64, 1, 8), (64, 3, 60), (1024, 2, 9), (1024, 5, 5), (256, 1, 256)]
+        {
             let found = interval(&big(n), &big(low), &big(high));
             let worst_of = |k: u64| {
                 let (from, to) = (theta(&big(n), &big(low)), theta(&big(n), &big(high)));

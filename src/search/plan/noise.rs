@@ -45,7 +45,8 @@ pub struct NoisyPlan {
 
 /// The chance that an iteration errs anywhere, from the errors of its gates: pairs of an error and how many gates have it.
 pub fn error_of_gates(gates: impl IntoIterator<Item = (f64, u64)>) -> f64 {
-    let log: f64 = gates.into_iter().filter(|gate| gate.1 > 0).map(|(error, count)| count as f64 * (-error).ln_1p()).sum();
+    let log: f64 =
+        gates.into_iter().filter(|gate| gate.1 > 0).map(|(error, count)| count as f64 * (-error).ln_1p()).sum();
     -log.exp_m1()
 }
 

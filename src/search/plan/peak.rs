@@ -124,9 +124,12 @@ mod tests {
         BigUint::from(number)
     }
 
+    fn less(a: &(BigUint, BigUint), b: &(BigUint, BigUint)) -> bool {
+        &a.0 * &b.1 < &b.0 * &a.1
+    }
+
     fn exact_best(n: u64, m: u64, bound: u64) -> u64 {
         let all: Vec<_> = (0..=bound).map(|k| exact_fraction(&big(n), &big(m), k)).collect();
-        let less = |a: &(BigUint, BigUint), b: &(BigUint, BigUint)| &a.0 * &b.1 < &b.0 * &a.1;
         (0..all.len()).fold(0, |best, k| if less(&all[best], &all[k]) { k } else { best }) as u64
     }
 
@@ -149,9 +152,12 @@ mod tests {
         assert_eq!(best_within(&big(8), &big(3), &big(3)), big(3));
         for n in [4u64, 7, 8, 12, 16, 23] {
             for m in 1..=n {
-                for bound in 0..40 {
-                    let best = best_within(&big(n), &big(m), &big(bound));
-                    assert_eq!(best, big(exact_best(n, m, bound)), "{m} in {n} within {bound}");
+                let all: Vec<_> = (0..40).map(|k| exact_fraction(&big(n), &big(m), k)).collect();
+                let mut wanted = 0;
+                for bound in 0..40usize {
+                    wanted = if less(&all[wanted], &all[bound]) { bound } else { wanted };
+                    let best = best_within(&big(n), &big(m), &big(bound as u64));
+                    assert_eq!(best, big(wanted as u64), "{m} in {n} within {bound}");
                 }
             }
         }
@@ -161,7 +167,8 @@ mod tests {
     fn bounds_far_beyond_a_scan() {
         let (n, m) = (big(1 << 20), big(3));
         let (small, large) = (big(1 << 20), BigUint::one() << 60u32);
-        let scanned = (0..1u64 << 20).map(|k| ((2 * k + 1) as f64 * theta(&n, &m)).sin().powi(2));
+        let theta = theta(&n, &m);
+        let scanned = (0..1u64 << 20).map(|k| ((2 * k + 1) as f64 * theta).sin().powi(2));
         let best_scanned = scanned.fold(0.0, f64::max);
         let p = success(&n, &m, &best_within(&n, &m, &small));
         assert!(p >= best_scanned - 1e-12, "{p} and {best_scanned}");

@@ -15,18 +15,18 @@
 //!   section 3, for c = 0 (read in secondary notes).
 
 use num_bigint::{BigInt, BigUint};
-use num_traits::{One, ToPrimitive, Zero};
+use num_traits::{ToPrimitive, Zero};
 
 use super::peak::{angle_digits, cut, first_peak};
 use super::success::{sine_squared, success_wide, theta_wide};
 use crate::search::number::{Wide, fixed, seek};
 
 /// Up to this peak every k is tried.
-const TRIED: u64 = 1 << 13;
+const TRIED: u64 = 1 << 10;
 
 /// The k with the least `(k + try_cost) / p_k` up to the first peak; `try_cost` is finite and not negative.
 ///
-/// Beyond a peak of 8192 it is the integer nearest to the real optimum.
+/// Beyond a peak of 1024 it is the integer nearest to the real optimum.
 pub fn least_work(space: &BigUint, marked: &BigUint, try_cost: f64) -> BigUint {
     assert!(try_cost.is_finite() && try_cost >= 0.0, "a cost");
     let peak = first_peak(space, marked);
@@ -47,35 +47,61 @@ pub fn least_work(space: &BigUint, marked: &BigUint, try_cost: f64) -> BigUint {
     if work(&least) < work(&root) { least } else { root.min(peak) }
 }
 
-/// The integer nearest to the last root, for a small angle.
+/// The least work alone, in floating point; `None` where nothing is marked. Right to about a part in 2^40.
+pub(super) fn least_work_figure(space: &BigUint, marked: &BigUint, try_cost: f64) -> Option<Wide> {
+    if marked.is_zero() {
+        return None;
+    }
+    let (theta, cost) = (theta_wide(space, marked), Wide::new(try_cost));
+    if theta > Wide::new(std::f64::consts::FRAC_PI_4 / TRIED as f64) {
+        let k = least_work(space, marked, try_cost);
+        return Some((Wide::of(&k) + cost) / success_wide(space, marked, &k));
+    }
+    let y = float_root(theta, try_cost);
+    let k = (Wide::new(0.5 * y) / theta).less(Wide::new(0.5));
+    let search = (k + cost) / Wide::new(y.sin().powi(2));
+    Some(if cost.is_zero() { search } else { search.min(cost / theta.square()) })
+}
+
+/// The last root of `h(y) = sin y - 2 (y + offset) cos y`, `offset = theta (2c - 1)`, for a small angle; by bisection.
+fn float_root(theta: Wide, try_cost: f64) -> f64 {
+    let offset = (theta * Wide::new(2.0 * try_cost)).to_f64().min(1e300) - theta.to_f64();
+    let (mut low, mut high) = (std::f64::consts::FRAC_PI_4, std::f64::consts::FRAC_PI_2);
+    for _ in 0..54 {
+        let middle = 0.5 * (low + high);
+        if middle.sin() < 2.0 * (middle + offset) * middle.cos() { low = middle } else { high = middle }
+    }
+    high
+}
+
+/// The integer nearest to that root's `k = (y / theta - 1) / 2`, to the last digit.
 fn root(space: &BigUint, marked: &BigUint, try_cost: f64) -> BigUint {
-    let digits = angle_digits(space, marked) * 2;
-    let one = BigInt::one() << digits;
+    let digits = angle_digits(space, marked);
     let theta = BigInt::from(fixed::theta(space, marked, digits));
     // 2c in 64 binary digits after the point.
     let cost = BigInt::from((Wide::new(2.0 * try_cost) * Wide::power_of_two(64)).floor());
     let offset: BigInt = (&theta * cost >> 64u32) - &theta;
-    let half_turn = BigInt::from(fixed::pi(digits) >> 1u32);
-    // Newton's method for h(y) = sin y - 2 (y + offset) cos y from the right, where h is convex; h' = 2 (y + offset)
-    // sin y - cos y. Each step doubles the digits.
-    let mut y = half_turn.clone();
-    for _ in 0..2 * digits.ilog2() + 40 {
-        let (sine, cosine) = fixed::sin_cos(y.magnitude(), digits);
-        let twice = (&y + &offset) * 2;
-        let value: BigInt = &sine - (&twice * &cosine >> digits);
-        let slope: BigInt = (&twice * &sine >> digits) - &cosine;
-        let change = fixed::divide(&value, &slope.max(&one >> 20u32), digits);
-        if change.magnitude().bits() < 16 {
-            break;
-        }
-        y = (y - change).clamp(&one >> 1u32, half_turn.clone());
+    // Newton's method, h' = 2 (y + offset) sin y - cos y: each step doubles the right digits, and works with no more.
+    let mut known = 50;
+    let mut y =
+        BigInt::from((Wide::new(float_root(theta_wide(space, marked), try_cost)) * Wide::power_of_two(50)).floor());
+    while known < digits {
+        let wanted = (2 * known - 10).min(digits);
+        y <<= wanted - known;
+        let (sine, cosine) = fixed::sin_cos(y.magnitude(), wanted);
+        let twice: BigInt = (&y + (&offset >> (digits - wanted))) * 2;
+        let value: BigInt = &sine - (&twice * &cosine >> wanted);
+        let slope: BigInt = (&twice * &sine >> wanted) - &cosine;
+        y -= fixed::divide(&value, &slope, wanted);
+        known = wanted;
     }
-    // k = (y / theta - 1) / 2, to the nearest integer.
     y.magnitude() / (theta.magnitude() * 2u32)
 }
 
 #[cfg(test)]
 mod tests {
+    use num_traits::One;
+
     use super::*;
     use crate::search::plan::plan_for_least_work;
 
@@ -86,7 +112,8 @@ mod tests {
     /// N, k, k / p_k; formula as above, values computed with 40 digits outside this program.
     #[test]
     fn the_least_work_of_known_cases() {
-        for (n, k, work) in [(1024, 18, 21.4819870253869), (1 << 20, 596, 705.993439914548), (16, 1, 2.11570247933884)] {
+        for (n, k, work) in [(1024, 18, 21.4819870253869), (1 << 20, 596, 705.993439914548), (16, 1, 2.11570247933884)]
+        {
             let plan = plan_for_least_work(&big(n), &big(1), 0.0);
             assert_eq!(plan.iterations, big(k), "N = {n}");
             let found = plan.expected_oracle_calls.unwrap().to_f64();
@@ -124,9 +151,18 @@ mod tests {
     /// The root against every k, where both can serve.
     #[test]
     fn both_ways_agree() {
-        for (n, m, c) in [(1u64 << 20, 1, 0.0), (1 << 20, 3, 3.5), (1 << 16, 1, 20.0), (1 << 24, 5, 1.0)] {
+        for (n, m, c) in [(1u64 << 20, 1, 0.0), (1 << 20, 3, 3.5), (1 << 16, 1, 20.0), (1 << 18, 5, 1.0)] {
             let (space, marked) = (big(n), big(m));
-            assert_eq!(root(&space, &marked, c), least_work(&space, &marked, c), "{m} in {n}, c = {c}");
+            let exact = least_work(&space, &marked, c);
+            assert_eq!(root(&space, &marked, c), exact, "{m} in {n}, c = {c}");
+            let work = (Wide::of(&exact) + Wide::new(c)) / success_wide(&space, &marked, &exact);
+            let figure = least_work_figure(&space, &marked, c).unwrap();
+            assert_eq!(work, figure, "this small, the figure is that of the exact k");
+        }
+        for (n, c) in [(1u64 << 30, 0.0), (1 << 34, 100.0), (1 << 44, 1e-9), (1 << 44, 1e9)] {
+            let plan = plan_for_least_work(&big(n), &big(3), c);
+            let ratio = (plan.expected_work(c).unwrap() / least_work_figure(&big(n), &big(3), c).unwrap()).to_f64();
+            assert!((ratio - 1.0).abs() < 1e-6, "{n}, c = {c}: {ratio}");
         }
     }
 }

@@ -18,7 +18,7 @@
 //!   several machines nothing is better than splitting the space; S machines are sqrt(S) times as fast.
 
 use num_bigint::BigUint;
-use num_traits::{One, ToPrimitive};
+use num_traits::{One, Zero};
 use serde::Serialize;
 
 use super::noise::Noisy;
@@ -58,7 +58,7 @@ pub struct Split {
 /// fixed); `None` where nothing is marked. The error's floor is taken among the states of a part.
 pub fn split(space: &BigUint, marked: &BigUint, bits: u64, machines: &Machines) -> Option<Split> {
     assert!(machines.machines > 0 && machines.try_cost > 0.0, "at least one machine, and tries that cost something");
-    if marked.bits() == 0 {
+    if marked.is_zero() {
         return None;
     }
     let splits = (0..=bits.min(space.bits() - 1)).map(|guessed| best_at(space, marked, guessed, machines));
@@ -74,30 +74,56 @@ fn best_at(space: &BigUint, marked: &BigUint, guessed: u64, machines: &Machines)
         false => (space.clone(), marked.clone()),
     };
     let noisy = Noisy::new(&part, &inside, &part, machines.error);
+    let sweep = Sweep::new(&parts, marked, machines.machines);
     let figures = |k: u64| {
         let success = noisy.success(k);
-        let rounds = rounds(&parts, marked, machines.machines, success);
+        let rounds = sweep.rounds(success);
         let time = Wide::new(k as f64 + machines.try_cost) * rounds;
-        Split { guessed_bits: guessed, iterations: k, success, rounds, time, work: time * Wide::new(machines.machines as f64) }
+        Split {
+            guessed_bits: guessed,
+            iterations: k,
+            success,
+            rounds,
+            time,
+            work: time * Wide::new(machines.machines as f64),
+        }
     };
     let last = noisy.last().min(machines.depth.unwrap_or(u64::MAX));
     figures(seek::least(0, last, |k| figures(k).time))
 }
 
-/// The rounds until the first success, on average.
-fn rounds(parts: &BigUint, marked: &BigUint, machines: u64, success: Wide) -> Wide {
-    let machines_wide = Wide::new(machines as f64);
-    let each = BigUint::from(machines) / parts;
-    if marked > parts || each.to_u64().is_none_or(|each| each > 0) {
-        // Every machine, or every group of them on one part, has the same chance in each round.
-        let useful = if marked > parts { machines_wide } else { Wide::of(&(each * marked)) };
-        return Wide::ONE / at_least_one(success, useful);
+/// How the machines go through the parts.
+enum Sweep {
+    /// In every round so many machines are on parts that have a solution.
+    Together(Wide),
+    /// There are more parts than machines.
+    InTurn { parts: Wide, marked: Wide, machines: Wide },
+}
+
+impl Sweep {
+    fn new(parts: &BigUint, marked: &BigUint, machines: u64) -> Self {
+        let each = BigUint::from(machines) / parts;
+        match () {
+            () if marked > parts => Sweep::Together(Wide::new(machines as f64)),
+            () if !each.is_zero() => Sweep::Together(Wide::of(&(each * marked))),
+            () => {
+                Sweep::InTurn { parts: Wide::of(parts), marked: Wide::of(marked), machines: Wide::new(machines as f64) }
+            }
+        }
     }
-    let (s, m) = (Wide::of(parts), Wide::of(marked));
-    let hit = at_least_one(success, m);
-    let sweep = s * Wide::ONE.less(hit) + (s + Wide::ONE) * early(success, m);
-    // The runs of a sweep are dealt out to the machines; the last round is half used on average.
-    (sweep / hit + Wide::new(0.5) * machines_wide.less(Wide::ONE)) / machines_wide
+
+    /// The rounds until the first success, on average.
+    fn rounds(&self, success: Wide) -> Wide {
+        match *self {
+            Sweep::Together(useful) => Wide::ONE / at_least_one(success, useful),
+            Sweep::InTurn { parts, marked, machines } => {
+                let hit = at_least_one(success, marked);
+                let runs = parts * Wide::ONE.less(hit) + (parts + Wide::ONE) * early(success, marked);
+                // The runs are dealt out to the machines; the last round is half used on average.
+                (runs / hit + Wide::new(0.5) * machines.less(Wide::ONE)) / machines
+            }
+        }
+    }
 }
 
 /// `1 - (1 - p)^n`.
@@ -167,7 +193,9 @@ mod tests {
     /// The mean of a sweep against drawing without putting back, term by term.
     #[test]
     fn rounds_by_enumeration() {
-        for (parts, marked, p) in [(8u64, 1u64, 0.3f64), (8, 3, 0.3), (16, 2, 1.0), (16, 5, 1e-5), (4, 4, 0.9), (2, 1, 1e-4)] {
+        for (parts, marked, p) in
+            [(8u64, 1u64, 0.3f64), (8, 3, 0.3), (16, 2, 1.0), (16, 5, 1e-5), (4, 4, 0.9), (2, 1, 1e-4)]
+        {
             // chance[t][g]: t parts tried, g of them good, all in vain; hypergeometric draws.
             let (mut runs, mut alive) = (0.0, vec![0.0; marked as usize + 1]);
             alive[0] = 1.0;
@@ -184,7 +212,7 @@ mod tests {
                 alive = next;
             }
             let wanted = runs / (1.0 - alive.iter().sum::<f64>());
-            let found = rounds(&big(parts), &big(marked), 1, Wide::new(p)).to_f64();
+            let found = Sweep::new(&big(parts), &big(marked), 1).rounds(Wide::new(p)).to_f64();
             assert!((found / wanted - 1.0).abs() < 1e-6, "{marked} in {parts} at {p}: {found} not {wanted}");
         }
     }
