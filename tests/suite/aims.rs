@@ -326,17 +326,44 @@ fn files_of_shots() {
     let mut files: Vec<_> = std::fs::read_dir(folder).unwrap().map(|entry| entry.unwrap().path()).collect();
     files.sort();
     assert!(files.len() >= 30, "the cases are there");
+    let mut differences = Vec::new();
     for path in files {
         let case = std::fs::read_to_string(&path).unwrap();
         let (head, rest) = case.split_once("\n---- text\n").expect("a text");
         let (text, wanted) = rest.split_once("---- expect\n").expect("an expectation");
-        assert_eq!(outcome(text, &options(head)), wanted.trim_end(), "{}", path.display());
+        let mut compare = |text: &str| {
+            let found = outcome(text, &options(head));
+            if found != wanted.trim_end() {
+                differences.push(format!("{}:\n{found}\nbut expected\n{wanted}", path.display()));
+            }
+        };
+        compare(text);
         // Windows line ends and a byte order mark change nothing but columns of the first line.
         if !wanted.starts_with('S') {
-            let other = format!("\u{feff}{}", text.replace('\n', "\r\n"));
-            assert_eq!(outcome(&other, &options(head)), wanted.trim_end(), "{}", path.display());
+            compare(&format!("\u{feff}{}", text.replace('\n', "\r\n")));
         }
     }
+    assert!(differences.is_empty(), "{}", differences.join("\n"));
+}
+
+/// Torn and mixed files are refused or read, and never end the program.
+#[test]
+fn any_text_is_read_or_refused() {
+    const PIECES: &[&str] = &[
+        "01", "10", "0", "1", "{", "}", "[", "\"", ":", ",", " ", "\n", "\r\n", "\t", "#", "17", "-", "é", "\u{feff}",
+        "9e9",
+    ];
+    let mut random = tallymark::random::SplitMix64::new(11);
+    let (mut read, mut refused) = (0, 0);
+    for _ in 0..20_000 {
+        let length = random.below(12);
+        let text: String = (0..length).map(|_| PIECES[random.below(PIECES.len() as u64) as usize]).collect();
+        let mut options = Options::new(2);
+        options.register = random.coin().then(|| random.below(4) as usize);
+        let said = outcome(&text, &options);
+        if said.starts_with('S') { refused += 1 } else { read += 1 }
+    }
+    assert!(read > 100 && refused > 100, "{read} read, {refused} refused");
 }
 
 fn options(head: &str) -> Options {

@@ -46,7 +46,7 @@ pub fn theta(space: &BigUint, marked: &BigUint, digits: u64) -> BigUint {
     let (mut sum, mut j) = (BigUint::zero(), 0u32);
     while !term.is_zero() {
         sum += &term / (2 * j + 1);
-        term = (term * &share >> inner) * (2 * j + 1) / (2 * j + 2);
+        term = ((term * &share) >> inner) * (2 * j + 1) / (2 * j + 2);
         j += 1;
     }
     sum >> GUARD
@@ -66,7 +66,7 @@ pub fn sin_cos(angle: &BigUint, digits: u64) -> (BigInt, BigInt) {
             _ => sine -= &term,
         }
         j += 1;
-        term = (term * &angle >> inner) / j;
+        term = ((term * &angle) >> inner) / j;
     }
     (sine >> GUARD, cosine >> GUARD)
 }

@@ -32,3 +32,17 @@ pub(super) fn as_text<T: std::fmt::Display, S: Serializer>(number: &T, serialize
 pub(super) fn float(number: &BigUint) -> f64 {
     number.to_f64().unwrap_or(f64::INFINITY)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn long_numbers_are_shown_by_their_logarithm() {
+        let two = |power: u32| BigUint::from(1u32) << power;
+        assert_eq!(in_words(&BigUint::from(804u32)), "804");
+        assert_eq!(in_words(&two(4095)), two(4095).to_string());
+        assert_eq!(in_words(&(two(4999) + two(4998))), "2^4999.58");
+        assert_eq!(float(&two(4999)), f64::INFINITY);
+    }
+}

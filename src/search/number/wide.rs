@@ -141,7 +141,8 @@ impl Wide {
     /// The smallest integer that is not below; digits beyond the 53 known ones are 0.
     pub fn ceil(self) -> BigUint {
         match self.exponent {
-            ..=52 => BigUint::from(self.to_f64().ceil() as u64),
+            ..0 => BigUint::from(u32::from(!self.is_zero())),
+            0..=52 => BigUint::from(self.to_f64().ceil() as u64),
             _ => self.floor(),
         }
     }
@@ -239,6 +240,12 @@ mod tests {
         assert_eq!(Wide::ratio(&BigUint::one(), &two(3000)).log2(), -3000.0);
         assert_eq!(Wide::ratio(&BigUint::from(1u32), &BigUint::from(3u32)).to_f64(), 1.0 / 3.0);
         assert_eq!(Wide::ratio(&two(5000), &BigUint::from(3u32)).floor().bits(), 4999);
+        let ends = |wide: Wide| (wide.floor(), wide.ceil());
+        let pair = |low: u32, high: u32| (BigUint::from(low), BigUint::from(high));
+        assert_eq!(ends(Wide::power_of_two(-3000)), pair(0, 1));
+        assert_eq!(ends(Wide::ZERO), pair(0, 0));
+        assert_eq!(ends(Wide::new(7.0)), pair(7, 7));
+        assert_eq!(ends(Wide::new(7.5)), pair(7, 8));
     }
 
     #[test]

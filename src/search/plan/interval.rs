@@ -29,8 +29,8 @@ pub struct Interval {
     pub success_at_high: f64,
     /// The least success over the interval.
     pub worst: f64,
-    /// Oracle calls until a run succeeds, on average, in the worst case.
-    pub expected_oracle_calls: Wide,
+    /// Oracle calls until a run succeeds, on average, in the worst case; `None` where that may never be.
+    pub expected_oracle_calls: Option<Wide>,
 }
 
 /// The plan for a count between `low` and `high`, both included. A lower end of 0 is taken as 1: the figures then hold
@@ -65,7 +65,7 @@ fn figures(space: &BigUint, low: &BigUint, high: &BigUint, iterations: BigUint) 
         success_at_low: at_low.to_f64(),
         success_at_high: at_high.to_f64(),
         worst: worst.to_f64(),
-        expected_oracle_calls: if worst.is_zero() { Wide::ZERO } else { Wide::of(&iterations) / worst },
+        expected_oracle_calls: (!worst.is_zero()).then(|| Wide::of(&iterations) / worst),
         iterations,
     };
     (figures, worst)

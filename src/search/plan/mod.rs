@@ -25,12 +25,14 @@ pub mod fixed_point;
 pub mod interval;
 pub mod minimum;
 pub mod noise;
+pub mod outline;
 pub mod peak;
 pub mod restart;
 pub mod schedule;
 pub mod split;
 pub mod success;
 
+pub use outline::Outline;
 pub use success::{exact_fraction, success, theta};
 
 use num_bigint::BigUint;

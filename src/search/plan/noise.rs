@@ -28,7 +28,7 @@ pub struct Noisy {
     error: f64,
     /// f: the success of the evenly mixed state.
     floor: Wide,
-    /// No k beyond this is better: the first peak, or where the noise has won.
+    /// No k beyond this is better: the first peak, or where the noise has won; at most 2^62, which no machine runs.
     last: u64,
 }
 
@@ -50,7 +50,8 @@ pub fn error_of_gates(gates: impl IntoIterator<Item = (f64, u64)>) -> f64 {
     -log.exp_m1()
 }
 
-/// The runs after which at least one has succeeded with this confidence; `None` where none ever does, or never so surely.
+/// The runs after which at least one has succeeded with this confidence, a number from 0 to 1; `None` where none ever does,
+/// or never so surely.
 pub fn runs_for(success: Wide, confidence: f64) -> Option<Wide> {
     if success.is_zero() || !(confidence < 1.0 || success >= Wide::ONE) {
         return None;

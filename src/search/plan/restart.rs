@@ -80,7 +80,7 @@ fn root(space: &BigUint, marked: &BigUint, try_cost: f64) -> BigUint {
     let theta = BigInt::from(fixed::theta(space, marked, digits));
     // 2c in 64 binary digits after the point.
     let cost = BigInt::from((Wide::new(2.0 * try_cost) * Wide::power_of_two(64)).floor());
-    let offset: BigInt = (&theta * cost >> 64u32) - &theta;
+    let offset: BigInt = ((&theta * cost) >> 64u32) - &theta;
     // Newton's method, h' = 2 (y + offset) sin y - cos y: each step doubles the right digits, and works with no more.
     let mut known = 50;
     let mut y =
@@ -90,8 +90,8 @@ fn root(space: &BigUint, marked: &BigUint, try_cost: f64) -> BigUint {
         y <<= wanted - known;
         let (sine, cosine) = fixed::sin_cos(y.magnitude(), wanted);
         let twice: BigInt = (&y + (&offset >> (digits - wanted))) * 2;
-        let value: BigInt = &sine - (&twice * &cosine >> wanted);
-        let slope: BigInt = (&twice * &sine >> wanted) - &cosine;
+        let value: BigInt = &sine - ((&twice * &cosine) >> wanted);
+        let slope: BigInt = ((&twice * &sine) >> wanted) - &cosine;
         y -= fixed::divide(&value, &slope, wanted);
         known = wanted;
     }

@@ -5,6 +5,8 @@ use thiserror::Error;
 use crate::diag::{Code, Diagnostic};
 use crate::span::Span;
 
+use super::read::MAX_SHOTS;
+
 /// A mistake in a file of shots, with where it is.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub(super) struct Fault {
@@ -29,7 +31,7 @@ pub(super) enum Kind {
     NoRegister { found: usize, wanted: usize },
     #[error("the count is no natural number")]
     Count(String),
-    #[error("the counts add up to more than 64 bits hold")]
+    #[error("the counts add up to more shots than can be compared")]
     TooMany,
     #[error("the row has the wrong number of cells")]
     Cells(usize),
@@ -65,7 +67,7 @@ impl Fault {
                 .found(found)
                 .expected("how often the string was measured")
                 .help("shares and probabilities are not counts: give the numbers of shots"),
-            Kind::TooMany => new("S007").expected("at most 18446744073709551615 shots in all"),
+            Kind::TooMany => new("S007").expected(format!("at most {MAX_SHOTS} shots in all")),
             Kind::Cells(found) => new("S008")
                 .found(crate::diag::plural(found, "cell", "cells"))
                 .expected("two cells: the bit string and its count"),

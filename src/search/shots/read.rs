@@ -63,6 +63,8 @@ impl Options {
     }
 }
 
+/// More shots are refused: no run has so many, and the exact test of a rate takes the root of their number in steps.
+pub const MAX_SHOTS: u64 = 1_000_000_000_000;
 /// After so many mistakes reading stops.
 const MAX_MESSAGES: usize = 20;
 
@@ -131,7 +133,7 @@ impl Reader<'_> {
             Ok(digits) => digits,
             Err(kind) => return self.fault(entry.bits.range(), kind),
         };
-        let Some(total) = self.total.checked_add(count) else {
+        let Some(total) = self.total.checked_add(count).filter(|&total| total <= MAX_SHOTS) else {
             return self.fault(entry.bits.range(), Kind::TooMany);
         };
         self.total = total;
