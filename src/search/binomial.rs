@@ -6,8 +6,8 @@
 //!
 //! # References
 //! - C. Loader: "Fast and accurate computation of binomial probabilities" (2000) (from memory): the deviance form.
-//! - NIST Digital Library of Mathematical Functions, 8.17.22 (from memory): the continued fraction of the incomplete beta
-//!   function; 8.17.5: the tail of the binomial distribution in terms of it.
+//! - NIST Digital Library of Mathematical Functions, 8.17.22 (from memory): the continued fraction of the incomplete
+//!   beta function; 8.17.5: the tail of the binomial distribution in terms of it.
 //! - C. Clopper, E. Pearson: "The use of confidence or fiducial limits illustrated in the case of the binomial",
 //!   Biometrika 26 (1934) (from memory): the exact interval.
 
@@ -93,8 +93,8 @@ fn tail(hits: u64, trials: u64, p: f64, q: f64) -> f64 {
     }
 }
 
-/// The tail from `hits` on, above the mean: its first term times `q` times the continued fraction of the incomplete beta
-/// function with a = hits and b = trials - hits + 1, by Lentz's method.
+/// The tail from `hits` on, above the mean: its first term times `q` times the continued fraction of the incomplete
+/// beta function with a = hits and b = trials - hits + 1, by Lentz's method.
 fn far_tail(hits: u64, trials: u64, p: f64, q: f64) -> f64 {
     const TINY: f64 = 1e-300;
     let (a, b) = (hits as f64, (trials - hits + 1) as f64);
@@ -142,8 +142,8 @@ fn rising_root(f: impl Fn(f64) -> f64) -> f64 {
     }
 }
 
-/// The exact two-sided test: the chance of a result at least as far out on its side, doubled, and at most 1. It is below
-/// `1 - confidence` exactly where [`interval`] does not contain the chance.
+/// The exact two-sided test: the chance of a result at least as far out on its side, doubled, and at most 1. It is
+/// below `1 - confidence` exactly where [`interval`] does not contain the chance.
 pub fn two_sided(hits: u64, trials: u64, chance: f64) -> f64 {
     (2.0 * at_least(hits, trials, chance).min(at_most(hits, trials, chance))).min(1.0)
 }

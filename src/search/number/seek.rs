@@ -10,8 +10,9 @@ const PLACES: u64 = 1 << 8;
 /// The smallest integer of `low..=high` whose cost is least.
 ///
 /// A short range is tried whole. In a longer one the neighbourhood of the best of 256 places is searched by thirds,
-/// down to a range that is tried whole: that is exact where the cost falls and then rises between the two places
-/// beside the best one, which is so for every cost of this room (smooth in k, with one valley after at most one rise), up to costs that a double cannot tell apart.
+/// down to a range that is tried whole: that is exact where the cost falls and then rises between the two places beside
+/// the best one, which is so for every cost of this room (smooth in k, with one valley after at most one rise), up to
+/// costs that a double cannot tell apart.
 pub fn least(low: u64, high: u64, cost: impl Fn(u64) -> Wide) -> u64 {
     let (mut low, mut high) = (low, high.max(low));
     if high - low > SCANNED {

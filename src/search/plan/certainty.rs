@@ -6,8 +6,8 @@
 //!   `sin(phi / 2) = sin(pi / (4J + 2)) / sin theta`; one iteration is
 //!   `-(1 - (1 - e^{i phi}) |s><s|) (1 - (1 - e^{i phi}) P)`, P the marked states. Both phases have the same sign.
 //! - *Weakened start*: one more qubit is prepared so that it is 1 with amplitude `sin(omega) / sin(theta)`,
-//!   `omega = pi / (4J + 2)`; marked is what was marked with that qubit at 1. J plain iterations follow. The angle of the
-//!   qubit's Y rotation is the same number as phi.
+//!   `omega = pi / (4J + 2)`; marked is what was marked with that qubit at 1. J plain iterations follow. The angle of
+//!   the qubit's Y rotation is the same number as phi.
 //!
 //! Both need `J = ceil(pi / (4 theta) - 1/2)`, and any larger J serves as well.
 //!
@@ -17,13 +17,15 @@
 //! - G. Brassard, P. Hoyer, M. Mosca, A. Tapp: "Quantum amplitude amplification and estimation", AMS Contemporary
 //!   Mathematics 305 (2002), section 2.1 (from memory; checked by simulation).
 
+use std::f64::consts::PI;
+
 use num_bigint::{BigInt, BigUint, Sign};
 use num_traits::{One, Zero};
 use serde::Serialize;
 
 use super::peak::{angle_digits, cut};
 use super::success::theta_of;
-use crate::search::number::{Wide, as_text, fixed};
+use crate::search::number::{PRINTED_BITS, Wide, as_text, fixed};
 
 /// A search that succeeds for certain.
 #[derive(Clone, PartialEq, Debug, Serialize)]
@@ -74,11 +76,18 @@ fn fewest(space: &BigUint, marked: &BigUint) -> BigUint {
 
 fn tuned(space: &BigUint, marked: &BigUint, iterations: BigUint) -> Certainty {
     let turns: BigUint = &iterations * 4u32 + 2u32;
-    let digits = 2 * (space.bits() - marked.bits() + turns.bits()) + 128;
-    let (theta, pi) = (fixed::theta(space, marked, digits), fixed::pi(digits));
-    let omega = &pi / &turns;
-    // sin^2 theta - sin^2 omega = sin(theta - omega) sin(theta + omega): what is left of 1 after the kept share, free of
-    // cancellation. Where J fits without tuning the difference is 0 up to rounding.
+    let ratio = space.bits() - marked.bits();
+    if ratio > 2 * PRINTED_BITS {
+        // What is to be tuned is far below the digits of a double.
+        let weakened_theta = Wide::new(PI) / Wide::of(&turns);
+        return Certainty { iterations, phase: PI, weakened_theta, kept: 1.0, rotation_sine: 1.0 };
+    }
+    // theta - omega may be as small as the square of either; it gets 60 digits and more.
+    let digits = ratio.max(2 * turns.bits()) + 128;
+    let (theta, half_turn) = (fixed::theta(space, marked, digits), fixed::pi(digits));
+    let omega = half_turn / &turns;
+    // sin^2 theta - sin^2 omega = sin(theta - omega) sin(theta + omega): what is left of 1 after the kept share, free
+    // of cancellation. Where J fits without tuning the difference is 0 up to rounding.
     let unit = BigUint::one() << digits;
     let rest = match BigInt::from(theta.clone()) - BigInt::from(omega.clone()) {
         rest if rest.sign() == Sign::Minus || rest.bits() < 16 => BigUint::zero(),
@@ -164,7 +173,7 @@ mod tests {
         for bits in [100u32, 3000, 20000] {
             let found = certainty(&(BigUint::one() << bits), &big(1)).unwrap();
             assert_eq!(found.iterations.bits(), u64::from(bits / 2));
-            assert!(found.phase > 3.14 && found.phase <= std::f64::consts::PI);
+            assert!(found.phase > 3.14 && found.phase <= PI);
         }
     }
 }

@@ -177,7 +177,8 @@ mod tests {
                 assert_eq!(1 << plan.register, points);
             }
         }
-        // One run is outside with a chance of 0.1894...; of three, two or three: 3 p^2 - 2 p^3 = 0.0941; of five 0.0503...
+        // One run is outside with a chance of 0.1894...; of three, two or three: 3 p^2 - 2 p^3 = 0.0941; of five
+        // 0.0503...
         let runs = [0.19, 0.1, 0.06, 0.05].map(|error| estimation(Wide::new(0.1), None, error).runs);
         assert_eq!(runs, [1, 3, 5, 7]);
         let exact =

@@ -1,7 +1,7 @@
 //! Only a lower bound is known: a sequence of phases that does not overshoot, whatever the count really is.
 //!
-//! Input: the least share `lambda = M_low / N` and the failure `delta^2` that is allowed. Output: the fewest iterations l
-//! and their phases, such that the success is at least `1 - delta^2` for every share from `lambda` on.
+//! Input: the least share `lambda = M_low / N` and the failure `delta^2` that is allowed. Output: the fewest iterations
+//! l and their phases, such that the success is at least `1 - delta^2` for every share from `lambda` on.
 //!
 //! With `L = 2l + 1` and `1 / gamma = cosh(acosh(1 / delta) / L)`, iteration j of 1 to l is
 //! `-(1 - (1 - e^{-i alpha_j}) |s><s|) (1 - (1 - e^{i beta_j}) P)`, iteration 1 first,

@@ -10,8 +10,8 @@
 //! a value, those that break a constraint, are left by a search for all `S` valid ones.
 //!
 //! # References
-//! - C. Durr, P. Hoyer: "A quantum algorithm for finding the minimum" (1996), arXiv:quant-ph/9607014: Lemmas 1 and 2 and
-//!   the cut-off (read in secondary notes).
+//! - C. Durr, P. Hoyer: "A quantum algorithm for finding the minimum" (1996), arXiv:quant-ph/9607014: Lemmas 1 and 2
+//!   and the cut-off (read in secondary notes).
 
 use num_bigint::BigUint;
 use num_traits::Zero;
@@ -80,8 +80,8 @@ mod tests {
 
     use super::*;
 
-    /// N, expected iterations, bound, for N different values. Source of the sum: Durr, Hoyer 1996, Lemma 2, with the exact
-    /// cost of the schedule in place of its bound; computed with 40 digits outside this program.
+    /// N, expected iterations, bound, for N different values. Source of the sum: Durr, Hoyer 1996, Lemma 2, with the
+    /// exact cost of the schedule in place of its bound; computed with 40 digits outside this program.
     #[test]
     fn sums_of_known_cases() {
         for (n, sum, bound) in [

@@ -15,7 +15,7 @@
 //! | M and a depth | the same on shallow machines | [`split`] | some bits guessed, the rest searched |
 //!
 //! Everywhere N is the size of the start state, M the number of its states that are marked, and `theta` the angle with
-//! `sin^2 theta = M/N`; [`success`] has the formula that all rest on. One iteration is one phase oracle and one
+//! `sin^2 theta = M/N`; [`mod@success`] has the formula that all rest on. One iteration is one phase oracle and one
 //! reflection about the start state.
 
 pub mod certainty;

@@ -1,9 +1,9 @@
 //! A machine that errs: fewer iterations are better, and from some error rate on a search costs more than guessing.
 //!
-//! Input: N, M, and the chance q that an iteration loses everything: after each iteration the whole register is replaced
-//! by the evenly mixed state with probability q. Then `p_k = (1 - q)^k sin^2((2k + 1) theta) + (1 - (1 - q)^k) f`, f being
-//! the share of the marked states among all strings of the register: M/N for a start state over all strings, less for a
-//! restricted one.
+//! Input: N, M, and the chance q that an iteration loses everything: after each iteration the whole register is
+//! replaced by the evenly mixed state with probability q. Then
+//! `p_k = (1 - q)^k sin^2((2k + 1) theta) + (1 - (1 - q)^k) f`, f being the share of the marked states among all
+//! strings of the register: M/N for a start state over all strings, less for a restricted one.
 //!
 //! Real machines err in other ways as well; this model has the merit that both reflections commute with it, so that the
 //! figures are exact for it.
@@ -43,15 +43,16 @@ pub struct NoisyPlan {
     pub work: Wide,
 }
 
-/// The chance that an iteration errs anywhere, from the errors of its gates: pairs of an error and how many gates have it.
+/// The chance that an iteration errs anywhere, from the errors of its gates: pairs of an error and how many gates have
+/// it.
 pub fn error_of_gates(gates: impl IntoIterator<Item = (f64, u64)>) -> f64 {
     let log: f64 =
         gates.into_iter().filter(|gate| gate.1 > 0).map(|(error, count)| count as f64 * (-error).ln_1p()).sum();
     -log.exp_m1()
 }
 
-/// The runs after which at least one has succeeded with this confidence, a number from 0 to 1; `None` where none ever does,
-/// or never so surely.
+/// The runs after which at least one has succeeded with this confidence, a number from 0 to 1; `None` where none ever
+/// does, or never so surely.
 pub fn runs_for(success: Wide, confidence: f64) -> Option<Wide> {
     if success.is_zero() || !(confidence < 1.0 || success >= Wide::ONE) {
         return None;
@@ -72,8 +73,8 @@ impl Noisy {
     pub fn new(space: &BigUint, marked: &BigUint, strings: &BigUint, error: f64) -> Self {
         assert!((0.0..=1.0).contains(&error) && strings >= space, "an error rate, and a space within its register");
         let peak = first_peak(space, marked);
-        // The logarithm of p_k falls with slope -mu and rises with at most 2/k, so nothing beyond 2/mu is better; where the
-        // floor shares in the success, a little beyond.
+        // The logarithm of p_k falls with slope -mu and rises with at most 2/k, so nothing beyond 2/mu is better; where
+        // the floor shares in the success, a little beyond.
         let mu = -(-error).ln_1p();
         let fade = if mu > 0.0 { 4.0 / mu + 2.0 } else { f64::INFINITY };
         let last = peak.to_u64().unwrap_or(u64::MAX >> 2).min(fade.min((u64::MAX >> 2) as f64) as u64);
@@ -124,8 +125,8 @@ impl Noisy {
 }
 
 /// The error per iteration from which on every search of at least one iteration costs more than guessing: than
-/// `guess_cost * N / M`, both costs in units of one iteration. `Some(0)` where it does even without error, `None` where it
-/// never does, or where nothing is marked.
+/// `guess_cost * N / M`, both costs in units of one iteration. `Some(0)` where it does even without error, `None` where
+/// it never does, or where nothing is marked.
 pub fn break_even(space: &BigUint, marked: &BigUint, strings: &BigUint, try_cost: f64, guess_cost: f64) -> Option<f64> {
     let share = Wide::ratio(marked, space);
     if share.is_zero() {
@@ -169,8 +170,8 @@ mod tests {
         assert!((found / wanted - 1.0).abs() < 1e-12, "{found} not {wanted}");
     }
 
-    /// N, q, noiseless k and success there, best k and success, closed form, cheapest k and its work. The model's formula
-    /// derived; values computed with 40 digits outside this program.
+    /// N, q, noiseless k and success there, best k and success, closed form, cheapest k and its work. The model's
+    /// formula derived; values computed with 40 digits outside this program.
     type Row = (u64, f64, u64, f64, u64, f64, f64, u64, f64);
     const TABLE: &[Row] = &[
         (16, 0.05, 3, 0.833124914169312, 3, 0.833124914169312, 2.50793312003556, 1, 2.21166306695464),

@@ -2,7 +2,7 @@
 //!
 //! The success `sin^2((2k + 1) theta)` is highest where `(2k + 1) theta / pi` is nearest to an odd half. At the first
 //! peak that is `k = floor(pi / (4 theta))`. Among all `k <= bound` it is a question of how near the multiples of one
-//! number come to another modulo 1; [`walk`] answers it by the steps of the continued fraction, without trying every k.
+//! number come to another modulo 1; `walk` answers it by the steps of the continued fraction, without trying every k.
 //!
 //! # References
 //! - M. Boyer, G. Brassard, P. Hoyer, A. Tapp: "Tight bounds on quantum searching", Fortschritte der Physik 46 (1998),

@@ -246,8 +246,8 @@ mod tests {
         }
     }
 
-    /// N, M, E[iterations], E[measurements], bound. Source: the rule of Boyer and others 1998, section 4; exact expected
-    /// cost of it computed with 40 digits outside this program.
+    /// N, M, E[iterations], E[measurements], bound. Source: the rule of Boyer and others 1998, section 4; exact
+    /// expected cost of it computed with 40 digits outside this program.
     const COSTS: &[(u64, u64, f64, f64, f64)] = &[
         (4, 1, 0.6, 2.2, 5.19615242270663),
         (8, 1, 1.03947757769235, 2.84707950640328, 6.80336051416609),

@@ -1,21 +1,22 @@
 //! Shallow machines: guess some bits, search the rest.
 //!
-//! Input: N, M, the most iterations that one run may have, the error of an iteration, how many machines run side by side,
-//! and the cost of a try. Output: how many bits to guess and how many iterations to run, so that the time until the first
-//! success is least.
+//! Input: N, M, the most iterations that one run may have, the error of an iteration, how many machines run side by
+//! side, and the cost of a try. Output: how many bits to guess and how many iterations to run, so that the time until
+//! the first success is least.
 //!
 //! With s bits fixed, the space falls apart into `S = 2^s` parts of N/S states. The M solutions are taken to lie in M
-//! different parts while M is at most S, one each, and evenly in all parts beyond: that is the even case; crowding makes
-//! it slower. The machines take the parts one after the other, each part once, then all again. A run succeeds with `p` in
-//! a part that has a solution, else never.
+//! different parts while M is at most S, one each, and evenly in all parts beyond: that is the even case; crowding
+//! makes it slower. The machines take the parts one after the other, each part once, then all again. A run succeeds
+//! with `p` in a part that has a solution, else never.
 //!
 //! A sweep over all S parts has j successes with the chance of a binomial; the first of j, in random places, comes at
-//! place `(S + 1) / (j + 1)` on average. So with `q = 1 - p` a sweep takes `S q^M + (S + 1) ((1 - q^{M+1}) / ((M + 1) p) - q^M)`
-//! runs on average until its success or its end, and sweeps are repeated until one succeeds (derived here).
+//! place `(S + 1) / (j + 1)` on average. So with `q = 1 - p` a sweep takes
+//! `S q^M + (S + 1) ((1 - q^{M+1}) / ((M + 1) p) - q^M)` runs on average until its success or its end, and sweeps are
+//! repeated until one succeeds (derived here).
 //!
 //! # References
-//! - C. Zalka: "Grover's quantum searching algorithm is optimal", Physical Review A 60 (1999) 2746 (introduction read): on
-//!   several machines nothing is better than splitting the space; S machines are sqrt(S) times as fast.
+//! - C. Zalka: "Grover's quantum searching algorithm is optimal", Physical Review A 60 (1999) 2746 (introduction read):
+//!   on several machines nothing is better than splitting the space; S machines are sqrt(S) times as fast.
 
 use num_bigint::BigUint;
 use num_traits::{One, Zero};
@@ -61,14 +62,32 @@ pub fn split(space: &BigUint, marked: &BigUint, bits: u64, machines: &Machines) 
     if marked.is_zero() {
         return None;
     }
-    let splits = (0..=bits.min(space.bits() - 1)).map(|guessed| best_at(space, marked, guessed, machines));
-    splits.reduce(|best, next| if next.time < best.time { next } else { best })
+    let whole = best_at(space, marked, 0, machines);
+    let reach = Noisy::new(space, marked, space, machines.error).last().min(machines.depth.unwrap_or(u64::MAX));
+    // In a part that is far beyond what a run reaches, the success goes with the share, so that guessing one bit more
+    // halves what is searched and doubles how often: the time stays the same. Parts within 2^40 of the reach are tried.
+    let near = 2 * u64::from((reach | 1).ilog2()) + 40;
+    let first = (space.bits() - marked.bits()).saturating_sub(near).max(1);
+    let mut best = whole;
+    for guessed in first..=bits.min(space.bits() - 1) {
+        let next = best_at(space, marked, guessed, machines);
+        if next.time < best.time {
+            best = next;
+        } else if next.time > best.time * Wide::new(FAR) {
+            break;
+        }
+    }
+    Some(best)
 }
+
+/// Beyond the best split the time rises with every bit; at so many times the best the rest is not tried.
+const FAR: f64 = 1024.0;
 
 /// The best k for this many guessed bits.
 fn best_at(space: &BigUint, marked: &BigUint, guessed: u64, machines: &Machines) -> Split {
     let parts = BigUint::one() << guessed;
-    // In a part that has a solution there is one, or, where there are more solutions than parts, the same share as in all.
+    // In a part that has a solution there is one, or, where there are more solutions than parts, the same share as in
+    // all.
     let (part, inside) = match *marked <= parts {
         true => ((space >> guessed).max(BigUint::one()), BigUint::one()),
         false => (space.clone(), marked.clone()),

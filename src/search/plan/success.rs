@@ -1,7 +1,7 @@
 //! The success probability after k iterations.
 //!
-//! With `sin^2 theta = M/N`, `p_k = sin^2((2k + 1) theta)`; as an exact fraction, with `a = M/N`, `s_{-1} = -1`, `s_0 = 1`
-//! and `s_{k+1} = 2 (1 - 2a) s_k - s_{k-1}`, `p_k = a s_k^2`.
+//! With `sin^2 theta = M/N`, `p_k = sin^2((2k + 1) theta)`; as an exact fraction, with `a = M/N`, `s_{-1} = -1`,
+//! `s_0 = 1` and `s_{k+1} = 2 (1 - 2a) s_k - s_{k-1}`, `p_k = a s_k^2`.
 //!
 //! # References
 //! - M. Boyer, G. Brassard, P. Hoyer, A. Tapp: "Tight bounds on quantum searching", Fortschritte der Physik 46 (1998),

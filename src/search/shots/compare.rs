@@ -1,8 +1,8 @@
 //! The hit rate against the plan: how sure it is, whether it contradicts the plan, and what noise would explain it.
 //!
 //! Input: hits and shots, and what the plan predicts. Output: the exact interval for the chance of a hit, the exact
-//! two-sided test of the prediction, and the error per iteration at which the model of [`noise`](crate::search::plan::noise)
-//! gives the measured rate. All shots must come from runs of the same circuit.
+//! two-sided test of the prediction, and the error per iteration at which the model of
+//! [`noise`](crate::search::plan::noise) gives the measured rate. All shots must come from runs of the same circuit.
 
 use num_bigint::BigUint;
 use num_traits::ToPrimitive;
@@ -105,8 +105,8 @@ mod tests {
         Predicted { low: success, high: success, iterations: iterations.into(), floor: Some(floor) }
     }
 
-    /// 1024 states, one marked: with 1% of error per iteration 25 iterations succeed with 0.777619275382571 (the model of
-    /// `plan::noise`; computed with 40 digits outside this program).
+    /// 1024 states, one marked: with 1% of error per iteration 25 iterations succeed with 0.777619275382571 (the model
+    /// of `plan::noise`; computed with 40 digits outside this program).
     #[test]
     fn the_noise_that_explains_a_rate() {
         let predicted = known(0.999461244744408, 25, 1.0 / 1024.0);
