@@ -1,3 +1,4 @@
+mod aims;
 mod auditing;
 mod command;
 mod counting;
