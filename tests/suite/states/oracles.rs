@@ -7,7 +7,7 @@ use tallymark::budget::Budget;
 use tallymark::circuit::qasm::read::read;
 use tallymark::circuit::{Circuit, Condition, Control, Op, QubitId};
 use tallymark::id::Id;
-use tallymark::judge::audit::labelled::audit_superposition;
+use tallymark::judge::audit::superposition::audit_superposition;
 use tallymark::judge::audit::{AuditError, How, Options, Outcome, Phases, Verdict};
 use tallymark::places::Places;
 use tallymark::problem::{BitLit, Problem};

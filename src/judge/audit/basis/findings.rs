@@ -7,7 +7,7 @@
 
 use crate::circuit::{Circuit, QubitId};
 use crate::id::Id;
-use crate::judge::audit::kernel::Machine;
+use crate::judge::audit::basis::kernel::Machine;
 use crate::judge::audit::oracle::{Roles, Trace, problem_bits, trace};
 use crate::judge::audit::{How, Options, Outcome, Phases, Verdict, Witness};
 use crate::judge::rows::lanes::Row;

@@ -1,11 +1,11 @@
 //! Follows a whole search gate by gate from |0...0>, in the form that fits: [`Rows`] while it holds, and a sparse
 //! state in floating point from the first gate that it does not hold.
 
-use super::search_rows::{Residue, Rows};
-use super::state::{State, Stop};
-use super::state_amplitude::{Amplitude, Complex};
+use super::entries::{Residue, Rows};
 use crate::circuit::{Circuit, Gate, Op, QubitId};
 use crate::id::Id;
+use crate::judge::audit::state::amplitude::{Amplitude, Complex};
+use crate::judge::audit::state::{State, Stop};
 use crate::random::SplitMix64;
 
 /// At most so many basis states in the general form.

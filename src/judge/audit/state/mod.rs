@@ -10,9 +10,11 @@
 //! same but for that qubit) among those of the same label, so nothing is hashed. An AND gadget opens two entries a
 //! label and closes them again.
 
+pub(in crate::judge::audit) mod amplitude;
+
 use std::f64::consts::FRAC_PI_4;
 
-use super::state_amplitude::{Amplitude, Mix, multiples};
+use self::amplitude::{Amplitude, Mix, multiples};
 use crate::circuit::{Circuit, Control, Gate, Op, QubitId};
 use crate::id::Id;
 use crate::problem::Bits;

@@ -1,9 +1,9 @@
 //! The audit of a whole search file: is it the search that the problem asks for?
 //!
 //! Input: a problem, its places, a circuit that prepares, iterates and measures. Output: a [`SearchVerdict`]. The circuit
-//! is followed gate by gate from |0...0> ([`super::search_machine`]); the solutions come from the problem alone. It must
+//! is followed gate by gate from |0...0> (`machine`); the solutions come from the problem alone. It must
 //! prepare the uniform superposition of all strings; after j iterations each amplitude must be the one that theory says
-//! ([`super::search_profile`]) up to one global phase, with every other qubit clean; and it must end by measuring
+//! (`profile`) up to one global phase, with every other qubit clean; and it must end by measuring
 //! `search[i]` into `found[i]`.
 //!
 //! One turn of a loop must be one iteration. What stands outside of loops may hold iterations too (a loop of one turn
@@ -13,12 +13,16 @@
 //! uniform superpositions of the solutions and of the rest); two followed turns say what the body does to two
 //! independent vectors of it, so if the body is unitary, it does the same in every further turn.
 
-use super::labelled_run::in_words;
-use super::search_machine::{MOST_ENTRIES, Machine, SEED};
-use super::search_profile::{Fit, Profile};
-use super::search_rows::Rows;
+mod entries;
+mod machine;
+mod profile;
+
+use self::entries::Rows;
+use self::machine::{MOST_ENTRIES, Machine, SEED};
+use self::profile::{Fit, Profile};
 use super::state::Stop;
-use super::state_amplitude::Complex;
+use super::state::amplitude::Complex;
+use super::superposition::run::in_words;
 use super::{AuditError, Outcome};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, FOUND, Gate, Op, QubitId, SEARCH};

@@ -2,12 +2,12 @@
 
 use std::f64::consts::FRAC_PI_2;
 
-use super::state::{State, Stop};
-use super::state_amplitude::{Exact, multiples};
-use super::{AuditError, Options};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Gate, Op, QubitId};
 use crate::id::Id;
+use crate::judge::audit::state::amplitude::{Exact, multiples};
+use crate::judge::audit::state::{State, Stop};
+use crate::judge::audit::{AuditError, Options};
 use crate::problem::Bits;
 use crate::random::SplitMix64;
 
@@ -200,7 +200,7 @@ fn too_fine() -> AuditError {
 }
 
 /// A gate as a message would write it.
-pub(super) fn in_words(circuit: &Circuit, gate: &Gate) -> String {
+pub(in crate::judge::audit) fn in_words(circuit: &Circuit, gate: &Gate) -> String {
     let mut text = String::new();
     for control in circuit.controls(gate) {
         text.push_str(if control.is_negated() { "negctrl @ " } else { "ctrl @ " });

@@ -2,9 +2,9 @@
 
 use rustc_hash::FxHashSet;
 
-use super::Options;
-use super::oracle::Roles;
 use crate::id::Id;
+use crate::judge::audit::Options;
+use crate::judge::audit::oracle::Roles;
 use crate::places::Places;
 use crate::problem::{Bits, Problem};
 use crate::random::SplitMix64;

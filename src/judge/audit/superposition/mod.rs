@@ -4,7 +4,7 @@
 //! inputs (of `search`, and of `mark` in a bit oracle) in which every input carries a label that no gate touches: the
 //! operator acts on one half of a maximally entangled state. The result determines the whole operator, not only what
 //! it does to basis states one by one: relative phases between inputs, and anything about the input that stays behind
-//! in an ancilla or went out through a measurement. Amplitudes are exact ([`super::state_amplitude`]).
+//! in an ancilla or went out through a measurement. Amplitudes are exact (`state::amplitude`).
 //!
 //! A measurement, and a `reset` that is not of |0>, draws its outcome and projects. After each of them every input must
 //! have kept the same weight, else the outcome says something about the input. At the end each input must have one
@@ -14,10 +14,13 @@
 //! A circuit without free outcomes is covered by one run, and one with a few by all strings of outcomes; otherwise
 //! the verdict holds for the strings drawn, and its notes say which.
 
-use super::labelled_inputs::{Input, Inputs};
-use super::labelled_run::{Draw, End, Run};
+mod inputs;
+pub(in crate::judge::audit) mod run;
+
+use self::inputs::{Input, Inputs};
+use self::run::{Draw, End, Run};
 use super::oracle::{self, Roles};
-use super::state_amplitude::{Amplitude, Exact};
+use super::state::amplitude::{Amplitude, Exact};
 use super::{AuditError, How, Options, Outcome, Phases, Verdict, Witness};
 use crate::budget::Budget;
 use crate::circuit::Circuit;

@@ -7,8 +7,8 @@ use std::collections::HashSet;
 
 use crate::budget::Budget;
 use crate::id::Id;
-use crate::judge::audit::findings::{Batch, Case, Findings};
-use crate::judge::audit::kernel::{Machine, Program};
+use crate::judge::audit::basis::findings::{Batch, Case, Findings};
+use crate::judge::audit::basis::kernel::{Machine, Program};
 use crate::judge::audit::oracle::{problem_bits, register_value};
 use crate::judge::rows::lanes::{LANES, Row};
 use crate::problem::{BitId, Bits};

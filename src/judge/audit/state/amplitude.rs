@@ -11,11 +11,11 @@
 use std::f64::consts::{FRAC_1_SQRT_2, FRAC_PI_2, FRAC_PI_4};
 
 /// An angle counts as a multiple of pi/4 where it is this close to one.
-pub(super) const ANGLE_TOLERANCE: f64 = 1e-12;
+pub(in crate::judge::audit) const ANGLE_TOLERANCE: f64 = 1e-12;
 
 /// A gate that mixes the two values of a qubit.
 #[derive(Clone, Copy, PartialEq, Debug)]
-pub(super) enum Mix {
+pub(in crate::judge::audit) enum Mix {
     /// The Hadamard gate.
     H,
     /// exp(-i angle Y / 2).
@@ -23,7 +23,7 @@ pub(super) enum Mix {
 }
 
 /// An amplitude. `None` is an amplitude or a gate that the representation does not hold.
-pub(super) trait Amplitude: Copy + std::fmt::Debug {
+pub(in crate::judge::audit) trait Amplitude: Copy + std::fmt::Debug {
     /// The amplitude of a basis state at the start.
     const ONE: Self;
     /// The amplitude of what is not there.
@@ -49,7 +49,7 @@ const BOUND: i64 = 1 << 61;
 
 /// a + b w + c w^2 + d w^3.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
-pub(super) struct Exact(pub(super) [i64; 4]);
+pub(in crate::judge::audit) struct Exact(pub(in crate::judge::audit) [i64; 4]);
 
 impl Exact {
     /// Coefficients within [`BOUND`], so that sums and negatives of two of them never overflow.
@@ -84,26 +84,26 @@ impl Exact {
     }
 
     /// The squared absolute value: x + y sqrt(2).
-    pub(super) fn norm(self) -> Option<(i128, i128)> {
+    pub(in crate::judge::audit) fn norm(self) -> Option<(i128, i128)> {
         let [a, b, c, d] = self.0.map(i128::from);
         let sum = |terms: [i128; 3], first: i128| terms.iter().try_fold(first, |sum, &term| sum.checked_add(term));
         Some((sum([b * b, c * c, d * d], a * a)?, sum([b * c, c * d, -d * a], a * b)?))
     }
 
     /// Whether it is a real number above 0.
-    pub(super) fn is_positive(self) -> bool {
+    pub(in crate::judge::audit) fn is_positive(self) -> bool {
         let [a, b, c, d] = self.0;
         c == 0 && i128::from(b) == -i128::from(d) && a as f64 + b as f64 * std::f64::consts::SQRT_2 > 0.0
     }
 
     /// Times -1.
-    pub(super) fn negated(self) -> Self {
+    pub(in crate::judge::audit) fn negated(self) -> Self {
         self.turned(4)
     }
 }
 
 /// How often the unit goes into the angle, reduced to eight, where it goes evenly.
-pub(super) fn multiples(angle: f64, unit: f64) -> Option<u8> {
+pub(in crate::judge::audit) fn multiples(angle: f64, unit: f64) -> Option<u8> {
     let times = angle / unit;
     let near = (times - times.round()).abs() * unit < ANGLE_TOLERANCE && times.abs() < 1e9;
     near.then(|| (times.round() as i64).rem_euclid(8) as u8)
@@ -166,24 +166,24 @@ impl Amplitude for Exact {
 
 /// A complex number in floating point.
 #[derive(Clone, Copy, PartialEq, Debug)]
-pub(super) struct Complex {
-    pub(super) re: f64,
-    pub(super) im: f64,
+pub(in crate::judge::audit) struct Complex {
+    pub(in crate::judge::audit) re: f64,
+    pub(in crate::judge::audit) im: f64,
 }
 
 /// Amplitudes below this are taken for nothing; comparisons allow for a thousand times more and above.
 const NOTHING: f64 = 1e-14;
 
 impl Complex {
-    pub(super) fn times(self, other: Self) -> Self {
+    pub(in crate::judge::audit) fn times(self, other: Self) -> Self {
         Self { re: self.re * other.re - self.im * other.im, im: self.re * other.im + self.im * other.re }
     }
 
-    pub(super) fn scaled(self, factor: f64) -> Self {
+    pub(in crate::judge::audit) fn scaled(self, factor: f64) -> Self {
         Self { re: self.re * factor, im: self.im * factor }
     }
 
-    pub(super) fn norm(self) -> f64 {
+    pub(in crate::judge::audit) fn norm(self) -> f64 {
         self.re * self.re + self.im * self.im
     }
 }

@@ -7,7 +7,7 @@
 //! - M. Boyer, G. Brassard, P. Hoyer, A. Tapp: _Tight bounds on quantum searching_, Fortschritte der Physik 46:493,
 //!   1998, section 3.
 
-use super::state_amplitude::Complex;
+use crate::judge::audit::state::amplitude::Complex;
 
 /// The search, as the problem says it.
 pub(super) struct Profile<'t> {

@@ -5,8 +5,8 @@
 //! where it finds the same value on every input (then its outcome tells nothing), and is a difference elsewhere.
 
 use crate::budget::Budget;
-use crate::judge::audit::findings::{Batch, Case, Findings};
-use crate::judge::audit::kernel::{Machine, Program};
+use crate::judge::audit::basis::findings::{Batch, Case, Findings};
+use crate::judge::audit::basis::kernel::{Machine, Program};
 use crate::judge::rows;
 use crate::judge::rows::in_order::{Then, in_order};
 use crate::judge::rows::lanes::{LANE_BITS, LANES, Row};
