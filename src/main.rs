@@ -1,2 +1,7 @@
-//! The command.
-fn main() {}
+//! The command `tallymark`; all of it is in [`tallymark::cli`].
+
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    tallymark::cli::main()
+}

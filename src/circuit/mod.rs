@@ -8,6 +8,7 @@
 
 pub mod figures;
 pub mod level;
+pub mod product;
 pub mod qasm;
 
 use std::num::NonZeroU32;
@@ -15,6 +16,7 @@ use std::ops::Range;
 
 pub use figures::Figures;
 pub use level::Level;
+pub use product::Product;
 
 use crate::define_id;
 use crate::id::{ConstraintId, Id, IdVec};
@@ -387,3 +389,12 @@ fn element_name(registers: &[Register], index: usize) -> String {
 
 /// Something for every qubit.
 pub type PerQubit<T> = IdVec<QubitId, T>;
+
+/// How an oracle marks.
+#[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
+pub enum Mark {
+    /// By a sign.
+    Phase,
+    /// By flipping the `mark` qubit.
+    Bit,
+}

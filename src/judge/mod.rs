@@ -6,4 +6,5 @@
 pub mod audit;
 pub mod clauses;
 pub mod count;
+mod reading;
 pub mod rows;

@@ -1,10 +1,12 @@
 //! Bit strings over the bits of a problem (or the qubits of a register): bit 0 first in memory, last in print.
 
+use std::cmp::Ordering;
+
 use crate::id::Id;
 use crate::problem::BitId;
 
 /// A string of bits. Bits above the length are zero, so equal strings are equal words.
-#[derive(Clone, PartialEq, Eq, PartialOrd, Ord, Hash, Default)]
+#[derive(Clone, PartialEq, Eq, Hash, Default)]
 pub struct Bits {
     words: Vec<u64>,
     len: usize,
@@ -88,6 +90,19 @@ impl Bits {
             }
         }
         Some(bits)
+    }
+}
+
+/// Shorter strings first, then as numbers.
+impl Ord for Bits {
+    fn cmp(&self, other: &Self) -> Ordering {
+        self.len.cmp(&other.len).then_with(|| self.words.iter().rev().cmp(other.words.iter().rev()))
+    }
+}
+
+impl PartialOrd for Bits {
+    fn partial_cmp(&self, other: &Self) -> Option<Ordering> {
+        Some(self.cmp(other))
     }
 }
 

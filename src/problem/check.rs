@@ -81,7 +81,8 @@ pub fn ranges(problem: &Problem) -> (IdVec<ExprId, Interval>, Vec<Fault>) {
     (ranges, faults)
 }
 
-fn interval(problem: &Problem, expr: Expr, ranges: &IdVec<ExprId, Interval>) -> Interval {
+/// The interval of an expression that would come next in the arena, from the intervals of those before it.
+pub fn interval(problem: &Problem, expr: Expr, ranges: &IdVec<ExprId, Interval>) -> Interval {
     let of = |id: ExprId| ranges[id];
     let each = |list: ExprList| problem.exprs.items(list).iter().map(|&id| ranges[id]);
     let constant = |value: i64| Interval { lo: value.into(), hi: value.into() };

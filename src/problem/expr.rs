@@ -196,6 +196,11 @@ impl Exprs {
         &self.tables[id]
     }
 
+    /// All tables.
+    pub fn tables(&self) -> &IdVec<TableId, Table> {
+        &self.tables
+    }
+
     /// How many nodes.
     pub fn len(&self) -> usize {
         self.nodes.len()

@@ -1,1 +1,9 @@
-//! (to be written)
+//! Results as files and text: nothing is computed here.
+
+pub mod dossier;
+pub mod explain;
+pub mod files;
+pub mod header;
+pub mod json;
+pub mod places;
+pub mod summary;

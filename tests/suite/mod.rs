@@ -1,6 +1,11 @@
+mod auditing;
+mod command;
 mod counting;
 mod dimacs;
 mod judging;
+mod known_counts;
 mod language;
 mod making;
+mod random_problem;
 mod states;
+mod walls;

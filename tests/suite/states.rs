@@ -1,1 +1,5 @@
-//! (to be written)
+//! The OpenQASM reader, and the audits in superposition.
+
+mod oracles;
+mod reader;
+mod searches;

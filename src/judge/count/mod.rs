@@ -11,6 +11,7 @@
 //! varisat leads; with one batsat does, which can be stopped.
 
 mod confirm;
+pub mod counted;
 mod list;
 mod parts;
 mod path;
@@ -19,9 +20,11 @@ mod propagate;
 mod sweep;
 pub mod tally;
 
+pub use counted::Counted;
+pub use tally::{Method, Tally};
+
 use num_bigint::BigUint;
 use num_traits::{One, Zero};
-pub use tally::{Method, Tally};
 use thiserror::Error;
 
 use crate::budget::Budget;

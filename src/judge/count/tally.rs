@@ -17,6 +17,16 @@ pub enum Method {
     SecondListing,
 }
 
+impl std::fmt::Display for Method {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.write_str(match self {
+            Method::Sweep => "sweep",
+            Method::Listing => "listing",
+            Method::SecondListing => "second listing",
+        })
+    }
+}
+
 /// A number of solutions, or the bounds that are proven.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct Tally {
@@ -38,5 +48,21 @@ impl Tally {
     /// The number, where it is known exactly.
     pub fn exact(&self) -> Option<&BigUint> {
         (self.low == self.high).then_some(&self.low)
+    }
+
+    /// `410 solutions (sweep, confirmed by listing)` or `between 12 and 4096 solutions (listing, unfinished)`.
+    pub fn in_words(&self, one: &str, many: &str) -> String {
+        let Some(count) = self.exact() else {
+            return format!("between {} and {} {many} ({}, unfinished)", self.low, self.high, self.method);
+        };
+        let noun = if count == &BigUint::from(1u32) { one } else { many };
+        let confirmed = match self.checked_by.as_slice() {
+            [] => "stands alone".to_owned(),
+            others => {
+                let names: Vec<String> = others.iter().map(Method::to_string).collect();
+                format!("confirmed by {}", names.join(" and "))
+            }
+        };
+        format!("{count} {noun} ({}, {confirmed})", self.method)
     }
 }

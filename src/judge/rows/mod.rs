@@ -1,1 +1,129 @@
-//! (to be written)
+//! Rows: the problem evaluated on 1024 inputs at a time, by the judge's own reading.
+//!
+//! [`count`] tries every bit string and counts the solutions; [`truth`] gives the whole truth table. The audit takes
+//! rows block by block. All of it is one thing: a tape of row operations, swept over the blocks of inputs in order, in
+//! which operations that depend on slowly changing bits run seldom, and blocks that a slow requirement empties are
+//! skipped together.
+
+pub(crate) mod in_order;
+pub(crate) mod lanes;
+pub(crate) mod sweep;
+pub(crate) mod tape;
+
+use std::ops::Range;
+use std::sync::atomic::{AtomicBool, Ordering};
+
+use crate::budget::Budget;
+use crate::id::Id;
+use crate::judge::reading::read;
+use crate::problem::{BitId, Bits, Problem};
+use in_order::{Then, in_order};
+use lanes::{LANE_BITS, LANES, Row, WORDS};
+use sweep::Sweep;
+use tape::Tape;
+
+/// The most bits that a sweep takes: the number of blocks must leave room in a word.
+pub const MAX_BITS: usize = 62;
+/// Blocks are handed to the threads in at most this many runs, each beginning at a multiple of its size.
+const RUNS: u64 = 256;
+/// Evaluated blocks between two looks at the budget: some milliseconds of work for large problems.
+const BLOCKS_A_LOOK: u64 = 1 << 12;
+
+/// What a sweep over all bit strings found.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct SweepCount {
+    /// How many solutions there are.
+    pub count: u64,
+    /// The first of them as numbers, bit 0 of the problem the lowest, in increasing order.
+    pub solutions: Vec<Bits>,
+    /// Whether `solutions` has all of them.
+    pub complete: bool,
+}
+
+/// The tape of a problem in which bit `searched[i]` is bit `i` of the number of an input.
+pub(crate) fn tape(problem: &Problem, searched: &[BitId]) -> Tape {
+    let mut places = vec![0; problem.bit_count()];
+    searched.iter().enumerate().for_each(|(place, bit)| places[bit.index()] = place);
+    Tape::new(problem, &read(problem), &places)
+}
+
+/// Counts the solutions by trying every bit string, keeping the first `keep` of them. `None` where the budget ran out,
+/// and for more than [`MAX_BITS`] bits.
+pub fn count(problem: &Problem, threads: usize, keep: usize, budget: &Budget) -> Option<SweepCount> {
+    let bits = problem.bit_count();
+    if bits > MAX_BITS {
+        return None;
+    }
+    let tape = tape(problem, &problem.bits().collect::<Vec<_>>());
+    let blocks = 1u64 << bits.saturating_sub(LANE_BITS);
+    let runs = RUNS.min(blocks);
+    let lanes = Row::first_lanes(LANES.min(1 << bits));
+    let (mut count, mut numbers) = (0, Vec::new());
+    let is_full = AtomicBool::new(keep == 0);
+    let work = |sweep: &mut Sweep, run| {
+        let keep = if is_full.load(Ordering::Relaxed) { 0 } else { keep };
+        let len = blocks / runs;
+        count_run(sweep, run * len..(run + 1) * len, &lanes, keep, budget)
+    };
+    let merge = |run, (solutions, found): (u64, Vec<u64>)| {
+        count += solutions;
+        numbers.extend(found.into_iter().take(keep - numbers.len()));
+        is_full.store(numbers.len() == keep, Ordering::Relaxed);
+        budget.report("sweep", run + 1, Some(runs));
+        Then::GoOn
+    };
+    let merged = in_order(threads, runs, || Sweep::new(&tape), work, merge);
+    (merged == runs).then(|| SweepCount {
+        count,
+        complete: numbers.len() as u64 == count,
+        solutions: numbers.iter().map(|&number| Bits::from_number(number.into(), bits)).collect(),
+    })
+}
+
+/// The solutions in some blocks: their number, and the first `keep` of them.
+fn count_run(
+    sweep: &mut Sweep,
+    blocks: Range<u64>,
+    lanes: &Row,
+    keep: usize,
+    budget: &Budget,
+) -> Option<(u64, Vec<u64>)> {
+    let (mut count, mut numbers) = (0, Vec::new());
+    let mut block = blocks.start;
+    let mut steps: u64 = 0;
+    while block < blocks.end {
+        if steps.is_multiple_of(BLOCKS_A_LOOK) && budget.spent() {
+            return None;
+        }
+        steps += 1;
+        let Some(row) = sweep.block(block) else {
+            block = sweep.dead_until(block);
+            continue;
+        };
+        let row = *row & *lanes;
+        count += row.count();
+        let room = keep - numbers.len();
+        numbers.extend(row.lanes().take(room).map(|lane| block * LANES + lane));
+        block += 1;
+    }
+    Some((count, numbers))
+}
+
+/// The truth table over a search register: bit `x` of the table (bit `x % 64` of word `x / 64`) says whether the value
+/// `x` of the register is a solution, bit `i` of `x` being the problem's bit `searched[i]`. Every bit of the problem is
+/// searched. The table has `2^n` bits: this is for up to some 24 of them.
+pub fn truth(problem: &Problem, searched: &[BitId]) -> Vec<u64> {
+    assert_eq!(searched.len(), problem.bit_count(), "every bit is searched");
+    let tape = tape(problem, searched);
+    let mut sweep = Sweep::new(&tape);
+    let inputs = 1u64 << searched.len();
+    let mut table = vec![0; inputs.div_ceil(64) as usize];
+    let lanes = Row::first_lanes(LANES.min(inputs));
+    for (block, words) in table.chunks_mut(WORDS).enumerate() {
+        if let Some(row) = sweep.block(block as u64) {
+            let row = *row & lanes;
+            words.copy_from_slice(&row.0[..words.len()]);
+        }
+    }
+    table
+}

@@ -1,1 +1,98 @@
-//! (to be written)
+//! Lowering: from a network to an oracle circuit.
+//!
+//! Input:  a [`Network`], a [`Level`] and a [`Mark`].
+//! Output: a [`Circuit`] with registers `search`, `mark` (bit oracles only) and `work` (where there are ancillas).
+//! After:  the circuit is the oracle of the network's root, sign included, with all ancillas clean again.
+//!
+//! 1. [`plan`] decides which nodes get an ancilla. ANDs do, except the last one of a phase oracle (and, where the level
+//!    has the gates, of a bit oracle) and, at the `wide` level, those that one other AND uses. XORs get one only where a
+//!    long one is used several times; a XOR that alone uses an AND takes over that AND's ancilla.
+//! 2. [`steps`] computes the planned nodes in order: a XOR under an AND is collected on one of its own qubits by CNOTs
+//!    and put back afterwards ([`conjugation`]). Then it marks, and the compute steps are undone in reverse order.
+//! 3. [`emit`] writes the steps with the gates of the level: at `clifford-t` an AND and its inverse cost 4 T each, at
+//!    `feedback` the inverse is a measurement and a correction and costs none (C. Gidney, "Halving the cost of quantum
+//!    addition", Quantum 2:74, 2018).
+
+mod conjugation;
+mod emit;
+mod plan;
+mod reflection;
+mod steps;
+
+use thiserror::Error;
+
+use crate::budget::Budget;
+use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part};
+use crate::diag::{Code, Diagnostic};
+use crate::make::network::{Lit, Network};
+
+pub use reflection::{append_reflection, reflection_work};
+
+/// What kind of oracle is wanted.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Options {
+    /// The gate set.
+    pub level: Level,
+    /// Whether the oracle flips a sign or a qubit.
+    pub mark: Mark,
+}
+
+/// Why there is no circuit.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Error)]
+pub enum LowerError {
+    /// The problem has no bits.
+    #[error("there are no bits to search")]
+    NoBits,
+    /// The constraints contradict each other, and folding constants shows it.
+    #[error("no assignment satisfies the constraints: the oracle would mark nothing")]
+    NothingMarked,
+    /// The constraints always hold, and folding constants shows it.
+    #[error("every assignment satisfies the constraints: the oracle would mark everything")]
+    EverythingMarked,
+    /// The budget ran out; half an oracle is of no use.
+    #[error("the time for compiling ran out")]
+    OutOfTime,
+}
+
+impl LowerError {
+    /// The message with its stable code.
+    pub fn diagnostic(&self) -> Diagnostic {
+        let (code, help) = match self {
+            Self::NoBits => ("C001", "every variable has one value only: `count` says whether the constraints hold"),
+            Self::NothingMarked => ("C002", "there is nothing to search for; `count` gives the tally, which is 0"),
+            Self::EverythingMarked => ("C003", "any assignment is a solution: nothing has to be searched"),
+            Self::OutOfTime => ("C004", "give more time with --time"),
+        };
+        Diagnostic::error(Code(code), self.to_string()).help(help)
+    }
+}
+
+/// The oracle of a network.
+pub fn lower(network: &Network, options: &Options, budget: &Budget) -> Result<Circuit, LowerError> {
+    if network.searched().is_empty() {
+        return Err(LowerError::NoBits);
+    }
+    match network.root() {
+        Lit::NO => return Err(LowerError::NothingMarked),
+        Lit::YES => return Err(LowerError::EverythingMarked),
+        _ => {}
+    }
+    let plan = plan::plan(network, options);
+    let steps = steps::steps(&plan, options, budget)?;
+    emit::emit(&plan, &steps, options, budget)
+}
+
+/// The ANDs that an oracle computes or marks, those it undoes not included, measured on the gates of the network's
+/// `toffoli` oracle: an X or a Z with *c* controls stands for *c* - 1 of them. So a CZ, which marks an AND of two
+/// without computing it, is none, and four times this number is the T count at `feedback`.
+///
+/// The gates of `clifford-t` and `feedback` no longer show which of them make up an AND, so all levels are measured here.
+pub fn and_count(network: &Network, mark: Mark, budget: &Budget) -> Result<u64, LowerError> {
+    let oracle = lower(network, &Options { level: Level::Toffoli, mark }, budget)?;
+    let ands = |gate: &Gate| match gate.op() {
+        Op::X | Op::Z => gate.control_count().saturating_sub(1) as u64,
+        _ => 0,
+    };
+    let counted = oracle.regions.iter().filter(|region| matches!(region.part, Part::Compute | Part::Mark));
+    Ok(counted.flat_map(|r| &oracle.gates()[r.gates.start as usize..r.gates.end as usize]).map(ands).sum())
+}

@@ -1,0 +1,184 @@
+//! What can be wrong with an OpenQASM text, as data with stable codes, and how each becomes a diagnostic.
+
+use thiserror::Error;
+
+use super::ast::Place;
+use crate::diag::{Code, Diagnostic, plural};
+use crate::span::{FileId, Span};
+
+/// A mistake.
+#[derive(Clone, PartialEq, Debug, Error)]
+pub(crate) enum Fault {
+    #[error("unexpected {found}")]
+    Unexpected { found: String, expected: Vec<String> },
+    #[error("the text ends in the middle of a statement")]
+    UnexpectedEnd { expected: Vec<String> },
+    #[error("this character does not belong to the language: {0:?}")]
+    Unreadable(char),
+    #[error("this comment is not closed")]
+    OpenComment,
+    #[error("this text is not closed on its line")]
+    OpenText,
+    #[error("`{0}` statements are not supported")]
+    UnknownStatement(String),
+    #[error("this is OpenQASM {0}, the reader knows version 3")]
+    Version(String),
+    #[error("the version must be the first statement")]
+    LateVersion,
+    #[error("this file cannot be included: {0}")]
+    Include(String),
+    #[error("`{0}` is not declared")]
+    Undeclared(String),
+    #[error("`{name}` is declared twice")]
+    Redeclared { name: String, first: Option<Place> },
+    #[error("no gate is called `{0}`")]
+    UnknownGate(String),
+    #[error("`{0}` is defined in stdgates.inc, which is not included")]
+    NotIncluded(String),
+    #[error("the gate `{0}` is not supported")]
+    UnsupportedGate(String),
+    #[error("`{gate}` acts on {}, not on {found}", plural(*wanted, "qubit", "qubits"))]
+    Operands { gate: String, wanted: usize, found: usize },
+    #[error("`{gate}` takes {}, not {found}", plural(*wanted, "angle", "angles"))]
+    Arguments { gate: String, wanted: usize, found: usize },
+    #[error("index {index} is outside `{register}`, which has {}", plural(*len as usize, "element", "elements"))]
+    OutsideRegister { register: String, index: i64, len: u32 },
+    #[error("{0} is used twice in one gate")]
+    Repeated(String),
+    #[error("operands of {0} and {1} elements do not fit together")]
+    Lengths(u32, u32),
+    #[error("`{name}` is a register of {found}, a {wanted} is expected here")]
+    WrongRegister { name: String, found: &'static str, wanted: &'static str },
+    #[error("a register has a constant size of at least 1, this one has {0}")]
+    Size(String),
+    #[error("too large: {what}, at most {most}")]
+    Limit { what: &'static str, most: u64 },
+    #[error("this number does not fit 64 bits")]
+    NumberTooLarge,
+    #[error("division by zero")]
+    DivisionByZero,
+    #[error("a quotient of two integers that is not one")]
+    Quotient,
+    #[error("an integer is expected here")]
+    NotWhole,
+    #[error("this is not a finite number")]
+    NotFinite,
+    #[error("the number of controls is a constant of at least 1")]
+    ControlCount,
+    #[error("`negctrl` with a number of controls is read in two ways")]
+    NegctrlCount,
+    #[error("`pow` is not supported")]
+    Pow,
+    #[error("a bit is 0 or 1")]
+    NotABitValue,
+    #[error("a condition is one bit, `{0}` has several")]
+    WideTest(String),
+    #[error("{0} is tested before it is measured")]
+    NotMeasured(String),
+    #[error("a condition inside a condition is not supported")]
+    NestedTest,
+    #[error("{0} is measured while a condition on it is in force")]
+    TestChanged(String),
+    #[error("a measurement without a bit to write")]
+    Unwritten,
+    #[error("the step of a range is 0")]
+    ZeroStep,
+    #[error("this range is empty")]
+    EmptyRange,
+    #[error("registers are declared outside of all brackets")]
+    InnerDeclaration,
+    #[error("brackets nested too deep")]
+    TooDeep,
+    #[error("too many mistakes, the rest is not shown")]
+    TooMany,
+}
+
+impl Fault {
+    fn code(&self) -> Code {
+        Code(match self {
+            Fault::Unexpected { .. } | Fault::UnexpectedEnd { .. } => "Q001",
+            Fault::Unreadable(_) | Fault::OpenComment | Fault::OpenText => "Q002",
+            Fault::UnknownStatement(_) => "Q003",
+            Fault::Version(_) | Fault::LateVersion => "Q004",
+            Fault::Include(_) => "Q005",
+            Fault::Undeclared(_) => "Q006",
+            Fault::Redeclared { .. } => "Q007",
+            Fault::UnknownGate(_) => "Q008",
+            Fault::NotIncluded(_) => "Q009",
+            Fault::UnsupportedGate(_) => "Q010",
+            Fault::Operands { .. } => "Q011",
+            Fault::Arguments { .. } => "Q012",
+            Fault::OutsideRegister { .. } => "Q013",
+            Fault::Repeated(_) => "Q014",
+            Fault::Lengths(..) => "Q015",
+            Fault::WrongRegister { .. } => "Q016",
+            Fault::Size(_) => "Q017",
+            Fault::Limit { .. } => "Q018",
+            Fault::NumberTooLarge | Fault::DivisionByZero | Fault::Quotient | Fault::NotWhole | Fault::NotFinite => {
+                "Q019"
+            }
+            Fault::ControlCount | Fault::NegctrlCount | Fault::Pow => "Q020",
+            Fault::NotABitValue | Fault::WideTest(_) | Fault::NestedTest | Fault::TestChanged(_) => "Q021",
+            Fault::NotMeasured(_) => "Q022",
+            Fault::Unwritten => "Q023",
+            Fault::ZeroStep | Fault::EmptyRange => "Q024",
+            Fault::InnerDeclaration => "Q025",
+            Fault::TooDeep => "Q026",
+            Fault::TooMany => "Q027",
+        })
+    }
+
+    fn help(&self) -> Option<String> {
+        let text = match self {
+            Fault::Unexpected { expected, .. } if expected.iter().any(|token| token == "`;`") => {
+                "perhaps a `;` is missing before it"
+            }
+            Fault::Unexpected { found, .. } if found.starts_with("`if`") || found.starts_with("`for`") => {
+                "put it in `{` and `}`"
+            }
+            Fault::LateVersion => "move it to the top, and keep one only",
+            Fault::Include(_) => "only stdgates.inc is known",
+            Fault::NotIncluded(_) => "add `include \"stdgates.inc\";` after the version",
+            Fault::Undeclared(_) => "declare it before its first use: `qubit[4] q;` or `bit[4] c;`",
+            Fault::Quotient => "readers differ on whether it is rounded: write one of them with a point, as in `1.0/2`",
+            Fault::NegctrlCount => "write `negctrl @` once for each control",
+            Fault::WideTest(_) => "name one element, as in `c[0]`",
+            Fault::NestedTest => "a gate may depend on one measured bit",
+            Fault::Unwritten => "write `c[0] = measure q[0];`",
+            Fault::Repeated(_) => "a gate needs distinct qubits",
+            _ => return None,
+        };
+        Some(text.to_owned())
+    }
+
+    /// The diagnostic for this mistake at this place.
+    pub(super) fn to_diagnostic(&self, file: FileId, place: Place) -> Diagnostic {
+        let span = |place: Place| Span { file, lo: place.lo, hi: place.hi };
+        let mut diagnostic = Diagnostic::error(self.code(), self.to_string()).at(span(place), "");
+        match self {
+            Fault::Unexpected { found, expected } => {
+                diagnostic = diagnostic.found(found.clone()).expected(alternatives(expected));
+            }
+            Fault::UnexpectedEnd { expected } => {
+                diagnostic = diagnostic.found("the end of the text").expected(alternatives(expected));
+            }
+            Fault::Redeclared { first: Some(first), .. } => {
+                diagnostic = diagnostic.at(span(*first), "first declared here")
+            }
+            _ => {}
+        }
+        match self.help() {
+            Some(help) => diagnostic.help(help),
+            None => diagnostic,
+        }
+    }
+}
+
+/// `a`, `a or b`, `a, b or c`.
+fn alternatives(items: &[String]) -> String {
+    match items {
+        [] => "nothing more".to_owned(),
+        [one] => one.clone(),
+        [most @ .., last] => format!("{} or {last}", most.join(", ")),
+    }
+}

@@ -1,0 +1,148 @@
+//! `tallymark compile FILE`: the oracle, or with `--whole` the search circuit.
+
+use std::path::{Path, PathBuf};
+
+use clap::Args;
+use num_bigint::BigUint;
+use num_traits::Zero;
+
+use crate::budget::Budget;
+use crate::circuit::{Level, Mark, Product, qasm};
+use crate::cli::exit::Exit;
+use crate::cli::render::Failure;
+use crate::cli::{Global, Outcome, input, plan, progress};
+use crate::diag::{Code, Diagnostic};
+use crate::judge::count::Counted;
+use crate::pipeline::{self, Settings};
+use crate::places::Places;
+use crate::report::header::header;
+use crate::report::places::places_json;
+use crate::report::{files, json, summary};
+use crate::source::Loaded;
+use crate::span::Sources;
+
+#[derive(Args)]
+pub(super) struct Options {
+    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    file: String,
+    /// The gate set: wide, toffoli, clifford-t or feedback
+    #[arg(long, default_value = "toffoli", value_parser = input::level)]
+    level: Level,
+    /// How the oracle marks: phase or bit
+    #[arg(long, default_value = "phase", value_parser = input::mark)]
+    mark: Mark,
+    /// The whole search: prepare, iterate, measure
+    #[arg(long)]
+    whole: bool,
+    /// With --whole: plan for this many marked states instead of counting them
+    #[arg(long, value_name = "NUMBER", requires = "whole", value_parser = plan::number)]
+    count: Option<BigUint>,
+    /// Where the circuit goes; - is standard output. The places file is written beside it [default: -]
+    #[arg(short, long, value_name = "FILE")]
+    output: Option<String>,
+}
+
+pub(super) fn run(global: &Global, options: &Options) -> Outcome {
+    let (loaded, sources) = input::load(global, &options.file)?;
+    input::refuse_empty(&loaded, &sources)?;
+    if options.whole && options.mark == Mark::Bit {
+        return Err(Failure::usage(whole_needs_phase()));
+    }
+    let (budget, line) = progress::budget(global);
+    let settings = input::settings(global, options.level, options.mark);
+    let places = Places::as_given(&loaded.problem);
+    let stage = |error| Failure::stage(&error, &sources);
+    let mut product = pipeline::oracle(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+    let mut counted = None;
+    if options.whole {
+        let iterations;
+        (iterations, counted) = iterations_for(&loaded, &places, settings, options, &budget, &sources)?;
+        product = pipeline::whole_search(&product, &iterations).map_err(stage)?;
+    }
+    drop(line);
+    let header = header(&loaded, &places, &product, counted.as_ref());
+    let figures = summary::circuit(&product);
+    match options.output.as_deref() {
+        None if global.json => {}
+        None | Some("-") if global.json => return Err(Failure::usage(one_output())),
+        None | Some("-") => {
+            let mut text = Vec::new();
+            qasm::write::write(&product.circuit, &header, &mut text).expect("memory takes everything");
+            return Ok((Exit::Done, String::from_utf8(text).expect("OpenQASM is text")));
+        }
+        Some(path) => write(Path::new(path), &loaded, &places, &product, &header)
+            .map_err(|error| Failure::stage(&error.into(), &sources))?,
+    }
+    if !global.json {
+        return Ok((Exit::Done, figures));
+    }
+    let mut object = json::envelope("compile", &loaded, &sources, false);
+    object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem));
+    object.insert("circuit".to_owned(), json::circuit_json(&product));
+    object.insert("file".to_owned(), options.output.clone().into());
+    Ok((Exit::Done, json::print(object)))
+}
+
+fn write(
+    path: &Path,
+    loaded: &Loaded,
+    places: &Places,
+    product: &Product,
+    header: &[String],
+) -> Result<(), files::WriteError> {
+    files::write_whole(path, |mut out| qasm::write::write(&product.circuit, header, &mut out))?;
+    pipeline::write_json(&places_path(path), &places_json(loaded, places))
+}
+
+/// `S.places.json` beside `S.qasm`.
+pub(super) fn places_path(circuit: &Path) -> PathBuf {
+    circuit.with_extension("places.json")
+}
+
+fn iterations_for(
+    loaded: &Loaded,
+    places: &Places,
+    settings: Settings,
+    options: &Options,
+    budget: &Budget,
+    sources: &Sources,
+) -> Result<(BigUint, Option<Counted>), Box<Failure>> {
+    let space = Counted::space(places);
+    let (marked, counted) = if let Some(marked) = &options.count {
+        (Some(marked.clone()), None)
+    } else {
+        let counted = pipeline::count(&loaded.problem, places, settings, budget)
+            .map_err(|error| Failure::stage(&error, sources))?;
+        (counted.marked().cloned(), Some(counted))
+    };
+    match marked {
+        Some(marked) if !marked.is_zero() && marked < space => {
+            Ok((crate::search::plan(&space, &marked).iterations, counted))
+        }
+        Some(_) => Err(Failure::usage(nothing_to_find())),
+        None => Err(Failure::unfinished(unknown_count(), sources)),
+    }
+}
+
+fn whole_needs_phase() -> Diagnostic {
+    Diagnostic::error(Code("U003"), "a whole search is built on a phase oracle")
+        .found("--whole --mark bit")
+        .expected("--whole with --mark phase")
+}
+
+fn one_output() -> Diagnostic {
+    Diagnostic::error(Code("U004"), "the circuit and the JSON object cannot share standard output")
+        .found("--json -o -")
+        .expected("-o with the name of a file")
+}
+
+fn nothing_to_find() -> Diagnostic {
+    Diagnostic::error(Code("C091"), "no state or every state is marked, so a search finds nothing new")
+        .expected("at least one marked and one unmarked state")
+        .help("`tallymark plan` says more; compile without --whole gives the oracle")
+}
+
+fn unknown_count() -> Diagnostic {
+    Diagnostic::error(Code("C092"), "the number of marked states is not known, so no iteration count follows")
+        .help("allow more time with --time, or give the number with --count")
+}

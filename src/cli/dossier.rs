@@ -1,0 +1,100 @@
+//! `tallymark dossier FILE`: the main job.
+
+use std::path::{Path, PathBuf};
+
+use clap::Args;
+
+use crate::circuit::{Level, Mark};
+use crate::cli::exit::Exit;
+use crate::cli::render::Failure;
+use crate::cli::{Global, Outcome, input, progress};
+use crate::judge::audit::Outcome as Found;
+use crate::pipeline;
+use crate::places::Places;
+use crate::report::dossier::Dossier;
+use crate::report::{files, json, summary};
+use crate::source::Loaded;
+use crate::span::Sources;
+
+#[derive(Args)]
+pub(super) struct Options {
+    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    file: String,
+    /// The gate set of the circuits: wide, toffoli, clifford-t or feedback
+    #[arg(long, default_value = "toffoli", value_parser = input::level)]
+    level: Level,
+    /// How the oracle marks: phase or bit; the search always has a phase oracle
+    #[arg(long, default_value = "phase", value_parser = input::mark)]
+    mark: Mark,
+    /// The folder to write [default: out/NAME]
+    #[arg(short, long, value_name = "DIR")]
+    output: Option<PathBuf>,
+}
+
+pub(super) fn run(global: &Global, options: &Options) -> Outcome {
+    let (loaded, sources) = input::load(global, &options.file)?;
+    let folder = options.output.clone().unwrap_or_else(|| Path::new("out").join(name(&options.file)));
+    let (budget, line) = progress::budget(global);
+    let settings = input::settings(global, options.level, options.mark);
+    let places = Places::as_given(&loaded.problem);
+    let dossier = pipeline::dossier(&loaded, &places, &folder, settings, &budget)
+        .map_err(|error| Failure::stage(&error, &sources))?;
+    drop(line);
+    let exit = exit_of(&dossier);
+    let report = report(&loaded, &sources, &dossier, exit);
+    let text = summary::dossier(&loaded, &dossier, &folder);
+    write(&folder, &report, &text).map_err(|error| Failure::stage(&error.into(), &sources))?;
+    Ok((exit, if global.json { format!("{report:#}\n") } else { text }))
+}
+
+fn write(folder: &Path, report: &serde_json::Value, text: &str) -> Result<(), files::WriteError> {
+    pipeline::write_json(&folder.join("report.json"), report)?;
+    files::write_whole(&folder.join("summary.txt"), |out| out.write_all(text.as_bytes()))
+}
+
+/// The name of the problem without its folder and endings: `buoy-payload`.
+fn name(file: &str) -> String {
+    let base = Path::new(file).file_name().map_or_else(|| "stdin".into(), |name| name.to_string_lossy());
+    let stem = base.split('.').find(|part| !part.is_empty()).unwrap_or("problem");
+    if stem == "-" { "stdin".to_owned() } else { stem.to_owned() }
+}
+
+/// A circuit of our own that differs is a fault of ours, not an answer.
+fn exit_of(dossier: &Dossier) -> Exit {
+    let oracle = dossier.oracle.as_ref().ok().map(|judged| judged.verdict.outcome);
+    let search = dossier.search.as_ref().map(|judged| judged.verdict.outcome);
+    if [oracle, search].contains(&Some(Found::Differs)) {
+        Exit::Fault
+    } else if oracle == Some(Found::Undecided) || dossier.counted.is_partial() {
+        Exit::Unfinished
+    } else {
+        Exit::Done
+    }
+}
+
+fn report(loaded: &Loaded, sources: &Sources, dossier: &Dossier, exit: Exit) -> serde_json::Value {
+    let mut object = json::envelope("dossier", loaded, sources, exit == Exit::Unfinished);
+    let mut put = |key: &str, value: serde_json::Value| object.insert(key.to_owned(), value);
+    let oracle = dossier.oracle.as_ref().ok();
+    put("tally", json::tally_json(&dossier.counted));
+    put("narrowing", json::narrowing_json(&loaded.problem));
+    put("circuit", oracle.map(|judged| json::circuit_json(&judged.product)).into());
+    put("audit", oracle.map(|judged| json::audit_json(&loaded.problem, &judged.verdict)).into());
+    put("levels", dossier.levels.iter().map(json::circuit_json).collect());
+    put("plan", dossier.plan.as_ref().map(json::plan_json).into());
+    put(
+        "search",
+        dossier.search.as_ref().map(|judged| json::search_product_json(&judged.product, &judged.verdict)).into(),
+    );
+    put("advice", serde_json::to_value(&dossier.advice).expect("plain data"));
+    object.into()
+}
+
+#[cfg(test)]
+mod tests {
+    #[test]
+    fn folders_are_named_after_problems() {
+        let names = ["problems/buoy-payload.tally", "a/b.cnf.gz", "-", "..", ".tally"].map(super::name);
+        assert_eq!(names, ["buoy-payload", "b", "stdin", "stdin", "tally"]);
+    }
+}

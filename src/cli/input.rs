@@ -1,0 +1,58 @@
+//! What every command begins with: the problem, the places, the settings.
+
+use crate::circuit::{Level, Mark};
+use crate::cli::Global;
+use crate::cli::render::{Failure, show};
+use crate::diag::{Code, Diagnostic};
+use crate::pipeline::Settings;
+use crate::source::{self, Loaded};
+use crate::span::Sources;
+
+/// Reads the problem; warnings go to standard error unless JSON carries them.
+pub(super) fn load(global: &Global, file: &str) -> Result<(Loaded, Sources), Box<Failure>> {
+    let mut sources = Sources::new();
+    match source::load(file, &global.set, &mut sources) {
+        Ok(loaded) => {
+            if !global.json {
+                show(&loaded.warnings, &sources);
+            }
+            Ok((loaded, sources))
+        }
+        Err(diagnostics) => Err(Failure::input(diagnostics, &sources)),
+    }
+}
+
+/// The settings that the options give.
+pub(super) fn settings(global: &Global, level: Level, mark: Mark) -> Settings {
+    let machine = || std::thread::available_parallelism().map_or(1, usize::from);
+    Settings { level, mark, seed: global.seed, threads: global.threads.map_or_else(machine, usize::from) }
+}
+
+/// The level of this name.
+pub(super) fn level(name: &str) -> Result<Level, String> {
+    Level::ALL.into_iter().find(|level| level.name() == name).ok_or_else(|| {
+        let names: Vec<_> = Level::ALL.iter().map(|level| level.name()).collect();
+        format!("expected one of {}", names.join(", "))
+    })
+}
+
+/// The way of marking of this name.
+pub(super) fn mark(name: &str) -> Result<Mark, String> {
+    match name {
+        "phase" => Ok(Mark::Phase),
+        "bit" => Ok(Mark::Bit),
+        _ => Err("expected phase or bit".to_owned()),
+    }
+}
+
+/// A circuit over no bits is not written.
+pub(super) fn refuse_empty(loaded: &Loaded, sources: &Sources) -> Result<(), Box<Failure>> {
+    if loaded.problem.bit_count() > 0 {
+        return Ok(());
+    }
+    let diagnostic = Diagnostic::error(Code("C001"), "the problem has no bits, so there is nothing to search")
+        .in_file(&loaded.file)
+        .expected("a problem with something to choose")
+        .help("`tallymark count` and `tallymark plan` answer for it");
+    Err(Failure::input(vec![diagnostic], sources))
+}

@@ -1,0 +1,56 @@
+//! The tally together with the start state it is searched from: N and M as the plan needs them.
+
+use num_bigint::BigUint;
+use num_traits::One;
+
+use crate::judge::count::Tally;
+use crate::places::{Claim, Places, Start};
+
+/// How many solutions, how many states, and how many of these are marked.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Counted {
+    /// The solutions, on the shown bits where the problem shows only some.
+    pub tally: Tally,
+    /// The marked states, where they are not the solutions one for one.
+    pub states: Option<Tally>,
+    /// N: the states of the start state.
+    pub space: BigUint,
+}
+
+impl Counted {
+    /// N of these places.
+    pub fn space(places: &Places) -> BigUint {
+        match places.start {
+            Start::AllStrings => BigUint::one() << places.search_len(),
+        }
+    }
+
+    /// Whether the states have to be counted apart from the solutions.
+    pub fn needs_states(places: &Places) -> bool {
+        places.claim == Claim::ManyForOne
+    }
+
+    /// The tally of the marked states.
+    pub fn marks(&self) -> &Tally {
+        self.states.as_ref().unwrap_or(&self.tally)
+    }
+
+    /// M, where it is known exactly.
+    pub fn marked(&self) -> Option<&BigUint> {
+        self.marks().exact()
+    }
+
+    /// Whether the budget ran out before both numbers were known.
+    pub fn is_partial(&self) -> bool {
+        self.tally.exact().is_none() || self.marked().is_none()
+    }
+
+    /// `410 solutions (sweep, confirmed by listing)`, and the marked states where they differ.
+    pub fn in_words(&self) -> String {
+        let mut text = self.tally.in_words("solution", "solutions");
+        if let Some(states) = &self.states {
+            text += &format!("; {} among {} states", states.in_words("marked state", "marked states"), self.space);
+        }
+        text
+    }
+}

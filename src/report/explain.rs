@@ -1,0 +1,191 @@
+//! How a problem was read: its variables with their bits, its constraints with their places and ranges.
+
+use std::fmt::Write;
+
+use comfy_table::{Table, presets};
+use serde_json::{Value, json};
+
+use crate::diag::plural;
+use crate::id::{Id, IdVec};
+use crate::problem::check::{Interval, ranges};
+use crate::problem::{Compare, Expr, ExprId, Origin, Problem, Type};
+use crate::report::places::domain;
+use crate::source::Loaded;
+use crate::span::Sources;
+
+/// The reading of a problem.
+#[derive(Debug)]
+pub struct Reading {
+    /// The variables, as many as were asked for.
+    pub variables: Vec<VariableLine>,
+    /// The constraints, as many as were asked for.
+    pub constraints: Vec<ConstraintLine>,
+    /// The objective.
+    pub objective: Option<ConstraintLine>,
+    /// How many bits are shown, where not all are.
+    pub shown: Option<usize>,
+}
+
+/// A variable.
+#[derive(Debug)]
+pub struct VariableLine {
+    name: String,
+    domain: String,
+    first_bit: usize,
+    width: u8,
+}
+
+/// A constraint, or the objective.
+#[derive(Debug)]
+pub struct ConstraintLine {
+    number: String,
+    line: Option<usize>,
+    text: String,
+    bindings: String,
+    ranges: String,
+}
+
+/// Reads at most `most` variables and as many constraints.
+pub fn reading(problem: &Problem, sources: &Sources, most: usize) -> Reading {
+    let variables = problem.vars().iter().take(most).map(|(id, var)| VariableLine {
+        name: problem.var_name(id),
+        domain: domain(problem, var.domain),
+        first_bit: var.first_bit.index(),
+        width: var.width,
+    });
+    let (ranges, _) = ranges(problem);
+    let types = problem.types();
+    let expressions = problem.constraints.iter().enumerate().map(|(at, constraint)| {
+        constraint_line(problem, sources, (&ranges, &types), at.to_string(), &constraint.origin, constraint.expr)
+    });
+    let first = problem.constraints.len();
+    let clauses = problem.clauses.iter().enumerate().map(|(at, clause)| ConstraintLine {
+        number: (first + at).to_string(),
+        line: None,
+        text: clause.iter().map(|lit| lit.to_dimacs().to_string()).collect::<Vec<_>>().join(" "),
+        bindings: String::new(),
+        ranges: String::new(),
+    });
+    let objective = problem.objective.as_ref().map(|objective| {
+        let origin = Origin { span: objective.span, bindings: Vec::new() };
+        constraint_line(problem, sources, (&ranges, &types), "objective".to_owned(), &origin, objective.expr)
+    });
+    Reading {
+        variables: variables.collect(),
+        constraints: expressions.chain(clauses).take(most).collect(),
+        objective,
+        shown: problem.shown.as_ref().map(Vec::len),
+    }
+}
+
+fn constraint_line(
+    problem: &Problem,
+    sources: &Sources,
+    (ranges, types): (&IdVec<ExprId, Interval>, &IdVec<ExprId, Type>),
+    number: String,
+    origin: &Origin,
+    expr: ExprId,
+) -> ConstraintLine {
+    let text = origin.span.map_or("", |span| sources.text(span));
+    let bindings: Vec<String> = origin.bindings.iter().map(|(name, value)| format!("{name} = {value}")).collect();
+    ConstraintLine {
+        number,
+        line: origin.span.map(|span| sources.position(span).line),
+        text: text.split_whitespace().collect::<Vec<_>>().join(" "),
+        bindings: bindings.join(", "),
+        ranges: ranges_of(problem, ranges, types, expr),
+    }
+}
+
+/// The ranges of the two sides of a comparison, or of a number.
+fn ranges_of(
+    problem: &Problem,
+    ranges: &IdVec<ExprId, Interval>,
+    types: &IdVec<ExprId, Type>,
+    expr: ExprId,
+) -> String {
+    let range = |id: ExprId| {
+        let Interval { lo, hi } = ranges[id];
+        if lo == hi { lo.to_string() } else { format!("{lo} to {hi}") }
+    };
+    match problem.exprs.get(expr) {
+        Expr::Compare(compare, a, b) => {
+            let sign = match compare {
+                Compare::Eq => "=",
+                Compare::Ne => "!=",
+                Compare::Lt => "<",
+                Compare::Le => "<=",
+            };
+            format!("{} {sign} {}", range(a), range(b))
+        }
+        _ if types[expr] == Type::Number => range(expr),
+        _ => String::new(),
+    }
+}
+
+impl VariableLine {
+    /// As data.
+    pub fn json(&self) -> Value {
+        json!({ "name": self.name, "domain": self.domain, "first_bit": self.first_bit, "bits": self.width })
+    }
+
+    fn bits(&self) -> String {
+        match self.width {
+            0 => "-".to_owned(),
+            1 => self.first_bit.to_string(),
+            width => format!("{}..{}", self.first_bit, self.first_bit + usize::from(width) - 1),
+        }
+    }
+}
+
+impl ConstraintLine {
+    /// As data.
+    pub fn json(&self) -> Value {
+        json!({
+            "number": self.number,
+            "line": self.line,
+            "text": self.text,
+            "bindings": self.bindings,
+            "ranges": self.ranges,
+        })
+    }
+}
+
+/// The reading as text.
+pub fn text(loaded: &Loaded, reading: &Reading) -> String {
+    let problem = &loaded.problem;
+    let mut text = String::new();
+    if let Some(title) = &problem.title {
+        _ = writeln!(text, "{title}");
+    }
+    _ = writeln!(text, "\n{}", count_line(problem.vars().len(), reading.variables.len(), "variable", "variables"));
+    let mut variables = table(["name", "values", "bits"]);
+    for variable in &reading.variables {
+        variables.add_row([&variable.name, &variable.domain, &variable.bits()]);
+    }
+    _ = writeln!(text, "{}", variables.trim_fmt());
+    if let Some(shown) = reading.shown {
+        _ = writeln!(text, "\n{} of {} shown", plural(shown, "bit is", "bits are"), problem.bit_count());
+    }
+    let total = problem.constraint_count();
+    _ = writeln!(text, "\n{}", count_line(total, reading.constraints.len(), "constraint", "constraints"));
+    let mut constraints = table(["number", "line", "text", "for", "ranges"]);
+    for line in reading.constraints.iter().chain(&reading.objective) {
+        let place = line.line.map_or_else(String::new, |line| line.to_string());
+        constraints.add_row([&line.number, &place, &line.text, &line.bindings, &line.ranges]);
+    }
+    _ = writeln!(text, "{}", constraints.trim_fmt());
+    text
+}
+
+fn count_line(total: usize, listed: usize, one: &str, many: &str) -> String {
+    let all = plural(total, one, many);
+    if listed < total { format!("{all}, the first {listed} of them:") } else { format!("{all}:") }
+}
+
+fn table<const N: usize>(header: [&str; N]) -> Table {
+    let mut table = Table::new();
+    table.load_style(presets::NOTHING);
+    table.set_header(header);
+    table
+}

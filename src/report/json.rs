@@ -1,0 +1,190 @@
+//! The JSON contract: every object has `schema`, `command`, `problem`, `warnings` and `partial`; numbers that may be
+//! beyond 2^53 are strings.
+
+use num_bigint::BigUint;
+use serde_json::{Map, Value, json};
+
+use crate::circuit::{self, Circuit, Level, Mark, Product};
+use crate::diag::Diagnostic;
+use crate::judge::audit::{SearchVerdict, Verdict, Witness};
+use crate::judge::count::Counted;
+use crate::problem::{Bits, Problem};
+use crate::search::Plan;
+use crate::source::{Format, Loaded};
+use crate::span::Sources;
+
+/// The version of the shape of these objects.
+pub const SCHEMA: u32 = 1;
+
+/// The object that every command starts from.
+pub fn envelope(command: &str, loaded: &Loaded, sources: &Sources, partial: bool) -> Map<String, Value> {
+    let warnings: Vec<Value> = loaded.warnings.iter().map(|warning| diagnostic_json(warning, sources)).collect();
+    let value = json!({
+        "schema": SCHEMA,
+        "command": command,
+        "problem": problem_json(loaded),
+        "warnings": warnings,
+        "partial": partial,
+    });
+    match value {
+        Value::Object(map) => map,
+        _ => unreachable!("an object literal"),
+    }
+}
+
+/// `problem`.
+pub fn problem_json(loaded: &Loaded) -> Value {
+    json!({
+        "title": loaded.problem.title,
+        "file": loaded.file,
+        "format": match loaded.format { Format::Tally => "tally", Format::Dimacs => "dimacs" },
+        "sha256": loaded.sha256,
+        "bits": loaded.problem.bit_count(),
+        "constraints": loaded.problem.constraint_count(),
+    })
+}
+
+/// An error or a warning as data.
+pub fn diagnostic_json(diagnostic: &Diagnostic, sources: &Sources) -> Value {
+    let position = diagnostic.span().map(|span| sources.position(span));
+    let file = diagnostic.span().map(|span| sources.file(span.file).name.to_string()).or(diagnostic.file.clone());
+    json!({
+        "code": diagnostic.code.0,
+        "message": diagnostic.message,
+        "file": file,
+        "line": position.map(|p| p.line),
+        "column": position.map(|p| p.column),
+        "found": diagnostic.found,
+        "expected": diagnostic.expected,
+        "help": diagnostic.help,
+    })
+}
+
+/// `tally`. `space` and `marked` are those of the start state; `marked` is null where it is not known.
+pub fn tally_json(counted: &Counted) -> Value {
+    let tally = &counted.tally;
+    json!({
+        "count": tally.exact().map(BigUint::to_string),
+        "exact": tally.exact().is_some(),
+        "low": tally.low.to_string(),
+        "high": tally.high.to_string(),
+        "confidence": 1.0,
+        "method": tally.method,
+        "checked_by": tally.checked_by,
+        "space": counted.space.to_string(),
+        "marked": counted.marked().map(BigUint::to_string),
+    })
+}
+
+/// `narrowing`.
+pub fn narrowing_json(problem: &Problem) -> Value {
+    let bits = problem.bit_count();
+    json!({ "bits_before": bits, "bits_after": bits, "computed": [] })
+}
+
+/// `circuit`.
+pub fn circuit_json(product: &Product) -> Value {
+    let figures = &product.figures;
+    let has_t = product.level >= Level::CliffordT;
+    json!({
+        "level": product.level.name(),
+        "mark": mark_name(product.mark),
+        "qubits": figures.qubits,
+        "search": register_len(&product.circuit, circuit::SEARCH),
+        "work": register_len(&product.circuit, circuit::WORK),
+        "and_count": product.and_count,
+        "t_count": has_t.then_some(figures.t_count),
+        "t_depth": has_t.then_some(figures.t_depth),
+        "cx_count": figures.cx_count,
+        "depth": figures.depth,
+        "gates": figures.gates,
+        "rotations": figures.rotations,
+        "measurements": figures.measurements,
+    })
+}
+
+/// `phase` or `bit`.
+pub fn mark_name(mark: Mark) -> &'static str {
+    match mark {
+        Mark::Phase => "phase",
+        Mark::Bit => "bit",
+    }
+}
+
+fn register_len(circuit: &Circuit, name: &str) -> usize {
+    circuit.register(name).len()
+}
+
+/// `audit`.
+pub fn audit_json(problem: &Problem, verdict: &Verdict) -> Value {
+    json!({
+        "verdict": verdict.outcome,
+        "how": verdict.how,
+        "inputs": verdict.inputs.to_string(),
+        "work_clean": verdict.work_clean,
+        "phases": verdict.phases,
+        "witness": verdict.witness.as_ref().map(|witness| witness_json(problem, witness)),
+        "notes": verdict.notes,
+    })
+}
+
+fn witness_json(problem: &Problem, witness: &Witness) -> Value {
+    json!({
+        "bits": witness.bits.to_string(),
+        "values": values_json(problem, &witness.bits),
+        "expected": witness.expected,
+        "got": witness.got,
+    })
+}
+
+/// Values by the names of their variables; null where a code lies outside its domain.
+fn values_json(problem: &Problem, bits: &Bits) -> Option<Map<String, Value>> {
+    let values = problem.decode(bits)?;
+    let named = problem
+        .vars()
+        .iter()
+        .zip(values)
+        .map(|((id, var), value)| (problem.var_name(id), Value::String(problem.value_name(var.domain, value))));
+    Some(named.collect())
+}
+
+/// The verdict on a whole search circuit.
+pub fn search_json(verdict: &SearchVerdict) -> Value {
+    json!({
+        "verdict": verdict.outcome,
+        "iterations": verdict.iterations.to_string(),
+        "iterations_checked": verdict.iterations_checked.to_string(),
+        "success": verdict.success,
+        "deviation": verdict.deviation,
+        "notes": verdict.notes,
+    })
+}
+
+/// `plan`.
+pub fn plan_json(plan: &Plan) -> Value {
+    json!({
+        "aim": plan.aim,
+        "iterations": plan.iterations.to_string(),
+        "success": plan.success,
+        "success_low": plan.success,
+        "success_high": plan.success,
+        "success_exact": plan.success_exact.as_ref().map(|(n, d)| format!("{n}/{d}")),
+        "expected_oracle_calls": plan.expected_oracle_calls.map(|calls| calls.to_string()),
+        "advice": plan.advice,
+    })
+}
+
+/// A whole search: its circuit and the verdict on it.
+pub fn search_product_json(product: &Product, verdict: &SearchVerdict) -> Value {
+    json!({ "circuit": circuit_json(product), "audit": search_json(verdict) })
+}
+
+/// A solution as values by name.
+pub fn solution_json(problem: &Problem, bits: &Bits) -> Value {
+    json!({ "bits": bits.to_string(), "values": values_json(problem, bits) })
+}
+
+/// The object as text.
+pub fn print(object: Map<String, Value>) -> String {
+    format!("{:#}\n", Value::Object(object))
+}

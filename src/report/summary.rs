@@ -1,0 +1,187 @@
+//! Results as text for people: what a command prints and what `summary.txt` holds.
+
+use std::fmt::Write;
+use std::path::Path;
+
+use comfy_table::{CellAlignment, Table, presets};
+
+use crate::circuit::{Level, Product};
+use crate::judge::audit::{How, Outcome, Phases, SearchVerdict, Verdict};
+use crate::judge::count::Counted;
+use crate::problem::{Bits, Problem};
+use crate::report::dossier::Dossier;
+use crate::report::header::CAUTION;
+use crate::report::json::mark_name;
+use crate::search::{Advice, Plan};
+use crate::source::Loaded;
+
+/// The first lines: title, file, size.
+fn head(loaded: &Loaded) -> String {
+    let problem = &loaded.problem;
+    let title = problem.title.as_ref().map_or_else(String::new, |title| format!("{title}\n"));
+    let sizes = [
+        (problem.vars().len(), "variable", "variables"),
+        (problem.bit_count(), "bit", "bits"),
+        (problem.constraint_count(), "constraint", "constraints"),
+    ];
+    let sizes = sizes.map(|(number, one, many)| crate::diag::plural(number, one, many));
+    format!("{title}{}: {}\n", loaded.file, sizes.join(", "))
+}
+
+/// One `name   value` line of a summary.
+fn line(name: &str, value: impl std::fmt::Display) -> String {
+    format!("{name:<12}{value}\n")
+}
+
+/// The tally.
+pub fn count(loaded: &Loaded, counted: &Counted, listed: &[&Bits]) -> String {
+    let mut text = head(loaded) + &tally_lines(counted);
+    if !listed.is_empty() {
+        text.push('\n');
+    }
+    for bits in listed {
+        _ = writeln!(text, "{}  {}", bits, values(&loaded.problem, bits));
+    }
+    text
+}
+
+fn tally_lines(counted: &Counted) -> String {
+    let mut text = line("tally", counted.tally.in_words("solution", "solutions"));
+    if let Some(states) = &counted.states {
+        text += &line("marked", states.in_words("marked state", "marked states"));
+    }
+    text + &line("space", format!("{} states", counted.space))
+}
+
+/// A solution in the problem's own terms.
+fn values(problem: &Problem, bits: &Bits) -> String {
+    let Some(values) = problem.decode(bits) else {
+        return "(a code outside its domain)".to_owned();
+    };
+    let named = problem.vars().iter().zip(values);
+    let all: Vec<String> = named
+        .map(|((id, var), value)| format!("{}={}", problem.var_name(id), problem.value_name(var.domain, value)))
+        .collect();
+    all.join(" ")
+}
+
+/// What a circuit is and costs.
+pub fn circuit(product: &Product) -> String {
+    let what = if product.is_search() { "search" } else { "oracle" };
+    format!("{} {what} at level {}\n{}", mark_name(product.mark), product.level, cost_table([product]))
+}
+
+/// A table of costs, one circuit a row.
+fn cost_table<'a>(products: impl IntoIterator<Item = &'a Product>) -> String {
+    let mut table = Table::new();
+    table.load_style(presets::NOTHING);
+    table.set_header(["level", "qubits", "ANDs", "T", "T-depth", "CX", "depth", "gates"]);
+    for product in products {
+        let figures = &product.figures;
+        let has_t = product.level >= Level::CliffordT;
+        let t = |number: u64| if has_t { number.to_string() } else { "-".to_owned() };
+        table.add_row([
+            product.level.to_string(),
+            figures.qubits.to_string(),
+            product.and_count.to_string(),
+            t(figures.t_count),
+            t(figures.t_depth),
+            figures.cx_count.to_string(),
+            figures.depth.to_string(),
+            figures.gates.to_string(),
+        ]);
+    }
+    for column in table.column_iter_mut().skip(1) {
+        column.set_cell_alignment(CellAlignment::Right);
+    }
+    table.trim_fmt() + "\n"
+}
+
+/// The verdict on an oracle.
+pub fn verdict(problem: &Problem, verdict: &Verdict) -> String {
+    let how = match verdict.how {
+        How::Exhaustive => "every input, gate by gate",
+        How::Superposition => "every input in superposition, measurement outcomes drawn",
+        How::Sample => "known solutions, their neighbours, and drawn inputs",
+    };
+    let outcome = match verdict.outcome {
+        Outcome::Equal => "equal",
+        Outcome::Differs => "DIFFERS",
+        Outcome::Undecided => "undecided: no difference found",
+    };
+    let mut text = line("audit", format!("{outcome} ({how}; {} inputs)", verdict.inputs));
+    if verdict.phases == Phases::Complement {
+        text += &line("", "the complement is marked, which is a global sign");
+    }
+    if let Some(witness) = &verdict.witness {
+        text += &line("witness", values(problem, &witness.bits));
+        text += &line("expected", &witness.expected);
+        text += &line("got", &witness.got);
+    }
+    for note in &verdict.notes {
+        text += &line("", note);
+    }
+    text
+}
+
+/// The verdict on a whole search.
+pub fn search_verdict(verdict: &SearchVerdict) -> String {
+    let outcome = match verdict.outcome {
+        Outcome::Equal => "equal",
+        Outcome::Differs => "DIFFERS",
+        Outcome::Undecided => "no difference found",
+    };
+    let share = format!("{} of {} iterations simulated", verdict.iterations_checked, verdict.iterations);
+    let mut text = line("search", format!("{outcome} ({share}, success {:.9})", verdict.success));
+    for note in &verdict.notes {
+        text += &line("", note);
+    }
+    text
+}
+
+/// The plan, or why there is none.
+pub fn plan(loaded: &Loaded, plan: Option<&Plan>, advice: &[Advice]) -> String {
+    head(loaded) + &plan_lines(plan) + &advice_lines(advice)
+}
+
+fn plan_lines(plan: Option<&Plan>) -> String {
+    let Some(plan) = plan else {
+        return line("plan", "none: the number of marked states is not known");
+    };
+    let exact = plan.success_exact.as_ref().map_or_else(String::new, |(n, d)| format!(" = {n}/{d}"));
+    let mut text = line("marked", format!("{} of {} states", plan.marked, plan.space));
+    text += &line("iterations", &plan.iterations);
+    text += &line("success", format!("{:.9}{exact}", plan.success));
+    if let Some(calls) = plan.expected_oracle_calls {
+        text += &line("calls", format!("{calls:.3} oracle calls on average, when failures are repeated"));
+    }
+    text
+}
+
+fn advice_lines(advice: &[Advice]) -> String {
+    advice.iter().map(|advice| line("advice", format!("{} [{}]", advice.text, advice.code))).collect()
+}
+
+/// The summary of the main job.
+pub fn dossier(loaded: &Loaded, dossier: &Dossier, folder: &Path) -> String {
+    let mut text = head(loaded) + &tally_lines(&dossier.counted);
+    match &dossier.oracle {
+        Ok(judged) => {
+            let figures = &judged.product.figures;
+            let mark = mark_name(judged.product.mark);
+            text += &line("oracle", format!("{mark}, level {}, {} qubits", judged.product.level, figures.qubits));
+            text += &verdict(&loaded.problem, &judged.verdict);
+        }
+        Err(advice) => text += &line("oracle", format!("none: {}", advice.text)),
+    }
+    text += &plan_lines(dossier.plan.as_ref());
+    if let Some(judged) = &dossier.search {
+        text += &search_verdict(&judged.verdict);
+    }
+    text += &advice_lines(&dossier.advice);
+    if !dossier.levels.is_empty() {
+        _ = write!(text, "\nThe oracle at every level\n{}", cost_table(&dossier.levels));
+    }
+    _ = write!(text, "\n{CAUTION}\nWritten to {}\n", folder.display());
+    text
+}

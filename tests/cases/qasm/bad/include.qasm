@@ -1,0 +1,4 @@
+OPENQASM 3.0;
+include "stdgates.inc";
+>>>include "mygates.inc";<<< // Q005
+qubit q;

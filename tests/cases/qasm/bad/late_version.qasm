@@ -1,0 +1,2 @@
+qubit q;
+>>>OPENQASM 3.0;<<< // Q004

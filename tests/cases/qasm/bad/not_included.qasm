@@ -1,0 +1,4 @@
+OPENQASM 3.0;
+qubit q;
+>>>h<<< q; // Q009
+x q;

@@ -1,0 +1,2 @@
+>>>OPENQASM 2.0;<<< // Q004
+qubit q;

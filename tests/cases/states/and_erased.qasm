@@ -1,0 +1,14 @@
+// The 4-T AND and its 0-T erase (gate list: Gidney, "Halving the cost of quantum addition", Quantum 2:74, 2018, as
+// checked by matrix for this project), both outcomes, in superposition.
+//! bits 2
+//! clause 1
+//! clause 2
+//! expect equal
+//! note complete: all 2 strings of measurement outcomes
+OPENQASM 3.0;
+include "stdgates.inc";
+qubit[2] search; qubit[1] work; bit[1] outcome;
+reset work;
+h work[0]; t work[0]; cx search[0], work[0]; cx search[1], work[0]; cx work[0], search[0]; cx work[0], search[1]; tdg search[0]; tdg search[1]; t work[0]; cx work[0], search[0]; cx work[0], search[1]; h work[0]; s work[0];
+z work[0];
+h work[0]; outcome[0] = measure work[0]; if (outcome[0]) { cz search[0], search[1]; } reset work[0];

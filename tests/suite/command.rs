@@ -1,0 +1,317 @@
+//! The command line as its user meets it: outputs, the JSON contract, exit codes, files.
+
+use std::path::{Path, PathBuf};
+use std::process::{Command, Output, Stdio};
+
+use serde_json::Value;
+
+/// A folder to work in, and the command run inside it.
+struct Desk {
+    folder: tempfile::TempDir,
+}
+
+impl Desk {
+    fn new() -> Self {
+        Self { folder: tempfile::tempdir().unwrap() }
+    }
+
+    fn file(&self, name: &str, text: &str) -> PathBuf {
+        let path = self.folder.path().join(name);
+        std::fs::write(&path, text).unwrap();
+        path
+    }
+
+    fn path(&self, name: &str) -> PathBuf {
+        self.folder.path().join(name)
+    }
+
+    fn run(&self, arguments: &[&str]) -> Output {
+        let mut command = Command::new(env!("CARGO_BIN_EXE_tallymark"));
+        command.args(arguments).current_dir(self.folder.path()).stdin(Stdio::null()).output().unwrap()
+    }
+
+    /// Runs with `--json` and gives the exit code and the object.
+    fn json(&self, arguments: &[&str]) -> (i32, Value) {
+        let output = self.run(&[arguments, &["--json"]].concat());
+        let text = String::from_utf8(output.stdout).unwrap();
+        let value = serde_json::from_str(&text).unwrap_or_else(|error| panic!("{arguments:?}: {error}\n{text}"));
+        (output.status.code().unwrap(), value)
+    }
+
+    fn exit(&self, arguments: &[&str]) -> i32 {
+        self.run(arguments).status.code().unwrap()
+    }
+
+    fn text(&self, arguments: &[&str]) -> String {
+        String::from_utf8(self.run(arguments).stdout).unwrap()
+    }
+}
+
+/// Four bits, three of the sixteen strings are solutions.
+const PUZZLE: &str = "title \"Four switches\"\n\
+    pick a\npick b\npick n in 0 to 3\n\
+    must a != b\nmust n = 3 or (n = 2 and a)\n";
+
+fn problem(name: &str) -> String {
+    Path::new(env!("CARGO_MANIFEST_DIR")).join("problems").join(name).display().to_string()
+}
+
+#[test]
+fn the_dossier_of_a_demo() {
+    let desk = Desk::new();
+    let (exit, report) = desk.json(&["dossier", &problem("buoy-payload.tally"), "-o", "folder"]);
+    assert_eq!(exit, 0, "{report:#}");
+    // The count is that of the puzzle as published with it: exhaustive search and a second model agree on 49 of 2^13.
+    assert_eq!(report["tally"]["count"], "49");
+    assert_eq!(report["tally"]["space"], "8192");
+    assert_eq!(report["tally"]["marked"], "49");
+    assert!(!report["tally"]["checked_by"].as_array().unwrap().is_empty());
+    assert_eq!(report["audit"]["verdict"], "equal");
+    assert_eq!(report["audit"]["how"], "exhaustive");
+    assert_eq!(report["audit"]["inputs"], "8192");
+    assert_eq!(report["search"]["audit"]["verdict"], "equal");
+    assert_eq!(report["plan"]["iterations"], "10");
+    for name in ["oracle.qasm", "search.qasm", "places.json", "report.json", "summary.txt"] {
+        assert!(desk.path("folder").join(name).exists(), "{name}");
+    }
+    let written: Value = serde_json::from_slice(&std::fs::read(desk.path("folder/report.json")).unwrap()).unwrap();
+    assert_eq!(written, report);
+    let summary = std::fs::read_to_string(desk.path("folder/summary.txt")).unwrap();
+    assert!(summary.contains("49 solutions") && summary.contains("equal"), "{summary}");
+}
+
+#[test]
+fn the_default_folder_is_named_after_the_problem() {
+    let desk = Desk::new();
+    desk.file("switches.tally", PUZZLE);
+    assert_eq!(desk.exit(&["dossier", "switches.tally"]), 0);
+    assert!(desk.path("out/switches/oracle.qasm").exists());
+}
+
+#[test]
+fn every_object_follows_the_contract() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    desk.exit(&["compile", "p.tally", "-o", "p.qasm"]);
+    let commands: [&[&str]; 6] = [
+        &["count", "p.tally"],
+        &["compile", "p.tally"],
+        &["plan", "p.tally"],
+        &["explain", "p.tally"],
+        &["audit", "p.tally", "p.qasm"],
+        &["dossier", "p.tally"],
+    ];
+    for command in commands {
+        let (exit, object) = desk.json(command);
+        assert_eq!(exit, 0, "{command:?}");
+        assert_eq!(object["schema"], 1);
+        assert_eq!(object["command"], command[0]);
+        assert_eq!(object["problem"]["title"], "Four switches");
+        assert_eq!(object["problem"]["bits"], 4);
+        assert_eq!(object["problem"]["format"], "tally");
+        assert_eq!(object["problem"]["sha256"].as_str().unwrap().len(), 64);
+        assert!(object["warnings"].is_array() && object["partial"] == false);
+    }
+}
+
+#[test]
+fn counts_are_answers_also_when_they_are_zero() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    desk.file("none.cnf", "p cnf 2 3\n1 2 0\n-1 0\n-2 0\n");
+    let (exit, object) = desk.json(&["count", "p.tally", "--list", "9"]);
+    assert_eq!((exit, &object["tally"]["count"]), (0, &"3".into()));
+    assert_eq!(object["solutions"].as_array().unwrap().len(), 3);
+    assert_eq!(object["solutions"][0]["values"]["a"], "yes");
+    assert_eq!(object["solutions"][0]["values"]["n"], "2");
+    let (exit, object) = desk.json(&["count", "none.cnf"]);
+    assert_eq!((exit, &object["tally"]["count"]), (0, &"0".into()));
+    let (exit, object) = desk.json(&["dossier", "none.cnf"]);
+    assert_eq!(exit, 0, "{object:#}");
+    assert_eq!(object["search"], Value::Null);
+    let codes: Vec<&str> = object["advice"].as_array().unwrap().iter().map(|a| a["code"].as_str().unwrap()).collect();
+    assert!(codes.contains(&"no-solution") && codes.contains(&"already-decided"), "{codes:?}");
+}
+
+#[test]
+fn a_setting_replaces_a_known() {
+    let desk = Desk::new();
+    desk.file("k.tally", "known most = 1\npick a[i in 1 to 4]\nmust at most most of [a[i] for i in 1 to 4]\n");
+    assert_eq!(desk.json(&["count", "k.tally"]).1["tally"]["count"], "5");
+    assert_eq!(desk.json(&["count", "k.tally", "--set", "most=2"]).1["tally"]["count"], "11");
+    let (exit, object) = desk.json(&["count", "k.tally", "--set", "least=2"]);
+    assert_eq!(exit, 2, "{object:#}");
+    assert_eq!(desk.exit(&["count", "k.tally", "--set", "most"]), 2);
+}
+
+#[test]
+fn a_circuit_that_differs_is_an_answer_of_no() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    assert_eq!(desk.exit(&["compile", "p.tally", "-o", "p.qasm"]), 0);
+    assert_eq!(desk.exit(&["audit", "p.tally", "p.qasm"]), 0);
+    let good = std::fs::read_to_string(desk.path("p.qasm")).unwrap();
+    desk.file("p.qasm", &format!("{good}z search[0];\n"));
+    let (exit, object) = desk.json(&["audit", "p.tally", "p.qasm"]);
+    assert_eq!(exit, 1);
+    assert_eq!(object["audit"]["verdict"], "differs");
+    assert!(object["audit"]["witness"]["values"]["a"].is_string(), "{object:#}");
+}
+
+#[test]
+fn every_level_form_and_whole_search_is_judged_equal() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    for level in ["wide", "toffoli", "clifford-t", "feedback"] {
+        for form in [&["--mark", "phase"][..], &["--mark", "bit"], &["--whole"]] {
+            let compile = [&["compile", "p.tally", "--level", level, "-o", "c.qasm"], form].concat();
+            assert_eq!(desk.exit(&compile), 0, "{compile:?}");
+            let (exit, object) = desk.json(&["audit", "p.tally", "c.qasm"]);
+            assert_eq!((exit, &object["audit"]["verdict"]), (0, &"equal".into()), "{compile:?} {object:#}");
+        }
+    }
+}
+
+#[test]
+fn a_whole_search_with_one_gate_changed_differs() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    assert_eq!(desk.exit(&["compile", "p.tally", "--whole", "-o", "s.qasm"]), 0);
+    let good = std::fs::read_to_string(desk.path("s.qasm")).unwrap();
+    let gates: Vec<usize> = good
+        .lines()
+        .enumerate()
+        .filter(|(_, line)| {
+            let line = line.trim();
+            ["h ", "x ", "cx ", "ccx ", "z ", "cz "].iter().any(|gate| line.starts_with(gate))
+        })
+        .map(|(at, _)| at)
+        .collect();
+    assert!(gates.len() > 20, "{good}");
+    for &dropped in &gates {
+        let bad: String =
+            good.lines().enumerate().filter(|(at, _)| *at != dropped).map(|(_, line)| format!("{line}\n")).collect();
+        desk.file("s.qasm", &bad);
+        let (exit, object) = desk.json(&["audit", "p.tally", "s.qasm"]);
+        assert_eq!(exit, 1, "without line {}: {object:#}", dropped + 1);
+    }
+}
+
+#[test]
+fn bad_input_is_an_error_with_a_place() {
+    let desk = Desk::new();
+    desk.file("bad.cnf", "p cnf 2 1\n1 x 0\n");
+    desk.file("bad.tally", "pick a\nmust a <= bb\n");
+    for (file, line, column) in [("bad.cnf", 2, 3), ("bad.tally", 2, 11)] {
+        let (exit, object) = desk.json(&["count", file]);
+        let error = &object["error"];
+        assert_eq!(exit, 2);
+        assert_eq!((&error["file"], &error["line"], &error["column"]), (&file.into(), &line.into(), &column.into()));
+        assert!(error["code"].is_string() && error["expected"].is_string(), "{object:#}");
+        let output = desk.run(&["count", file]);
+        assert!(output.stdout.is_empty());
+        assert!(String::from_utf8(output.stderr).unwrap().contains(&format!("{file}:{line}:{column}")));
+    }
+    let (exit, object) = desk.json(&["count", "missing.cnf"]);
+    assert_eq!((exit, &object["error"]["file"]), (2, &"missing.cnf".into()));
+}
+
+#[test]
+fn bad_usage() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    desk.file("empty.cnf", "p cnf 0 0\n");
+    for arguments in [
+        &["frobnicate"][..],
+        &["count"],
+        &["count", "p.tally", "--time", "soon"],
+        &["compile", "p.tally", "--level", "deep"],
+        &["compile", "p.tally", "--whole", "--mark", "bit"],
+        &["compile", "p.tally", "--json", "-o", "-"],
+        &["plan", "p.tally", "--count", "17"],
+        &["compile", "empty.cnf"],
+        &["audit", "p.tally", "p.tally"],
+    ] {
+        assert_eq!(desk.exit(arguments), 2, "{arguments:?}");
+        let (exit, object) = desk.json(arguments);
+        assert_eq!(exit, 2, "{arguments:?}");
+        assert!(object["error"]["code"].is_string(), "{arguments:?} {object:#}");
+    }
+}
+
+#[test]
+fn a_problem_without_bits_is_counted_and_planned() {
+    let desk = Desk::new();
+    desk.file("empty.cnf", "p cnf 0 0\n");
+    assert_eq!(desk.json(&["count", "empty.cnf"]).1["tally"]["count"], "1");
+    let (exit, object) = desk.json(&["plan", "empty.cnf"]);
+    assert_eq!((exit, &object["plan"]["iterations"]), (0, &"0".into()));
+    assert!(object["advice"].to_string().contains("nothing-to-search"));
+    let (exit, object) = desk.json(&["dossier", "empty.cnf"]);
+    assert_eq!((exit, &object["circuit"]), (0, &Value::Null), "{object:#}");
+}
+
+#[test]
+fn a_plan_for_a_given_number() {
+    let desk = Desk::new();
+    desk.file("free.cnf", "p cnf 10 0\n");
+    let (exit, object) = desk.json(&["plan", "free.cnf", "--count", "1"]);
+    // Boyer, Brassard, Hoyer, Tapp 1998, section 3: N = 1024, M = 1.
+    assert_eq!((exit, &object["plan"]["iterations"]), (0, &"25".into()));
+    assert!((object["plan"]["success"].as_f64().unwrap() - 0.999461244744408).abs() < 1e-14);
+}
+
+#[test]
+fn time_that_runs_out_gives_what_was_reached() {
+    let desk = Desk::new();
+    let clauses: String = (1..60).map(|v| format!("{v} {} {} 0\n", v + 1, v + 2)).collect();
+    desk.file("large.cnf", &format!("p cnf 61 59\n{clauses}"));
+    let (exit, object) = desk.json(&["count", "large.cnf", "--time", "0.2"]);
+    assert_eq!(exit, 3, "{object:#}");
+    assert_eq!((&object["partial"], &object["tally"]["count"]), (&true.into(), &Value::Null));
+    assert_eq!(object["tally"]["exact"], false);
+    let (exit, object) = desk.json(&["plan", "large.cnf", "--time", "0.2"]);
+    assert_eq!((exit, &object["plan"]), (3, &Value::Null));
+    assert!(object["advice"].to_string().contains("marked-unknown"));
+}
+
+#[test]
+fn hidden_bits_that_are_searched_are_said_to_be() {
+    let desk = Desk::new();
+    // One-sided: x3 may be anything where x1 holds. Shown on 1 and 2: three solutions; over all bits: five.
+    desk.file("shown.cnf", "p cnf 3 2\nc p show 1 2 0\n1 2 0\n1 3 0\n");
+    let (exit, object) = desk.json(&["dossier", "shown.cnf"]);
+    assert_eq!(exit, 0, "{object:#}");
+    assert_eq!(object["tally"]["count"], "3");
+    assert_eq!(object["tally"]["marked"], "5");
+    assert_eq!(object["plan"]["success"], 0.625);
+    assert!(object["advice"].to_string().contains("hidden-bits-searched"));
+}
+
+#[test]
+fn the_same_input_gives_the_same_bytes() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    for arguments in [&["compile", "p.tally", "--whole", "--level", "feedback"][..], &["explain", "p.tally"]] {
+        assert_eq!(desk.text(arguments), desk.text(arguments));
+    }
+}
+
+#[test]
+fn places_beside_the_circuit_are_used_and_others_refused() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    desk.file("q.tally", "pick a\nmust a\n");
+    assert_eq!(desk.exit(&["compile", "p.tally", "-o", "p.qasm"]), 0);
+    // The places file of p does not fit q.
+    assert_eq!(desk.exit(&["audit", "q.tally", "p.qasm"]), 2);
+    std::fs::remove_file(desk.path("p.places.json")).unwrap();
+    assert_eq!(desk.exit(&["audit", "p.tally", "p.qasm"]), 0, "sizes match: bit i is search[i]");
+    let (exit, object) = desk.json(&["audit", "q.tally", "p.qasm"]);
+    assert_eq!((exit, &object["error"]["code"]), (2, &"P003".into()));
+    // A permuted register map is another circuit.
+    let (circuit, places) = (std::fs::read_to_string(desk.path("p.qasm")).unwrap(), "searched\":[3,1,2,0]}");
+    desk.file("p.qasm", &circuit);
+    desk.file("p.places.json", &format!("{{\"start\":\"all-strings\",\"claim\":\"one-for-one\",\"{places}"));
+    assert_eq!(desk.exit(&["audit", "p.tally", "p.qasm"]), 1);
+}
