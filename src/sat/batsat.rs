@@ -26,7 +26,7 @@ impl Callbacks for Watch {
     fn stop(&self) -> bool {
         let calls = self.calls.get().wrapping_add(1);
         self.calls.set(calls);
-        if calls % CALLS_A_LOOK == 0 && self.budget.spent() {
+        if calls.is_multiple_of(CALLS_A_LOOK) && self.budget.spent() {
             self.stopped.set(true);
         }
         self.stopped.get()

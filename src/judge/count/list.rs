@@ -26,6 +26,8 @@ use crate::sat::{Answer, Engine, Lit};
 const BLOCKED: usize = 2000;
 /// Literals in all blocking clauses together.
 const BLOCKED_LITERALS: usize = 1 << 21;
+/// An assumption costs as much as so many variables assigned: it is a decision with a propagation of its own.
+const ASSUMED: usize = 4;
 /// Solutions between two reports of progress.
 const REPORTED: u64 = 1 << 10;
 
@@ -176,7 +178,7 @@ impl<'a, E: Engine> Lister<'a, E> {
     /// Lists depth first.
     fn search(&mut self) -> Result<Listing, WrongModel> {
         let mut path = Path::new(self.part, self.plan.search);
-        let mut answer = self.call(&path.assumed());
+        let mut answer = self.call(path.assumed());
         loop {
             if answer == Answer::Sat {
                 path.descend(self.part, &self.engine)?;
@@ -188,7 +190,7 @@ impl<'a, E: Engine> Lister<'a, E> {
             match path.flip_next(stops) {
                 Flip::None => return Ok(std::mem::take(&mut self.listing)),
                 Flip::Left => break,
-                Flip::Possible => answer = self.call(&path.assumed()),
+                Flip::Possible => answer = self.call(path.assumed()),
                 Flip::Impossible => {
                     self.left.work = self.left.work.saturating_sub(1);
                     answer = Answer::Unsat;
@@ -206,7 +208,7 @@ impl<'a, E: Engine> Lister<'a, E> {
     fn call(&mut self, assumptions: &[Lit]) -> Answer {
         let answer = self.engine.solve(assumptions, self.budget);
         let assigned = if answer == Answer::Sat { self.part.vars.len() } else { 0 };
-        self.left.work = self.left.work.saturating_sub((1 + assumptions.len() + assigned) as u64);
+        self.left.work = self.left.work.saturating_sub((1 + ASSUMED * assumptions.len() + assigned) as u64);
         answer
     }
 
@@ -216,7 +218,7 @@ impl<'a, E: Engine> Lister<'a, E> {
         if self.listing.kept.len() < self.plan.keep {
             self.listing.kept.push((0..self.part.bit_count).map(|var| self.engine.value(var)).collect());
         }
-        if self.listing.found % REPORTED == 0 {
+        if self.listing.found.is_multiple_of(REPORTED) {
             self.budget.report("listing solutions", self.listing.found, None);
         }
     }

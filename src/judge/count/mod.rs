@@ -6,7 +6,7 @@
 //!         evaluator; anything else is a [`Fault`] of this program.
 //!
 //! Small problems are swept: every bit string is tried. The others, and the small ones again, go to the solvers: the
-//! clauses fall into [`parts`] without common variables, the solutions of each part are [`list`]ed one by one, and the
+//! clauses fall into `parts` without common variables, the solutions of each part are `list`ed one by one, and the
 //! numbers multiply. Up to [`CONFIRMED`] listed solutions, the other engine lists them again. Without a deadline
 //! varisat leads; with one batsat does, which can be stopped.
 
@@ -42,7 +42,7 @@ pub const LISTED_WORK: u64 = 1 << 28;
 /// Listed solutions up to which the second engine lists them again.
 pub const CONFIRMED: u64 = 100_000;
 /// Work that the second engine does at most where no deadline is set, in the same units.
-pub const CONFIRMED_WORK: u64 = 1 << 26;
+pub const CONFIRMED_WORK: u64 = 1 << 28;
 /// Size of the kept solutions (times the size of the problem) up to which the evaluator checks them all.
 const EVALUATED_WORK: usize = 1 << 28;
 

@@ -107,12 +107,7 @@ impl Propagator {
             let watched = index(!lit);
             let mut list = std::mem::take(&mut self.watches[watched]);
             let mut consistent = true;
-            list.retain(|&clause| {
-                !consistent || {
-                    let stays = self.visit(clause as usize, !lit, &mut consistent);
-                    stays
-                }
-            });
+            list.retain(|&clause| !consistent || self.visit(clause as usize, !lit, &mut consistent));
             self.watches[watched].append(&mut list);
             if !consistent {
                 return false;
