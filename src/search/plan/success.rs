@@ -66,13 +66,13 @@ pub(super) fn short_fraction(space: &BigUint, marked: &BigUint, iterations: &Big
 /// `p_k` as a fraction in lowest terms.
 pub fn exact_fraction(space: &BigUint, marked: &BigUint, iterations: u64) -> (BigUint, BigUint) {
     let n = BigInt::from(space.clone());
-    let step = (&n - BigInt::from(marked.clone()) * 2) * 2;
+    let step: BigInt = (&n - BigInt::from(marked.clone()) * 2) * 2;
     // The numerators of s_k over N^k, so that all is in integers: t_{k+1} = 2 (N - 2M) t_k - N^2 t_{k-1}.
     let (mut before, mut now) = (-BigInt::one(), BigInt::one());
     for k in 0..iterations {
         // s_{-1} = -1 is over N^0 here, so the first step multiplies it by N only.
-        let square = if k == 0 { n.clone() } else { &n * &n };
-        let next = &step * &now - square * &before;
+        let square: BigInt = if k == 0 { n.clone() } else { &n * &n };
+        let next: BigInt = (&step * &now) - (&square * &before);
         (before, now) = (now, next);
     }
     let square = (&now * &now).magnitude().clone();
