@@ -12,6 +12,7 @@
 //! | `P` | places, and how they fit a circuit |
 //! | `C` | compiling |
 //! | `A` | counting, auditing, planning |
+//! | `S` | the reader of shots |
 //! | `U` | usage of the command line |
 
 use std::borrow::Cow;

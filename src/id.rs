@@ -72,6 +72,11 @@ impl<I: Id, T> IdVec<I, T> {
         id
     }
 
+    /// Makes room for this many more items.
+    pub fn reserve(&mut self, more: usize) {
+        self.items.reserve(more);
+    }
+
     /// The number of items.
     pub fn len(&self) -> usize {
         self.items.len()

@@ -42,14 +42,16 @@ pub fn figures(circuit: &Circuit) -> Figures {
             count(&mut one, gate);
             layers.place(circuit, gate);
         }
-        total.gates += one.gates * block.repeat;
-        total.t_count += one.t_count * block.repeat;
-        total.cx_count += one.cx_count * block.repeat;
-        total.and_gates += one.and_gates * block.repeat;
-        total.rotations += one.rotations * block.repeat;
-        total.measurements += one.measurements * block.repeat;
-        total.depth += layers.depth * block.repeat;
-        total.t_depth += layers.t_depth * block.repeat;
+        // A file may repeat a block up to 2^63 times: the count then stays at the largest number.
+        let add = |total: &mut u64, one: u64| *total = total.saturating_add(one.saturating_mul(block.repeat));
+        add(&mut total.gates, one.gates);
+        add(&mut total.t_count, one.t_count);
+        add(&mut total.cx_count, one.cx_count);
+        add(&mut total.and_gates, one.and_gates);
+        add(&mut total.rotations, one.rotations);
+        add(&mut total.measurements, one.measurements);
+        add(&mut total.depth, layers.depth);
+        add(&mut total.t_depth, layers.t_depth);
     }
     total
 }

@@ -43,7 +43,7 @@ struct Writer {
 impl Writer {
     fn new(problem: &Problem, graph: &Graph, conjuncts: &[Signal]) -> Self {
         // A conjunct that is a disjunction becomes a clause of its operands and needs no variable of its own.
-        let roots = conjuncts.iter().flat_map(|conjunct| match graph.operands(conjunct.node()) {
+        let roots = conjuncts.iter().flat_map(|conjunct| match graph.factors(conjunct.node()) {
             [] => std::slice::from_ref(conjunct),
             operands => operands,
         });
@@ -63,24 +63,34 @@ impl Writer {
 
     fn define(&mut self, graph: &Graph) {
         for (at, &node) in graph.nodes().iter().enumerate() {
-            match node {
-                Node::Bit(bit) => self.vars[at] = Some(BitId::new(bit as usize)),
-                Node::All { .. } if self.needed[at] => {
-                    let defined = self.new_var(at);
-                    let operands: Vec<BitLit> = graph.operands(at).iter().map(|&operand| self.lit(operand)).collect();
-                    operands.iter().for_each(|&operand| self.clauses.push(&[!defined, operand]));
-                    self.clauses.push_lit(defined);
-                    operands.iter().for_each(|&operand| self.clauses.push_lit(!operand));
-                    self.clauses.end_clause();
+            if let Node::Bit(bit) = node {
+                self.vars[at] = Some(BitId::new(bit as usize));
+            } else if self.needed[at] && node != Node::No {
+                let operands: Vec<BitLit> = graph.operands(at).iter().map(|&operand| self.lit(operand)).collect();
+                let defined = self.new_var(at);
+                self.define_node(node, defined, &operands);
+            }
+        }
+    }
+
+    fn define_node(&mut self, node: Node, defined: BitLit, operands: &[BitLit]) {
+        match (node, operands) {
+            (Node::Odd { .. }, &[a, b]) => {
+                for clause in [[!defined, a, b], [!defined, !a, !b], [defined, a, !b], [defined, !a, b]] {
+                    self.clauses.push(&clause);
                 }
-                Node::Odd(a, b) if self.needed[at] => {
-                    let defined = self.new_var(at);
-                    let (a, b) = (self.lit(a), self.lit(b));
-                    for clause in [[!defined, a, b], [!defined, !a, !b], [defined, a, !b], [defined, !a, b]] {
-                        self.clauses.push(&clause);
-                    }
+            }
+            (Node::Most { .. }, &[a, b, c]) => {
+                for [one, other] in [[a, b], [a, c], [b, c]] {
+                    self.clauses.push(&[!defined, one, other]);
+                    self.clauses.push(&[defined, !one, !other]);
                 }
-                _ => {}
+            }
+            _ => {
+                operands.iter().for_each(|&operand| self.clauses.push(&[!defined, operand]));
+                self.clauses.push_lit(defined);
+                operands.iter().for_each(|&operand| self.clauses.push_lit(!operand));
+                self.clauses.end_clause();
             }
         }
     }
@@ -98,7 +108,7 @@ impl Writer {
         if conjunct == Signal::NO {
             return self.clauses.push(&[]);
         }
-        match graph.operands(conjunct.node()) {
+        match graph.factors(conjunct.node()) {
             [] => self.clauses.push(&[self.lit(conjunct)]),
             operands => {
                 operands.iter().for_each(|&operand| self.clauses.push_lit(!self.lit(operand)));

@@ -156,6 +156,7 @@ impl Problem {
 
     /// Adds `count` yes/no variables that are named by their number, as a DIMACS header declares them.
     pub fn add_numbered_vars(&mut self, count: usize) {
+        self.vars.reserve(count);
         for _ in 0..count {
             self.add_var("", Domain::YesNo, None);
         }

@@ -25,8 +25,8 @@ use thiserror::Error;
 
 use crate::id::Id;
 use crate::problem::check::{Fault, check};
-use crate::problem::expr::{Compare, Expr, ExprId, ExprList, Table, TableId};
-use crate::problem::{BitId, BitLit, Constraint, Domain, Kind, KindId, Objective, Origin, Problem, Sense, VarId};
+use crate::problem::expr::{Compare, Expr, ExprId, ExprList, Table};
+use crate::problem::{BitId, BitLit, Constraint, Domain, Kind, Objective, Origin, Problem, Sense};
 
 const HEADER: &str = "tallymark problem 1";
 
@@ -274,14 +274,14 @@ fn ended(rest: &[Word]) -> Parsed {
 }
 
 /// The next id of an arena, spelt out.
-fn next<I: Id>(word: Option<&Word>, prefix: &str, len: usize) -> Parsed {
+fn next(word: Option<&Word>, prefix: &str, len: usize) -> Parsed {
     let text = bare(word)?;
     let expected = format!("{prefix}{len}");
     if text == expected { Ok(()) } else { Err(format!("`{expected}`")) }
 }
 
 fn read_kind(problem: &mut Problem, rest: &[Word]) -> Parsed {
-    next::<KindId>(rest.first(), "k", problem.kinds.len())?;
+    next(rest.first(), "k", problem.kinds.len())?;
     let name = text_of(rest.get(1))?.into();
     let values: Vec<Box<str>> = rest[2..].iter().map(|word| Ok(text_of(Some(word))?.into())).collect::<Parsed<_>>()?;
     if values.is_empty() {
@@ -292,7 +292,7 @@ fn read_kind(problem: &mut Problem, rest: &[Word]) -> Parsed {
 }
 
 fn read_var(problem: &mut Problem, rest: &[Word]) -> Parsed {
-    next::<VarId>(rest.first(), "v", problem.vars().len())?;
+    next(rest.first(), "v", problem.vars().len())?;
     let (domain, used) = match bare(rest.get(1))? {
         "yesno" => (Domain::YesNo, 2),
         "range" => {
@@ -312,7 +312,7 @@ fn read_var(problem: &mut Problem, rest: &[Word]) -> Parsed {
 }
 
 fn read_table(problem: &mut Problem, rest: &[Word]) -> Parsed {
-    next::<TableId>(rest.first(), "t", problem.exprs.tables().len())?;
+    next(rest.first(), "t", problem.exprs.tables().len())?;
     let width = usize::try_from(number(rest.get(1))?).ok().filter(|&width| width > 0);
     let width = width.ok_or("a positive width")?;
     let mut rows: Vec<Vec<i64>> = Vec::new();

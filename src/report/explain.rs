@@ -98,12 +98,7 @@ fn constraint_line(
 }
 
 /// The ranges of the two sides of a comparison, or of a number.
-fn ranges_of(
-    problem: &Problem,
-    ranges: &IdVec<ExprId, Interval>,
-    types: &IdVec<ExprId, Type>,
-    expr: ExprId,
-) -> String {
+fn ranges_of(problem: &Problem, ranges: &IdVec<ExprId, Interval>, types: &IdVec<ExprId, Type>, expr: ExprId) -> String {
     let range = |id: ExprId| {
         let Interval { lo, hi } = ranges[id];
         if lo == hi { lo.to_string() } else { format!("{lo} to {hi}") }

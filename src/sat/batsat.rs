@@ -26,7 +26,7 @@ impl Callbacks for Watch {
     fn stop(&self) -> bool {
         let calls = self.calls.get().wrapping_add(1);
         self.calls.set(calls);
-        if calls % CALLS_A_LOOK == 0 && self.budget.spent() {
+        if calls.is_multiple_of(CALLS_A_LOOK) && self.budget.spent() {
             self.stopped.set(true);
         }
         self.stopped.get()
@@ -102,7 +102,7 @@ mod tests {
     fn stops_inside_a_call_and_goes_on_afterwards() {
         let mut engine = Batsat::new();
         let (pigeons, holes) = (12, 11);
-        let sits = |pigeon, hole, value| Lit::new(pigeon * holes + hole, value);
+        let sits = |pigeon: usize, hole: usize, value| Lit::new(pigeon * holes + hole, value);
         for pigeon in 0..pigeons {
             engine.add_clause(&(0..holes).map(|hole| sits(pigeon, hole, true)).collect::<Vec<_>>());
         }

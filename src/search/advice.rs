@@ -65,6 +65,42 @@ impl Advice {
         Self::new("already-decided", text)
     }
 
+    /// The lower end of the count is 0.
+    pub fn if_there_is_any() -> Self {
+        Self::new("if-there-is-any", "The count may be 0: the figures hold if anything is marked at all.")
+    }
+
+    /// A certain search rests on the exact count.
+    pub fn needs_the_exact_count() -> Self {
+        Self::new(
+            "needs-the-exact-count",
+            "The phases are tuned to this count: with another one, or with rotations that are not exact, success is no \
+             longer certain.",
+        )
+    }
+
+    /// A search with nothing known stops with an error.
+    pub fn stopping_shows_nothing(error: f64) -> Self {
+        Self::new(
+            "stopping-shows-nothing",
+            format!(
+                "Stopping without a result does not show that there is no solution: where there is one, it has been \
+                 missed with a chance of at most {error:.3e}."
+            ),
+        )
+    }
+
+    /// The machine errs so much that guessing is cheaper.
+    pub fn noise_wins(error: f64, break_even: f64) -> Self {
+        Self::new(
+            "noise-wins",
+            format!(
+                "At an error of {error:.3e} per iteration the search costs more than guessing; it pays below \
+                 {break_even:.3e}."
+            ),
+        )
+    }
+
     /// What the numbers alone say against a search.
     pub(super) fn on_numbers(space: &BigUint, marked: &BigUint) -> Vec<Self> {
         let mut advice = Vec::new();

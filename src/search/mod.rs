@@ -1,7 +1,11 @@
-//! From a tally and an oracle to a search: how many iterations, with what success, and the whole circuit.
+//! From a tally and an oracle to a search: how many iterations, with what success, the whole circuit, and the reading
+//! of what a run of it gave.
 
 pub mod advice;
+pub mod binomial;
+pub mod number;
 pub mod plan;
+pub mod shots;
 pub mod whole;
 
 pub use advice::Advice;

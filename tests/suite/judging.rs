@@ -1,4 +1,4 @@
-//! The judge's readings against the reference evaluator, and audits of right and wrong circuits.
+//! The judge's readings of a problem, rows and clauses, against the reference evaluator.
 
 use std::collections::BTreeSet;
 
@@ -7,7 +7,7 @@ use tallymark::budget::Budget;
 use tallymark::id::Id;
 use tallymark::judge::clauses::{Cnf, encode};
 use tallymark::judge::rows;
-use tallymark::problem::{BitId, BitLit, Bits, Clauses, Problem};
+use tallymark::problem::{BitId, BitLit, Bits, Clauses, Compare, Domain, Expr, ExprId, Origin, Problem};
 use tallymark::random::SplitMix64;
 use varisat::{ExtendFormula, Lit, Solver};
 
@@ -64,7 +64,7 @@ fn models(cnf: &Cnf, bits: usize) -> (BTreeSet<u128>, usize) {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 300, failure_persistence: None, ..ProptestConfig::default() })]
+    #![proptest_config(ProptestConfig { cases: 600, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn rows_read_a_problem_as_the_evaluator_does(seed: u64) {
@@ -126,292 +126,56 @@ fn clause_problems_are_copied_as_they_are() {
     assert_eq!(rows::count(&problem, 1, 9, &Budget::unlimited()).expect("no budget is set").count, 8);
 }
 
-/// Audits of hand-written circuits for `(a or b) and not c`, with and without a known fault.
-mod audits {
-    use super::*;
-    use tallymark::circuit::{Circuit, Control, MARK, Op, QubitId, SEARCH, WORK};
-    use tallymark::judge::audit::{AuditError, How, Options, Outcome, Phases, Verdict, audit};
-    use tallymark::places::{Places, PlacesError};
+#[test]
+fn a_sweep_over_nothing_and_a_sweep_that_is_stopped() {
+    let mut problem = Problem::new();
+    let sweep = rows::count(&problem, 2, 9, &Budget::unlimited()).expect("no budget is set");
+    assert_eq!((sweep.count, sweep.solutions, sweep.complete), (1, vec![Bits::zeros(0)], true));
+    problem.clauses.end_clause();
+    assert_eq!(rows::count(&problem, 2, 9, &Budget::unlimited()).expect("no budget is set").count, 0);
+    let budget = Budget::unlimited();
+    budget.cancel();
+    assert_eq!(rows::count(&problem, 2, 9, &budget), None);
+}
 
-    fn problem() -> Problem {
+/// Values that need all 64 bits, far too many to try: chosen ones, by unit propagation in the clause form.
+#[test]
+fn wide_values_are_read_exactly() {
+    let full = Domain::Range { lo: i64::MIN, hi: i64::MAX };
+    let half = Domain::Range { lo: -3_037_000_499, hi: 3_037_000_499 };
+    type Build = fn(&mut Problem, ExprId, ExprId) -> ExprId;
+    let node: fn(&mut Problem, Expr) -> ExprId = |problem, expr| problem.exprs.node(expr);
+    let cases: [(Domain, Build); 8] = [
+        (full, |problem, x, _| problem.exprs.node(Expr::Quotient(x, 1))),
+        (full, |problem, x, _| problem.exprs.node(Expr::Quotient(x, 7))),
+        (full, |problem, x, _| problem.exprs.node(Expr::Quotient(x, i64::MAX))),
+        (full, |problem, x, _| problem.exprs.node(Expr::Remainder(x, 8))),
+        (full, |problem, x, _| problem.exprs.node(Expr::Remainder(x, i64::MAX))),
+        (half, |problem, x, y| problem.exprs.node(Expr::Product(x, y))),
+        (Domain::Range { lo: -i64::MAX, hi: i64::MAX }, |problem, x, _| problem.exprs.node(Expr::Abs(x))),
+        (full, |problem, x, y| problem.exprs.over(Expr::Smallest, &[x, y])),
+    ];
+    let mut random = SplitMix64::new(3);
+    for (at, (domain, build)) in cases.into_iter().enumerate() {
         let mut problem = Problem::new();
-        problem.add_numbered_vars(3);
-        for clause in [&[1, 2][..], &[-3]] {
-            clause.iter().for_each(|&lit| problem.clauses.push_lit(BitLit::from_dimacs(lit).expect("not 0")));
-            problem.clauses.end_clause();
-        }
-        problem
-    }
-
-    fn judge(circuit: &Circuit) -> Verdict {
-        let problem = problem();
-        audit(&problem, &Places::as_given(&problem), circuit, &Options::default(), &Budget::unlimited())
-            .expect("an oracle")
-    }
-
-    /// The circuit, its search qubits, its work qubits and its mark.
-    struct Oracle {
-        circuit: Circuit,
-        search: Vec<QubitId>,
-        work: Vec<QubitId>,
-        mark: Option<QubitId>,
-    }
-
-    fn blank(has_mark: bool) -> Oracle {
-        let mut circuit = Circuit::new();
-        let search = circuit.add_qubits(SEARCH, 3);
-        let mark = has_mark.then(|| circuit.add_qubits(MARK, 1)[0]);
-        let work = circuit.add_qubits(WORK, 2);
-        Oracle { circuit, search, work, mark }
-    }
-
-    impl Oracle {
-        /// `work[0] ^= a or b`.
-        fn either(&mut self) {
-            let [a, b] = [self.search[0], self.search[1]].map(|qubit| Control::new(qubit, false));
-            self.circuit.push(Op::X, &[], self.work[0]);
-            self.circuit.push(Op::X, &[a, b], self.work[0]);
-        }
-
-        /// The controls of the root: `work[0]` and not `c`.
-        fn root(&self) -> [Control; 2] {
-            [Control::on(self.work[0]), Control::new(self.search[2], false)]
-        }
-
-        /// Marks by the sign, or onto `mark`.
-        fn mark(&mut self) {
-            let [either, c] = self.root();
-            match self.mark {
-                Some(mark) => self.circuit.push(Op::X, &[either, c], mark),
-                None => self.circuit.push(Op::Z, &[c], self.work[0]),
+        let vars = [domain, domain, full].map(|domain| problem.add_var("", domain, None));
+        let [x, y, z] = vars.map(|var| node(&mut problem, Expr::Var(var)));
+        let result = build(&mut problem, x, y);
+        let equal = node(&mut problem, Expr::Compare(Compare::Eq, result, z));
+        problem.must(equal, Origin::default());
+        tallymark::problem::check::check(&problem).expect("well formed");
+        let cnf = encode(&problem);
+        let Domain::Range { lo, hi } = domain else { unreachable!("a range") };
+        let drawn: Vec<i64> = (0..12).map(|_| (random.next_u64() as i64 >> random.below(60)).clamp(lo, hi)).collect();
+        for pair in
+            [lo, lo + 1, -8, -7, -1, 0, 1, 6, 7, 8, hi - 1, hi].iter().chain(&drawn).collect::<Vec<_>>().windows(2)
+        {
+            let value = problem.evaluate(&[*pair[0], *pair[1], 0])[result] as i64;
+            for (z, expected) in [(value, true), (value ^ 1, false), (value ^ i64::MIN, false)] {
+                let bits = problem.encode(&[*pair[0], *pair[1], z]).expect("inside the domains");
+                assert_eq!(problem.holds(&bits), expected);
+                assert_eq!(propagate(&cnf, &bits).is_some(), expected, "case {at}: {pair:?} gives {value}, not {z}");
             }
         }
-
-        fn finished(has_mark: bool) -> Self {
-            let mut oracle = blank(has_mark);
-            oracle.either();
-            oracle.mark();
-            oracle.either();
-            oracle
-        }
-    }
-
-    /// Asserts that the circuit differs first on the input with this number, and in these words.
-    #[track_caller]
-    fn differs(circuit: &Circuit, input: u128, expected: &str, got: &str) {
-        let verdict = judge(circuit);
-        let witness = verdict.witness.expect("a witness");
-        assert_eq!((verdict.outcome, verdict.how), (Outcome::Differs, How::Exhaustive));
-        let found = (witness.bits.to_number(), &*witness.expected, &*witness.got);
-        assert_eq!(found, (Some(input), expected, got));
-        assert_eq!(verdict.work_clean, !got.contains("work"));
-    }
-
-    #[test]
-    fn right_circuits_are_equal() {
-        for has_mark in [false, true] {
-            let verdict = judge(&Oracle::finished(has_mark).circuit);
-            assert_eq!((verdict.outcome, verdict.how, verdict.inputs), (Outcome::Equal, How::Exhaustive, 8));
-            assert_eq!((verdict.work_clean, verdict.phases, verdict.witness), (true, Phases::Equal, None));
-        }
-    }
-
-    #[test]
-    fn a_missing_control_is_seen() {
-        let mut oracle = blank(false);
-        oracle.either();
-        oracle.circuit.push(Op::Z, &[], oracle.work[0]);
-        oracle.either();
-        differs(&oracle.circuit, 0b101, "not marked", "marked");
-    }
-
-    #[test]
-    fn a_missing_sign_is_seen() {
-        let mut oracle = blank(false);
-        oracle.either();
-        oracle.either();
-        differs(&oracle.circuit, 0b001, "marked", "not marked");
-        let mut oracle = blank(true);
-        oracle.either();
-        oracle.either();
-        differs(&oracle.circuit, 0b001, "marked", "not marked");
-    }
-
-    #[test]
-    fn an_ancilla_left_dirty_is_seen() {
-        let mut oracle = blank(true);
-        oracle.either();
-        oracle.mark();
-        differs(&oracle.circuit, 0b001, "marked", "work[0] left at 1");
-    }
-
-    #[test]
-    fn an_ancilla_cleaned_by_reset_is_seen() {
-        let mut oracle = blank(false);
-        oracle.either();
-        oracle.mark();
-        oracle.circuit.push(Op::Reset, &[], oracle.work[0]);
-        differs(&oracle.circuit, 0b001, "marked", "work[0] reset at 1");
-    }
-
-    #[test]
-    fn resets_that_find_the_same_value_on_every_input_are_fine() {
-        let mut oracle = blank(false);
-        oracle.circuit.push(Op::Reset, &[], oracle.work[0]);
-        oracle.either();
-        oracle.mark();
-        oracle.either();
-        oracle.circuit.push(Op::Reset, &[], oracle.work[0]);
-        oracle.circuit.push(Op::X, &[], oracle.work[1]);
-        oracle.circuit.push(Op::Reset, &[], oracle.work[1]);
-        assert_eq!(judge(&oracle.circuit).outcome, Outcome::Equal);
-    }
-
-    #[test]
-    fn a_changed_search_register_is_seen() {
-        let mut oracle = Oracle::finished(true);
-        oracle.circuit.push(Op::X, &[Control::on(oracle.search[0])], oracle.search[1]);
-        differs(&oracle.circuit, 0b001, "marked", "search[1] changed");
-    }
-
-    #[test]
-    fn a_sign_on_a_bit_oracle_is_seen() {
-        // Right on basis states, wrong in sign.
-        let mut oracle = Oracle::finished(true);
-        oracle.circuit.push(Op::Z, &[], oracle.search[1]);
-        differs(&oracle.circuit, 0b010, "marked", "the sign depends on the input");
-        let mut oracle = Oracle::finished(true);
-        oracle.circuit.push(Op::Z, &[], oracle.mark.expect("a bit oracle"));
-        differs(&oracle.circuit, 0b000, "not marked", "the sign depends on mark");
-    }
-
-    #[test]
-    fn a_wrong_sign_on_a_phase_oracle_is_seen() {
-        let mut oracle = Oracle::finished(false);
-        let all: Vec<Control> = oracle.search[..2].iter().map(|&qubit| Control::on(qubit)).collect();
-        oracle.circuit.push(Op::Z, &all, oracle.search[2]);
-        differs(&oracle.circuit, 0b111, "not marked", "marked");
-        let mut oracle = Oracle::finished(false);
-        let all: Vec<Control> = oracle.search[..2].iter().map(|&qubit| Control::on(qubit)).collect();
-        oracle.circuit.push(Op::S, &all, oracle.search[2]);
-        differs(&oracle.circuit, 0b111, "not marked", "turned by 2/4 of pi");
-    }
-
-    #[test]
-    fn signs_made_of_eighth_turns_count() {
-        let mut oracle = blank(false);
-        oracle.either();
-        let [_, c] = oracle.root();
-        // 1 + 6 + 1 + 2 + 2 + 7 + 1 = 20 eighths of a turn, which is 4 beyond two whole turns: a sign.
-        for op in [Op::T, Op::Sdg, Op::T, Op::S, Op::S, Op::Tdg, Op::T] {
-            oracle.circuit.push(op, &[c], oracle.work[0]);
-        }
-        oracle.either();
-        let verdict = judge(&oracle.circuit);
-        assert_eq!((verdict.outcome, verdict.phases), (Outcome::Equal, Phases::Equal));
-        oracle.circuit.push(Op::T, &[c], oracle.search[0]);
-        differs(&oracle.circuit, 0b001, "marked", "turned by 5/4 of pi");
-    }
-
-    #[test]
-    fn the_complement_is_a_global_sign_unless_strict() {
-        let mut oracle = Oracle::finished(false);
-        // -1 on everything: Z on both values of a clean ancilla.
-        oracle.circuit.push(Op::X, &[], oracle.work[1]);
-        oracle.circuit.push(Op::Z, &[], oracle.work[1]);
-        oracle.circuit.push(Op::X, &[], oracle.work[1]);
-        let verdict = judge(&oracle.circuit);
-        assert_eq!((verdict.outcome, verdict.phases), (Outcome::Equal, Phases::Complement));
-        let problem = problem();
-        let strict = Options { strict_phase: true, ..Options::default() };
-        let places = Places::as_given(&problem);
-        let verdict = audit(&problem, &places, &oracle.circuit, &strict, &Budget::unlimited()).expect("an oracle");
-        let witness = verdict.witness.expect("a witness");
-        assert_eq!((witness.bits.to_number(), &*witness.got), (Some(0), "marked"));
-    }
-
-    #[test]
-    fn blocks_are_applied_as_often_as_they_say() {
-        for (repeat, outcome) in [(1, Outcome::Equal), (2, Outcome::Differs), (3, Outcome::Equal)] {
-            let mut oracle = Oracle::finished(true);
-            oracle.circuit.repeat_from(0, repeat);
-            assert_eq!(judge(&oracle.circuit).outcome, outcome, "{repeat} times");
-        }
-    }
-
-    #[test]
-    fn places_say_which_qubit_carries_which_bit() {
-        let problem = problem();
-        let mut places = Places::as_given(&problem);
-        places.searched.rotate_left(1);
-        let mut oracle = blank(true);
-        oracle.search.rotate_right(1);
-        oracle.either();
-        oracle.mark();
-        oracle.either();
-        let judged = |places: &Places| {
-            audit(&problem, places, &oracle.circuit, &Options::default(), &Budget::unlimited()).expect("an oracle")
-        };
-        assert_eq!(judged(&places).outcome, Outcome::Equal);
-        assert_eq!(judged(&Places::as_given(&problem)).outcome, Outcome::Differs);
-    }
-
-    #[test]
-    fn a_sample_is_undecided_unless_it_finds_a_difference() {
-        let problem = problem();
-        let known = vec![Bits::from_number(1, 3), Bits::from_number(2, 3)];
-        let options = Options { exhaustive_bits: 2, sample: 0, known, ..Options::default() };
-        let judged = |circuit: &Circuit| {
-            audit(&problem, &Places::as_given(&problem), circuit, &options, &Budget::unlimited()).expect("an oracle")
-        };
-        let verdict = judged(&Oracle::finished(true).circuit);
-        // 001 and 010; their neighbours 000, 011, 101, 110.
-        assert_eq!((verdict.outcome, verdict.how, verdict.inputs), (Outcome::Undecided, How::Sample, 6));
-        let mut oracle = blank(true);
-        oracle.either();
-        let either = oracle.root()[0];
-        oracle.circuit.push(Op::X, &[either], oracle.mark.expect("a bit oracle"));
-        oracle.either();
-        let verdict = judged(&oracle.circuit);
-        let witness = verdict.witness.expect("a witness");
-        assert_eq!((verdict.outcome, verdict.how), (Outcome::Differs, How::Sample));
-        assert_eq!((witness.bits.to_number(), &*witness.got), (Some(0b101), "marked"));
-    }
-
-    #[test]
-    fn a_spent_budget_leaves_a_sample() {
-        let problem = problem();
-        let budget = Budget::unlimited();
-        budget.cancel();
-        let circuit = Oracle::finished(true).circuit;
-        let verdict =
-            audit(&problem, &Places::as_given(&problem), &circuit, &Options::default(), &budget).expect("an oracle");
-        assert_eq!((verdict.outcome, verdict.how), (Outcome::Undecided, How::Sample));
-        assert!(verdict.notes[0].contains("budget"), "{:?}", verdict.notes);
-    }
-
-    #[test]
-    fn circuits_that_are_no_oracle_of_the_problem_are_refused() {
-        let problem = problem();
-        let places = Places::as_given(&problem);
-        let judged = |circuit: &Circuit, places: &Places| {
-            audit(&problem, places, circuit, &Options::default(), &Budget::unlimited()).expect_err("refused")
-        };
-        let mut oracle = blank(true);
-        oracle.circuit.push(Op::Reset, &[], oracle.search[1]);
-        assert_eq!(judged(&oracle.circuit, &places), AuditError::ResetOfInput { qubit: "search[1]".to_owned() });
-        let mut circuit = Circuit::new();
-        circuit.add_qubits(SEARCH, 2);
-        let size = AuditError::RegisterSize { name: SEARCH, found: 2, expected: 3 };
-        assert_eq!(judged(&circuit, &places), size);
-        let mut circuit = Circuit::new();
-        circuit.add_qubits(WORK, 3);
-        assert_eq!(judged(&circuit, &places), AuditError::NoRegister(SEARCH));
-        circuit.add_qubits("spare", 1);
-        assert_eq!(judged(&circuit, &places), AuditError::UnknownRegister("spare".to_owned()));
-        let mut other = places.clone();
-        other.searched.pop();
-        let fault = AuditError::Places(PlacesError::OtherProblem { found: 2, expected: 3 });
-        assert_eq!(judged(&circuit, &other), fault);
     }
 }

@@ -1,15 +1,17 @@
-//! The tally language: case files, the demo puzzles, the text form of problems, damaged texts.
+//! The tally language: case files, the demo puzzles, random expressions, the text form of problems, damaged texts.
 
 mod cases;
 mod count;
 mod damage;
 mod demos;
+mod random;
 
 use std::collections::BTreeSet;
 
 use cases::cases;
 use tallymark::problem::{Bits, Problem};
-use tallymark::source::tally::mistakes::CODES;
+use tallymark::source::tally::{self, mistakes::CODES};
+use tallymark::span::{Sources, Span};
 
 const GOOD: &str = "tests/cases/language/good";
 const BAD: &str = "tests/cases/language/bad";
@@ -93,4 +95,21 @@ fn problems_print_and_read_back() {
         seen += 1;
     }
     assert!(seen >= 34);
+}
+
+#[test]
+fn what_is_built_knows_its_place_in_the_text() {
+    let text = "known n = 2\npick on[i in 1 to n]\nmust all of [on[i] or\n  on[n] for i in 1 to n]\nmost on[1] + 1\n";
+    let mut sources = Sources::new();
+    let (problem, warnings) = tally::read(text, "case", &[], &mut sources).expect("no mistake");
+    assert!(warnings.is_empty());
+    let statement = |span: Option<Span>| sources.text(span.expect("a place"));
+    assert_eq!(statement(problem.vars().as_slice()[1].span), "on");
+    let constraint = &problem.constraints[1];
+    assert_eq!(statement(constraint.origin.span), "must all of [on[i] or\n  on[n] for i in 1 to n]");
+    assert_eq!(constraint.origin.bindings, [("i".into(), "2".into())]);
+    assert_eq!(statement(problem.exprs.span(constraint.expr)), "on[i] or\n  on[n]");
+    let objective = problem.objective.as_ref().expect("an objective");
+    assert_eq!(statement(objective.span), "most on[1] + 1");
+    assert_eq!(statement(problem.exprs.span(objective.expr)), "on[1] + 1");
 }

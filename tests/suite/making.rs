@@ -4,8 +4,10 @@
 mod costs;
 mod golden;
 mod problems;
+mod puzzles;
 mod simulate;
 mod whole;
+mod written;
 
 use super::random_problem::random_problem;
 use simulate::{Classical, Quantum};

@@ -1,3 +1,5 @@
+mod aims;
+mod auditing;
 mod command;
 mod counting;
 mod dimacs;

@@ -4,23 +4,15 @@
 //! [`Verdict`]. The circuit's gates are interpreted one by one; no sequence of gates is recognised.
 //!
 //! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases, so running
-//!   every basis state is complete ([`exhaustive`]); where that is too much, a stated [`sample`] is run.
-//! - Every other circuit is run on a superposition of all inputs.
+//!   every basis state is complete (`basis`); where that is too much, a stated sample is run.
+//! - Every other circuit is run on a superposition of all inputs ([`superposition`]).
+//! - A whole search is followed from its start to its measurement ([`search`]).
 
-pub(crate) mod exhaustive;
-pub(crate) mod findings;
-pub(crate) mod kernel;
-pub(crate) mod labelled;
-mod labelled_inputs;
-mod labelled_run;
-pub(crate) mod oracle;
-pub(crate) mod sample;
+mod basis;
+mod oracle;
 pub mod search;
-mod search_machine;
-mod search_profile;
-mod search_rows;
 mod state;
-mod state_amplitude;
+pub mod superposition;
 pub mod verdict;
 
 pub use search::{SearchVerdict, audit_search};
@@ -33,8 +25,6 @@ use crate::circuit::Circuit;
 use crate::diag::{Code, Diagnostic};
 use crate::places::{Places, PlacesError};
 use crate::problem::{Bits, Problem};
-use findings::Case;
-use kernel::Program;
 
 /// How to audit.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -147,42 +137,7 @@ pub fn audit(
     let roles = oracle::roles(problem, places, circuit)?;
     oracle::check_gates(circuit)?;
     if !oracle::keeps_basis_states(circuit) {
-        return labelled::audit_superposition(problem, places, circuit, options, budget);
+        return superposition::audit_superposition(problem, places, circuit, options, budget);
     }
-    let first = oracle::trace(circuit, &roles, &Bits::zeros(places.search_len()), false);
-    let program = Program::new(circuit, &first);
-    let case = Case { problem, places, circuit, roles: &roles, options, first: &first };
-    let bits = places.search_len();
-    if bits > options.exhaustive_bits.min(MAX_EXHAUSTIVE_BITS) as usize {
-        let why = format!("more than {} qubits are searched", options.exhaustive_bits.min(MAX_EXHAUSTIVE_BITS));
-        return Ok(by_sample(&case, &program, why, budget));
-    }
-    let (findings, is_complete) = exhaustive::exhaust(&case, &program, budget);
-    if is_complete || findings.differ(options) {
-        let input = |number: u64| Bits::from_number(number.into(), bits);
-        return Ok(findings.verdict(&case, How::Exhaustive, is_complete, input));
-    }
-    let why =
-        format!("the budget ran out after the first {} of 2^{bits} inputs, which show no difference", findings.inputs);
-    Ok(by_sample(&case, &program, why, budget))
-}
-
-/// The most bits for which every input is tried, whatever the options say: beyond, the work is in the years.
-const MAX_EXHAUSTIVE_BITS: u32 = 48;
-
-fn by_sample(case: &Case, program: &Program, why: String, budget: &Budget) -> Verdict {
-    let sample = sample::draw(case);
-    let findings = sample::try_sample(case, program, &sample, budget);
-    let mut verdict = findings.verdict(case, How::Sample, false, |at| sample.inputs[at as usize].clone());
-    verdict.notes.push(why);
-    let (tried, seed) = (findings.inputs, case.options.seed);
-    let drawn = sample.inputs.len() - sample.known - sample.neighbours;
-    verdict.notes.push(format!(
-        "the sample: {} known solutions, {} of their neighbours, {drawn} drawn with seed {seed}; {tried} were tried",
-        sample.known, sample.neighbours
-    ));
-    if sample.left_out > 0 {
-        verdict.notes.push(format!("{} solutions and neighbours are beyond the size of a sample", sample.left_out));
-    }
-    verdict
+    Ok(basis::audit_basis(problem, places, circuit, &roles, options, budget))
 }

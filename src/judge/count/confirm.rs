@@ -6,7 +6,7 @@
 use std::sync::mpsc::{self, RecvTimeoutError};
 use std::time::Duration;
 
-use super::list::{self, Limits, Listing};
+use super::list::{self, Listing, Plan, WrongModel};
 use super::parts::Part;
 use crate::budget::Budget;
 use crate::sat::Varisat;
@@ -15,12 +15,12 @@ use crate::sat::Varisat;
 const LOOK: Duration = Duration::from_millis(20);
 
 /// The listings of these parts; `None` where the budget ran out.
-pub(super) fn beside(parts: Vec<Part>, budget: &Budget) -> Option<Vec<Listing>> {
+pub(super) fn beside(parts: Vec<Part>, plan: Plan, budget: &Budget) -> Option<Result<Vec<Listing>, WrongModel>> {
     let (sender, receiver) = mpsc::channel();
     let its_budget = budget.clone();
     let work = move || {
         // The receiver may be gone by then.
-        let _ = sender.send(list::list_all::<Varisat>(&parts, 0, Limits::none(), &its_budget));
+        let _ = sender.send(list::list_all::<Varisat>(&parts, plan, &its_budget));
     };
     std::thread::Builder::new().name("confirming".to_owned()).spawn(work).ok()?;
     loop {

@@ -6,7 +6,7 @@
 //!         evaluator; anything else is a [`Fault`] of this program.
 //!
 //! Small problems are swept: every bit string is tried. The others, and the small ones again, go to the solvers: the
-//! clauses fall into [`parts`] without common variables, the solutions of each part are [`list`]ed one by one, and the
+//! clauses fall into `parts` without common variables, the solutions of each part are `list`ed one by one, and the
 //! numbers multiply. Up to [`CONFIRMED`] listed solutions, the other engine lists them again. Without a deadline
 //! varisat leads; with one batsat does, which can be stopped.
 
@@ -14,7 +14,9 @@ mod confirm;
 pub mod counted;
 mod list;
 mod parts;
+mod path;
 mod product;
+mod propagate;
 mod sweep;
 pub mod tally;
 
@@ -29,16 +31,18 @@ use crate::budget::Budget;
 use crate::judge::clauses;
 use crate::problem::{BitId, Bits, Problem};
 use crate::sat::{Batsat, Varisat};
-use list::{Limits, Listing};
+use list::{Limits, Listing, Plan, Search};
 use parts::Split;
 use sweep::Sweep;
 
 /// Solutions that a listing goes through at most where no deadline is set.
 pub const LISTED: u64 = 1 << 20;
-/// Work that a listing does at most where no deadline is set: a unit is a variable assigned, measured as about 10 ns.
-pub const LISTED_WORK: u64 = 1 << 32;
+/// Work that a listing does at most where no deadline is set. A unit is a variable assigned, measured as some 50 ns.
+pub const LISTED_WORK: u64 = 1 << 28;
 /// Listed solutions up to which the second engine lists them again.
 pub const CONFIRMED: u64 = 100_000;
+/// Work that the second engine does at most where no deadline is set, in the same units.
+pub const CONFIRMED_WORK: u64 = 1 << 28;
 /// Size of the kept solutions (times the size of the problem) up to which the evaluator checks them all.
 const EVALUATED_WORK: usize = 1 << 28;
 
@@ -81,6 +85,12 @@ pub enum Fault {
         /// Its number.
         second_count: BigUint,
     },
+    /// An engine gave a model that breaks a clause.
+    #[error("{method:?} gave a model that breaks a clause")]
+    WrongModel {
+        /// The way.
+        method: Method,
+    },
     /// A way gave a solution that the problem does not have.
     #[error("{method:?} gave {bits}, which is no solution")]
     NotASolution {
@@ -105,12 +115,7 @@ pub fn count(problem: &Problem, over: Over, options: &Options, budget: &Budget) 
     Ok(tally)
 }
 
-fn sweep_then_list(
-    problem: &Problem,
-    counted: &[BitId],
-    options: &Options,
-    budget: &Budget,
-) -> Result<Tally, Fault> {
+fn sweep_then_list(problem: &Problem, counted: &[BitId], options: &Options, budget: &Budget) -> Result<Tally, Fault> {
     let Some(swept) = sweep::sweep(problem, counted, options, budget) else {
         return list_then_sweep(problem, counted, options, budget);
     };
@@ -122,12 +127,7 @@ fn sweep_then_list(
     Ok(tally)
 }
 
-fn list_then_sweep(
-    problem: &Problem,
-    counted: &[BitId],
-    options: &Options,
-    budget: &Budget,
-) -> Result<Tally, Fault> {
+fn list_then_sweep(problem: &Problem, counted: &[BitId], options: &Options, budget: &Budget) -> Result<Tally, Fault> {
     let mut listed = listing(problem, counted, options, budget)?;
     // The sweep is dear here: it is for where the listing fell short, or stands alone.
     if listed.exact().is_some() && !listed.checked_by.is_empty() {
@@ -181,10 +181,12 @@ fn listing(problem: &Problem, counted: &[BitId], options: &Options, budget: &Bud
         return Ok(no_solution(if timed { Method::SecondListing } else { Method::Listing }));
     }
     let limits = if timed { Limits::none() } else { Limits { solutions: LISTED, work: LISTED_WORK } };
+    let plan = Plan { search: Search::Pruned, keep: options.keep, limits };
     let (method, listings) = match timed {
-        true => (Method::SecondListing, list::list_all::<Batsat>(&split.parts, options.keep, limits, budget)),
-        false => (Method::Listing, list::list_all::<Varisat>(&split.parts, options.keep, limits, budget)),
+        true => (Method::SecondListing, list::list_all::<Batsat>(&split.parts, plan, budget)),
+        false => (Method::Listing, list::list_all::<Varisat>(&split.parts, plan, budget)),
     };
+    let listings = listings.map_err(|_| Fault::WrongModel { method })?;
     let free = BigUint::one() << split.free.len();
     let product = |of: fn(&Listing) -> BigUint| listings.iter().map(of).product::<BigUint>() * &free;
     let (low, high) = (product(|listing| listing.found.into()), product(Listing::high));
@@ -210,10 +212,14 @@ fn no_solution(method: Method) -> Tally {
 /// Lists again with the other engine, if there is time.
 fn confirm(tally: &mut Tally, split: Split, first: &[Listing], budget: &Budget) -> Result<(), Fault> {
     let second = if tally.method == Method::Listing { Method::SecondListing } else { Method::Listing };
-    let again = match second {
-        Method::Listing => confirm::beside(split.parts, budget),
-        _ => Some(list::list_all::<Batsat>(&split.parts, 0, Limits::none(), budget)),
+    let timed = second == Method::Listing;
+    let limits = if timed { Limits::none() } else { Limits { solutions: CONFIRMED, work: CONFIRMED_WORK } };
+    let plan = Plan { search: Search::Plain, keep: 0, limits };
+    let again = match timed {
+        true => confirm::beside(split.parts, plan, budget),
+        false => Some(list::list_all::<Batsat>(&split.parts, plan, budget)),
     };
+    let again = again.transpose().map_err(|_| Fault::WrongModel { method: second })?;
     // A contradiction in one part decides; the others may be listed or not.
     let decided = |listings: &[Listing]| listings.iter().any(|listing| listing.high().is_zero());
     let Some(again) = again.filter(|again| decided(again) || again.iter().all(|listing| listing.rest.is_zero())) else {
@@ -239,5 +245,40 @@ fn check_solutions(problem: &Problem, tally: &Tally) -> Result<(), Fault> {
     match wrong {
         None => Ok(()),
         Some(bits) => Err(Fault::NotASolution { method: tally.method, bits: bits.clone() }),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn tally(low: u32, high: u32, method: Method) -> Tally {
+        let (low, high) = (low.into(), high.into());
+        Tally { low, high, method, checked_by: Vec::new(), solutions: Vec::new(), complete: false }
+    }
+
+    #[test]
+    fn ways_that_disagree_are_a_fault() {
+        let swept = || tally(5, 5, Method::Sweep);
+        let mut first = swept();
+        assert_eq!(agree(&mut first, &tally(5, 5, Method::Listing)), Ok(()));
+        assert_eq!(first.checked_by, [Method::Listing]);
+        // Bounds confirm nothing, but they must hold.
+        assert_eq!(agree(&mut first, &tally(2, 9, Method::Listing)), Ok(()));
+        assert_eq!(first.checked_by, [Method::Listing]);
+        for (low, high) in [(6, 6), (4, 4), (6, 9), (0, 4)] {
+            let fault = agree(&mut swept(), &tally(low, high, Method::Listing)).unwrap_err();
+            assert!(matches!(fault, Fault::Disagree { .. }), "{fault}");
+        }
+    }
+
+    #[test]
+    fn what_is_no_solution_is_a_fault() {
+        let mut problem = Problem::new();
+        problem.add_numbered_vars(1);
+        problem.clauses.push(&[crate::problem::BitLit::from_dimacs(1).expect("a literal")]);
+        let mut found = tally(1, 1, Method::Listing);
+        found.solutions = vec![Bits::zeros(1)];
+        assert!(matches!(check_solutions(&problem, &found), Err(Fault::NotASolution { .. })));
     }
 }

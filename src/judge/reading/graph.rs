@@ -1,4 +1,4 @@
-//! The judge's graph: conjunctions of any width and exclusive ors of two, over the bits of a problem.
+//! The judge's graph: conjunctions of any width, exclusive ors of two and majorities of three, over the bits of a problem.
 //!
 //! Nodes are shared (equal operands, one node) and constants are folded: no node has a constant operand, a repeated
 //! operand, or an operand together with its negation. Operands have smaller places than their users.
@@ -68,8 +68,16 @@ pub(crate) enum Node {
         /// Number of operands.
         len: u32,
     },
-    /// One of two holds and not the other; neither operand is negated.
-    Odd(Signal, Signal),
+    /// One of two holds and not the other; sorted, neither operand is negated.
+    Odd {
+        /// Place of the first operand in the pool.
+        start: u32,
+    },
+    /// At least two of three hold; sorted, the first operand is not negated.
+    Most {
+        /// Place of the first operand in the pool.
+        start: u32,
+    },
 }
 
 /// The graph.
@@ -80,6 +88,7 @@ pub(crate) struct Graph {
     pairs: FxHashMap<(Signal, Signal), Signal>,
     lists: FxHashMap<Box<[Signal]>, Signal>,
     odds: FxHashMap<(Signal, Signal), Signal>,
+    mosts: FxHashMap<[Signal; 3], Signal>,
 }
 
 impl Graph {
@@ -92,6 +101,7 @@ impl Graph {
             pairs: FxHashMap::default(),
             lists: FxHashMap::default(),
             odds: FxHashMap::default(),
+            mosts: FxHashMap::default(),
         }
     }
 
@@ -106,12 +116,27 @@ impl Graph {
         &self.nodes
     }
 
-    /// The operands of a conjunction.
+    /// The operands of a node.
     pub(crate) fn operands(&self, node: usize) -> &[Signal] {
-        match self.nodes[node] {
-            Node::All { start, len } => &self.pool[start as usize..(start + len) as usize],
-            _ => &[],
-        }
+        let (start, len) = match self.nodes[node] {
+            Node::No | Node::Bit(_) => (0, 0),
+            Node::All { start, len } => (start, len),
+            Node::Odd { start } => (start, 2),
+            Node::Most { start } => (start, 3),
+        };
+        &self.pool[start as usize..(start + len) as usize]
+    }
+
+    /// The operands of a conjunction, none for any other node.
+    pub(crate) fn factors(&self, node: usize) -> &[Signal] {
+        if matches!(self.nodes[node], Node::All { .. }) { self.operands(node) } else { &[] }
+    }
+
+    fn add(&mut self, node: impl FnOnce(u32) -> Node, operands: &[Signal]) -> Signal {
+        let start = u32::try_from(self.pool.len()).expect("fewer than 2^32 operands");
+        self.pool.extend_from_slice(operands);
+        self.nodes.push(node(start));
+        Signal::new(self.nodes.len() - 1)
     }
 
     /// Both hold.
@@ -157,10 +182,8 @@ impl Graph {
     }
 
     fn add_all(&mut self, items: &[Signal]) -> Signal {
-        let start = u32::try_from(self.pool.len()).expect("fewer than 2^32 operands");
-        self.pool.extend_from_slice(items);
-        self.nodes.push(Node::All { start, len: items.len() as u32 });
-        Signal::new(self.nodes.len() - 1)
+        let len = items.len() as u32;
+        self.add(|start| Node::All { start, len }, items)
     }
 
     /// One of the two holds.
@@ -184,11 +207,11 @@ impl Graph {
         if a == Signal::NO {
             return b ^ flip;
         }
-        let nodes = &mut self.nodes;
-        let node = *self.odds.entry((a, b)).or_insert_with(|| {
-            nodes.push(Node::Odd(a, b));
-            Signal::new(nodes.len() - 1)
-        });
+        if let Some(&known) = self.odds.get(&(a, b)) {
+            return known ^ flip;
+        }
+        let node = self.add(|start| Node::Odd { start }, &[a, b]);
+        self.odds.insert((a, b), node);
         node ^ flip
     }
 
@@ -204,10 +227,26 @@ impl Graph {
 
     /// At least two of the three hold.
     pub(crate) fn most(&mut self, a: Signal, b: Signal, c: Signal) -> Signal {
-        let both = self.and(a, b);
-        let either = self.or(a, b);
-        let carried = self.and(c, either);
-        self.or(both, carried)
+        let mut items = [a, b, c];
+        items.sort_unstable();
+        let [a, b, c] = items;
+        // Equal, opposite and constant operands stand side by side, the constants first.
+        match (a.as_constant(), a.node() == b.node(), b.node() == c.node()) {
+            (_, true, _) => return if a == b { a } else { c },
+            (_, _, true) => return if b == c { b } else { a },
+            (Some(true), ..) => return self.or(b, c),
+            (Some(false), ..) => return self.and(b, c),
+            (None, ..) => {}
+        }
+        // Negating all operands negates the result.
+        let flip = a.is_negated();
+        let items = items.map(|item| item ^ flip);
+        if let Some(&known) = self.mosts.get(&items) {
+            return known ^ flip;
+        }
+        let node = self.add(|start| Node::Most { start }, &items);
+        self.mosts.insert(items, node);
+        node ^ flip
     }
 
     /// Which nodes the roots need, by place.
@@ -215,13 +254,8 @@ impl Graph {
         let mut needed = vec![false; self.nodes.len()];
         roots.into_iter().for_each(|root| needed[root.node()] = true);
         for at in (0..self.nodes.len()).rev() {
-            if !needed[at] {
-                continue;
-            }
-            match self.nodes[at] {
-                Node::All { .. } => self.operands(at).iter().for_each(|operand| needed[operand.node()] = true),
-                Node::Odd(a, b) => [a, b].iter().for_each(|operand| needed[operand.node()] = true),
-                Node::No | Node::Bit(_) => {}
+            if needed[at] {
+                self.operands(at).iter().for_each(|operand| needed[operand.node()] = true);
             }
         }
         needed
@@ -249,5 +283,7 @@ mod tests {
         assert_eq!(graph.choose(Signal::NO, a, b), b);
         assert_eq!(graph.most(a, b, Signal::NO), graph.and(a, b));
         assert_eq!(graph.most(a, b, Signal::YES), graph.or(a, b));
+        assert_eq!((graph.most(b, a, !b), graph.most(c, b, c)), (a, c));
+        assert_eq!(graph.most(!c, !a, !b), !graph.most(a, b, c));
     }
 }

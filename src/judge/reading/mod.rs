@@ -1,11 +1,11 @@
-//! The judge's own reading of a problem: from expressions over integers to conjunctions and exclusive ors over bits.
+//! The judge's own reading of a problem: from expressions over integers to signals over bits.
 //!
 //! Input: a checked [`Problem`]. Output: a [`Reading`], whose conjuncts together with the problem's clauses hold exactly
 //! where [`Problem::holds`] does. Clauses are not read here: their users take them as they are, so that a million
 //! clauses cost nothing.
 //!
-//! The methods are not those of the maker's network, on purpose: integers are two's complement, carries are majorities
-//! of ANDs and ORs, comparisons are signs of differences, counts are sorted, "all different" goes value by value and a
+//! The methods are not those of the maker's network, on purpose: integers are two's complement, carries are
+//! majorities, comparisons are signs of differences, counts are sorted, "all different" goes value by value and a
 //! table row by row. A mistake must be made twice, in two different ways, to go unseen.
 
 mod exprs;
@@ -47,9 +47,9 @@ pub(crate) fn read(problem: &Problem) -> Reading {
 fn take_apart(graph: &Graph, root: Signal, into: &mut Vec<Signal>) {
     let mut open = vec![root];
     while let Some(signal) = open.pop() {
-        match graph.operands(signal.node()) {
+        match graph.factors(signal.node()) {
             [] if signal == Signal::YES => {}
-            operands if !operands.is_empty() && !signal.is_negated() => open.extend(operands),
+            factors if !factors.is_empty() && !signal.is_negated() => open.extend(factors),
             _ => into.push(signal),
         }
     }

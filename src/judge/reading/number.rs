@@ -1,7 +1,7 @@
 //! Integers in two's complement: the words of the judge.
 //!
 //! A [`Number`] knows its least and largest value (derived here, from the domains up) and has just the bits that these
-//! need, the last one being the sign. Sums ripple a carry through majority gates, comparisons read the sign of a
+//! need, the last one being the sign. Sums ripple a carry through majorities, comparisons read the sign of a
 //! difference, products shift and add, quotients come from restoring long division (all of them textbook methods; D.
 //! Knuth, "The Art of Computer Programming", volume 2, section 4.3.1, from memory). A number that counts truths also
 //! keeps its [`unary`](super::unary) form, and comparisons use that where they can.
@@ -128,6 +128,12 @@ impl Number {
 
     /// The product.
     pub(crate) fn times(&self, graph: &mut Graph, other: &Self) -> Self {
+        // A truth as a factor keeps the other or drops it.
+        for (factor, of) in [(self, other), (other, self)] {
+            if (factor.lo, factor.hi) == (0, 1) {
+                return Self::choose(graph, factor.bits[0], of, &Self::constant(0));
+            }
+        }
         let by_width = |number: &Self| (!number.is_constant(), number.bits.len());
         let (by, of) = if by_width(self) <= by_width(other) { (self, other) } else { (other, self) };
         let ends = [by.lo * of.lo, by.lo * of.hi, by.hi * of.lo, by.hi * of.hi];

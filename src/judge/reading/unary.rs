@@ -47,3 +47,44 @@ pub(crate) fn to_binary(graph: &mut Graph, sorted: &[Signal]) -> Vec<Signal> {
     };
     (0..width).map(|j| bit(graph, 1 << j)).collect()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::judge::reading::graph::Node;
+
+    /// The value of every node for one input.
+    fn evaluate(graph: &Graph, input: usize) -> Vec<bool> {
+        let mut values: Vec<bool> = Vec::new();
+        for (at, node) in graph.nodes().iter().enumerate() {
+            let mut operands = graph.operands(at).iter().map(|signal| values[signal.node()] != signal.is_negated());
+            let value = match node {
+                Node::No => false,
+                Node::Bit(bit) => input >> bit & 1 == 1,
+                Node::All { .. } => operands.all(|value| value),
+                Node::Odd { .. } => operands.filter(|&value| value).count() == 1,
+                Node::Most { .. } => operands.filter(|&value| value).count() >= 2,
+            };
+            values.push(value);
+        }
+        values
+    }
+
+    #[test]
+    fn every_length_is_sorted_and_counted() {
+        for len in 0..=11 {
+            let mut graph = Graph::over(len);
+            let truths: Vec<Signal> = (0..len).map(|bit| graph.bit(bit)).collect();
+            let sorted = sort(&mut graph, &truths);
+            let binary = to_binary(&mut graph, &sorted);
+            for input in 0..1usize << len {
+                let values = evaluate(&graph, input);
+                let of = |signal: &Signal| values[signal.node()] != signal.is_negated();
+                let count = input.count_ones() as usize;
+                assert!(sorted.iter().enumerate().all(|(k, signal)| of(signal) == (count > k)), "{input:b} of {len}");
+                let number = binary.iter().enumerate().map(|(j, signal)| usize::from(of(signal)) << j).sum::<usize>();
+                assert_eq!(number, count, "{input:b} of {len}");
+            }
+        }
+    }
+}

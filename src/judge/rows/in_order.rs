@@ -72,3 +72,41 @@ impl<T, M: FnMut(u64, T) -> Then> Merger<T, M> {
         Then::GoOn
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn results_come_in_order_and_stop_where_asked() {
+        for threads in [1, 2, 5] {
+            let mut seen = Vec::new();
+            let merge = |run, square| {
+                seen.push((run, square));
+                if run == 20 { Then::Stop } else { Then::GoOn }
+            };
+            let merged = in_order(threads, 1000, || (), |(), run| Some(run * run), merge);
+            assert_eq!(merged, 21);
+            assert_eq!(seen, (0..=20).map(|run| (run, run * run)).collect::<Vec<_>>());
+        }
+    }
+
+    #[test]
+    fn nothing_behind_a_run_that_gave_up_is_merged() {
+        for threads in [1, 2] {
+            let mut last = None;
+            let work = |(): &mut (), run| (run != 7).then_some(run);
+            let merged = in_order(
+                threads,
+                100,
+                || (),
+                work,
+                |run, _| {
+                    last = Some(run);
+                    Then::GoOn
+                },
+            );
+            assert!(merged <= 7 && last.is_none_or(|last| last < 7));
+        }
+    }
+}

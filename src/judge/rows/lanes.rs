@@ -99,6 +99,7 @@ impl Row {
     }
 
     /// The value in a lane.
+    #[cfg(test)]
     pub(crate) fn lane(&self, lane: usize) -> bool {
         self.0[lane / 64] >> (lane % 64) & 1 == 1
     }

@@ -110,6 +110,16 @@ wide_fn! {
                     }
                     rows[to as usize] = result;
                 }
+                Step::Most { to, start } => {
+                    let mut result = Row::ZEROS;
+                    let [(a, flip_a), (b, flip_b), (c, flip_c)] =
+                        [0, 1, 2].map(|at| operand(rows, pool[start as usize + at]));
+                    for word in 0..WORDS {
+                        let (a, b, c) = (a.0[word] ^ flip_a, b.0[word] ^ flip_b, c.0[word] ^ flip_c);
+                        result.0[word] = (a & b) | (c & (a | b));
+                    }
+                    rows[to as usize] = result;
+                }
                 Step::Require { start, end } => {
                     let mut some = Row::ZEROS;
                     for &signal in &pool[start as usize..end as usize] {

@@ -31,6 +31,8 @@ pub(crate) enum Step {
     All { to: u32, start: u32, end: u32 },
     /// `to` becomes the exclusive or of two operands.
     Odd { to: u32, a: Operand, b: Operand },
+    /// `to` becomes the majority of the three operands from this place of the pool on.
+    Most { to: u32, start: u32 },
     /// Lanes stay only where some operand in this range of the pool holds.
     Require { start: u32, end: u32 },
     /// Ends the level if no lane is left.
@@ -116,8 +118,7 @@ impl<'a> Builder<'a> {
             let level = match node {
                 Node::No => top,
                 Node::Bit(bit) => places[bit as usize].checked_sub(LANE_BITS).unwrap_or(top),
-                Node::All { .. } => builder.lowest(graph.operands(at)),
-                Node::Odd(a, b) => builder.lowest(&[a, b]),
+                _ => builder.lowest(graph.operands(at)),
             };
             builder.level_of.push(level);
         }
@@ -145,7 +146,7 @@ impl<'a> Builder<'a> {
             }
         }
         for &conjunct in self.conjuncts {
-            let some = match self.graph.operands(conjunct.node()) {
+            let some = match self.graph.factors(conjunct.node()) {
                 [] if conjunct == Signal::NO => Vec::new(),
                 [] => vec![conjunct],
                 operands => operands.iter().map(|&operand| !operand).collect(),
@@ -164,8 +165,8 @@ impl<'a> Builder<'a> {
                 }
             }
             // What faster levels need of this one.
-            for node in 0..needed.len() {
-                if needed[node] && self.level_of[node] == level {
+            for (node, _) in needed.iter().enumerate().filter(|(_, needed)| **needed) {
+                if self.level_of[node] == level {
                     self.plan_node(node, level);
                 }
             }
@@ -187,10 +188,7 @@ impl<'a> Builder<'a> {
                 continue;
             }
             open.push((node, true));
-            match self.graph.nodes()[node] {
-                Node::Odd(a, b) => open.extend([(b.node(), false), (a.node(), false)]),
-                _ => open.extend(self.graph.operands(node).iter().rev().map(|operand| (operand.node(), false))),
-            }
+            open.extend(self.graph.operands(node).iter().rev().map(|operand| (operand.node(), false)));
         }
     }
 
@@ -198,10 +196,7 @@ impl<'a> Builder<'a> {
         match planned {
             Planned::Look => Vec::new(),
             Planned::Require(some) => some.clone(),
-            Planned::Node(node) => match self.graph.nodes()[*node] {
-                Node::Odd(a, b) => vec![a, b],
-                _ => self.graph.operands(*node).to_vec(),
-            },
+            Planned::Node(node) => self.graph.operands(*node).to_vec(),
         }
     }
 
@@ -251,7 +246,8 @@ impl<'a> Builder<'a> {
                         let to = slots.take();
                         slot_of[*node] = to;
                         match (self.graph.nodes()[*node], &operands[..]) {
-                            (Node::Odd(..), &[a, b]) => Step::Odd { to, a, b },
+                            (Node::Odd { .. }, &[a, b]) => Step::Odd { to, a, b },
+                            (Node::Most { .. }, _) => Step::Most { to, start: pool(&mut tape.pool, &operands).0 },
                             (_, &[a, b]) => Step::And { to, a, b },
                             _ => {
                                 let (start, end) = pool(&mut tape.pool, &operands);

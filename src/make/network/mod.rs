@@ -164,6 +164,11 @@ impl Network {
 
     /// Whether the predicate holds for these bits of the problem.
     pub fn holds(&self, bits: &Bits) -> bool {
+        self.evaluate(bits)[self.root.node()] ^ self.root.is_complemented()
+    }
+
+    /// The value of every node for these bits of the problem.
+    pub fn evaluate(&self, bits: &Bits) -> IdVec<NodeId, bool> {
         let mut values: IdVec<NodeId, bool> = IdVec::new();
         for node in self.nodes.values() {
             let of = |lit: Lit| values[lit.node()] ^ lit.is_complemented();
@@ -175,7 +180,7 @@ impl Network {
             };
             values.push(value);
         }
-        values[self.root.node()] ^ self.root.is_complemented()
+        values
     }
 }
 

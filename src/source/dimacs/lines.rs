@@ -104,11 +104,8 @@ impl<R: Read> Reader<R> {
     /// What follows `c p show`: variables and a 0, in this line.
     fn show_line(&mut self) -> Result<(), Stop> {
         self.shown.get_or_insert_default();
-        loop {
-            match self.show_item()? {
-                ShowItem::Var(var) => self.shown.get_or_insert_default().push(var as u32),
-                ShowItem::Close => break,
-            }
+        while let ShowItem::Var(var) = self.show_item()? {
+            self.shown.get_or_insert_default().push(var as u32);
         }
         match self.blocks.word()? {
             Word::LineEnd => Ok(()),

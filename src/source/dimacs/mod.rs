@@ -12,9 +12,9 @@
 //! before the header, a second header, an extra number in it, text after `%`, `+3`, `-0`); what cannot is read with a
 //! warning (a wrong number of clauses). A line end is `\n`; `\r` is a blank.
 //!
-//! [`blocks`] hands out the file in blocks, [`numbers`] is the hot loop, [`lines`] reads headers and comments, and
-//! [`mistake`] holds the messages. Nothing is allocated for what a header announces before the file was read, beyond
-//! [`RESERVE`].
+//! `blocks` hands out the file in blocks, `numbers` is the hot loop, `lines` reads headers and comments, and
+//! `mistake` holds the messages. Nothing is allocated for what a header announces before the file was read, beyond
+//! `RESERVE`.
 
 mod blocks;
 mod lines;

@@ -194,10 +194,9 @@ impl<R: BufRead> Frames<R> {
 fn frame_fault(fault: FrameDecoderError) -> io::Error {
     let mut cause: Option<&(dyn std::error::Error + 'static)> = Some(&fault);
     while let Some(error) = cause {
-        if let Some(inner) = error.downcast_ref::<io::Error>() {
-            if inner.kind() == io::ErrorKind::UnexpectedEof {
-                return io::ErrorKind::UnexpectedEof.into();
-            }
+        let kind = error.downcast_ref::<io::Error>().map(io::Error::kind);
+        if kind == Some(io::ErrorKind::UnexpectedEof) {
+            return io::ErrorKind::UnexpectedEof.into();
         }
         cause = error.source();
     }

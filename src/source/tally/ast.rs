@@ -287,7 +287,7 @@ impl<'t> Ast<'t> {
     }
 
     /// How many nodes.
-    pub fn len(&self) -> usize {
+    pub fn node_count(&self) -> usize {
         self.nodes.len()
     }
 }

@@ -15,10 +15,10 @@ impl Lowering<'_, '_> {
     /// Adds the constraints of a `must`.
     pub(crate) fn constrain(&mut self, node: NodeId, statement: Span) -> Lowered<()> {
         let ast = self.ast;
-        if let Kind::Over(Word::All, list) = ast.get(node).kind {
-            if matches!(ast.get(list).kind, Kind::List(List::Each { .. })) {
-                return self.elements(list, &mut |lowering, body| lowering.constrain(body, statement));
-            }
+        if let Kind::Over(Word::All, list) = ast.get(node).kind
+            && matches!(ast.get(list).kind, Kind::List(List::Each { .. }))
+        {
+            return self.elements(list, &mut |lowering, body| lowering.constrain(body, statement));
         }
         let val = self.lower(node)?;
         if val == Val::Const(1) && !self.turns.is_empty() {

@@ -182,7 +182,8 @@ fn finish(reader: Reader<'_>, name: &str) -> Result<(Problem, Vec<Diagnostic>), 
             // Picks are declared in the order of their variables.
             let vars = next..next + pick.cells.len();
             next = vars.end;
-            if !vars.is_empty() && !mentioned[vars].contains(&true) {
+            let searched = problem.vars().as_slice()[vars.clone()].iter().any(|var| var.width > 0);
+            if searched && !mentioned[vars].contains(&true) {
                 out.push(values::unused(pick.name.span, pick.name.text));
             }
         }

@@ -66,7 +66,7 @@ fn starts(text: &str, tokens: &[Placed<'_>]) -> Vec<usize> {
         let Some(&(_, before, hi)) = at.checked_sub(1).map(|at| &tokens[at]) else { return true };
         let same_line = !text[hi..lo].contains('\n');
         let bound = before == Tok::At && matches!(token, Tok::Least | Tok::Most);
-        !bound && !(same_line && wants_name(before))
+        !(bound || same_line && wants_name(before))
     };
     (0..tokens.len()).filter(|&at| begins(at)).collect()
 }

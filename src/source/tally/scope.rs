@@ -53,7 +53,7 @@ pub enum Dim {
 
 impl Dim {
     /// How many elements.
-    pub fn len(self) -> usize {
+    pub fn size(self) -> usize {
         match self {
             Dim::Range { len, .. } | Dim::Kind(_, len) => len,
         }

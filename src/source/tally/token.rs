@@ -268,7 +268,7 @@ fn meant(sign: &str) -> Option<(Tok<'static>, &'static str)> {
 }
 
 /// The reserved words, in the order of the tokens.
-pub const RESERVED: [&str; 35] = [
+pub const RESERVED: [&str; 37] = [
     "title",
     "known",
     "kind",
@@ -304,6 +304,8 @@ pub const RESERVED: [&str; 35] = [
     "smallest",
     "largest",
     "different",
+    "odd",
+    "even",
 ];
 
 impl Tok<'_> {
@@ -316,7 +318,7 @@ impl Tok<'_> {
 
 /// Whether a word is reserved.
 pub fn is_reserved(word: &str) -> bool {
-    RESERVED.contains(&word) || matches!(word, "odd" | "even")
+    RESERVED.contains(&word)
 }
 
 #[cfg(test)]
@@ -333,7 +335,7 @@ mod tests {
 
     #[test]
     fn every_reserved_word_is_a_token_of_its_own_and_no_name() {
-        for word in RESERVED.into_iter().chain(["odd", "even"]) {
+        for word in RESERVED {
             let (tokens, messages) = tokens(word);
             assert!(matches!(tokens[..], [token] if !matches!(token, Tok::Name(_))), "{word}");
             assert!(messages.is_empty());

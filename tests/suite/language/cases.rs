@@ -15,22 +15,22 @@ use tallymark::source::tally;
 use tallymark::span::{Sources, Span};
 
 /// A case.
-pub struct Case {
-    pub path: PathBuf,
-    pub text: String,
-    pub keys: Vec<(String, String)>,
+pub(super) struct Case {
+    pub(super) path: PathBuf,
+    pub(super) text: String,
+    pub(super) keys: Vec<(String, String)>,
 }
 
 /// What reading it gave.
-pub struct Outcome {
-    pub problem: Option<Problem>,
+pub(super) struct Outcome {
+    pub(super) problem: Option<Problem>,
     /// `error CODE places`, `warning CODE places`, in order.
-    pub messages: Vec<String>,
-    pub diagnostics: Vec<Diagnostic>,
+    pub(super) messages: Vec<String>,
+    pub(super) diagnostics: Vec<Diagnostic>,
 }
 
 /// All cases of a folder, by name.
-pub fn cases(folder: &str) -> Vec<Case> {
+pub(super) fn cases(folder: &str) -> Vec<Case> {
     let root = Path::new(env!("CARGO_MANIFEST_DIR")).join(folder);
     let entries = std::fs::read_dir(&root).unwrap_or_else(|error| panic!("{}: {error}", root.display()));
     let mut paths: Vec<PathBuf> = entries.map(|entry| entry.unwrap().path()).collect();
@@ -40,7 +40,7 @@ pub fn cases(folder: &str) -> Vec<Case> {
 }
 
 /// One case.
-pub fn read_case(path: PathBuf) -> Case {
+pub(super) fn read_case(path: PathBuf) -> Case {
     let text = std::fs::read_to_string(&path).unwrap();
     let keys = text.lines().filter_map(|line| line.strip_prefix("#:")).map(|line| {
         let line = line.trim();
@@ -55,25 +55,25 @@ pub fn read_case(path: PathBuf) -> Case {
 
 impl Case {
     /// The values of a key.
-    pub fn all(&self, key: &str) -> Vec<&str> {
+    pub(super) fn all(&self, key: &str) -> Vec<&str> {
         self.keys.iter().filter(|(name, _)| name == key).map(|(_, value)| value.as_str()).collect()
     }
 
     /// The number under a key.
-    pub fn number(&self, key: &str) -> Option<u64> {
+    pub(super) fn number(&self, key: &str) -> Option<u64> {
         let values = self.all(key);
         assert!(values.len() <= 1, "{}: `{key}` more than once", self.path.display());
         values.first().map(|value| value.parse().unwrap())
     }
 
     /// The messages the case expects.
-    pub fn messages(&self) -> Vec<String> {
+    pub(super) fn messages(&self) -> Vec<String> {
         let messages = self.keys.iter().filter(|(key, _)| key == "error" || key == "warning");
         messages.map(|(key, value)| format!("{key} {value}")).collect()
     }
 
     /// Reads the puzzle.
-    pub fn run(&self) -> Outcome {
+    pub(super) fn run(&self) -> Outcome {
         let sets: Vec<(String, String)> = self
             .all("set")
             .into_iter()
@@ -92,7 +92,7 @@ impl Case {
     }
 
     /// With `BLESS=1`, writes the messages found into the case; else compares.
-    pub fn expect_messages(&self, found: &[String]) {
+    pub(super) fn expect_messages(&self, found: &[String]) {
         if std::env::var("BLESS").is_ok_and(|bless| bless == "1") {
             let kept =
                 self.text.lines().filter(|line| !line.starts_with("#: error") && !line.starts_with("#: warning"));

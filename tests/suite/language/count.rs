@@ -11,7 +11,7 @@ struct Part {
 }
 
 /// The number of solutions of a problem without clauses.
-pub fn solutions(problem: &Problem) -> u64 {
+pub(super) fn solutions(problem: &Problem) -> u64 {
     assert!(problem.clauses.is_empty() && problem.shown.is_none(), "the language makes no clauses");
     let mut by_last: Vec<Vec<Part>> = (0..=problem.vars().len()).map(|_| Vec::new()).collect();
     for constraint in &problem.constraints {

@@ -1,6 +1,6 @@
 //! Whole searches, simulated gate by gate.
 
-use tallymark::circuit::{Circuit, Level, Mark, SEARCH};
+use tallymark::circuit::{Circuit, Level, MARK, Mark, SEARCH};
 use tallymark::problem::{Expr, ExprId, Origin, Problem, Table};
 use tallymark::search::whole::whole_search;
 
@@ -40,10 +40,14 @@ fn check_search(circuit: &Circuit, solutions: &[bool], iterations: u64) {
     let mut state = Quantum::new([(0u128, (1.0, 0.0))], circuit, iterations);
     state.run_before_found(circuit);
     let (mut overlap, mut norm) = ((0.0, 0.0), 0.0);
+    let mark = circuit.register(MARK).len();
     for (&at, &(re, im)) in &state.amplitudes {
-        assert_eq!(at >> n, 0, "the work qubits are clean");
-        let hit = solutions[at as usize];
+        assert_eq!(at >> (n + mark), 0, "the work qubits are clean");
+        let hit = solutions[at as usize & (solutions.len() - 1)];
         let wanted = if hit { angle.sin() / marked.sqrt() } else { angle.cos() / (size - marked).sqrt() };
+        // The mark of a bit oracle is in (|0> - |1>) / sqrt 2.
+        let minus = if at >> n == 1 { -std::f64::consts::FRAC_1_SQRT_2 } else { std::f64::consts::FRAC_1_SQRT_2 };
+        let wanted = if mark == 1 { wanted * minus } else { wanted };
         overlap = (overlap.0 + wanted * re, overlap.1 + wanted * im);
         norm += re * re + im * im;
     }
@@ -59,9 +63,11 @@ fn searches_have_the_amplitudes_of_the_published_law() {
             let (problem, solutions) = with_solutions(n, marked);
             let network = network_of(&problem);
             for level in Level::ALL {
-                let oracle = oracle(&network, level, Mark::Phase).unwrap();
-                for iterations in 0..4 {
-                    check_search(&whole_search(&oracle, iterations, level), &solutions, iterations);
+                for mark in [Mark::Phase, Mark::Bit] {
+                    let oracle = oracle(&network, level, mark).unwrap();
+                    for iterations in 0..4 {
+                        check_search(&whole_search(&oracle, iterations, level), &solutions, iterations);
+                    }
                 }
             }
         }

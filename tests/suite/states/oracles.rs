@@ -7,7 +7,7 @@ use tallymark::budget::Budget;
 use tallymark::circuit::qasm::read::read;
 use tallymark::circuit::{Circuit, Condition, Control, Op, QubitId};
 use tallymark::id::Id;
-use tallymark::judge::audit::labelled::audit_superposition;
+use tallymark::judge::audit::superposition::audit_superposition;
 use tallymark::judge::audit::{AuditError, How, Options, Outcome, Phases, Verdict};
 use tallymark::places::Places;
 use tallymark::problem::{BitLit, Problem};
@@ -65,10 +65,10 @@ fn written_circuits_get_their_verdicts() {
                 wrong.push(format!("{name}: the witness does not say {part:?}: {verdict:?}"));
             }
         }
-        if let (Some(part), Ok(verdict)) = (said("note"), &result) {
-            if !verdict.notes.iter().any(|note| note.contains(part)) {
-                wrong.push(format!("{name}: no note says {part:?}: {verdict:?}"));
-            }
+        if let (Some(part), Ok(verdict)) = (said("note"), &result)
+            && !verdict.notes.iter().any(|note| note.contains(part))
+        {
+            wrong.push(format!("{name}: no note says {part:?}: {verdict:?}"));
         }
     }
     assert!(wrong.is_empty(), "{}", wrong.join("\n"));
@@ -111,8 +111,8 @@ fn chain(n: usize) -> Circuit {
     let work = circuit.add_qubits("work", n - 1);
     let outcome = circuit.add_measured("outcome", n - 1);
     let inputs = |at: usize| (if at == 0 { search[0] } else { work[at - 1] }, search[at + 1]);
-    for at in 0..n - 1 {
-        and(&mut circuit, inputs(at).0, inputs(at).1, work[at]);
+    for (at, &target) in work.iter().enumerate() {
+        and(&mut circuit, inputs(at).0, inputs(at).1, target);
     }
     circuit.push(Op::Z, &[], work[n - 2]);
     for at in (0..n - 1).rev() {

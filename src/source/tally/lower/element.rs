@@ -2,7 +2,7 @@
 //! can reach, several of them flattened into one index.
 
 use super::{Lowered, Lowering};
-use crate::problem::{Domain, Expr, ExprId};
+use crate::problem::{Expr, ExprId};
 use crate::source::tally::ast::{Name, NodeId};
 use crate::source::tally::check::Meaning;
 use crate::source::tally::mistakes::values;
@@ -39,14 +39,14 @@ impl<'t> Lowering<'_, 't> {
             }
         };
         let first = i128::from(dim.first());
-        if lo < first || hi >= first + dim.len() as i128 {
+        if lo < first || hi >= first + dim.size() as i128 {
             let found = match chooser {
                 None => format!("is {lo}"),
-                Some(id) => format!("reaches from {lo} to {hi}{}", self.causes(id)),
+                Some(id) => format!("reaches from {lo} to {hi}{}", self.causes(vec![id])),
             };
             let row = match dim {
-                _ if dim.len() == 0 => "an empty row".to_owned(),
-                Dim::Range { .. } => format!("{} to {}", first, first + dim.len() as i128 - 1),
+                _ if dim.size() == 0 => "an empty row".to_owned(),
+                Dim::Range { .. } => format!("{} to {}", first, first + dim.size() as i128 - 1),
                 Dim::Kind(kind, _) => format!("the values of {}", self.build.problem.kinds[kind].name),
             };
             let mistake = values::outside(span, name, &found, &row, declared, &self.turn());
@@ -54,31 +54,6 @@ impl<'t> Lowering<'_, 't> {
         }
         let chooser = chooser.filter(|_| lo != hi).map(|id| (id, lo as i64));
         Ok(Reach { first: (lo - first) as usize, len: (hi - lo + 1) as usize, chooser })
-    }
-
-    /// The picks that an index depends on, with their ranges: ` (x in 0 to 4)`; empty for many.
-    fn causes(&self, id: ExprId) -> String {
-        const MANY: usize = 4;
-        let problem = &self.build.problem;
-        let mut open = vec![id];
-        let mut vars = Vec::new();
-        // A large expression would not be listed anyway.
-        for _ in 0..1000 {
-            let Some(id) = open.pop() else { break };
-            match problem.exprs.get(id) {
-                Expr::Var(var) if !vars.contains(&var) => vars.push(var),
-                expr => open.extend(problem.exprs.operands(expr)),
-            }
-        }
-        vars.sort();
-        let range = |&var: &crate::problem::VarId| match problem.vars()[var].domain {
-            Domain::Range { lo, hi } => format!("{} in {lo} to {hi}", problem.vars()[var].name),
-            _ => problem.vars()[var].name.to_string(),
-        };
-        if vars.is_empty() || vars.len() > MANY || !open.is_empty() {
-            return String::new();
-        }
-        format!(" ({})", vars.iter().map(range).collect::<Vec<_>>().join(", "))
     }
 
     fn choose(&mut self, row: &Row, reaches: &[Reach], span: Span) -> Lowered {
@@ -126,6 +101,6 @@ fn reached(row: &Row, reaches: &[Reach], at: usize, base: usize, cells: &mut Vec
         return;
     };
     for place in reach.first..reach.first + reach.len {
-        reached(row, reaches, at + 1, base * row.dims[at].len() + place, cells);
+        reached(row, reaches, at + 1, base * row.dims[at].size() + place, cells);
     }
 }

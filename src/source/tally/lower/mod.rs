@@ -10,6 +10,7 @@
 //! it, and the turns that a `with` leaves out. Constant means known after folding; ranges alone kill nothing.
 
 mod build;
+mod definition;
 mod element;
 mod logic;
 mod numbers;
@@ -19,11 +20,12 @@ mod rows;
 use std::fmt::Write as _;
 
 pub(crate) use build::Builder;
+pub(crate) use definition::Cells;
 pub(crate) use rows::Run;
 
 use crate::diag::Diagnostic;
 use crate::problem::check::Interval;
-use crate::problem::{Compare, Expr, ExprId};
+use crate::problem::{Compare, Domain, Expr, ExprId, VarId};
 use crate::source::tally::ast::{Ast, Comparison, Kind, NodeId, Op, children};
 use crate::source::tally::check::{Facts, Meaning};
 use crate::source::tally::mistakes::values;
@@ -125,7 +127,8 @@ impl<'t> Lowering<'_, 't> {
         match self.build.add(expr, span) {
             Ok(id) => Ok(Val::Node(id)),
             Err(range) => {
-                let mistake = values::too_wide(span, range, &self.turn());
+                let causes = self.causes(self.build.problem.exprs.operands(expr));
+                let mistake = values::too_wide(span, range, &format!("{causes}{}", self.turn()));
                 self.mistake(mistake)
             }
         }
@@ -188,13 +191,36 @@ impl<'t> Lowering<'_, 't> {
 
     /// A value in words.
     pub(crate) fn value_text(&self, ty: Ty, value: i64) -> String {
-        use crate::problem::Domain;
         let domain = match ty {
             Ty::YesNo => Domain::YesNo,
             Ty::Kind(kind) => Domain::Kind(kind),
             Ty::Int | Ty::Unknown => return value.to_string(),
         };
         self.build.problem.value_name(domain, value)
+    }
+
+    /// The picks that expressions depend on, with their ranges: ` (x in 0 to 4)`; empty for many.
+    pub(crate) fn causes(&self, mut open: Vec<ExprId>) -> String {
+        const MANY: usize = 4;
+        let problem = &self.build.problem;
+        let mut vars = Vec::new();
+        // A large expression would not be listed anyway.
+        for _ in 0..1000 {
+            let Some(id) = open.pop() else { break };
+            match problem.exprs.get(id) {
+                Expr::Var(var) if !vars.contains(&var) => vars.push(var),
+                expr => open.extend(problem.exprs.operands(expr)),
+            }
+        }
+        vars.sort();
+        let range = |&var: &VarId| match problem.vars()[var].domain {
+            Domain::Range { lo, hi } => format!("{} in {lo} to {hi}", problem.vars()[var].name),
+            _ => problem.vars()[var].name.to_string(),
+        };
+        if vars.is_empty() || vars.len() > MANY || !open.is_empty() {
+            return String::new();
+        }
+        format!(" ({})", vars.iter().map(range).collect::<Vec<_>>().join(", "))
     }
 
     fn name(&self, id: NodeId) -> Val {
@@ -214,15 +240,15 @@ impl<'t> Lowering<'_, 't> {
         let mut open = vec![id];
         while let Some(id) = open.pop() {
             let node = self.ast.get(id);
-            if let (Kind::Name(name), Meaning::Entity(entity)) = (&node.kind, self.facts.meaning(id)) {
-                if let Some(declared) = self.picked(entity) {
-                    return Some((*name, node.span, declared));
-                }
+            if let (Kind::Name(name), Meaning::Entity(entity)) = (&node.kind, self.facts.meaning(id))
+                && let Some(declared) = self.picked(entity)
+            {
+                return Some((*name, node.span, declared));
             }
-            if let (Kind::Index(name, _), Meaning::Entity(entity)) = (&node.kind, self.facts.meaning(id)) {
-                if let Some(declared) = self.picked(entity) {
-                    return Some((name.text, node.span, declared));
-                }
+            if let (Kind::Index(name, _), Meaning::Entity(entity)) = (&node.kind, self.facts.meaning(id))
+                && let Some(declared) = self.picked(entity)
+            {
+                return Some((name.text, node.span, declared));
             }
             open.extend(children(&node.kind).into_iter().rev());
         }

@@ -1,0 +1,352 @@
+//! The audit of a whole search file: is it the search that the problem asks for?
+//!
+//! Input: a problem, its places, a circuit that prepares, iterates and measures. Output: a [`SearchVerdict`]. The circuit
+//! is followed gate by gate from |0...0> (`machine`); the solutions come from the problem alone. It must
+//! prepare the uniform superposition of all strings; after j iterations each amplitude must be the one that theory says
+//! (`profile`) up to one global phase, with every other qubit clean; and it must end by measuring
+//! `search[i]` into `found[i]`.
+//!
+//! One turn of a loop must be one iteration. What stands outside of loops may hold iterations too (a loop of one turn
+//! is written without a loop): their number is the least that explains the state.
+//!
+//! A loop with many turns need not be followed to its end. States between iterations lie in a plane (spanned by the
+//! uniform superpositions of the solutions and of the rest); two followed turns say what the body does to two
+//! independent vectors of it, so if the body is unitary, it does the same in every further turn.
+
+mod entries;
+mod machine;
+mod profile;
+
+use self::entries::Rows;
+use self::machine::{MOST_ENTRIES, Machine, SEED};
+use self::profile::{Fit, Profile};
+use super::state::Stop;
+use super::state::amplitude::Complex;
+use super::superposition::run::in_words;
+use super::{AuditError, Outcome};
+use crate::budget::Budget;
+use crate::circuit::{Circuit, FOUND, Gate, Op, QubitId, SEARCH};
+use crate::id::Id;
+use crate::judge::rows;
+use crate::places::Places;
+use crate::problem::Problem;
+
+/// The largest distance of an amplitude from what it must be.
+pub const TOLERANCE: f64 = 1e-9;
+/// At most so many bytes for a state, unless the budget says otherwise.
+const MEMORY: u64 = 1 << 30;
+/// The largest search register that is followed.
+const MOST_BITS: usize = 26;
+/// At most so many iterations outside of loops.
+const MOST_UNROLLED: u64 = 1 << 12;
+
+/// The verdict on a search file.
+#[derive(Clone, PartialEq, Debug)]
+pub struct SearchVerdict {
+    /// What was found.
+    pub outcome: Outcome,
+    /// Iterations in the file; whoever planned the search compares this with the plan.
+    pub iterations: u64,
+    /// Iterations that were followed gate by gate.
+    pub iterations_checked: u64,
+    /// The probability of the solutions after those iterations, from the amplitudes.
+    pub success: f64,
+    /// The largest distance of an amplitude from what it must be.
+    pub deviation: f64,
+    /// What the verdict rests on, and what is wrong.
+    pub notes: Vec<String>,
+}
+
+/// Follows a search file and compares it with the search for this problem. `work_limit` bounds the amplitudes that are
+/// computed; at least one turn of a loop is followed.
+pub fn audit_search(
+    problem: &Problem,
+    places: &Places,
+    circuit: &Circuit,
+    work_limit: u64,
+    budget: &Budget,
+) -> Result<SearchVerdict, AuditError> {
+    places.check(problem)?;
+    let search = search_register(places, circuit)?;
+    if let Some(verdict) = too_large(circuit, &search, budget) {
+        return Ok(verdict);
+    }
+    audit_search_against(&rows::truth(problem, &places.searched), places, circuit, work_limit, budget)
+}
+
+/// The same, with the truth table at hand: bit `v` says whether the string `v` is marked.
+pub fn audit_search_against(
+    truth: &[u64],
+    places: &Places,
+    circuit: &Circuit,
+    work_limit: u64,
+    budget: &Budget,
+) -> Result<SearchVerdict, AuditError> {
+    let search = search_register(places, circuit)?;
+    if let Some(verdict) = too_large(circuit, &search, budget) {
+        return Ok(verdict);
+    }
+    let profile = Profile::new(truth, search.len());
+    let machine = Machine::new(circuit, &search);
+    let mut follower = Follower {
+        circuit,
+        search,
+        profile,
+        machine,
+        work_limit,
+        budget,
+        verdict: open(),
+        phase: Complex { re: 1.0, im: 0.0 },
+        unfollowed: false,
+        since_check: 0,
+    };
+    match follower.follow() {
+        Ok(()) => {}
+        Err(end) => follower.end(&end),
+    }
+    Ok(follower.verdict)
+}
+
+fn open() -> SearchVerdict {
+    SearchVerdict {
+        outcome: Outcome::Undecided,
+        iterations: 0,
+        iterations_checked: 0,
+        success: 0.0,
+        deviation: 0.0,
+        notes: Vec::new(),
+    }
+}
+
+fn search_register(places: &Places, circuit: &Circuit) -> Result<Vec<QubitId>, AuditError> {
+    if places.search_len() == 0 {
+        return Err(AuditError::NothingToSearch);
+    }
+    let search = circuit.register(SEARCH);
+    match search.len() {
+        0 => Err(AuditError::NoRegister(SEARCH)),
+        found if found == places.search_len() => Ok(search),
+        found => Err(AuditError::RegisterSize { name: SEARCH, found, expected: places.search_len() }),
+    }
+}
+
+/// The verdict where the search does not fit the memory.
+fn too_large(circuit: &Circuit, search: &[QubitId], budget: &Budget) -> Option<SearchVerdict> {
+    let bits = search.len();
+    let fits = bits <= MOST_BITS && Rows::bytes(bits, circuit.qubit_count()) * 2 <= budget.memory().unwrap_or(MEMORY);
+    (!fits).then(|| SearchVerdict {
+        notes: vec![format!("not followed: a search over {bits} bits does not fit this machine's memory limit")],
+        ..open()
+    })
+}
+
+/// Why following ended early.
+enum End {
+    Differs(String),
+    Undecided(String),
+}
+
+struct Follower<'c> {
+    circuit: &'c Circuit,
+    search: Vec<QubitId>,
+    profile: Profile<'c>,
+    machine: Machine<'c>,
+    work_limit: u64,
+    budget: &'c Budget,
+    verdict: SearchVerdict,
+    /// The global phase at the last comparison.
+    phase: Complex,
+    /// Whether turns of a loop were not followed.
+    unfollowed: bool,
+    since_check: u32,
+}
+
+impl<'c> Follower<'c> {
+    fn follow(&mut self) -> Result<(), End> {
+        let circuit = self.circuit;
+        let tail = self.check_measurement()?;
+        for (at, block) in circuit.blocks().iter().enumerate() {
+            let end = (block.gates.end as usize).min(tail);
+            let gates = circuit.gates().get(block.gates.start as usize..end).unwrap_or(&[]);
+            if gates.is_empty() && at > 0 {
+                continue;
+            }
+            if self.unfollowed {
+                return Err(End::Undecided("gates after the turns that were not followed are not judged".to_owned()));
+            }
+            match block.repeat {
+                1 => self.plain(gates)?,
+                turns => self.turns(gates, turns)?,
+            }
+        }
+        self.verdict.outcome = Outcome::Equal;
+        if self.machine.drawn > 0 {
+            let note = format!(
+                "{} measurement outcomes inside the search were drawn from seed {SEED}; others are not covered",
+                self.machine.drawn
+            );
+            self.verdict.notes.push(note);
+        }
+        self.verdict.notes.push(format!("amplitudes agree within {TOLERANCE:e}"));
+        Ok(())
+    }
+
+    /// The place where the final measurement begins; it must take `search[i]` to `found[i]`.
+    fn check_measurement(&self) -> Result<usize, End> {
+        let gates = self.circuit.gates();
+        let is_last = |gate: &&Gate| gate.op() == Op::Measure && gate.condition().is_none();
+        let in_loop = self.circuit.blocks().last().filter(|block| block.repeat != 1);
+        let count = gates.iter().rev().take_while(is_last).count();
+        let start = match in_loop {
+            Some(_) => gates.len(),
+            None => gates.len() - count.min(self.last_block_len()),
+        };
+        let found = self.circuit.measured.iter().find(|register| register.name == FOUND);
+        let found = found.ok_or_else(|| End::Differs(format!("there is no register `{FOUND}` for the result")))?;
+        if found.len as usize != self.search.len() {
+            let text = format!("`{FOUND}` has {} bits, `{SEARCH}` has {}", found.len, self.search.len());
+            return Err(End::Differs(text));
+        }
+        // The first measurement that has to be a final one: those of work qubits before it belong to the search.
+        let mut from = vec![None; self.search.len()];
+        for gate in &gates[start..] {
+            let bit = gate.measured().expect("only measurements").index();
+            if let Some(at) = bit.checked_sub(found.start as usize).filter(|&at| at < from.len()) {
+                from[at] = Some(gate.target());
+            }
+        }
+        for (at, (&measured, &qubit)) in from.iter().zip(&self.search).enumerate() {
+            if measured != Some(qubit) {
+                let got =
+                    measured.map_or("never".to_owned(), |other| format!("from {}", self.circuit.qubit_name(other)));
+                let wanted = self.circuit.qubit_name(qubit);
+                return Err(End::Differs(format!(
+                    "{FOUND}[{at}] is to be measured from {wanted} at the end, and is measured {got}"
+                )));
+            }
+        }
+        Ok(start)
+    }
+
+    fn last_block_len(&self) -> usize {
+        self.circuit.blocks().last().map_or(0, |block| block.gates.len())
+    }
+
+    /// Gates outside of loops: the least number of iterations that explains the state after them.
+    fn plain(&mut self, gates: &[Gate]) -> Result<(), End> {
+        self.run(gates)?;
+        let amplitudes = self.amplitudes()?;
+        let at = |value: usize| amplitudes[value];
+        let sums = self.profile.sums(at);
+        self.verdict.success = sums.success;
+        let first = self.verdict.iterations;
+        let mut nearest = f64::INFINITY;
+        for turns in first..=first + MOST_UNROLLED {
+            if self.profile.is_excluded(turns, &sums, 1e-6) {
+                continue;
+            }
+            let fit = self.profile.fit(turns, &sums, at);
+            nearest = nearest.min(fit.deviation);
+            if fit.deviation <= TOLERANCE {
+                self.take(turns, &fit);
+                return Ok(());
+            }
+        }
+        self.verdict.deviation =
+            if nearest.is_finite() { nearest } else { self.profile.fit(first, &sums, at).deviation };
+        let what =
+            if first == 0 { "the start state, nor that after some iterations" } else { "that after some iterations" };
+        Err(End::Differs(format!("the state outside of loops is not {what}")))
+    }
+
+    fn take(&mut self, turns: u64, fit: &Fit) {
+        self.verdict.iterations = turns;
+        self.verdict.iterations_checked = turns;
+        self.verdict.deviation = self.verdict.deviation.max(fit.deviation);
+        self.phase = fit.phase;
+    }
+
+    /// A loop: one iteration a turn.
+    fn turns(&mut self, gates: &[Gate], turns: u64) -> Result<(), End> {
+        let is_unitary = gates.iter().all(|gate| gate.op().is_unitary() && gate.condition().is_none());
+        let first = self.verdict.iterations;
+        // Where everything or nothing is marked there is one state only, and one turn says all.
+        let needed = if (2.0 * self.profile.theta).sin().abs() < 1e-9 { 1 } else { 2 };
+        let mut steps: Vec<Complex> = Vec::new();
+        for turn in 1..=turns {
+            let before = self.machine.updates();
+            self.run(gates)?;
+            let cost = self.machine.updates() - before;
+            let amplitudes = self.amplitudes()?;
+            let at = |value: usize| amplitudes[value];
+            let sums = self.profile.sums(at);
+            self.verdict.success = sums.success;
+            let fit = self.profile.fit(first + turn, &sums, at);
+            if fit.deviation > TOLERANCE {
+                self.verdict.deviation = self.verdict.deviation.max(fit.deviation);
+                return Err(End::Differs(format!(
+                    "the state after turn {turn} of the loop is not that after {} iterations",
+                    first + turn
+                )));
+            }
+            let back = Complex { re: self.phase.re, im: -self.phase.im };
+            steps.push(fit.phase.times(back));
+            self.take(first + turn, &fit);
+            if turn < turns && self.machine.updates() + cost > self.work_limit {
+                self.verdict.iterations = first.saturating_add(turns);
+                self.unfollowed = true;
+                let same = |a: &Complex, b: &Complex| (a.re - b.re).abs() + (a.im - b.im).abs() < 1e3 * TOLERANCE;
+                if is_unitary && steps.len() >= needed && steps.iter().all(|step| same(step, &steps[0])) {
+                    let note = format!(
+                        "{turn} of {turns} turns of the loop were followed; the others follow, since its body is unitary and does the same to two independent states"
+                    );
+                    self.verdict.notes.push(note);
+                    return Ok(());
+                }
+                return Err(End::Undecided(format!(
+                    "{turn} of {turns} turns of the loop were followed within the work limit"
+                )));
+            }
+        }
+        Ok(())
+    }
+
+    fn run(&mut self, gates: &[Gate]) -> Result<(), End> {
+        for gate in gates {
+            self.since_check += 1;
+            if self.since_check.is_multiple_of(16) {
+                self.budget.report("audit of the search", self.verdict.iterations_checked, None);
+                if self.budget.spent() {
+                    return Err(End::Undecided("the budget ran out".to_owned()));
+                }
+            }
+            self.machine.apply(gate).map_err(|stop| {
+                let gate = in_words(self.circuit, gate);
+                End::Undecided(match stop {
+                    Stop::Entries => {
+                        format!("at `{gate}` more than {MOST_ENTRIES} basis states would have to be followed")
+                    }
+                    Stop::Gate | Stop::Overflow => format!("`{gate}` is not followed"),
+                })
+            })?;
+        }
+        Ok(())
+    }
+
+    fn amplitudes(&mut self) -> Result<Vec<Complex>, End> {
+        let circuit = self.circuit;
+        self.machine.amplitudes().map_err(|residue| {
+            let name = circuit.qubit_name(residue.qubit);
+            End::Differs(format!("{name} is 1 between iterations where `{SEARCH}` is {}", residue.value))
+        })
+    }
+
+    fn end(&mut self, end: &End) {
+        let (outcome, text) = match end {
+            End::Differs(text) => (Outcome::Differs, text),
+            End::Undecided(text) => (Outcome::Undecided, text),
+        };
+        self.verdict.outcome = outcome;
+        self.verdict.notes.push(text.clone());
+    }
+}

@@ -1,0 +1,141 @@
+//! What a search must be after j iterations, and how far a state is from it.
+//!
+//! With N start strings of which M are marked and sin^2 theta = M/N, after j iterations each marked string has the
+//! amplitude sin((2j+1) theta) / sqrt(M) and each other one cos((2j+1) theta) / sqrt(N-M), up to a global phase.
+//!
+//! # References
+//! - M. Boyer, G. Brassard, P. Hoyer, A. Tapp: _Tight bounds on quantum searching_, Fortschritte der Physik 46:493,
+//!   1998, section 3.
+
+use crate::judge::audit::state::amplitude::Complex;
+
+/// The search, as the problem says it.
+pub(super) struct Profile<'t> {
+    truth: &'t [u64],
+    /// Start strings.
+    all: f64,
+    /// Marked ones.
+    marked: f64,
+    pub(super) theta: f64,
+}
+
+/// How a state compares with a profile.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Fit {
+    /// The largest distance of an amplitude from what it must be.
+    pub(super) deviation: f64,
+    /// The global phase that was taken out.
+    pub(super) phase: Complex,
+}
+
+/// What a state is made of: sums over the marked and over the other strings.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Sums {
+    marked: Complex,
+    other: Complex,
+    /// The probability of the marked strings.
+    pub(super) success: f64,
+}
+
+impl<'t> Profile<'t> {
+    /// The profile of a search over 2^`bits` strings; bit `v` of `truth` says whether string `v` is marked.
+    pub(super) fn new(truth: &'t [u64], bits: usize) -> Self {
+        let all = (1u64 << bits) as f64;
+        let len = 1usize << bits;
+        let marked = (0..len.div_ceil(64)).map(|word| (truth[word] & low(len - word * 64)).count_ones()).sum::<u32>();
+        let marked = f64::from(marked);
+        Self { truth, all, marked, theta: (marked / all).sqrt().asin() }
+    }
+
+    pub(super) fn is_marked(&self, value: usize) -> bool {
+        self.truth[value / 64] >> (value % 64) & 1 == 1
+    }
+
+    /// The amplitudes of a marked string and of another one after `turns` iterations.
+    fn amplitudes(&self, turns: u64) -> (f64, f64) {
+        let (sin, cos) = ((2.0 * turns as f64 + 1.0) * self.theta).sin_cos();
+        let others = self.all - self.marked;
+        let per = |value: f64, number: f64| if number > 0.0 { value / number.sqrt() } else { 0.0 };
+        (per(sin, self.marked), per(cos, others))
+    }
+
+    /// The success probability after `turns` iterations.
+    pub(super) fn success(&self, turns: u64) -> f64 {
+        ((2.0 * turns as f64 + 1.0) * self.theta).sin().powi(2)
+    }
+
+    /// Sums over a state; `amplitude` gives that of each string.
+    pub(super) fn sums(&self, amplitude: impl Fn(usize) -> Complex) -> Sums {
+        let nothing = Complex { re: 0.0, im: 0.0 };
+        let mut sums = Sums { marked: nothing, other: nothing, success: 0.0 };
+        for value in 0..self.all as usize {
+            let a = amplitude(value);
+            let sum = if self.is_marked(value) {
+                sums.success += a.norm();
+                &mut sums.marked
+            } else {
+                &mut sums.other
+            };
+            *sum = Complex { re: sum.re + a.re, im: sum.im + a.im };
+        }
+        sums
+    }
+
+    /// How far a state with these sums is from `turns` iterations.
+    pub(super) fn fit(&self, turns: u64, sums: &Sums, amplitude: impl Fn(usize) -> Complex) -> Fit {
+        let (marked, other) = self.amplitudes(turns);
+        // The overlap with what must be gives the phase that fits best.
+        let overlap = Complex {
+            re: sums.marked.re * marked + sums.other.re * other,
+            im: sums.marked.im * marked + sums.other.im * other,
+        };
+        let size = overlap.norm().sqrt();
+        let phase = if size > 0.5 { overlap.scaled(1.0 / size) } else { Complex { re: 1.0, im: 0.0 } };
+        let mut deviation: f64 = 0.0;
+        for value in 0..self.all as usize {
+            let wanted = phase.scaled(if self.is_marked(value) { marked } else { other });
+            let a = amplitude(value);
+            let apart = Complex { re: a.re - wanted.re, im: a.im - wanted.im };
+            deviation = deviation.max(apart.norm());
+        }
+        Fit { deviation: deviation.sqrt(), phase }
+    }
+
+    /// Whether the sums alone rule out `turns` iterations, whatever the phase: a cheap test before [`Profile::fit`].
+    pub(super) fn is_excluded(&self, turns: u64, sums: &Sums, tolerance: f64) -> bool {
+        (self.success(turns) - sums.success).abs() > tolerance
+    }
+}
+
+/// The lowest `count` bits, all for 64 and more.
+fn low(count: usize) -> u64 {
+    if count >= 64 { u64::MAX } else { (1 << count) - 1 }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn success_is_that_of_the_published_table() {
+        // Boyer et al. 1998, as exact fractions p_k = a s_k^2 computed by hand: N, M, k, p.
+        let table = [
+            (2, 1, 1, 1.0),
+            (3, 1, 0, 1.0 / 8.0),
+            (3, 1, 1, 25.0 / 32.0),
+            (3, 1, 2, 121.0 / 128.0),
+            (3, 1, 3, 169.0 / 512.0),
+            (3, 1, 6, 32761.0 / 32768.0),
+            (3, 3, 1, 27.0 / 32.0),
+            (3, 6, 0, 3.0 / 4.0),
+            (3, 6, 1, 0.0),
+            (4, 3, 1, 243.0 / 256.0),
+            (4, 3, 2, 2523.0 / 4096.0),
+        ];
+        for (bits, marked, turns, expected) in table {
+            let truth = [(1u64 << marked) - 1];
+            let profile = Profile::new(&truth, bits);
+            assert!((profile.success(turns) - expected).abs() < 1e-12, "{bits} {marked} {turns}");
+        }
+    }
+}
