@@ -1,7 +1,8 @@
 """Compares the tallies of the command with those of the reference readers of this folder.
 
 For every demo in `problems/` and every good case in `tests/cases/language/good/`: the number of solutions and the
-number of bits; cases that note these numbers in the file must agree too. CNF demos are counted by trying every assignment. Nothing is skipped without a line that says why.
+number of bits; cases that note these numbers in the file must agree too. CNF demos are counted by trying every
+assignment. Nothing is skipped without a line that says why.
 """
 
 import pathlib
