@@ -144,7 +144,7 @@ fn usage(error: &clap::Error, json: bool) -> Exit {
 
 fn seconds(text: &str) -> Result<f64, String> {
     match text.parse::<f64>() {
-        Ok(seconds) if seconds.is_finite() && seconds >= 0.0 && seconds <= 1e9 => Ok(seconds),
+        Ok(seconds) if (0.0..=1e9).contains(&seconds) => Ok(seconds),
         _ => Err("expected a number of seconds, such as 2.5".to_owned()),
     }
 }

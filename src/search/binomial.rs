@@ -161,7 +161,7 @@ mod tests {
     fn terms_and_tails_of_small_cases() {
         for trials in 1..=30u64 {
             for p in [0.01, 0.25, 0.5, 0.9, 0.999] {
-                let mut term = (1.0 - p as f64).powi(trials as i32);
+                let mut term = f64::powi(1.0 - p, trials as i32);
                 let mut terms = vec![term];
                 for x in 0..trials {
                     term *= (trials - x) as f64 / (x + 1) as f64 * p / (1.0 - p);
