@@ -1,6 +1,7 @@
 mod command;
 mod counting;
 mod dimacs;
+mod engine;
 mod judging;
 mod language;
 mod making;

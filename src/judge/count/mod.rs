@@ -1,6 +1,7 @@
 //! Counting: the tally of a problem.
 
 pub mod counted;
+pub mod engine;
 pub mod tally;
 
 pub use counted::Counted;
