@@ -513,3 +513,34 @@ fn the_trace_counts_by_itself() {
     }
     assert!(decisions > 500);
 }
+
+/// The cache changes no count: groups of variables at a hard ratio, joined through a few others, so that parts without
+/// models and learnt clauses over several parts come up. Traced, so that no truth table cuts the search short.
+#[test]
+fn the_cache_changes_no_count() {
+    for seed in 0..150 {
+        let mut random = SplitMix64::new(seed);
+        let groups = 2 + random.below(3) as i64;
+        let size = 5 + random.below(6) as i64;
+        let bridge = 2 + random.below(4) as i64;
+        let mut formula = Formula { vars: (bridge + groups * size) as usize, ..Formula::default() };
+        for group in 0..groups {
+            for _ in 0..size * (30 + random.below(20) as i64) / 10 {
+                let mut lit = || {
+                    let near = 1 + random.below(bridge as u64) as i64;
+                    let own = bridge + group * size + 1 + random.below(size as u64) as i64;
+                    let var = if random.below(5) == 0 { near } else { own };
+                    if random.coin() { var } else { -var }
+                };
+                let clause = [lit(), lit(), lit()];
+                formula.add(&clause);
+            }
+        }
+        for order in [Some(OrderKind::Dynamic), Some(OrderKind::Inputs)] {
+            let options = Options { order, effort: Effort::Models, ..Options::default() };
+            let (with, _) = traced(&formula, &options);
+            let (without, _) = traced(&formula, &Options { memory: 0, ..options });
+            assert_eq!(with.low, without.low, "seed {seed} {order:?}");
+        }
+    }
+}

@@ -5,15 +5,15 @@ use tallymark::random::SplitMix64;
 
 /// A formula.
 #[derive(Clone, Default)]
-pub struct Formula {
-    pub clauses: Clauses,
-    pub vars: usize,
-    pub shown: Option<Vec<BitId>>,
+pub(crate) struct Formula {
+    pub(crate) clauses: Clauses,
+    pub(crate) vars: usize,
+    pub(crate) shown: Option<Vec<BitId>>,
 }
 
 impl Formula {
     /// The formula of these DIMACS clauses.
-    pub fn of(vars: usize, clauses: &[Vec<i64>]) -> Self {
+    pub(crate) fn of(vars: usize, clauses: &[Vec<i64>]) -> Self {
         let mut formula = Self { vars, ..Self::default() };
         for clause in clauses {
             formula.add(clause);
@@ -21,13 +21,13 @@ impl Formula {
         formula
     }
 
-    pub fn add(&mut self, clause: &[i64]) {
+    pub(crate) fn add(&mut self, clause: &[i64]) {
         let lits: Vec<BitLit> = clause.iter().map(|&number| BitLit::from_dimacs(number).unwrap()).collect();
         self.clauses.push(&lits);
     }
 
     /// A new variable, as its DIMACS number.
-    pub fn var(&mut self) -> i64 {
+    pub(crate) fn var(&mut self) -> i64 {
         self.vars += 1;
         self.vars as i64
     }
@@ -112,7 +112,7 @@ impl Formula {
 }
 
 /// n queens on an n x n board, one variable a square.
-pub fn queens(n: usize) -> Formula {
+pub(crate) fn queens(n: usize) -> Formula {
     let mut formula = Formula::default();
     let squares = formula.vars(n * n);
     let at = |row: usize, column: usize| squares[row * n + column];
@@ -135,7 +135,7 @@ pub fn queens(n: usize) -> Formula {
 }
 
 /// Proper colourings of a grid with `colours` colours, one variable a cell and colour.
-pub fn grid(width: usize, height: usize, colours: usize) -> Formula {
+pub(crate) fn grid(width: usize, height: usize, colours: usize) -> Formula {
     let mut formula = Formula::default();
     let cells: Vec<Vec<i64>> = (0..width * height).map(|_| formula.vars(colours)).collect();
     for cell in &cells {
@@ -163,7 +163,7 @@ pub fn grid(width: usize, height: usize, colours: usize) -> Formula {
 }
 
 /// Random clauses of `width` different variables each.
-pub fn random(vars: usize, clauses: usize, width: usize, seed: u64) -> Formula {
+pub(crate) fn random(vars: usize, clauses: usize, width: usize, seed: u64) -> Formula {
     let mut random = SplitMix64::new(seed);
     let mut formula = Formula { vars, ..Formula::default() };
     for _ in 0..clauses {
@@ -180,7 +180,7 @@ pub fn random(vars: usize, clauses: usize, width: usize, seed: u64) -> Formula {
 }
 
 /// Subsets of `n` random weights of `bits` bits with half of the whole sum, by a chain of adders; all gates two-sided.
-pub fn subset_sum(n: usize, bits: u32, seed: u64) -> (Formula, Vec<u64>, u64) {
+pub(crate) fn subset_sum(n: usize, bits: u32, seed: u64) -> (Formula, Vec<u64>, u64) {
     let mut random = SplitMix64::new(seed);
     let weights: Vec<u64> = (0..n).map(|_| 1 + random.below((1 << bits) - 1)).collect();
     let target = weights.iter().sum::<u64>() / 2;
@@ -199,7 +199,7 @@ pub fn subset_sum(n: usize, bits: u32, seed: u64) -> (Formula, Vec<u64>, u64) {
 }
 
 /// Ways to write a number as a product of two factors of `bits` bits, by an array multiplier.
-pub fn product(bits: usize, number: u64) -> Formula {
+pub(crate) fn product(bits: usize, number: u64) -> Formula {
     let mut formula = Formula::default();
     let (a, b) = (formula.vars(bits), formula.vars(bits));
     let mut total: Vec<i64> = Vec::new();
@@ -218,7 +218,7 @@ pub fn product(bits: usize, number: u64) -> Formula {
 }
 
 /// A fixed parity of n variables, by a chain of helper variables.
-pub fn parity(n: usize) -> Formula {
+pub(crate) fn parity(n: usize) -> Formula {
     let mut formula = Formula::default();
     let bits = formula.vars(n);
     let mut sum = bits[0];

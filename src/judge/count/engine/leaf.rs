@@ -1,20 +1,24 @@
-//! Leaf tables: a part of at most ten variables is counted by its truth table, 64 rows to a word.
+//! Leaf tables: a part of at most [`MAX_LEAF`] variables is counted by its truth table, 64 rows to a word.
 //!
-//! Variable *i* of the part is the *i*-th bit of the row number. A clause is the OR of the columns of its literals; the
-//! table is the AND of its clauses, and the count is the number of ones. Variables that do not count are quantified away
-//! first: the two halves of the table are OR-ed together. Bit-parallel evaluation is old practice; that it pays at the
-//! leaves of a counter was measured here (a factor of three on random formulas with two clauses a variable).
+//! Variable *i* of the part is the *i*-th bit of the row number. The first six vary within a word (they are *inner*), the
+//! others between words (*outer*). A clause clears the rows that falsify it: in every word in which its outer literals are
+//! false, only the rows where an inner literal holds remain. Each outer literal halves the words to visit, which is why
+//! this beats the OR of whole columns. The count is the number of ones left. Variables that do not count are quantified
+//! away first: the two halves of the table are OR-ed together.
+//!
+//! Bit-parallel evaluation is old practice; that it pays at the leaves of a counter was measured here.
 
 use super::lit::Lit;
 use super::prepare::Class;
 use super::propagate::Propagator;
 
 /// The most variables of a leaf.
-pub(crate) const MAX_LEAF: usize = 10;
-const WORDS: usize = 1 << (MAX_LEAF - 6);
+pub(crate) const MAX_LEAF: usize = 12;
+const INNER: usize = 6;
+const WORDS: usize = 1 << (MAX_LEAF - INNER);
 
-/// Columns of the first six variables within a word.
-pub(crate) const COLUMNS: [u64; 6] = [
+/// Columns of the inner variables within a word.
+pub(crate) const COLUMNS: [u64; INNER] = [
     0xaaaa_aaaa_aaaa_aaaa,
     0xcccc_cccc_cccc_cccc,
     0xf0f0_f0f0_f0f0_f0f0,
@@ -23,16 +27,54 @@ pub(crate) const COLUMNS: [u64; 6] = [
     0xffff_ffff_0000_0000,
 ];
 
+/// A table with room for the widest leaf; the first 2^(variables - 6) words are in use.
+type Table = [u64; WORDS];
+
+/// A clause under way: the rows of a word that an inner literal saves, and the words in which all outer ones are false.
+#[derive(Clone, Copy, Default)]
+struct Rule {
+    saved: u64,
+    outer: usize,
+    value: usize,
+}
+
+impl Rule {
+    /// Adds the literal of the variable at this place.
+    fn add(&mut self, at: u8, negated: bool) {
+        let at = at as usize;
+        if at < INNER {
+            self.saved |= if negated { !COLUMNS[at] } else { COLUMNS[at] };
+        } else {
+            // A negated literal is false where the variable is 1.
+            self.outer |= 1 << (at - INNER);
+            self.value |= usize::from(negated) << (at - INNER);
+        }
+    }
+
+    /// Clears what falsifies the clause.
+    fn apply(self, table: &mut [u64]) {
+        if self.outer == 0 {
+            table.iter_mut().for_each(|word| *word &= self.saved);
+            return;
+        }
+        // All numbers that agree with `value` on `outer`: set the outer bits, so that adding one carries across them.
+        let mut word = self.value;
+        while word < table.len() {
+            table[word] &= self.saved;
+            word = (((word | self.outer) + 1) & !self.outer) | self.value;
+        }
+    }
+}
+
 /// Counts small parts; remembers for each variable its place in the part at hand.
 pub(crate) struct Leaf {
     place: Vec<u8>,
-    lits: Vec<Lit>,
 }
 
 impl Leaf {
     /// For this many variables.
     pub(crate) fn new(var_count: usize) -> Self {
-        Self { place: vec![u8::MAX; var_count], lits: Vec::new() }
+        Self { place: vec![u8::MAX; var_count] }
     }
 
     /// The number of assignments of the counted variables that extend to a model of the part with these variables. With
@@ -41,130 +83,73 @@ impl Leaf {
         for (at, &var) in vars.iter().enumerate() {
             self.place[var as usize] = at as u8;
         }
-        let count = match vars.len() {
-            0..=6 => self.table::<1>(p, class, vars, all),
-            7 => self.table::<2>(p, class, vars, all),
-            8 => self.table::<4>(p, class, vars, all),
-            9 => self.table::<8>(p, class, vars, all),
-            _ => self.table::<WORDS>(p, class, vars, all),
-        };
-        for &var in vars {
-            self.place[var as usize] = u8::MAX;
-        }
-        count
-    }
-
-    fn table<const W: usize>(&mut self, p: &Propagator, class: &[Class], vars: &[u32], all: bool) -> u32 {
-        let rows = if vars.len() < 6 { (1u64 << (1 << vars.len())) - 1 } else { u64::MAX };
-        let mut table = [rows; W];
+        let mut room: Table = [0; WORDS];
+        let words = 1 << vars.len().saturating_sub(INNER);
+        let table = &mut room[..words];
+        table.fill(if vars.len() < INNER { (1 << (1 << vars.len())) - 1 } else { u64::MAX });
         for (at, &var) in vars.iter().enumerate() {
             for lit in [Lit::new(var, false), Lit::new(var, true)] {
-                self.restrict(p, at as u8, lit, &mut table);
+                self.restrict(p, at as u8, lit, table);
             }
         }
         if !all {
             for (at, &var) in vars.iter().enumerate() {
                 if class[var as usize] != Class::Counted {
-                    forget(&mut table, at);
+                    forget(table, at);
                 }
             }
         }
         table.iter().map(|word| word.count_ones()).sum()
     }
 
-    /// ANDs the open clauses in which this literal is the one with the lowest place.
-    fn restrict<const W: usize>(&mut self, p: &Propagator, at: u8, lit: Lit, table: &mut [u64; W]) {
-        let own = column::<W>(at, lit.is_negated());
+    /// Applies the open clauses in which this literal is the one with the lowest place.
+    fn restrict(&self, p: &Propagator, at: u8, lit: Lit, table: &mut [u64]) {
+        let mut own = Rule::default();
+        own.add(at, lit.is_negated());
         for &other in p.store.twos.of(lit.index()) {
             if p.value(other) == 0 && self.place[other.var()] > at {
-                let other = self.column::<W>(other);
-                for word in 0..W {
-                    table[word] &= own[word] | other[word];
-                }
+                let mut rule = own;
+                rule.add(self.place[other.var()], other.is_negated());
+                rule.apply(table);
             }
         }
         for three in p.store.threes.of(lit.index()) {
-            let (a, b) = (p.value(three.a), p.value(three.b));
-            if a == 1
-                || b == 1
-                || (a == 0 && self.place[three.a.var()] < at)
-                || (b == 0 && self.place[three.b.var()] < at)
-            {
-                continue;
-            }
-            let mut clause = own;
-            for (other, value) in [(three.a, a), (three.b, b)] {
-                if value == 0 {
-                    let other = self.column::<W>(other);
-                    for word in 0..W {
-                        clause[word] |= other[word];
-                    }
-                }
-            }
-            for word in 0..W {
-                table[word] &= clause[word];
+            if let Some(rule) = self.rule(p, at, own, &[three.a, three.b]) {
+                rule.apply(table);
             }
         }
         for &id in p.store.longs.of(lit.index()) {
-            if self.open_lits(p, id, at) {
-                let mut clause = own;
-                for &other in &self.lits {
-                    let other = self.column::<W>(other);
-                    for word in 0..W {
-                        clause[word] |= other[word];
-                    }
-                }
-                for word in 0..W {
-                    table[word] &= clause[word];
-                }
+            if let Some(rule) = self.rule(p, at, own, p.store.long(id)) {
+                rule.apply(table);
             }
         }
     }
 
-    /// Collects the open literals of a clause beyond `at`; false if it is satisfied or belongs to a lower place.
-    fn open_lits(&mut self, p: &Propagator, id: u32, at: u8) -> bool {
-        self.lits.clear();
-        for &lit in p.store.long(id) {
+    /// The clause of the literal at place `at` with these others; `None` if it holds or belongs to a lower place.
+    fn rule(&self, p: &Propagator, at: u8, own: Rule, others: &[Lit]) -> Option<Rule> {
+        let mut rule = own;
+        for &lit in others {
             match p.value(lit) {
-                1 => return false,
-                0 if self.place[lit.var()] < at => return false,
-                0 if self.place[lit.var()] > at => self.lits.push(lit),
+                1 => return None,
+                0 if self.place[lit.var()] < at => return None,
+                0 => rule.add(self.place[lit.var()], lit.is_negated()),
                 _ => {}
             }
         }
-        true
+        Some(rule)
     }
-
-    fn column<const W: usize>(&self, lit: Lit) -> [u64; W] {
-        column::<W>(self.place[lit.var()], lit.is_negated())
-    }
-}
-
-/// The column of a variable: one bit a row.
-pub(crate) fn column<const W: usize>(at: u8, negated: bool) -> [u64; W] {
-    let flip = if negated { u64::MAX } else { 0 };
-    if let Some(word) = COLUMNS.get(at as usize) {
-        return [word ^ flip; W];
-    }
-    let mut column = [flip; W];
-    for (place, word) in column.iter_mut().enumerate() {
-        if place >> (at - 6) & 1 == 1 {
-            *word = !flip;
-        }
-    }
-    column
 }
 
 /// Existential quantification: row r holds if r or r with bit `at` flipped held; only rows with that bit 0 remain.
-fn forget<const W: usize>(table: &mut [u64; W], at: usize) {
-    if at < 6 {
+fn forget(table: &mut [u64], at: usize) {
+    if at < INNER {
         for word in table.iter_mut() {
             *word = (*word | *word >> (1 << at)) & !COLUMNS[at];
         }
         return;
     }
-    let step = 1 << (at - 6);
-    for low in (0..W).filter(|low| low & step == 0) {
+    let step = 1 << (at - INNER);
+    for low in (0..table.len()).filter(|low| low & step == 0) {
         table[low] |= table[low | step];
         table[low | step] = 0;
     }
@@ -175,12 +160,23 @@ mod tests {
     use super::*;
 
     #[test]
-    fn columns_are_the_bits_of_the_row_number() {
-        for at in 0..10u8 {
-            let (yes, no) = (column::<16>(at, false), column::<16>(at, true));
+    fn a_clause_clears_exactly_the_rows_that_falsify_it() {
+        let clauses: [&[(u8, bool)]; 6] = [
+            &[(0, true), (3, false)],
+            &[(5, true), (6, false)],
+            &[(6, true), (9, false)],
+            &[(7, false), (8, false), (9, true)],
+            &[(2, false), (6, true), (7, true), (9, true)],
+            &[(9, false)],
+        ];
+        for clause in clauses {
+            let mut rule = Rule::default();
+            clause.iter().for_each(|&(at, negated)| rule.add(at, negated));
+            let mut table = [u64::MAX; 16];
+            rule.apply(&mut table);
             for row in 0..1024usize {
-                assert_eq!(yes[row / 64] >> (row % 64) & 1, (row >> at & 1) as u64);
-                assert_eq!(no[row / 64] >> (row % 64) & 1, 1 - (row >> at & 1) as u64);
+                let holds = clause.iter().any(|&(at, negated)| (row >> at & 1 == 1) != negated);
+                assert_eq!(table[row / 64] >> (row % 64) & 1 == 1, holds, "{clause:?} at {row}");
             }
         }
     }

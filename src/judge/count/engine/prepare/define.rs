@@ -11,10 +11,12 @@
 
 use super::Class;
 use super::form::{Form, State};
-use crate::judge::count::engine::leaf::{MAX_LEAF, column};
+use crate::judge::count::engine::leaf::COLUMNS;
 use crate::judge::count::engine::lit::Lit;
 
-const WORDS: usize = 1 << (MAX_LEAF - 6);
+/// The most variables of a table.
+const MAX_WIDTH: usize = 10;
+const WORDS: usize = 1 << (MAX_WIDTH - 6);
 /// Clauses of one variable that are looked at; beyond, a variable is left as it is.
 const MAX_CLAUSES: usize = 60;
 
@@ -61,13 +63,13 @@ fn is_defined(form: &Form, lists: &[Vec<u32>], known: &[bool], var: usize) -> bo
         }
     }
     let all = support(&clauses, var);
-    if all.len() <= MAX_LEAF {
+    if all.len() <= MAX_WIDTH {
         return leaves_no_choice(&clauses, var, &all);
     }
     is_long_gate(&clauses, var)
         || clauses.iter().any(|clause| {
             let narrow = support(&[*clause], var);
-            narrow.len() <= MAX_LEAF && leaves_no_choice(&clauses, var, &narrow)
+            narrow.len() <= MAX_WIDTH && leaves_no_choice(&clauses, var, &narrow)
         })
 }
 
@@ -86,7 +88,7 @@ fn leaves_no_choice(clauses: &[&[Lit]], var: usize, vars: &[usize]) -> bool {
         let mut rows = [u64::MAX; WORDS];
         for lit in clause.iter().filter(|lit| lit.var() != var) {
             let Ok(at) = vars.binary_search(&lit.var()) else { continue 'clauses };
-            let falsified = column::<WORDS>(at as u8, !lit.is_negated());
+            let falsified = column(at, !lit.is_negated());
             for word in 0..WORDS {
                 rows[word] &= falsified[word];
             }
@@ -96,6 +98,16 @@ fn leaves_no_choice(clauses: &[&[Lit]], var: usize, vars: &[usize]) -> bool {
         }
     }
     decided.iter().all(|&word| word == u64::MAX)
+}
+
+/// The rows in which the variable at this place has the value 1, or 0 if `negated`.
+fn column(at: usize, negated: bool) -> [u64; WORDS] {
+    let flip = if negated { u64::MAX } else { 0 };
+    let mut column = [flip; WORDS];
+    for (place, word) in column.iter_mut().enumerate() {
+        *word ^= COLUMNS.get(at).copied().unwrap_or_else(|| if place >> (at - 6) & 1 == 1 { u64::MAX } else { 0 });
+    }
+    column
 }
 
 /// Whether one clause says that a literal of `var` or some others hold, and clauses of two exclude it with each of them.
