@@ -1,9 +1,13 @@
-//! The race of orders: which order is best is worth factors of a thousand either way and is not known beforehand, so each
-//! gets a little work in turn, then a little more, and the one that has covered most goes on alone.
+//! The race of orders: which order is best is worth factors of a thousand either way and is not known beforehand, so the
+//! orders take turns with growing work, and those that will not make it in time are dropped.
+//!
+//! The share of the search that an order has covered says little by itself: one that lives by the cache covers little for
+//! long and the rest at once. Its growth says more: if a share c grew by a factor g in the last rounds, the order needs
+//! about log(1/c) / log(g) more rounds.
 //!
 //! Work is counted (variables looked at, decisions, conflicts), never timed: the same input takes the same course on
 //! every machine. All orders share the cache and the learnt clauses, which are facts about the formula and not about an
-//! order; what a loser found is not lost.
+//! order: taking up an order again costs little, and what a loser found is not lost.
 
 use num_bigint::BigUint;
 use num_traits::Zero;
@@ -15,10 +19,13 @@ use super::prepare::{Class, Prepared};
 use super::search::{Bounds, Search, Step};
 use super::trace::Trace;
 
-/// Work of each order in the first round; a later round gets the given factor more.
-const FIRST_ROUND: u64 = 100_000;
-const GROWTH: u64 = 6;
-const ROUNDS: u32 = 3;
+/// Work of each order in the first round; each later round gets the given factor more.
+const FIRST_ROUND: u64 = 50_000;
+const GROWTH: u64 = 3;
+/// Rounds that all orders run.
+const FAIR_ROUNDS: usize = 3;
+/// An order is dropped if it seems to need so many rounds more than the best one.
+const PATIENCE: f64 = 1.0;
 /// The share of its variables in the largest bag up to which a decomposition goes first.
 const NARROW: f64 = 0.25;
 
@@ -26,6 +33,26 @@ const NARROW: f64 = 0.25;
 pub(crate) struct Runner {
     pub(crate) kind: OrderKind,
     ranks: Vec<u32>,
+    /// The share covered in each round.
+    covered: Vec<f64>,
+}
+
+impl Runner {
+    fn new(kind: OrderKind, ranks: Vec<u32>) -> Self {
+        Self { kind, ranks, covered: Vec::new() }
+    }
+
+    /// About how many more rounds this order needs, by its growth over the last two.
+    fn rounds_left(&self) -> f64 {
+        match self.covered[..] {
+            [.., before, _, now] => {
+                let growth = (now / before.max(f64::MIN_POSITIVE)).ln() / 2.0;
+                if growth > 0.0 { -now.max(f64::MIN_POSITIVE).ln() / growth } else { f64::INFINITY }
+            }
+            // Too early to tell: the one that has covered most goes first.
+            _ => 1.0 - self.covered.last().copied().unwrap_or(0.0),
+        }
+    }
 }
 
 /// The orders for this formula, the most promising first; only the wanted one if one is named.
@@ -34,22 +61,22 @@ pub(crate) fn runners(formula: &Prepared, wanted: Option<OrderKind>) -> Vec<Runn
     let mut runners = Vec::new();
     let is_wanted = |kind| wanted.is_none_or(|wanted| wanted == kind);
     if is_wanted(OrderKind::Dynamic) {
-        runners.push(Runner { kind: OrderKind::Dynamic, ranks: Vec::new() });
+        runners.push(Runner::new(OrderKind::Dynamic, Vec::new()));
     }
     if is_wanted(OrderKind::Guided)
         && let Some(tree) = decompose(vars, &formula.clauses)
     {
         let narrow = (tree.largest as f64) < NARROW * vars as f64;
         let at = if narrow { 0 } else { runners.len() };
-        runners.insert(at, Runner { kind: OrderKind::Guided, ranks: tree.ranks });
+        runners.insert(at, Runner::new(OrderKind::Guided, tree.ranks));
     }
     if is_wanted(OrderKind::Inputs) {
         let rank = |var: usize| if formula.class[var] == Class::Counted { var } else { vars + var };
-        runners.push(Runner { kind: OrderKind::Inputs, ranks: (0..vars).map(|var| rank(var) as u32).collect() });
+        runners.push(Runner::new(OrderKind::Inputs, (0..vars).map(|var| rank(var) as u32).collect()));
     }
     if runners.is_empty() {
         // The wanted order cannot be had for a formula of this size.
-        runners.push(Runner { kind: OrderKind::Dynamic, ranks: Vec::new() });
+        runners.push(Runner::new(OrderKind::Dynamic, Vec::new()));
     }
     runners
 }
@@ -65,39 +92,31 @@ pub(crate) enum Finish<N> {
 /// Runs the race.
 pub(crate) fn race<T: Trace>(
     search: &mut Search<'_, T>,
-    runners: Vec<Runner>,
+    mut runners: Vec<Runner>,
     spent: impl Fn() -> bool,
 ) -> Finish<T::Node> {
     let counted = search.class.iter().filter(|&&class| class == Class::Counted).count();
     let mut known = Bounds { low: BigUint::zero(), high: BigUint::from(1u32) << counted, covered: 0.0 };
-    let mut best = 0;
-    let rounds = if runners.len() > 1 { ROUNDS } else { 0 };
-    for round in 0..rounds {
-        let mut covered = -1.0;
-        for (at, runner) in runners.iter().enumerate() {
-            match search.run(runner.ranks.clone(), FIRST_ROUND * GROWTH.pow(round)) {
+    let mut work = FIRST_ROUND;
+    loop {
+        let alone = runners.len() == 1;
+        for runner in &mut runners {
+            match search.run(runner.ranks.clone(), if alone { u64::MAX } else { work }) {
                 Step::Done(value, node) => return Finish::Counted(value, node, runner.kind),
                 Step::Stopped(bounds) => {
-                    if bounds.covered > covered {
-                        (covered, best) = (bounds.covered, at);
-                    }
+                    runner.covered.push(bounds.covered);
                     merge(&mut known, bounds);
                 }
                 Step::Conflict(_) => unreachable!("a run answers conflicts at the root with 0"),
             }
-            if spent() {
+            if alone || spent() {
                 return Finish::Bounded(known, runner.kind);
             }
         }
-    }
-    let runner = &runners[best];
-    match search.run(runner.ranks.clone(), u64::MAX) {
-        Step::Done(value, node) => Finish::Counted(value, node, runner.kind),
-        Step::Stopped(bounds) => {
-            merge(&mut known, bounds);
-            Finish::Bounded(known, runner.kind)
-        }
-        Step::Conflict(_) => unreachable!("a run answers conflicts at the root with 0"),
+        runners.sort_by(|a, b| a.rounds_left().total_cmp(&b.rounds_left()));
+        let limit = runners[0].rounds_left() + PATIENCE;
+        runners.retain(|runner| runner.covered.len() < FAIR_ROUNDS || runner.rounds_left() <= limit);
+        work = work.saturating_mul(GROWTH);
     }
 }
 
