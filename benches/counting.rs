@@ -1,7 +1,8 @@
-//! The counting engine over families of growing size: decisions, conflicts, hits of the cache and CPU-bound wall time.
+//! The counting engine over families of growing size: wall time, decisions, conflicts and hits of the cache.
 //!
 //! `cargo bench --bench counting -- [WORDS]`: families whose name contains one of the words; a word that is the path of a
-//! DIMACS file counts that file. With no word, all families.
+//! DIMACS file counts that file. With no word, all families. `--dynamic`, `--guided` and `--inputs` name the order to use
+//! instead of the race, `--memory=BYTES` limits the cache.
 
 #![allow(clippy::print_stdout, reason = "a bench prints")]
 
@@ -17,7 +18,7 @@ use tallymark::id::Id;
 use tallymark::judge::count::engine::{Options, OrderKind, count};
 use tallymark::problem::BitId;
 
-const LIMIT: Duration = Duration::from_secs(30);
+const LIMIT: Duration = Duration::from_secs(120);
 
 fn main() {
     let words: Vec<String> = std::env::args().skip(1).filter(|word| !word.starts_with("--bench")).collect();
@@ -27,7 +28,11 @@ fn main() {
             "--dynamic" => options.order = Some(OrderKind::Dynamic),
             "--guided" => options.order = Some(OrderKind::Guided),
             "--inputs" => options.order = Some(OrderKind::Inputs),
-            _ => {}
+            word => {
+                if let Some(bytes) = word.strip_prefix("--memory=") {
+                    options.memory = bytes.parse().expect("a number of bytes");
+                }
+            }
         }
     }
     let words: Vec<String> = words.into_iter().filter(|word| !word.starts_with("--")).collect();

@@ -153,8 +153,8 @@ pub(crate) fn grid(width: usize, height: usize, colours: usize) -> Formula {
                 next.push(here + width);
             }
             for other in next {
-                for colour in 0..colours {
-                    formula.add(&[-cells[here][colour], -cells[other][colour]]);
+                for (&own, &far) in cells[here].iter().zip(&cells[other]) {
+                    formula.add(&[-own, -far]);
                 }
             }
         }
@@ -209,7 +209,7 @@ pub(crate) fn product(bits: usize, number: u64) -> Formula {
             total = row;
             continue;
         }
-        let high = formula.sum(&total[shift..].to_vec(), &row);
+        let high = formula.sum(&total[shift..], &row);
         total.truncate(shift);
         total.extend(high);
     }

@@ -127,10 +127,13 @@ impl Leaf {
 
     /// The clause of the literal at place `at` with these others; `None` if it holds or belongs to a lower place.
     fn rule(&self, p: &Propagator, at: u8, own: Rule, others: &[Lit]) -> Option<Rule> {
+        // A clause that holds may have open variables outside the part: it must not be looked at further.
+        if others.iter().any(|&lit| p.value(lit) == 1) {
+            return None;
+        }
         let mut rule = own;
         for &lit in others {
             match p.value(lit) {
-                1 => return None,
                 0 if self.place[lit.var()] < at => return None,
                 0 => rule.add(self.place[lit.var()], lit.is_negated()),
                 _ => {}

@@ -14,7 +14,7 @@
 //! ├ store, propagate, learn     clauses, their conclusions, and clauses learnt from conflicts
 //! ├ components                  the parts into which the rest falls
 //! ├ cache                       the counts of parts met before
-//! └ leaf                        parts of at most ten variables by truth table
+//! └ leaf                        parts of few variables by truth table
 //! trace      what happened, for whoever wants to keep it
 //! ```
 //!

@@ -16,13 +16,12 @@ use super::search::{Bounds, Search, Step};
 use super::trace::Trace;
 
 impl<T: Trace> Search<'_, T> {
-    /// Whether the part has a model: the number 1, or a conflict at the current level. The model stays on the trail,
-    /// at the current level or above it is taken back.
+    /// Whether the part has a model: the number 1, or a conflict at the current level. Levels above the current one are
+    /// taken back; what learnt clauses asserted at the current one is left to the caller.
     pub(crate) fn satisfy(&mut self, part: &Part) -> Step<T::Node> {
         let base = self.p.level();
         let since = self.p.trail.len();
-        loop {
-            let Some(lit) = self.next_open(part) else { break };
+        while let Some(lit) = self.next_open(part) {
             if self.must_stop() {
                 self.p.pop_to_level(base);
                 let bounds = Bounds { low: BigUint::zero(), high: BigUint::from(1u32), covered: 0.0 };
