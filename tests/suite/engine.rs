@@ -264,6 +264,17 @@ fn pigeons(pigeons: usize, holes: usize) -> Formula {
     formula
 }
 
+/// Thousands of nested decisions: the recursion has the stack it needs.
+#[test]
+fn deep_searches() {
+    let chain: Vec<Vec<i64>> = (1..6000).map(|var| vec![-var, var + 1]).collect();
+    let formula = Formula::of(6000, &chain);
+    let options = Options { order: Some(OrderKind::Inputs), ..Options::default() };
+    let answer = run(&formula, &options);
+    assert_eq!(answer.low, number("6001"));
+    assert!(answer.stats.decisions > 5900, "{:?}", answer.stats);
+}
+
 /// OEIS A000170, "Number of ways of placing n nonattacking queens on an n X n board".
 #[test]
 fn queens() {

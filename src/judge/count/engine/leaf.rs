@@ -79,6 +79,8 @@ impl Leaf {
 
     /// The number of assignments of the counted variables that extend to a model of the part with these variables. With
     /// `all` every variable counts (or is determined by those that do).
+    // Its table must not lie in the frames of the recursion that calls it.
+    #[inline(never)]
     pub(crate) fn count(&mut self, p: &Propagator, class: &[Class], vars: &[u32], all: bool) -> u32 {
         for (at, &var) in vars.iter().enumerate() {
             self.place[var as usize] = at as u8;

@@ -147,10 +147,10 @@ where
 }
 
 /// Nested decisions beyond which a part is given up with bounds.
-const MAX_DEPTH: usize = 200_000;
-/// Bytes of stack for each nested decision (two levels of the recursion; measured below 2 KiB without optimisation)
-/// and for the rest. Address space only: pages that are not reached cost nothing.
-const STACK_PER_LEVEL: usize = 4 << 10;
+const MAX_DEPTH: usize = 100_000;
+/// Bytes of stack for each nested decision (measured: between 1 and 2 KiB with little optimisation) and for the rest.
+/// Address space only: pages that are not reached cost nothing.
+const STACK_PER_LEVEL: usize = 8 << 10;
 const STACK_BASE: usize = 4 << 20;
 
 fn unknown(formula: &Prepared) -> Count {
