@@ -26,6 +26,8 @@ const GROWTH: u64 = 3;
 const FAIR_ROUNDS: usize = 3;
 /// An order is dropped if it seems to need so many rounds more than the best one.
 const PATIENCE: f64 = 1.0;
+/// Growth can mislead: an order that has covered this share of what the leader has stays in any case.
+const LEAD: f64 = 2.0;
 /// The share of its variables in the largest bag up to which a decomposition goes first.
 const NARROW: f64 = 0.25;
 
@@ -42,6 +44,11 @@ impl Runner {
         Self { kind, ranks, covered: Vec::new() }
     }
 
+    /// The share covered in the last round.
+    fn share(&self) -> f64 {
+        self.covered.last().copied().unwrap_or(0.0)
+    }
+
     /// About how many more rounds this order needs, by its growth over the last two.
     fn rounds_left(&self) -> f64 {
         match self.covered[..] {
@@ -50,7 +57,7 @@ impl Runner {
                 if growth > 0.0 { -now.max(f64::MIN_POSITIVE).ln() / growth } else { f64::INFINITY }
             }
             // Too early to tell: the one that has covered most goes first.
-            _ => 1.0 - self.covered.last().copied().unwrap_or(0.0),
+            _ => 1.0 - self.share(),
         }
     }
 }
@@ -115,7 +122,10 @@ pub(crate) fn race<T: Trace>(
         }
         runners.sort_by(|a, b| a.rounds_left().total_cmp(&b.rounds_left()));
         let limit = runners[0].rounds_left() + PATIENCE;
-        runners.retain(|runner| runner.covered.len() < FAIR_ROUNDS || runner.rounds_left() <= limit);
+        let most = runners.iter().map(Runner::share).fold(0.0, f64::max);
+        runners.retain(|runner| {
+            runner.covered.len() < FAIR_ROUNDS || runner.rounds_left() <= limit || runner.share() >= most / LEAD
+        });
         work = work.saturating_mul(GROWTH);
     }
 }
