@@ -3,6 +3,7 @@ mod auditing;
 mod command;
 mod counting;
 mod dimacs;
+mod engine;
 mod judging;
 mod known_counts;
 mod language;

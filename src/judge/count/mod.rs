@@ -12,6 +12,7 @@
 
 mod confirm;
 pub mod counted;
+pub mod engine;
 mod list;
 mod parts;
 mod path;
