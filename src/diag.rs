@@ -13,6 +13,7 @@
 //! | `C` | compiling |
 //! | `A` | counting, auditing, planning |
 //! | `S` | the reader of shots |
+//! | `L` | the ledger |
 //! | `U` | usage of the command line |
 
 use std::borrow::Cow;

@@ -33,5 +33,6 @@ pub mod sat;
 pub mod search;
 
 pub mod cli;
+pub mod ledger;
 pub mod pipeline;
 pub mod report;

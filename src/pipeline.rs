@@ -12,10 +12,11 @@ use num_traits::Zero;
 use thiserror::Error;
 
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Level, Mark, Product, qasm};
+use crate::circuit::{Circuit, Figures, Level, Mark, Product, qasm};
 use crate::diag::{Code, Diagnostic};
-use crate::judge::audit::{self, AuditError, Verdict};
+use crate::judge::audit::{self, AuditError, Outcome, Verdict};
 use crate::judge::count::{self, Counted, Over};
+use crate::ledger::{Cost, Entry};
 use crate::make::lower::{self, LowerError};
 use crate::make::network;
 use crate::places::{Places, PlacesError};
@@ -134,6 +135,10 @@ pub fn dossier(
             let product = whole_search(&phase, &plan.iterations)?;
             let circuit = write_and_read(&folder.join("search.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit::audit_search(problem, places, &circuit, SEARCH_WORK, budget)?;
+            if verdict.iterations_checked > 0 && BigUint::from(verdict.iterations) != plan.iterations {
+                let (wanted, found) = (&plan.iterations, verdict.iterations);
+                return Err(Error::Fault(format!("the search file has {found} iterations, planned were {wanted}")));
+            }
             Some(Judged { product, verdict })
         }
         _ => None,
@@ -154,6 +159,30 @@ fn why_no_oracle(error: LowerError) -> Result<Advice, Error> {
         LowerError::EverythingMarked => Ok(Advice::everything_marked()),
         LowerError::OutOfTime => Err(error.into()),
     }
+}
+
+/// What the ledger keeps of a problem: the main job without its folder.
+pub fn ledger_entry(loaded: &Loaded, places: &Places, settings: Settings, budget: &Budget) -> Result<Entry, Error> {
+    let scratch = tempfile::tempdir().map_err(|error| WriteError { path: std::env::temp_dir(), error })?;
+    let found = dossier(loaded, places, scratch.path(), settings, budget)?;
+    let cost = |product: &Product| {
+        let Figures { qubits, t_count, depth, gates, .. } = product.figures;
+        (product.level.name().to_owned(), Cost { qubits, and_count: product.and_count, t_count, depth, gates })
+    };
+    let verdict = |judged: &Judged<Verdict>| match judged.verdict.outcome {
+        Outcome::Equal => "equal",
+        Outcome::Differs => "differs",
+        Outcome::Undecided => "undecided",
+    };
+    Ok(Entry {
+        sha256: loaded.sha256.clone(),
+        version: env!("CARGO_PKG_VERSION").to_owned(),
+        count: found.counted.tally.exact().map(BigUint::to_string),
+        marked: found.counted.marked().map(BigUint::to_string),
+        space: found.counted.space.to_string(),
+        verdict: found.oracle.as_ref().map_or_else(|advice| advice.code, verdict).to_owned(),
+        costs: found.levels.iter().map(cost).collect(),
+    })
 }
 
 /// Amplitude updates that the audit of a search file may spend: some tenths of a second.

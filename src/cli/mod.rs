@@ -10,6 +10,7 @@ mod dossier;
 mod exit;
 mod explain;
 mod input;
+mod ledger;
 mod plan;
 mod progress;
 mod render;
@@ -26,7 +27,7 @@ use render::Failure;
 
 const EXIT_CODES: &str = "Exit codes:
   0   done; a count of zero is an answer
-  1   the answer is no: a circuit that differs
+  1   the answer is no: a circuit that differs, a ledger that no longer holds
   2   bad input or usage
   3   a budget ran out, or the verdict is undecided; what was reached is printed and marked partial
   70  a fault of tallymark itself";
@@ -79,6 +80,8 @@ enum Command {
     Audit(audit::Options),
     /// Iterations and success probability
     Plan(plan::Options),
+    /// All problems of a folder against the expected tallies and costs
+    Ledger(ledger::Options),
     /// How the problem was read: variables, bits, constraints, ranges
     Explain(explain::Options),
 }
@@ -112,6 +115,7 @@ fn dispatch(cli: &Cli) -> Outcome {
         Command::Compile(options) => compile::run(&cli.global, options),
         Command::Audit(options) => audit::run(&cli.global, options),
         Command::Plan(options) => plan::run(&cli.global, options),
+        Command::Ledger(options) => ledger::run(&cli.global, options),
         Command::Explain(options) => explain::run(&cli.global, options),
     }
 }

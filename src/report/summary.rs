@@ -8,6 +8,7 @@ use comfy_table::{CellAlignment, Table, presets};
 use crate::circuit::{Level, Product};
 use crate::judge::audit::{How, Outcome, Phases, SearchVerdict, Verdict};
 use crate::judge::count::Counted;
+use crate::ledger::Finding;
 use crate::problem::{Bits, Problem};
 use crate::report::dossier::Dossier;
 use crate::report::header::CAUTION;
@@ -160,6 +161,20 @@ fn plan_lines(plan: Option<&Plan>) -> String {
 
 fn advice_lines(advice: &[Advice]) -> String {
     advice.iter().map(|advice| line("advice", format!("{} [{}]", advice.text, advice.code))).collect()
+}
+
+/// What a ledger does not allow, as a table.
+pub fn findings(findings: &[Finding]) -> String {
+    if findings.is_empty() {
+        return "it holds\n".to_owned();
+    }
+    let mut table = Table::new();
+    table.load_style(presets::NOTHING);
+    table.set_header(["problem", "what", "kept", "now"]);
+    for finding in findings {
+        table.add_row([&finding.file, &finding.what, &finding.kept, &finding.now]);
+    }
+    format!("IT DOES NOT HOLD\n{}\n", table.trim_fmt())
 }
 
 /// The summary of the main job.

@@ -318,3 +318,35 @@ fn places_beside_the_circuit_are_used_and_others_refused() {
     desk.file("p.places.json", &format!("{{\"start\":\"all-strings\",\"claim\":\"one-for-one\",\"{places}"));
     assert_eq!(desk.exit(&["audit", "p.tally", "p.qasm"]), 1);
 }
+
+#[test]
+fn a_ledger_holds_until_something_changes() {
+    let desk = Desk::new();
+    std::fs::create_dir(desk.path("all")).unwrap();
+    desk.file("all/p.tally", PUZZLE);
+    desk.file("all/q.cnf", "p cnf 3 2\n1 2 0\n-1 3 0\n");
+    desk.file("all/notes.txt", "not a problem");
+    assert_eq!(desk.exit(&["ledger", "check", "all"]), 2, "there is no ledger yet");
+    let (exit, object) = desk.json(&["ledger", "update", "all"]);
+    assert_eq!((exit, &object["problems"]["p.tally"]["count"]), (0, &"3".into()), "{object:#}");
+    assert_eq!(object["problems"].as_object().unwrap().len(), 2);
+    assert_eq!(desk.exit(&["ledger", "check", "all", "--all"]), 0);
+    let ledger = std::fs::read_to_string(desk.path("all/ledger.json")).unwrap();
+    desk.file("all/p.tally", &PUZZLE.replace("n = 3 or", "n >= 1 or"));
+    let (exit, object) = desk.json(&["ledger", "check", "all", "--junit", "junit.xml"]);
+    assert_eq!((exit, &object["holds"]), (1, &false.into()));
+    let what: Vec<&str> = object["findings"].as_array().unwrap().iter().map(|f| f["what"].as_str().unwrap()).collect();
+    assert!(what.contains(&"count"), "{what:?}");
+    let xml = std::fs::read_to_string(desk.path("junit.xml")).unwrap();
+    assert!(xml.contains("tests=\"2\" failures=\"1\"") && xml.contains("count: kept 3, now"), "{xml}");
+    desk.file("all/p.tally", PUZZLE);
+    // A cost that was lower in the ledger has grown; a tolerance may allow it.
+    let gates = object["problems"]["q.cnf"]["costs"]["toffoli"]["gates"].as_u64().unwrap();
+    let (was, less) = (format!("\"gates\": {gates}"), format!("\"gates\": {}", gates - 1));
+    assert!(ledger.contains(&was));
+    desk.file("all/ledger.json", &ledger.replacen(&was, &less, 8));
+    assert_eq!(desk.exit(&["ledger", "check", "all", "--all"]), 1);
+    assert_eq!(desk.exit(&["ledger", "check", "all", "--all", "--growth", "50"]), 0);
+    desk.file("all/ledger.json", "[]");
+    assert_eq!(desk.exit(&["ledger", "check", "all"]), 2);
+}

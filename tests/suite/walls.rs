@@ -26,9 +26,10 @@ const MATRIX: &[(&str, &[&str])] = &[
     // The wall of the house: the judge never names the maker.
     ("judge", &["problem", "places", "circuit", "sat"]),
     ("search", &["problem", "places", "circuit", "make", "judge"]),
-    ("report", &["source", "problem", "places", "circuit", "judge", "search"]),
-    ("pipeline", &["source", "problem", "places", "circuit", "make", "judge", "search", "report"]),
-    ("cli", &["source", "problem", "places", "circuit", "make", "judge", "search", "report", "pipeline"]),
+    ("ledger", &[]),
+    ("report", &["source", "problem", "places", "circuit", "judge", "search", "ledger"]),
+    ("pipeline", &["source", "problem", "places", "circuit", "make", "judge", "search", "ledger", "report"]),
+    ("cli", &["ledger", "source", "problem", "places", "circuit", "make", "judge", "search", "report", "pipeline"]),
 ];
 
 /// What stands at the root of the crate without being a room: macros.

@@ -44,6 +44,11 @@ impl Format {
             Format::Dimacs => "dimacs",
         }
     }
+
+    /// The format that a file name tells by its suffix, packed or not.
+    pub fn of_name(name: &str) -> Option<Self> {
+        format_of_name(Packing::of_name(name).1)
+    }
 }
 
 /// A problem that was read.
