@@ -13,6 +13,9 @@ use crate::report::places::domain;
 use crate::source::Loaded;
 use crate::span::Sources;
 
+/// Characters of a constraint's text that a table shows; `--json` has all of it.
+const MAX_TEXT: usize = 72;
+
 /// The reading of a problem.
 #[derive(Debug)]
 pub struct Reading {
@@ -165,12 +168,24 @@ pub fn text(loaded: &Loaded, reading: &Reading) -> String {
     let total = problem.constraint_count();
     _ = writeln!(text, "\n{}", count_line(total, reading.constraints.len(), "constraint", "constraints"));
     let mut constraints = table(["number", "line", "text", "for", "ranges"]);
+    let mut above = "";
     for line in reading.constraints.iter().chain(&reading.objective) {
         let place = line.line.map_or_else(String::new, |line| line.to_string());
-        constraints.add_row([&line.number, &place, &line.text, &line.bindings, &line.ranges]);
+        // One statement may give many constraints: its text stands once.
+        let shown = if line.text == above { "\"".to_owned() } else { shorten(&line.text) };
+        constraints.add_row([&line.number, &place, &shown, &line.bindings, &line.ranges]);
+        above = &line.text;
     }
     _ = writeln!(text, "{}", constraints.trim_fmt());
     text
+}
+
+/// The beginning of a long text.
+fn shorten(text: &str) -> String {
+    match text.char_indices().nth(MAX_TEXT) {
+        Some((end, _)) => format!("{} ...", text[..end].trim_end()),
+        None => text.to_owned(),
+    }
 }
 
 fn count_line(total: usize, listed: usize, one: &str, many: &str) -> String {
