@@ -60,13 +60,19 @@ impl Failure {
     }
 }
 
+/// Messages that are shown at once; a person mends the first ones first.
+const MAX_SHOWN: usize = 12;
+
 /// Prints messages to standard error.
 pub(super) fn show(diagnostics: &[Diagnostic], sources: &Sources) {
     let mut err = io::stderr().lock();
     let renderer = if coloured() { Renderer::styled() } else { Renderer::plain() };
-    for diagnostic in diagnostics {
-        // If standard error is gone there is nobody to tell.
+    // If standard error is gone there is nobody to tell.
+    for diagnostic in diagnostics.iter().take(MAX_SHOWN) {
         let _ = writeln!(err, "{}", render(diagnostic, sources, &renderer));
+    }
+    if diagnostics.len() > MAX_SHOWN {
+        let _ = writeln!(err, "and {} more messages; --json gives all of them", diagnostics.len() - MAX_SHOWN);
     }
 }
 
