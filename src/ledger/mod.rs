@@ -1,6 +1,6 @@
 //! The ledger: the file in which a project keeps the expected tallies and costs of its problems, so that a change shows.
 //!
-//! Plain data with a JSON form, sorted by file; this room computes no tally and no cost. [`compare`] holds a new reading
+//! Plain data with a JSON form, sorted by file; this room computes no tally and no cost. [`compare()`] holds a new reading
 //! of a folder against the kept one; [`junit`] writes the result for a build server.
 
 pub mod compare;

@@ -1,4 +1,4 @@
-//! OpenQASM: [`write`] gives text, [`read`] takes it; neither imports the other.
+//! OpenQASM: [`mod@write`] gives text, [`mod@read`] takes it; neither imports the other.
 
 pub mod read;
 pub mod write;
