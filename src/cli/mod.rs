@@ -13,6 +13,7 @@ mod input;
 mod plan;
 mod progress;
 mod render;
+mod shots;
 
 use std::ffi::OsString;
 use std::io::{self, Write};
@@ -26,7 +27,7 @@ use render::Failure;
 
 const EXIT_CODES: &str = "Exit codes:
   0   done; a count of zero is an answer
-  1   the answer is no: a circuit that differs
+  1   the answer is no: a circuit that differs, shots that contradict the plan
   2   bad input or usage
   3   a budget ran out, or the verdict is undecided; what was reached is printed and marked partial
   70  a fault of tallymark itself";
@@ -77,8 +78,10 @@ enum Command {
     Compile(compile::Options),
     /// Judge an OpenQASM circuit against the problem
     Audit(audit::Options),
-    /// Iterations and success probability
-    Plan(plan::Options),
+    /// Iterations and success probability, for a problem or for numbers alone
+    Plan(Box<plan::Options>),
+    /// Measured bit strings back to answers, checked, and compared with the plan
+    Shots(shots::Options),
     /// How the problem was read: variables, bits, constraints, ranges
     Explain(explain::Options),
 }
@@ -112,6 +115,7 @@ fn dispatch(cli: &Cli) -> Outcome {
         Command::Compile(options) => compile::run(&cli.global, options),
         Command::Audit(options) => audit::run(&cli.global, options),
         Command::Plan(options) => plan::run(&cli.global, options),
+        Command::Shots(options) => shots::run(&cli.global, options),
         Command::Explain(options) => explain::run(&cli.global, options),
     }
 }
