@@ -193,7 +193,7 @@ fn split(split: &Split) -> String {
 
 fn find_all(all: &FindAll) -> String {
     let sure = all.successes_for_99_percent;
-    line("find all", format!("{:.3} successes on average, {sure} for all with confidence 0.99", all.successes))
+    line("find all", format!("{:.3} successes on average, at most {sure} for all with confidence 0.99", all.successes))
         + &line("", format!("work {:.3} by repeating one search", all.work_repeating))
         + &line("", format!("work {:.3} by excluding what was found", all.work_excluding))
 }
