@@ -84,8 +84,20 @@ pub fn audit(
     Ok(audit::audit(problem, places, circuit, options, budget)?)
 }
 
-/// The plan for a tally, with advice; `None` where the number of marked states is not known.
-pub fn plan_for(problem: &Problem, counted: &Counted) -> (Option<Plan>, Vec<Advice>) {
+/// How many gates one iteration of the search has: of the oracle and of the reflection together.
+pub fn gates_of_iteration(
+    problem: &Problem,
+    places: &Places,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<u64, Error> {
+    let phase = oracle(problem, places, Settings { mark: Mark::Phase, ..settings }, budget)?;
+    let gates = |iterations: u32| whole_search(&phase, &iterations.into()).map(|search| search.figures.gates);
+    Ok(gates(2)?.saturating_sub(gates(1)?))
+}
+
+/// What a tally says to every plan.
+pub fn advice_on(problem: &Problem, counted: &Counted) -> Vec<Advice> {
     let mut advice = Vec::new();
     if problem.bit_count() == 0 {
         advice.push(Advice::nothing_to_search());
@@ -97,10 +109,16 @@ pub fn plan_for(problem: &Problem, counted: &Counted) -> (Option<Plan>, Vec<Advi
         let shown = problem.shown.as_ref().map_or(0, Vec::len);
         advice.push(Advice::hidden_bits_searched(problem.bit_count() - shown));
     }
-    let Some(marked) = counted.marked() else {
+    if counted.marked().is_none() {
         advice.push(Advice::marked_unknown());
-        return (None, advice);
-    };
+    }
+    advice
+}
+
+/// The plan for a tally, with advice; `None` where the number of marked states is not known.
+pub fn plan_for(problem: &Problem, counted: &Counted) -> (Option<Plan>, Vec<Advice>) {
+    let mut advice = advice_on(problem, counted);
+    let Some(marked) = counted.marked() else { return (None, advice) };
     let mut plan = plan(&counted.space, marked);
     advice.append(&mut plan.advice);
     plan.advice.clone_from(&advice);

@@ -1,6 +1,6 @@
 //! `tallymark audit FILE CIRCUIT`: judge a circuit against the problem.
 
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 
 use clap::Args;
 
@@ -87,7 +87,7 @@ fn places(options: &Options, loaded: &Loaded, circuit: &Circuit, sources: &Sourc
     let folder = options.circuit.with_file_name("places.json");
     let found = options.places.clone().or_else(|| [beside, folder].into_iter().find(|path| path.exists()));
     if let Some(path) = found {
-        return read_places(&path).map_err(|diagnostics| Failure::input(diagnostics, sources));
+        return input::read_places(&path).map_err(|diagnostics| Failure::input(diagnostics, sources));
     }
     let (searched, bits) = (circuit.register(SEARCH).len(), loaded.problem.bit_count());
     if searched != bits {
@@ -99,14 +99,4 @@ fn places(options: &Options, loaded: &Loaded, circuit: &Circuit, sources: &Sourc
         return Err(Failure::input(vec![diagnostic], sources));
     }
     Ok(Places::as_given(&loaded.problem))
-}
-
-fn read_places(path: &Path) -> Result<Places, Vec<Diagnostic>> {
-    let name = path.display().to_string();
-    let text = std::fs::read_to_string(path).map_err(|error| {
-        vec![Diagnostic::error(Code("F092"), format!("the places cannot be read: {error}")).in_file(&name)]
-    })?;
-    Places::from_json(&text).map_err(|error| {
-        vec![Diagnostic::error(Code("P002"), error.to_string()).in_file(&name).expected("a places file of tallymark")]
-    })
 }

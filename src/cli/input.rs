@@ -1,10 +1,13 @@
 //! What every command begins with: the problem, the places, the settings.
 
+use std::path::Path;
+
 use crate::circuit::{Level, Mark};
 use crate::cli::Global;
 use crate::cli::render::{Failure, show};
 use crate::diag::{Code, Diagnostic};
 use crate::pipeline::Settings;
+use crate::places::Places;
 use crate::source::{self, Loaded};
 use crate::span::Sources;
 
@@ -55,4 +58,23 @@ pub(super) fn refuse_empty(loaded: &Loaded, sources: &Sources) -> Result<(), Box
         .expected("a problem with something to choose")
         .help("`tallymark count` and `tallymark plan` answer for it");
     Err(Failure::input(vec![diagnostic], sources))
+}
+
+/// The places in this file, which must fit the problem; without a file, bit i is search[i].
+pub(super) fn places(path: Option<&Path>, loaded: &Loaded, sources: &Sources) -> Result<Places, Box<Failure>> {
+    let Some(path) = path else { return Ok(Places::as_given(&loaded.problem)) };
+    let places = read_places(path).map_err(|diagnostics| Failure::input(diagnostics, sources))?;
+    places.check(&loaded.problem).map_err(|error| Failure::stage(&error.into(), sources))?;
+    Ok(places)
+}
+
+/// The places in this file.
+pub(super) fn read_places(path: &Path) -> Result<Places, Vec<Diagnostic>> {
+    let name = path.display().to_string();
+    let text = std::fs::read_to_string(path).map_err(|error| {
+        vec![Diagnostic::error(Code("F092"), format!("the places cannot be read: {error}")).in_file(&name)]
+    })?;
+    Places::from_json(&text).map_err(|error| {
+        vec![Diagnostic::error(Code("P002"), error.to_string()).in_file(&name).expected("a places file of tallymark")]
+    })
 }

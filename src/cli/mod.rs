@@ -14,6 +14,7 @@ mod ledger;
 mod plan;
 mod progress;
 mod render;
+mod shots;
 
 use std::ffi::OsString;
 use std::io::{self, Write};
@@ -27,7 +28,7 @@ use render::Failure;
 
 const EXIT_CODES: &str = "Exit codes:
   0   done; a count of zero is an answer
-  1   the answer is no: a circuit that differs, a ledger that no longer holds
+  1   the answer is no: a circuit that differs, shots that contradict the plan, a ledger that no longer holds
   2   bad input or usage
   3   a budget ran out, or the verdict is undecided; what was reached is printed and marked partial
   70  a fault of tallymark itself";
@@ -78,10 +79,12 @@ enum Command {
     Compile(compile::Options),
     /// Judge an OpenQASM circuit against the problem
     Audit(audit::Options),
-    /// Iterations and success probability
-    Plan(plan::Options),
     /// All problems of a folder against the expected tallies and costs
     Ledger(ledger::Options),
+    /// Iterations and success probability, for a problem or for numbers alone
+    Plan(Box<plan::Options>),
+    /// Measured bit strings back to answers, checked, and compared with the plan
+    Shots(shots::Options),
     /// How the problem was read: variables, bits, constraints, ranges
     Explain(explain::Options),
 }
@@ -116,6 +119,7 @@ fn dispatch(cli: &Cli) -> Outcome {
         Command::Audit(options) => audit::run(&cli.global, options),
         Command::Plan(options) => plan::run(&cli.global, options),
         Command::Ledger(options) => ledger::run(&cli.global, options),
+        Command::Shots(options) => shots::run(&cli.global, options),
         Command::Explain(options) => explain::run(&cli.global, options),
     }
 }

@@ -10,7 +10,8 @@ use crate::judge::audit::{SearchVerdict, Verdict, Witness};
 use crate::judge::count::Counted;
 use crate::problem::{Bits, Problem};
 use crate::search::Plan;
-use crate::source::{Format, Loaded};
+use crate::search::number::in_words;
+use crate::source::Loaded;
 use crate::span::Sources;
 
 /// The version of the shape of these objects.
@@ -19,11 +20,19 @@ pub const SCHEMA: u32 = 1;
 /// The object that every command starts from.
 pub fn envelope(command: &str, loaded: &Loaded, sources: &Sources, partial: bool) -> Map<String, Value> {
     let warnings: Vec<Value> = loaded.warnings.iter().map(|warning| diagnostic_json(warning, sources)).collect();
+    let mut object = bare_envelope(command, partial);
+    object.insert("problem".to_owned(), problem_json(loaded));
+    object.insert("warnings".to_owned(), warnings.into());
+    object
+}
+
+/// The same where there is no problem: `problem` is null.
+pub fn bare_envelope(command: &str, partial: bool) -> Map<String, Value> {
     let value = json!({
         "schema": SCHEMA,
         "command": command,
-        "problem": problem_json(loaded),
-        "warnings": warnings,
+        "problem": null,
+        "warnings": [],
         "partial": partial,
     });
     match value {
@@ -37,7 +46,7 @@ pub fn problem_json(loaded: &Loaded) -> Value {
     json!({
         "title": loaded.problem.title,
         "file": loaded.file,
-        "format": match loaded.format { Format::Tally => "tally", Format::Dimacs => "dimacs" },
+        "format": loaded.format.name(),
         "sha256": loaded.sha256,
         "bits": loaded.problem.bit_count(),
         "constraints": loaded.problem.constraint_count(),
@@ -138,7 +147,7 @@ fn witness_json(problem: &Problem, witness: &Witness) -> Value {
 }
 
 /// Values by the names of their variables; null where a code lies outside its domain.
-fn values_json(problem: &Problem, bits: &Bits) -> Option<Map<String, Value>> {
+pub(super) fn values_json(problem: &Problem, bits: &Bits) -> Option<Map<String, Value>> {
     let values = problem.decode(bits)?;
     let named = problem
         .vars()
@@ -164,7 +173,7 @@ pub fn search_json(verdict: &SearchVerdict) -> Value {
 pub fn plan_json(plan: &Plan) -> Value {
     json!({
         "aim": plan.aim,
-        "iterations": plan.iterations.to_string(),
+        "iterations": in_words(&plan.iterations),
         "success": plan.success,
         "success_low": plan.success,
         "success_high": plan.success,

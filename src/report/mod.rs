@@ -6,4 +6,6 @@ pub mod files;
 pub mod header;
 pub mod json;
 pub mod places;
+pub mod plan;
+pub mod shots;
 pub mod summary;

@@ -13,11 +13,14 @@ use crate::problem::{Bits, Problem};
 use crate::report::dossier::Dossier;
 use crate::report::header::CAUTION;
 use crate::report::json::mark_name;
+use crate::report::plan::answer_text;
+use crate::search::number::in_words;
+use crate::search::plan::Answer;
 use crate::search::{Advice, Plan};
 use crate::source::Loaded;
 
 /// The first lines: title, file, size.
-fn head(loaded: &Loaded) -> String {
+pub(super) fn head(loaded: &Loaded) -> String {
     let problem = &loaded.problem;
     let title = problem.title.as_ref().map_or_else(String::new, |title| format!("{title}\n"));
     let sizes = [
@@ -30,7 +33,7 @@ fn head(loaded: &Loaded) -> String {
 }
 
 /// One `name   value` line of a summary.
-fn line(name: &str, value: impl std::fmt::Display) -> String {
+pub(super) fn line(name: &str, value: impl std::fmt::Display) -> String {
     format!("{name:<12}{value}\n")
 }
 
@@ -55,7 +58,7 @@ fn tally_lines(counted: &Counted) -> String {
 }
 
 /// A solution in the problem's own terms.
-fn values(problem: &Problem, bits: &Bits) -> String {
+pub(super) fn values(problem: &Problem, bits: &Bits) -> String {
     let Some(values) = problem.decode(bits) else {
         return "(a code outside its domain)".to_owned();
     };
@@ -140,18 +143,19 @@ pub fn search_verdict(verdict: &SearchVerdict) -> String {
     text
 }
 
-/// The plan, or why there is none.
-pub fn plan(loaded: &Loaded, plan: Option<&Plan>, advice: &[Advice]) -> String {
-    head(loaded) + &plan_lines(plan) + &advice_lines(advice)
+/// The plan, or why there is none. `loaded` is missing where the plan rests on numbers alone.
+pub fn plan(loaded: Option<&Loaded>, answer: Option<&Answer>, advice: &[Advice]) -> String {
+    let head = loaded.map_or_else(String::new, head);
+    head + &answer.map_or_else(|| plan_lines(None) + &advice_lines(advice), answer_text)
 }
 
-fn plan_lines(plan: Option<&Plan>) -> String {
+pub(super) fn plan_lines(plan: Option<&Plan>) -> String {
     let Some(plan) = plan else {
         return line("plan", "none: the number of marked states is not known");
     };
     let exact = plan.success_exact.as_ref().map_or_else(String::new, |(n, d)| format!(" = {n}/{d}"));
-    let mut text = line("marked", format!("{} of {} states", plan.marked, plan.space));
-    text += &line("iterations", &plan.iterations);
+    let mut text = line("marked", format!("{} of {} states", in_words(&plan.marked), in_words(&plan.space)));
+    text += &line("iterations", in_words(&plan.iterations));
     text += &line("success", format!("{:.9}{exact}", plan.success));
     if let Some(calls) = plan.expected_oracle_calls {
         text += &line("calls", format!("{calls:.3} oracle calls on average, when failures are repeated"));
@@ -159,7 +163,7 @@ fn plan_lines(plan: Option<&Plan>) -> String {
     text
 }
 
-fn advice_lines(advice: &[Advice]) -> String {
+pub(super) fn advice_lines(advice: &[Advice]) -> String {
     advice.iter().map(|advice| line("advice", format!("{} [{}]", advice.text, advice.code))).collect()
 }
 

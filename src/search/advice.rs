@@ -101,6 +101,11 @@ impl Advice {
         )
     }
 
+    /// Even without error, a search costs more than guessing.
+    pub fn guessing_is_cheaper() -> Self {
+        Self::new("guessing-is-cheaper", "At these costs of a guess and of a try, guessing is cheaper than a search.")
+    }
+
     /// What the numbers alone say against a search.
     pub(super) fn on_numbers(space: &BigUint, marked: &BigUint) -> Vec<Self> {
         let mut advice = Vec::new();

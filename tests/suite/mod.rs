@@ -8,6 +8,7 @@ mod judging;
 mod known_counts;
 mod language;
 mod making;
+mod planning;
 mod random_problem;
 mod states;
 mod walls;

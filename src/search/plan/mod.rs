@@ -27,12 +27,14 @@ pub mod minimum;
 pub mod noise;
 pub mod outline;
 pub mod peak;
+pub mod question;
 pub mod restart;
 pub mod schedule;
 pub mod split;
 pub mod success;
 
 pub use outline::Outline;
+pub use question::{Answer, Details, Erring, Known, NoiseFigures, Question, Unanswerable, answer};
 pub use success::{exact_fraction, success, theta};
 
 use num_bigint::BigUint;
@@ -63,6 +65,39 @@ pub enum Aim {
     NothingKnown,
     /// The count itself.
     CountOnMachine,
+}
+
+impl Aim {
+    /// Every aim.
+    pub const ALL: [Aim; 8] = [
+        Aim::HighestSuccess,
+        Aim::HighestWithinBound,
+        Aim::LeastWork,
+        Aim::Certainty,
+        Aim::BestWorstCase,
+        Aim::AtLeastSoMany,
+        Aim::NothingKnown,
+        Aim::CountOnMachine,
+    ];
+
+    /// Its name on the command line and in reports.
+    pub fn name(self) -> &'static str {
+        match self {
+            Aim::HighestSuccess => "highest-success",
+            Aim::HighestWithinBound => "highest-within-bound",
+            Aim::LeastWork => "least-work",
+            Aim::Certainty => "certainty",
+            Aim::BestWorstCase => "best-worst-case",
+            Aim::AtLeastSoMany => "at-least-so-many",
+            Aim::NothingKnown => "nothing-known",
+            Aim::CountOnMachine => "count-on-machine",
+        }
+    }
+
+    /// Whether it rests on the exact number of marked states.
+    pub fn needs_count(self) -> bool {
+        matches!(self, Aim::HighestSuccess | Aim::HighestWithinBound | Aim::LeastWork | Aim::Certainty)
+    }
 }
 
 /// A plan of plain iterations for a known number of marked states.

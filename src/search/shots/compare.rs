@@ -9,6 +9,7 @@ use num_traits::ToPrimitive;
 use serde::Serialize;
 
 use crate::search::number::Wide;
+use crate::search::plan::success;
 use crate::search::{Plan, binomial};
 
 /// What a plan says about one shot.
@@ -27,8 +28,13 @@ pub struct Predicted {
 impl Predicted {
     /// What this plan says, for a start state over all strings of the register.
     pub fn by(plan: &Plan) -> Self {
-        let floor = Wide::ratio(&plan.marked, &plan.space).to_f64();
-        Self { low: plan.success, high: plan.success, iterations: plan.iterations.clone(), floor: Some(floor) }
+        Self::after(&plan.space, &plan.marked, plan.iterations.clone())
+    }
+
+    /// What is to be expected after so many plain iterations, for a start state over all strings of the register.
+    pub fn after(space: &BigUint, marked: &BigUint, iterations: BigUint) -> Self {
+        let success = success(space, marked, &iterations);
+        Self { low: success, high: success, iterations, floor: Some(Wide::ratio(marked, space).to_f64()) }
     }
 }
 
