@@ -7,3 +7,4 @@ pub mod header;
 pub mod json;
 pub mod places;
 pub mod summary;
+pub mod values;
