@@ -5,7 +5,7 @@
 //!     └────► Counted ─► Plan ─► whole search ─► search file ─► SearchVerdict
 //! ```
 
-use std::path::Path;
+use std::path::{Path, PathBuf};
 
 use num_bigint::BigUint;
 use num_traits::Zero;
@@ -15,16 +15,20 @@ use crate::budget::Budget;
 use crate::circuit::{Circuit, Figures, Level, Mark, Product, qasm};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::audit::{self, AuditError, Outcome, Verdict};
-use crate::judge::count::{self, Counted, Over};
 use crate::ledger::{Cost, Entry};
+use crate::judge::count::certificate::text::Mistake;
+use crate::judge::count::certificate::{self, Certificate, Drawer, Formula, PickValues, Refusal};
+use crate::judge::count::{self, Counted, Over, Tally};
 use crate::make::lower::{self, LowerError};
 use crate::make::network;
 use crate::places::{Places, PlacesError};
-use crate::problem::Problem;
+use crate::problem::{Bits, Problem};
+use crate::random::SplitMix64;
 use crate::report::dossier::{Dossier, Judged};
 use crate::report::files::{WriteError, write_whole};
 use crate::report::header::header;
 use crate::report::places::places_json;
+use crate::report::values::{CheckedFile, Refused};
 use crate::search::{Advice, Plan, plan, whole};
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -54,6 +58,71 @@ pub fn count(problem: &Problem, places: &Places, settings: Settings, budget: &Bu
         false => None,
     };
     Ok(Counted { tally, states, space: Counted::space(places) })
+}
+
+/// A certificate of a tally that was checked.
+#[derive(Debug)]
+pub struct Certified {
+    /// What it speaks of.
+    pub formula: Formula,
+    /// The certificate.
+    pub certificate: Certificate,
+    /// The count that it proves.
+    pub count: BigUint,
+}
+
+/// Makes a certificate of a tally of the shown solutions, writes it where a file is named, and checks it as it was
+/// written.
+pub fn certify(problem: &Problem, tally: &Tally, file: Option<&Path>, budget: &Budget) -> Result<Certified, Error> {
+    let formula = Formula::of(problem, Over::Shown);
+    let mut certificate = certificate::certify(&formula, budget).ok_or(Error::Certificate(Refusal::OutOfTime))?;
+    if let Some(file) = file {
+        write_whole(file, |out| certificate::text::write(&certificate, out))?;
+        let read = read_certificate(file, &formula)?;
+        certificate = read.map_err(|mistake| Error::Fault(format!("a certificate just written: {mistake}")))?;
+    }
+    let count = certificate::check(&formula, &certificate, budget).map_err(Error::Certificate)?;
+    if count < tally.low || count > tally.high {
+        return Err(Error::Fault(format!("the certificate proves {count}, the tally is {}", tally.low)));
+    }
+    Ok(Certified { formula, certificate, count })
+}
+
+/// Checks a certificate file, from wherever it comes.
+pub fn check_certificate(problem: &Problem, file: &Path, budget: &Budget) -> Result<CheckedFile, Error> {
+    let formula = Formula::of(problem, Over::Shown);
+    let name = file.display().to_string();
+    let refused = |reason: String, undecided| Err(Refused { reason, undecided });
+    Ok(match read_certificate(file, &formula)? {
+        Err(mistake) => CheckedFile { file: name, kind: None, size: 0, verdict: refused(mistake.to_string(), false) },
+        Ok(certificate) => {
+            let verdict = certificate::check(&formula, &certificate, budget)
+                .or_else(|refusal| refused(refusal.to_string(), refusal.is_undecided()));
+            CheckedFile { file: name, kind: Some(certificate.kind()), size: certificate.size(), verdict }
+        }
+    })
+}
+
+fn read_certificate(file: &Path, formula: &Formula) -> Result<Result<Certificate, Mistake>, Error> {
+    let text = std::fs::read(file).map_err(|error| Error::Read { path: file.to_owned(), error })?;
+    Ok(certificate::text::read(&String::from_utf8_lossy(&text), formula.var_count))
+}
+
+/// In how many solutions each pick takes each value.
+pub fn values(problem: &Problem, certified: &Certified, budget: &Budget) -> Result<Vec<PickValues>, Error> {
+    certificate::values(problem, &certified.formula, &certified.certificate, budget).map_err(Error::Certificate)
+}
+
+/// Draws solutions, each with the same probability, one after the other and with repetition.
+pub fn draw(problem: &Problem, certified: &Certified, number: usize, seed: u64) -> Result<Vec<Bits>, Error> {
+    let Some(graph) = certified.certificate.graph() else { return Ok(Vec::new()) };
+    let drawer = Drawer::new(&certified.formula, graph).map_err(Error::Certificate)?;
+    let mut random = SplitMix64::new(seed);
+    let drawn: Vec<Bits> = (0..number).map_while(|_| drawer.draw(&mut random)).collect();
+    match drawn.iter().find(|bits| !problem.holds(bits)) {
+        Some(bits) => Err(Error::Fault(format!("{bits} was drawn, which is no solution"))),
+        None => Ok(drawn),
+    }
 }
 
 /// Compiles the oracle.
@@ -272,6 +341,17 @@ pub enum Error {
     /// The places do not fit the problem.
     #[error(transparent)]
     Places(#[from] PlacesError),
+    /// The certificate was not made, or it does not hold.
+    #[error("{0}")]
+    Certificate(Refusal),
+    /// A certificate could not be read.
+    #[error("the certificate cannot be read: {error}")]
+    Read {
+        /// The file.
+        path: PathBuf,
+        /// What the system said.
+        error: std::io::Error,
+    },
     /// A result could not be written.
     #[error(transparent)]
     Write(#[from] WriteError),
@@ -293,20 +373,37 @@ impl Error {
                 .expected("places that name every bit of this problem once")
                 .help("give the places file of this circuit with --places"),
             Error::Write(error) => error.diagnostic(),
+            Error::Certificate(refusal) if refusal.is_undecided() => {
+                Diagnostic::error(Code("A080"), refusal.to_string())
+                    .help("give more --time; the count itself needs less than its certificate")
+            }
+            Error::Read { path, .. } => Diagnostic::error(Code("F092"), self.to_string())
+                .in_file(path.display().to_string())
+                .expected("a file that `tallymark count --certificate` wrote, or a decision-DNNF in nnf text"),
             Error::TooManyIterations(_) => Diagnostic::error(Code("C090"), self.to_string())
                 .help("plan still gives the count; a search of this length will not be run"),
-            Error::Count(_) | Error::Fault(_) => Diagnostic::error(Code("A090"), self.to_string())
-                .help("please report it with the input file and the command line"),
+            Error::Count(_) | Error::Fault(_) | Error::Certificate(_) => {
+                Diagnostic::error(Code("A090"), self.to_string())
+                    .help("please report it with the input file and the command line")
+            }
         }
     }
 
     /// Whether a budget ran out, rather than anything being wrong.
     pub fn is_unfinished(&self) -> bool {
-        matches!(self, Error::Lower(LowerError::OutOfTime))
+        match self {
+            Error::Lower(error) => matches!(error, LowerError::OutOfTime),
+            Error::Certificate(refusal) => refusal.is_undecided(),
+            _ => false,
+        }
     }
 
     /// Whether tallymark itself is at fault, rather than its input.
     pub fn is_fault(&self) -> bool {
-        matches!(self, Error::Fault(_) | Error::Count(_))
+        match self {
+            Error::Fault(_) | Error::Count(_) => true,
+            Error::Certificate(refusal) => !refusal.is_undecided(),
+            _ => false,
+        }
     }
 }

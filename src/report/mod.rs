@@ -9,3 +9,4 @@ pub mod places;
 pub mod plan;
 pub mod shots;
 pub mod summary;
+pub mod values;

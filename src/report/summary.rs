@@ -16,6 +16,7 @@ use crate::report::json::mark_name;
 use crate::report::plan::answer_text;
 use crate::search::number::in_words;
 use crate::search::plan::Answer;
+use crate::report::values::{CheckedFile, certificate_line};
 use crate::search::{Advice, Plan};
 use crate::source::Loaded;
 
@@ -39,12 +40,19 @@ pub(super) fn line(name: &str, value: impl std::fmt::Display) -> String {
 
 /// The tally.
 pub fn count(loaded: &Loaded, counted: &Counted, listed: &[&Bits]) -> String {
-    let mut text = head(loaded) + &tally_lines(counted);
-    if !listed.is_empty() {
-        text.push('\n');
-    }
+    head(loaded) + &tally_lines(counted) + &solutions(&loaded.problem, listed)
+}
+
+/// The verdict on a certificate file, without a count of our own.
+pub fn checked(loaded: &Loaded, checked: &CheckedFile) -> String {
+    head(loaded) + &certificate_line(checked)
+}
+
+/// Solutions, one a line, behind an empty line.
+pub fn solutions(problem: &Problem, listed: &[&Bits]) -> String {
+    let mut text = if listed.is_empty() { String::new() } else { "\n".to_owned() };
     for bits in listed {
-        _ = writeln!(text, "{}  {}", bits, values(&loaded.problem, bits));
+        _ = writeln!(text, "{}  {}", bits, values(problem, bits));
     }
     text
 }

@@ -13,11 +13,13 @@
 //! offered: varisat 0.2.2 can give an incomplete one (see the guard tests in `varisat.rs`).
 
 mod batsat;
+mod refute;
 mod varisat;
 
 use std::ops::Not;
 
 pub use self::batsat::Batsat;
+pub use self::refute::refute;
 pub use self::varisat::Varisat;
 use crate::budget::Budget;
 

@@ -5,11 +5,21 @@
 //! Holds:  every way that was affordable gave the same number, and every kept solution satisfies the problem's own
 //!         evaluator; anything else is a [`Fault`] of this program.
 //!
-//! Small problems are swept: every bit string is tried. The others, and the small ones again, go to the solvers: the
-//! clauses fall into `parts` without common variables, the solutions of each part are `list`ed one by one, and the
-//! numbers multiply. Up to [`CONFIRMED`] listed solutions, the other engine lists them again. Without a deadline
-//! varisat leads; with one batsat does, which can be stopped.
+//! Five ways, by what they cost:
+//!
+//! 1. the sweep tries every bit string: first where that costs next to nothing;
+//! 2. the `engine` splits the clauses into components and remembers their counts: next, with little work at first;
+//! 3. the listing goes through the solutions one by one: next, for what the engine found hard may have few solutions;
+//! 4. the engine again, with all the work that is allowed;
+//! 5. the sweep again, if it is possible at all.
+//!
+//! Whoever led is confirmed by another way that costs no more than a share: the listing up to [`CONFIRMED`] solutions,
+//! the sweep up to a bound on its work, the engine with little work, or a [`certificate`] of the search that is checked
+//! apart from it. Work is counted, never timed, so without a deadline the same problem takes the same course everywhere.
+//! Under a deadline a first try has half of the time that is left; batsat, which can be stopped, leads the listing then.
 
+pub mod certificate;
+mod components;
 mod confirm;
 pub mod counted;
 pub mod engine;
@@ -29,7 +39,7 @@ use num_traits::{One, Zero};
 use thiserror::Error;
 
 use crate::budget::Budget;
-use crate::judge::clauses;
+use crate::judge::clauses::{self, Cnf};
 use crate::problem::{BitId, Bits, Problem};
 use crate::sat::{Batsat, Varisat};
 use list::{Limits, Listing, Plan, Search};
@@ -44,6 +54,10 @@ pub const LISTED_WORK: u64 = 1 << 28;
 pub const CONFIRMED: u64 = 100_000;
 /// Work that the second engine does at most where no deadline is set, in the same units.
 pub const CONFIRMED_WORK: u64 = 1 << 28;
+/// Work of the engine's first try, in its own units: some tenths of a second.
+pub const QUICK_WORK: u64 = 1 << 24;
+/// Work of the engine at most where no deadline is set: some minutes.
+pub const LONG_WORK: u64 = 1 << 33;
 /// Size of the kept solutions (times the size of the problem) up to which the evaluator checks them all.
 const EVALUATED_WORK: usize = 1 << 28;
 
@@ -92,6 +106,12 @@ pub enum Fault {
         /// The way.
         method: Method,
     },
+    /// A certificate that was just made does not hold.
+    #[error("a certificate just made is refused: {refusal}")]
+    Refused {
+        /// Why.
+        refusal: Box<certificate::Refusal>,
+    },
     /// A way gave a solution that the problem does not have.
     #[error("{method:?} gave {bits}, which is no solution")]
     NotASolution {
@@ -104,45 +124,118 @@ pub enum Fault {
 
 /// Counts the solutions of a problem.
 pub fn count(problem: &Problem, over: Over, options: &Options, budget: &Budget) -> Result<Tally, Fault> {
-    let counted: Vec<BitId> = match (&problem.shown, over) {
-        (Some(shown), Over::Shown) => shown.clone(),
-        _ => problem.bits().collect(),
-    };
+    let job = Job { problem, over, counted: counted_over(problem, over), cnf: clauses::encode(problem) };
     let tally = match sweep::is_cheap(problem) {
-        true => sweep_then_list(problem, &counted, options, budget)?,
-        false => list_then_sweep(problem, &counted, options, budget)?,
+        true => job.sweep_first(options, budget)?,
+        false => job.search_first(options, budget)?,
     };
     check_solutions(problem, &tally)?;
     Ok(tally)
 }
 
-fn sweep_then_list(problem: &Problem, counted: &[BitId], options: &Options, budget: &Budget) -> Result<Tally, Fault> {
-    let Some(swept) = sweep::sweep(problem, counted, options, budget) else {
-        return list_then_sweep(problem, counted, options, budget);
-    };
-    let mut tally = tally_of_sweep(swept);
-    if tally.low <= BigUint::from(CONFIRMED) {
-        let listed = listing(problem, counted, &Options { keep: 0, ..*options }, budget)?;
-        agree(&mut tally, &listed)?;
+/// The bits that are counted over.
+fn counted_over(problem: &Problem, over: Over) -> Vec<BitId> {
+    match (&problem.shown, over) {
+        (Some(shown), Over::Shown) => shown.clone(),
+        _ => problem.bits().collect(),
     }
-    Ok(tally)
 }
 
-fn list_then_sweep(problem: &Problem, counted: &[BitId], options: &Options, budget: &Budget) -> Result<Tally, Fault> {
-    let mut listed = listing(problem, counted, options, budget)?;
-    // The sweep is dear here: it is for where the listing fell short, or stands alone.
-    if listed.exact().is_some() && !listed.checked_by.is_empty() {
-        return Ok(listed);
+/// What is counted, and its clauses.
+struct Job<'a> {
+    problem: &'a Problem,
+    over: Over,
+    counted: Vec<BitId>,
+    cnf: Cnf,
+}
+
+impl Job<'_> {
+    fn sweep_first(&self, options: &Options, budget: &Budget) -> Result<Tally, Fault> {
+        let Some(swept) = sweep::sweep(self.problem, &self.counted, options, budget) else {
+            return self.search_first(options, budget);
+        };
+        let mut tally = tally_of_sweep(swept);
+        let other = match tally.low <= BigUint::from(CONFIRMED) {
+            true => self.listing(&Options { keep: 0, ..*options }, budget)?,
+            false => components::count(&self.cnf, &self.counted, QUICK_WORK, budget),
+        };
+        agree(&mut tally, &other)?;
+        Ok(tally)
     }
-    match sweep::sweep(problem, counted, options, budget) {
-        None => Ok(listed),
-        Some(swept) if listed.exact().is_some() => agree(&mut listed, &tally_of_sweep(swept)).map(|()| listed),
-        Some(swept) => {
-            let mut tally = tally_of_sweep(swept);
-            agree(&mut tally, &listed)?;
-            Ok(tally)
+
+    fn search_first(&self, options: &Options, budget: &Budget) -> Result<Tally, Fault> {
+        let quick = components::count(&self.cnf, &self.counted, QUICK_WORK, &half(budget));
+        if quick.exact().is_some() {
+            return self.confirmed(quick, options, budget);
+        }
+        let mut listed = self.listing(options, &half(budget))?;
+        within(&mut listed, &quick)?;
+        if listed.exact().is_some() {
+            return self.swept_too(listed, options, budget);
+        }
+        let mut long = components::count(&self.cnf, &self.counted, LONG_WORK, budget);
+        within(&mut long, &listed)?;
+        if long.exact().is_none() {
+            long.method = listed.method;
+            long.solutions = listed.solutions;
+            return self.swept_too(long, options, budget);
+        }
+        self.confirmed(long, options, budget)
+    }
+
+    /// A count by components, with solutions and whoever can confirm it.
+    fn confirmed(&self, mut tally: Tally, options: &Options, budget: &Budget) -> Result<Tally, Fault> {
+        let few = tally.low <= BigUint::from(CONFIRMED);
+        let limits = Limits { solutions: if few { CONFIRMED } else { options.keep as u64 }, work: CONFIRMED_WORK };
+        let listed = self.listing_within(limits, &Options { keep: options.keep, ..*options }, budget, Again::No)?;
+        agree(&mut tally, &listed)?;
+        tally.solutions = listed.solutions;
+        tally.complete = listed.complete;
+        if tally.checked_by.is_empty() && sweep::is_affordable(self.problem) {
+            tally = self.swept_too(tally, options, budget)?;
+        }
+        if tally.checked_by.is_empty() && components::has_short_certificate(self.problem, self.over, &tally, budget)? {
+            tally.checked_by.push(Method::Certificate);
+        }
+        Ok(tally)
+    }
+
+    /// The sweep for a tally that falls short, or stands alone.
+    fn swept_too(&self, mut tally: Tally, options: &Options, budget: &Budget) -> Result<Tally, Fault> {
+        if tally.exact().is_some() && !tally.checked_by.is_empty() {
+            return Ok(tally);
+        }
+        match sweep::sweep(self.problem, &self.counted, options, budget) {
+            None => Ok(tally),
+            Some(swept) if tally.exact().is_some() => agree(&mut tally, &tally_of_sweep(swept)).map(|()| tally),
+            Some(swept) => {
+                let mut exact = tally_of_sweep(swept);
+                agree(&mut exact, &tally)?;
+                Ok(exact)
+            }
         }
     }
+}
+
+/// A budget with half of the time that is left.
+fn half(budget: &Budget) -> Budget {
+    match budget.time_left() {
+        Some(left) => budget.clone().within(left / 2),
+        None => budget.clone(),
+    }
+}
+
+/// Narrows bounds by those of another way; bounds that exclude each other are a fault.
+fn within(tally: &mut Tally, other: &Tally) -> Result<(), Fault> {
+    if other.high < tally.low || tally.high < other.low {
+        let (mine, theirs) = if other.high < tally.low { (&tally.low, &other.high) } else { (&tally.high, &other.low) };
+        return Err(disagree(tally.method, mine, other.method, theirs));
+    }
+    if tally.exact().is_none() {
+        tally.low = tally.low.clone().max(other.low.clone());
+        tally.high = tally.high.clone().min(other.high.clone());
+    }
+    Ok(())
 }
 
 fn tally_of_sweep(swept: Sweep) -> Tally {
@@ -173,36 +266,51 @@ fn disagree(first: Method, first_count: &BigUint, second: Method, second_count: 
     Fault::Disagree { first, first_count: first_count.clone(), second, second_count: second_count.clone() }
 }
 
-/// Counts by the solvers.
-fn listing(problem: &Problem, counted: &[BitId], options: &Options, budget: &Budget) -> Result<Tally, Fault> {
-    let cnf = clauses::encode(problem);
-    let split = Split::of(&cnf, problem.bit_count(), counted);
-    let timed = budget.time_left().is_some();
-    if split.contradiction {
-        return Ok(no_solution(if timed { Method::SecondListing } else { Method::Listing }));
+/// Whether the second engine lists again what the first one listed.
+#[derive(Clone, Copy, PartialEq, Eq)]
+enum Again {
+    Yes,
+    No,
+}
+
+impl Job<'_> {
+    /// Counts by the solvers.
+    fn listing(&self, options: &Options, budget: &Budget) -> Result<Tally, Fault> {
+        let timed = budget.time_left().is_some();
+        let limits = if timed { Limits::none() } else { Limits { solutions: LISTED, work: LISTED_WORK } };
+        self.listing_within(limits, options, budget, Again::Yes)
     }
-    let limits = if timed { Limits::none() } else { Limits { solutions: LISTED, work: LISTED_WORK } };
-    let plan = Plan { search: Search::Pruned, keep: options.keep, limits };
-    let (method, listings) = match timed {
-        true => (Method::SecondListing, list::list_all::<Batsat>(&split.parts, plan, budget)),
-        false => (Method::Listing, list::list_all::<Varisat>(&split.parts, plan, budget)),
-    };
-    let listings = listings.map_err(|_| Fault::WrongModel { method })?;
-    let free = BigUint::one() << split.free.len();
-    let product = |of: fn(&Listing) -> BigUint| listings.iter().map(of).product::<BigUint>() * &free;
-    let (low, high) = (product(|listing| listing.found.into()), product(Listing::high));
-    if high.is_zero() {
-        let mut tally = no_solution(method);
-        confirm(&mut tally, split, &listings, budget)?;
-        return Ok(tally);
+
+    fn listing_within(&self, limits: Limits, options: &Options, budget: &Budget, again: Again) -> Result<Tally, Fault> {
+        let split = Split::of(&self.cnf, self.problem.bit_count(), &self.counted);
+        let timed = budget.time_left().is_some();
+        if split.contradiction {
+            return Ok(no_solution(if timed { Method::SecondListing } else { Method::Listing }));
+        }
+        let plan = Plan { search: Search::Pruned, keep: options.keep, limits };
+        let (method, listings) = match timed {
+            true => (Method::SecondListing, list::list_all::<Batsat>(&split.parts, plan, budget)),
+            false => (Method::Listing, list::list_all::<Varisat>(&split.parts, plan, budget)),
+        };
+        let listings = listings.map_err(|_| Fault::WrongModel { method })?;
+        let free = BigUint::one() << split.free.len();
+        let product = |of: fn(&Listing) -> BigUint| listings.iter().map(of).product::<BigUint>() * &free;
+        let (low, high) = (product(|listing| listing.found.into()), product(Listing::high));
+        if high.is_zero() {
+            let mut tally = no_solution(method);
+            if again == Again::Yes {
+                confirm(&mut tally, split, &listings, budget)?;
+            }
+            return Ok(tally);
+        }
+        let (solutions, complete) = product::solutions(self.problem.bit_count(), &split, &listings, options.keep);
+        let mut tally = Tally { low, high, method, checked_by: Vec::new(), solutions, complete };
+        let listed: u64 = listings.iter().map(|listing| listing.found).sum();
+        if tally.exact().is_some() && listed <= CONFIRMED && again == Again::Yes {
+            confirm(&mut tally, split, &listings, budget)?;
+        }
+        Ok(tally)
     }
-    let (solutions, complete) = product::solutions(problem.bit_count(), &split, &listings, options.keep);
-    let mut tally = Tally { low, high, method, checked_by: Vec::new(), solutions, complete };
-    let listed: u64 = listings.iter().map(|listing| listing.found).sum();
-    if tally.exact().is_some() && listed <= CONFIRMED {
-        confirm(&mut tally, split, &listings, budget)?;
-    }
-    Ok(tally)
 }
 
 fn no_solution(method: Method) -> Tally {

@@ -13,6 +13,8 @@ use crate::problem::{BitId, Bits, Problem};
 const SWEPT_BITS: usize = 28;
 /// Bit strings times the size of the problem, up to which the sweep comes first: some tenths of a second.
 const CHEAP_WORK: u64 = 1 << 33;
+/// The same, up to which the sweep confirms another way: some seconds.
+const AFFORDABLE_WORK: u64 = 1 << 36;
 /// Solutions over all bits that are listed to count over some of them.
 const PROJECTED: usize = 1 << 16;
 
@@ -26,8 +28,17 @@ pub(super) struct Sweep {
 
 /// Whether a sweep costs next to nothing.
 pub(super) fn is_cheap(problem: &Problem) -> bool {
+    costs_at_most(CHEAP_WORK, problem)
+}
+
+/// Whether a sweep is worth its cost as a confirmation.
+pub(super) fn is_affordable(problem: &Problem) -> bool {
+    costs_at_most(AFFORDABLE_WORK, problem)
+}
+
+fn costs_at_most(work: u64, problem: &Problem) -> bool {
     let size = 1 + problem.clauses.lit_count() as u64 + problem.exprs.len() as u64;
-    problem.bit_count() <= SWEPT_BITS && size <= CHEAP_WORK >> problem.bit_count()
+    problem.bit_count() <= SWEPT_BITS && size <= work >> problem.bit_count()
 }
 
 /// Sweeps; `None` where there are too many bits, or the budget ran out, or the projection is out of reach.

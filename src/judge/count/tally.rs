@@ -11,6 +11,10 @@ use crate::problem::Bits;
 pub enum Method {
     /// Every bit string tried, many at a time.
     Sweep,
+    /// Search that splits into components and remembers their counts.
+    Components,
+    /// A certificate of the search, checked apart from it.
+    Certificate,
     /// Solutions listed one by one by the first solver (varisat).
     Listing,
     /// Solutions listed one by one by the second solver (batsat).
@@ -21,6 +25,8 @@ impl std::fmt::Display for Method {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         f.write_str(match self {
             Method::Sweep => "sweep",
+            Method::Components => "components",
+            Method::Certificate => "certificate",
             Method::Listing => "listing",
             Method::SecondListing => "second listing",
         })

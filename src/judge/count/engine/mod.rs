@@ -61,11 +61,14 @@ pub struct Options {
     pub order: Option<OrderKind>,
     /// How much the preparation may change.
     pub effort: Effort,
+    /// Work after which the search stops with bounds, in units that do not depend on the machine (about a variable
+    /// looked at).
+    pub work: u64,
 }
 
 impl Default for Options {
     fn default() -> Self {
-        Self { memory: 1 << 30, threads: 1, order: None, effort: Effort::Count }
+        Self { memory: 1 << 30, threads: 1, order: None, effort: Effort::Count, work: u64::MAX }
     }
 }
 
@@ -179,7 +182,7 @@ fn search<T: Trace>(
     let memory = budget.memory().map_or(options.memory, |limit| limit.min(options.memory));
     let mut search = Search::new(formula, memory, depth, trace, budget);
     let runners = runners(formula, options.order);
-    let finish = race(&mut search, runners, || budget.spent());
+    let finish = race(&mut search, runners, options.work, || budget.spent());
     stats.decisions = search.spent.decisions;
     stats.leaves = search.spent.leaves;
     stats.conflicts = search.learner.conflicts();

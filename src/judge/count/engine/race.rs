@@ -96,10 +96,11 @@ pub(crate) enum Finish<N> {
     Bounded(Bounds, OrderKind),
 }
 
-/// Runs the race.
+/// Runs the race, with about so much work in all.
 pub(crate) fn race<T: Trace>(
     search: &mut Search<'_, T>,
     mut runners: Vec<Runner>,
+    limit: u64,
     spent: impl Fn() -> bool,
 ) -> Finish<T::Node> {
     let counted = search.class.iter().filter(|&&class| class == Class::Counted).count();
@@ -108,7 +109,8 @@ pub(crate) fn race<T: Trace>(
     loop {
         let alone = runners.len() == 1;
         for runner in &mut runners {
-            match search.run(runner.ranks.clone(), if alone { u64::MAX } else { work }) {
+            let left = limit.saturating_sub(search.work());
+            match search.run(runner.ranks.clone(), if alone { left } else { work.min(left) }) {
                 Step::Done(value, node) => return Finish::Counted(value, node, runner.kind),
                 Step::Stopped(bounds) => {
                     runner.covered.push(bounds.covered);
@@ -116,7 +118,7 @@ pub(crate) fn race<T: Trace>(
                 }
                 Step::Conflict(_) => unreachable!("a run answers conflicts at the root with 0"),
             }
-            if alone || spent() {
+            if alone || spent() || search.work() >= limit {
                 return Finish::Bounded(known, runner.kind);
             }
         }

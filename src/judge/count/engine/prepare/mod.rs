@@ -44,7 +44,8 @@ pub(crate) enum Class {
 pub enum Effort {
     /// Everything that keeps the count.
     Count,
-    /// Only what keeps the models, so that a certificate over the given clauses can be written.
+    /// Only what keeps the models and leaves each clause as it is, or drops it, or shortens it by a fixed literal: so
+    /// that a certificate over the given clauses can be written, and followed clause by clause.
     Models,
 }
 
@@ -82,7 +83,7 @@ pub(crate) fn prepare(
         if form.contradiction || budget.spent() {
             break;
         }
-        let mut changed = subsume::subsume(&mut form);
+        let mut changed = subsume::subsume(&mut form, effort);
         changed |= probe::probe(&mut form, effort);
         if effort == Effort::Count && !form.contradiction {
             changed |= equal::merge_equal(&mut form);

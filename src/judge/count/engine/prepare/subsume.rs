@@ -3,6 +3,7 @@
 //! N. Eén, A. Biere, "Effective preprocessing in SAT through variable and clause elimination", SAT 2005, section 4
 //! (signatures, and self-subsuming resolution).
 
+use super::Effort;
 use super::form::Form;
 use crate::judge::count::engine::lit::Lit;
 
@@ -10,7 +11,7 @@ use crate::judge::count::engine::lit::Lit;
 const WORK: usize = 20_000_000;
 
 /// Removes subsumed clauses and literals; says whether there were any.
-pub(super) fn subsume(form: &mut Form) -> bool {
+pub(super) fn subsume(form: &mut Form, effort: Effort) -> bool {
     let lists = form.occurrences();
     let mut signs: Vec<u64> = form.clauses.iter().map(|clause| signature(clause)).collect();
     let mut gone = vec![false; form.clauses.len()];
@@ -24,7 +25,8 @@ pub(super) fn subsume(form: &mut Form) -> bool {
         }
         // The clause itself (no literal flipped), then each literal flipped: what contains the flipped clause loses that
         // literal.
-        for flip in std::iter::once(None).chain((0..form.clauses[at].len()).map(Some)) {
+        let flips = if effort == Effort::Count { form.clauses[at].len() } else { 0 };
+        for flip in std::iter::once(None).chain((0..flips).map(Some)) {
             let mut clause = form.clauses[at].clone();
             let Some(flipped) = flip.map_or(Some(None), |flip| {
                 clause.get_mut(flip).map(|lit| {

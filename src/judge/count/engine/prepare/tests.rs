@@ -63,7 +63,7 @@ fn check_step(name: &str, step: impl Fn(&mut Form)) {
 #[test]
 fn subsumption_keeps_the_count() {
     check_step("subsume", |form| {
-        subsume::subsume(form);
+        subsume::subsume(form, Effort::Count);
     });
 }
 
