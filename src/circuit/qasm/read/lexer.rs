@@ -71,9 +71,7 @@ pub(super) enum Tok<'a> {
     True,
     #[token("false")]
     False,
-    #[regex(
-        "extern|while|switch|case|default|box|delay|nop|cal|defcal|defcalgrammar|break|continue|end"
-    )]
+    #[regex("extern|while|switch|case|default|box|delay|nop|cal|defcal|defcalgrammar|break|continue|end")]
     #[regex("bool|complex|duration|stretch|array|input|output|opaque|readonly|mutable|void")]
     Reserved(&'a str),
     #[regex(r"[\p{L}\p{Nl}_][\p{L}\p{Nl}\p{Nd}_]*")]
@@ -239,8 +237,7 @@ impl<'a, 'f> Tokens<'a, 'f> {
     /// Skips the statement that begins with this word.
     fn skip_statement(&mut self, lo: u32, word: &'a str, hi: u32) -> Spanned<'a> {
         self.faults.push((Place { lo, hi }, Fault::UnknownStatement(word.to_owned())));
-        let has_block =
-            matches!(word, "while" | "switch" | "box" | "cal" | "defcal" | "case" | "default");
+        let has_block = matches!(word, "while" | "switch" | "box" | "cal" | "defcal" | "case" | "default");
         let (mut depth, mut end, mut last_name) = (0usize, hi, None);
         while let Some(token) = self.raw() {
             match token.1 {
@@ -298,7 +295,9 @@ impl<'a> Iterator for Tokens<'a, '_> {
             let text = self.lexer.source();
             match token {
                 (lo, Tok::Reserved(word), hi) => token = self.skip_statement(lo, word, hi),
-                (lo, Tok::Int | Tok::Uint | Tok::Float | Tok::Angle, hi) => token = self.skip_statement(lo, &text[lo as usize..hi as usize], hi),
+                (lo, Tok::Int | Tok::Uint | Tok::Float | Tok::Angle, hi) => {
+                    token = self.skip_statement(lo, &text[lo as usize..hi as usize], hi)
+                }
                 _ => {}
             }
         }
