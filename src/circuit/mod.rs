@@ -10,6 +10,7 @@ pub mod figures;
 pub mod level;
 pub mod product;
 pub mod qasm;
+pub mod registers;
 
 use std::num::NonZeroU32;
 use std::ops::Range;

@@ -4,14 +4,17 @@ use std::path::PathBuf;
 
 use clap::Args;
 
+use crate::circuit::registers::{self, Roles};
 use crate::circuit::{Circuit, FOUND, Level, Mark, SEARCH};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, compile, input, progress};
 use crate::diag::{Code, Diagnostic};
+use crate::id::Id;
 use crate::judge::audit::{self, Outcome as Found};
 use crate::pipeline;
 use crate::places::Places;
+use crate::problem::BitId;
 use crate::report::{json, summary};
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -20,11 +23,26 @@ use crate::span::Sources;
 pub(super) struct Options {
     /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
     file: String,
-    /// The circuit: an OpenQASM 3 file; one that measures into `found` is judged as a whole search
+    /// The circuit: an OpenQASM file, version 3 or 2.0; one that measures into `found` is judged as a whole search
     circuit: PathBuf,
     /// The places file of the circuit [default: the one beside it, else bit i is search[i]]
     #[arg(long, value_name = "FILE")]
     places: Option<PathBuf>,
+    /// The qubits that are searched, as in q[0:4] (both ends belong to it) or a,q[2] [default: the register search]
+    #[arg(long, value_name = "QUBITS")]
+    search: Option<String>,
+    /// The qubit that a bit oracle writes [default: the register mark]
+    #[arg(long, value_name = "QUBIT")]
+    mark: Option<String>,
+    /// The ancillas, which begin and end as 0 [default: all other qubits]
+    #[arg(long, value_name = "QUBITS")]
+    work: Option<String>,
+    /// The measured bits that hold the result of a whole search [default: the register found]
+    #[arg(long, value_name = "BITS")]
+    found: Option<String>,
+    /// Which bit of the problem each searched qubit carries, as in 3,1,2,0, or a file with such a list
+    #[arg(long, value_name = "LIST", conflicts_with = "places")]
+    bits: Option<String>,
     /// Refuse a phase oracle that marks the complement, which is right up to a global sign
     #[arg(long)]
     strict_phase: bool,
@@ -40,6 +58,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let (loaded, mut sources) = input::load(global, &options.file)?;
     let circuit = pipeline::read_circuit(&options.circuit, &mut sources)
         .map_err(|diagnostics| Failure::input(diagnostics, &sources))?;
+    let circuit = assigned(options, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     let places = places(options, &loaded, &circuit, &sources)?;
     let (budget, line) = progress::budget(global);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
@@ -82,10 +101,59 @@ fn exit_of(outcome: Found) -> Exit {
     }
 }
 
+/// The circuit with its qubits in the registers of their roles.
+fn assigned(options: &Options, circuit: Circuit) -> Result<Circuit, Box<Diagnostic>> {
+    let Options { search, mark, work, found, .. } = options;
+    let roles = Roles { search: search.clone(), mark: mark.clone(), work: work.clone(), found: found.clone() };
+    if roles.is_empty() {
+        return Ok(circuit);
+    }
+    let registers: Vec<String> = circuit
+        .qubits
+        .iter()
+        .chain(&circuit.measured)
+        .map(|register| format!("{}[{}]", register.name, register.len))
+        .collect();
+    registers::assign(&circuit, &roles).map_err(|error| {
+        Box::new(
+            Diagnostic::error(Code("P020"), error.to_string())
+                .in_file(options.circuit.display().to_string())
+                .help(format!("the circuit has {}", registers.join(", "))),
+        )
+    })
+}
+
+/// The places of `--bits`: a list, or a file with one.
+fn listed_places(list: &str, loaded: &Loaded) -> Result<Places, Box<Diagnostic>> {
+    let is_list = |text: &str| text.chars().all(|c| c.is_ascii_digit() || c == ',' || c.is_whitespace());
+    let fail = |message: String| {
+        let expected = "numbers of bits joined by commas, such as 3,1,2,0";
+        Diagnostic::error(Code("P021"), message).expected(expected)
+    };
+    let text = match is_list(list) {
+        true => list.to_owned(),
+        false => std::fs::read_to_string(list)
+            .map_err(|error| Box::new(fail(format!("the bits cannot be read: {error}")).in_file(list)))?,
+    };
+    let numbers = text.split([',', ' ', '\n', '\r', '\t']).filter(|number| !number.is_empty());
+    let searched = numbers.map(|number| match number.parse::<u32>() {
+        Ok(bit) if bit < u32::MAX => Ok(BitId::new(bit as usize)),
+        _ => Err(Box::new(fail(format!("`{number}` is not the number of a bit")))),
+    });
+    let places = Places { searched: searched.collect::<Result<_, _>>()?, ..Places::as_given(&loaded.problem) };
+    places.check(&loaded.problem).map_err(|error| Box::new(fail(error.to_string())))?;
+    Ok(places)
+}
+
 fn places(options: &Options, loaded: &Loaded, circuit: &Circuit, sources: &Sources) -> Result<Places, Box<Failure>> {
+    if let Some(list) = &options.bits {
+        return listed_places(list, loaded).map_err(|diagnostic| Failure::input(vec![*diagnostic], sources));
+    }
     let beside = compile::places_path(&options.circuit);
     let folder = options.circuit.with_file_name("places.json");
-    let found = options.places.clone().or_else(|| [beside, folder].into_iter().find(|path| path.exists()));
+    // A file beside the circuit speaks of the registers that were written with it.
+    let is_own = options.search.is_none();
+    let found = options.places.clone().or_else(|| [beside, folder].into_iter().find(|path| is_own && path.exists()));
     if let Some(path) = found {
         return input::read_places(&path).map_err(|diagnostics| Failure::input(diagnostics, sources));
     }
@@ -95,7 +163,7 @@ fn places(options: &Options, loaded: &Loaded, circuit: &Circuit, sources: &Sourc
             .in_file(options.circuit.display().to_string())
             .found(format!("a register `{SEARCH}` of {searched} qubits, and a problem of {bits} bits"))
             .expected("a places file, or one qubit of the register for each bit")
-            .help("give the places file with --places");
+            .help("give the places file with --places, or the qubits with --search");
         return Err(Failure::input(vec![diagnostic], sources));
     }
     Ok(Places::as_given(&loaded.problem))

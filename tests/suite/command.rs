@@ -350,3 +350,45 @@ fn a_ledger_holds_until_something_changes() {
     desk.file("all/ledger.json", "[]");
     assert_eq!(desk.exit(&["ledger", "check", "all"]), 2);
 }
+
+/// Bits a and b; `c = a and b` is marked by a phase on registers of other names, in version 2.
+#[test]
+fn registers_of_other_names_are_told_by_options() {
+    let desk = Desk::new();
+    desk.file("p.tally", "pick a\npick b\npick c\nmust a and not b\n");
+    let text = "OPENQASM 2.0;\ninclude \"qelib1.inc\";\nqreg r[2];\nqreg q[3];\n\
+        x q[0];\nccx q[0],q[2],r[1];\nz r[1];\nccx q[0],q[2],r[1];\nx q[0];\n";
+    desk.file("c.qasm", text);
+    let audit = |more: &[&str]| desk.json(&[&["audit", "p.tally", "c.qasm"], more].concat());
+    // The searched qubits are q[2], q[0], q[1] for the bits a, b, c.
+    let (exit, object) = audit(&["--search", "q[2], q[0:1]"]);
+    assert_eq!((exit, &object["audit"]["verdict"]), (0, &"equal".into()), "{object:#}");
+    let (exit, object) = audit(&["--search", "q", "--bits", "1,2,0"]);
+    assert_eq!((exit, &object["audit"]["verdict"]), (0, &"equal".into()), "{object:#}");
+    desk.file("bits", "1 2\n0\n");
+    assert_eq!(audit(&["--search", "q", "--bits", "bits", "--work", "r"]).0, 0);
+    let (exit, object) = audit(&["--search", "q"]);
+    assert_eq!((exit, &object["audit"]["verdict"]), (1, &"differs".into()), "{object:#}");
+    let code = |more: &[&str]| {
+        let (exit, object) = audit(more);
+        assert_eq!(exit, 2, "{object:#}");
+        object["error"]["code"].as_str().unwrap().to_owned()
+    };
+    assert_eq!(code(&["--search", "q[0:3]"]), "P020");
+    assert_eq!(code(&["--search", "q", "--work", "r[0]"]), "P020");
+    assert_eq!(code(&["--search", "q", "--bits", "0,0,1"]), "P021");
+    assert_eq!(code(&["--search", "q", "--bits", "none"]), "P021");
+    assert_eq!(code(&[]), "P003");
+}
+
+/// A bit oracle whose mark has another name.
+#[test]
+fn the_mark_may_have_another_name() {
+    let desk = Desk::new();
+    desk.file("p.tally", "pick a\npick b\nmust a and b\n");
+    desk.file("c.qasm", "include \"stdgates.inc\";\nqubit[3] q;\nccx q[0], q[2], q[1];\n");
+    let audit = |mark: &str| desk.exit(&["audit", "p.tally", "c.qasm", "--search", "q[0:2:2]", "--mark", mark]);
+    assert_eq!(audit("q[1]"), 0);
+    assert_eq!(audit("q[2]"), 2);
+    assert_eq!(desk.exit(&["audit", "p.tally", "c.qasm", "--search", "q[0:2:2]"]), 1, "a dirty ancilla");
+}

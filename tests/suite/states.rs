@@ -3,3 +3,4 @@
 mod oracles;
 mod reader;
 mod searches;
+mod standard;

@@ -29,7 +29,15 @@ pub(super) enum Step<'a> {
     Subtract,
     Multiply,
     Divide,
+    Remainder,
+    Power,
+    /// `^`: a power in version 2, something else in version 3.
+    Caret,
     Negate,
+    /// A function, applied to so many values.
+    Apply(&'a str, u32),
+    /// An element of a register, in [`Ast::elements`]: it is no constant.
+    Element(u32),
 }
 
 /// An expression: a run of steps.
@@ -46,6 +54,15 @@ pub(super) enum Index {
     Whole,
     At(Expr),
     Span(Span),
+    /// In [`Ast::members`].
+    Set(Start),
+}
+
+/// A run in a pool; like a range, but to be copied.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Start {
+    pub(super) start: u32,
+    pub(super) end: u32,
 }
 
 /// `start:stop` or `start:step:stop`; both ends belong to it.
@@ -70,7 +87,7 @@ pub(super) enum Change {
     Ctrl(Option<Expr>),
     Negctrl(Option<Expr>),
     Inv,
-    Pow,
+    Pow(Expr),
 }
 
 /// A modifier where it stands.
@@ -92,11 +109,20 @@ pub(super) struct Call<'a> {
     pub(super) operands: Range<u32>,
 }
 
-/// A measured bit and the value it must have.
+/// What measured bits are compared with.
+#[derive(Clone, Copy, Debug)]
+pub(super) enum Compared<'a> {
+    Truth(bool),
+    Number(Expr),
+    Text(&'a str, Place),
+}
+
+/// Measured bits, and what they must be (or, `negated`, must not be); without a value, true.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Test<'a> {
-    pub(super) bit: Operand<'a>,
-    pub(super) value: bool,
+    pub(super) bits: Operand<'a>,
+    pub(super) value: Option<Compared<'a>>,
+    pub(super) negated: bool,
 }
 
 /// `if`, with what is done where the test holds and where it does not.
@@ -107,14 +133,64 @@ pub(super) struct If<'a> {
     pub(super) otherwise: Vec<Statement<'a>>,
 }
 
-/// `for` over a span of integers.
+/// What a loop runs over.
+#[derive(Clone, Copy, Debug)]
+pub(super) enum Over {
+    Span(Span),
+    /// In [`Ast::members`].
+    Set(Start),
+}
+
+/// `for` over integers.
 #[derive(Clone, Debug)]
 pub(super) struct For<'a> {
     pub(super) variable: Name<'a>,
-    pub(super) span: Span,
+    pub(super) over: Over,
     pub(super) body: Vec<Statement<'a>>,
     /// The steps of all expressions in the body.
     pub(super) steps: Range<u32>,
+}
+
+/// The type of a constant.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) enum Type {
+    Int,
+    Uint,
+    Float,
+    Angle,
+}
+
+/// `gate`.
+#[derive(Clone, Debug)]
+pub(super) struct GateDefinition<'a> {
+    pub(super) name: Name<'a>,
+    pub(super) angles: Vec<Name<'a>>,
+    pub(super) qubits: Vec<Name<'a>>,
+    pub(super) body: Vec<Statement<'a>>,
+}
+
+/// What a subroutine is given.
+#[derive(Clone, Copy, Debug)]
+pub(super) enum Given {
+    Qubits(Option<Expr>),
+    Constant(Type, Option<Expr>),
+    Bits,
+}
+
+/// `def`.
+#[derive(Clone, Debug)]
+pub(super) struct Subroutine<'a> {
+    pub(super) name: Name<'a>,
+    pub(super) parameters: Vec<(Given, Name<'a>)>,
+    pub(super) returns: bool,
+    pub(super) body: Vec<Statement<'a>>,
+}
+
+/// Where the value of measured bits comes from.
+#[derive(Clone, Debug)]
+pub(super) enum Source<'a> {
+    Measure(Operand<'a>),
+    Call(Call<'a>),
 }
 
 /// A statement.
@@ -123,10 +199,20 @@ pub(super) enum Kind<'a> {
     Version(&'a str),
     Include(&'a str),
     Qubits(Name<'a>, Option<Expr>),
-    /// The register, its size, and the qubits that are measured into it at once.
-    Bits(Name<'a>, Option<Expr>, Option<Operand<'a>>),
+    /// The register, its size, and what is written into it at once.
+    Bits(Name<'a>, Option<Expr>, Option<Source<'a>>),
+    /// A name for elements of registers, in [`Ast::operands`].
+    Let(Name<'a>, Range<u32>),
+    Const(Type, Option<Expr>, Name<'a>, Expr),
+    Gate(Box<GateDefinition<'a>>),
+    Subroutine(Box<Subroutine<'a>>),
     Call(Call<'a>),
-    Measure(Operand<'a>, Option<Operand<'a>>),
+    /// The bits that are written, if any, and from what.
+    Write(Option<Operand<'a>>, Source<'a>),
+    /// `return`: nothing, or a measurement.
+    Return(Option<Operand<'a>>),
+    /// `return` of something else.
+    ReturnValue,
     Reset(Operand<'a>),
     Barrier(Range<u32>),
     If(Box<If<'a>>),
@@ -149,6 +235,8 @@ pub(super) struct Ast<'a> {
     pub(super) arguments: Vec<Expr>,
     pub(super) operands: Vec<Operand<'a>>,
     pub(super) modifiers: Vec<Modifier>,
+    pub(super) elements: Vec<Operand<'a>>,
+    pub(super) members: Vec<Expr>,
 }
 
 impl<'a> Ast<'a> {
@@ -163,6 +251,27 @@ impl<'a> Ast<'a> {
     pub(super) fn apply(&mut self, step: Step<'a>, first: Expr, lo: u32, hi: u32) -> Expr {
         self.steps.push(step);
         Expr { start: first.start, end: self.steps.len() as u32, place: Place { lo, hi } }
+    }
+
+    /// An element of a register, as an expression.
+    pub(super) fn element(&mut self, operand: Operand<'a>) -> Expr {
+        self.elements.push(operand);
+        let step = Step::Element(self.elements.len() as u32 - 1);
+        self.leaf(step, operand.place.lo, operand.place.hi)
+    }
+
+    /// A function of these values, which were read just before.
+    pub(super) fn function(&mut self, name: &'a str, values: &[Expr], lo: u32, hi: u32) -> Expr {
+        let start = values.first().map_or(self.steps.len() as u32, |first| first.start);
+        self.steps.push(Step::Apply(name, values.len() as u32));
+        Expr { start, end: self.steps.len() as u32, place: Place { lo, hi } }
+    }
+
+    /// A set of expressions.
+    pub(super) fn set(&mut self, members: &[Expr]) -> Start {
+        let start = self.members.len() as u32;
+        self.members.extend_from_slice(members);
+        Start { start, end: self.members.len() as u32 }
     }
 
     /// A whole number; `None` where it is beyond 64 bits.

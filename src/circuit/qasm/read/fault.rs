@@ -21,21 +21,21 @@ pub(crate) enum Fault {
     OpenText,
     #[error("`{0}` statements are not supported")]
     UnknownStatement(String),
-    #[error("this is OpenQASM {0}, the reader knows version 3")]
+    #[error("this is OpenQASM {0}, the reader knows versions 2.0 and 3")]
     Version(String),
     #[error("the version must be the first statement")]
     LateVersion,
     #[error("this file cannot be included: {0}")]
-    Include(String),
+    Include(String, &'static str),
     #[error("`{0}` is not declared")]
     Undeclared(String),
     #[error("`{name}` is declared twice")]
     Redeclared { name: String, first: Option<Place> },
     #[error("no gate is called `{0}`")]
     UnknownGate(String),
-    #[error("`{0}` is defined in stdgates.inc, which is not included")]
-    NotIncluded(String),
-    #[error("the gate `{0}` is not supported")]
+    #[error("`{0}` is defined in {1}, which is not included")]
+    NotIncluded(String, &'static str),
+    #[error("`{0}` is not in every copy of qelib1.inc, and is not known here")]
     UnsupportedGate(String),
     #[error("`{gate}` acts on {}, not on {found}", plural(*wanted, "qubit", "qubits"))]
     Operands { gate: String, wanted: usize, found: usize },
@@ -47,8 +47,8 @@ pub(crate) enum Fault {
     Repeated(String),
     #[error("operands of {0} and {1} elements do not fit together")]
     Lengths(u32, u32),
-    #[error("`{name}` is a register of {found}, a {wanted} is expected here")]
-    WrongRegister { name: String, found: &'static str, wanted: &'static str },
+    #[error("`{name}` is {found}, a {wanted} is expected here")]
+    WrongName { name: String, found: &'static str, wanted: &'static str },
     #[error("a register has a constant size of at least 1, this one has {0}")]
     Size(String),
     #[error("too large: {what}, at most {most}")]
@@ -67,10 +67,14 @@ pub(crate) enum Fault {
     ControlCount,
     #[error("`negctrl` with a number of controls is read in two ways")]
     NegctrlCount,
-    #[error("`pow` is not supported")]
+    #[error("an exponent of `pow` that is not an integer")]
     Pow,
     #[error("a bit is 0 or 1")]
     NotABitValue,
+    #[error("{} have no such value", plural(*.0, "bit", "bits"))]
+    NotABitsValue(usize),
+    #[error("a condition on several bits is not supported")]
+    SeveralTests,
     #[error("a condition is one bit, `{0}` has several")]
     WideTest(String),
     #[error("{0} is tested before it is measured")]
@@ -87,6 +91,46 @@ pub(crate) enum Fault {
     EmptyRange,
     #[error("registers are declared outside of all brackets")]
     InnerDeclaration,
+    #[error("gates and subroutines are defined outside of all brackets")]
+    InnerDefinition,
+    #[error("no function is called `{0}`")]
+    UnknownFunction(String),
+    #[error("the wrong number of arguments for `{0}`")]
+    FunctionArguments(String),
+    #[error("`^` is a power only in version 2")]
+    Caret,
+    #[error("`{name}` takes {}, not {found}", plural(*wanted, "argument", "arguments"))]
+    Parameters { name: String, wanted: usize, found: usize },
+    #[error("`{0}` is not a constant")]
+    NotConstant(String),
+    #[error("this value does not fit its type exactly")]
+    Misfit,
+    #[error("the gate `{0}` acts on no qubit")]
+    NoQubits(String),
+    #[error("only gates, loops over them and barriers stand in the definition of a gate")]
+    NotInGate,
+    #[error("`{0}` is one qubit here and has no elements")]
+    IndexInGate(String),
+    #[error("definitions call each other too deep")]
+    DefinitionsTooDeep,
+    #[error("`{0}` is a subroutine: it takes its qubits in brackets, and no modifiers")]
+    NotAGate(String),
+    #[error("subroutines that are given bits are not supported")]
+    BitParameter,
+    #[error("qubits are expected here")]
+    QubitsExpected,
+    #[error("this subroutine returns a bit, and does not end with `return`")]
+    NoReturn,
+    #[error("there is no value to return or to take")]
+    NoValue,
+    #[error("only a measurement can be returned")]
+    ReturnValue,
+    #[error("`return` before the end of a subroutine is not supported")]
+    EarlyReturn,
+    #[error("`return` outside of a subroutine")]
+    OutsideReturn,
+    #[error("`{0}` with these angles is understood in two ways")]
+    Ambiguous(String),
     #[error("brackets nested too deep")]
     TooDeep,
     #[error("too many mistakes, the rest is not shown")]
@@ -100,31 +144,39 @@ impl Fault {
             Fault::Unreadable(_) | Fault::OpenComment | Fault::OpenText => "Q002",
             Fault::UnknownStatement(_) => "Q003",
             Fault::Version(_) | Fault::LateVersion => "Q004",
-            Fault::Include(_) => "Q005",
+            Fault::Include(..) => "Q005",
             Fault::Undeclared(_) => "Q006",
             Fault::Redeclared { .. } => "Q007",
             Fault::UnknownGate(_) => "Q008",
-            Fault::NotIncluded(_) => "Q009",
+            Fault::NotIncluded(..) => "Q009",
             Fault::UnsupportedGate(_) => "Q010",
             Fault::Operands { .. } => "Q011",
             Fault::Arguments { .. } => "Q012",
             Fault::OutsideRegister { .. } => "Q013",
             Fault::Repeated(_) => "Q014",
             Fault::Lengths(..) => "Q015",
-            Fault::WrongRegister { .. } => "Q016",
+            Fault::WrongName { .. } => "Q016",
             Fault::Size(_) => "Q017",
             Fault::Limit { .. } => "Q018",
-            Fault::NumberTooLarge | Fault::DivisionByZero | Fault::Quotient | Fault::NotWhole | Fault::NotFinite => {
-                "Q019"
-            }
+            Fault::NumberTooLarge | Fault::DivisionByZero | Fault::Quotient => "Q019",
+            Fault::NotWhole | Fault::NotFinite | Fault::Misfit => "Q019",
             Fault::ControlCount | Fault::NegctrlCount | Fault::Pow => "Q020",
-            Fault::NotABitValue | Fault::WideTest(_) | Fault::NestedTest | Fault::TestChanged(_) => "Q021",
+            Fault::NotABitValue | Fault::NotABitsValue(_) | Fault::WideTest(_) => "Q021",
+            Fault::SeveralTests | Fault::NestedTest | Fault::TestChanged(_) => "Q021",
             Fault::NotMeasured(_) => "Q022",
             Fault::Unwritten => "Q023",
             Fault::ZeroStep | Fault::EmptyRange => "Q024",
-            Fault::InnerDeclaration => "Q025",
-            Fault::TooDeep => "Q026",
+            Fault::InnerDeclaration | Fault::InnerDefinition => "Q025",
+            Fault::TooDeep | Fault::DefinitionsTooDeep => "Q026",
             Fault::TooMany => "Q027",
+            Fault::UnknownFunction(_) | Fault::FunctionArguments(_) | Fault::Caret => "Q029",
+            Fault::Parameters { .. } | Fault::QubitsExpected | Fault::BitParameter => "Q030",
+            Fault::NotConstant(_) => "Q031",
+            Fault::NoQubits(_) | Fault::NotInGate | Fault::IndexInGate(_) => "Q032",
+            Fault::NotAGate(_) => "Q033",
+            Fault::NoReturn | Fault::NoValue | Fault::ReturnValue => "Q034",
+            Fault::EarlyReturn | Fault::OutsideReturn => "Q034",
+            Fault::Ambiguous(_) => "Q035",
         })
     }
 
@@ -136,16 +188,22 @@ impl Fault {
             Fault::Unexpected { found, .. } if found.starts_with("`if`") || found.starts_with("`for`") => {
                 "put it in `{` and `}`"
             }
+            Fault::UnknownStatement(word) => return why_unknown(word).map(str::to_owned),
             Fault::LateVersion => "move it to the top, and keep one only",
-            Fault::Include(_) => "only stdgates.inc is known",
-            Fault::NotIncluded(_) => "add `include \"stdgates.inc\";` after the version",
+            Fault::Include(_, known) => return Some(format!("only {known} is known in this version")),
+            Fault::NotIncluded(_, file) => return Some(format!("add `include \"{file}\";` after the version")),
+            Fault::UnsupportedGate(_) => "define it with `gate`",
             Fault::Undeclared(_) => "declare it before its first use: `qubit[4] q;` or `bit[4] c;`",
             Fault::Quotient => "readers differ on whether it is rounded: write one of them with a point, as in `1.0/2`",
+            Fault::Caret => "write `**`",
+            Fault::Pow => "a root has more than one value: name the gate that is meant",
             Fault::NegctrlCount => "write `negctrl @` once for each control",
-            Fault::WideTest(_) => "name one element, as in `c[0]`",
-            Fault::NestedTest => "a gate may depend on one measured bit",
+            Fault::WideTest(_) => "a gate may depend on one measured bit: name one element, as in `c[0]`",
+            Fault::NestedTest | Fault::SeveralTests => "a gate may depend on one measured bit",
             Fault::Unwritten => "write `c[0] = measure q[0];`",
             Fault::Repeated(_) => "a gate needs distinct qubits",
+            Fault::NoReturn | Fault::ReturnValue => "end it with `return measure q;`",
+            Fault::Ambiguous(_) => "copies of qelib1.inc differ by a phase of the control: write its definition out",
             _ => return None,
         };
         Some(text.to_owned())
@@ -172,6 +230,19 @@ impl Fault {
             None => diagnostic,
         }
     }
+}
+
+/// Why a statement of the language is not read.
+fn why_unknown(word: &str) -> Option<&'static str> {
+    Some(match word {
+        "while" | "break" | "continue" | "end" => "how many gates there are must not depend on the run; use `for`",
+        "switch" => "use `if` on one measured bit",
+        "input" | "output" => "all values must be in the file",
+        "int" | "uint" | "float" | "angle" | "bool" | "complex" | "array" => "only constants are known: write `const`",
+        "box" | "delay" | "nop" | "duration" | "stretch" => "time has no meaning here",
+        "opaque" | "extern" | "cal" | "defcal" | "defcalgrammar" => "what it does is not in the file",
+        _ => return None,
+    })
 }
 
 /// `a`, `a or b`, `a, b or c`.

@@ -42,8 +42,23 @@ pub(super) enum Tok<'a> {
     #[token("in")]
     In,
     #[token("int")]
+    Int,
     #[token("uint")]
-    Integer,
+    Uint,
+    #[token("float")]
+    Float,
+    #[token("angle")]
+    Angle,
+    #[token("gate")]
+    Gate,
+    #[token("def")]
+    Def,
+    #[token("let")]
+    Let,
+    #[token("const")]
+    Const,
+    #[token("return")]
+    Return,
     #[token("ctrl")]
     Ctrl,
     #[token("negctrl")]
@@ -56,10 +71,8 @@ pub(super) enum Tok<'a> {
     True,
     #[token("false")]
     False,
-    #[regex(
-        "gate|def|extern|let|while|switch|case|default|box|delay|nop|cal|defcal|defcalgrammar|return|break|continue|end"
-    )]
-    #[regex("const|float|angle|bool|complex|duration|stretch|array|input|output|opaque|readonly|mutable|void")]
+    #[regex("extern|while|switch|case|default|box|delay|nop|cal|defcal|defcalgrammar|break|continue|end")]
+    #[regex("bool|complex|duration|stretch|array|input|output|opaque|readonly|mutable|void")]
     Reserved(&'a str),
     #[regex(r"[\p{L}\p{Nl}_][\p{L}\p{Nl}\p{Nd}_]*")]
     Name(&'a str),
@@ -112,8 +125,18 @@ pub(super) enum Tok<'a> {
     Star,
     #[token("/")]
     Slash,
+    #[token("%")]
+    Percent,
+    #[token("**")]
+    Power,
+    #[token("^")]
+    Caret,
+    #[token("++")]
+    Join,
+    #[regex(r"&&|\|\||<=|>=|[<>&|]")]
+    Logic(&'a str),
     /// Operators of the language that this reader has no use for; they are known so that a message can name them.
-    #[regex(r"&&|\|\||<=|>=|<<|>>|\*\*|\+\+|\+=|-=|\*=|/=|[<>%&|^~.]")]
+    #[regex(r"<<|>>|\+=|-=|\*=|/=|[~.]")]
     Operator(&'a str),
     /// `pragma`, and everything to the end of its line.
     #[regex(r"#?pragma", skip_line)]
@@ -122,6 +145,19 @@ pub(super) enum Tok<'a> {
     Unreadable,
     /// A statement that this reader does not know, reported already.
     Skipped,
+}
+
+impl Tok<'_> {
+    /// Whether this is a word of the language only since version 3.
+    fn is_word_of_version_3(self) -> bool {
+        use Tok::{Angle, Bit, Const, Ctrl, Def, Else, Float, For, In, Int, Inv, Let, Negctrl, Qubit, Return, Uint};
+        match self {
+            Qubit | Bit | Else | For | In | Int | Uint | Float | Angle | Def | Let | Const | Return => true,
+            Ctrl | Negctrl | Inv | Tok::Pow | Tok::True | Tok::False => true,
+            Tok::Reserved(word) => word != "opaque",
+            _ => false,
+        }
+    }
 }
 
 fn skip_line<'a>(lexer: &mut logos::Lexer<'a, Tok<'a>>) -> logos::Skip {
@@ -142,6 +178,8 @@ pub(super) struct Tokens<'a, 'f> {
     at_start: bool,
     depth: usize,
     ended: bool,
+    /// Whether the text is in version 2, which has fewer words of its own.
+    is_old: bool,
     faults: &'f mut Vec<(Place, Fault)>,
     /// Names declared by statements that were skipped: using them is not another mistake.
     excused: &'f mut Vec<&'a str>,
@@ -151,7 +189,7 @@ impl<'a, 'f> Tokens<'a, 'f> {
     /// The tokens of this text.
     pub(super) fn new(text: &'a str, faults: &'f mut Vec<(Place, Fault)>, excused: &'f mut Vec<&'a str>) -> Self {
         let lexer = Tok::lexer(text);
-        Self { lexer, ahead: None, at_start: true, depth: 0, ended: false, faults, excused }
+        Self { lexer, ahead: None, at_start: true, depth: 0, ended: false, is_old: false, faults, excused }
     }
 
     fn raw(&mut self) -> Option<Spanned<'a>> {
@@ -167,6 +205,17 @@ impl<'a, 'f> Tokens<'a, 'f> {
             Ok(token) => Some((lo, token, hi)),
             Err(()) => Some(self.unreadable(lo, hi)),
         }
+    }
+
+    /// The next token, in the words of the text's version.
+    fn word(&mut self) -> Option<Spanned<'a>> {
+        let (lo, token, hi) = self.raw()?;
+        let text = self.lexer.source();
+        if token == Tok::OpenQasm && self.at_start {
+            self.is_old = text[hi as usize..].trim_start().starts_with('2');
+        }
+        let is_later = self.is_old && token.is_word_of_version_3();
+        Some((lo, if is_later { Tok::Name(&text[lo as usize..hi as usize]) } else { token }, hi))
     }
 
     /// Reports what cannot be read. An unfinished comment takes the rest of the text with it.
@@ -188,8 +237,7 @@ impl<'a, 'f> Tokens<'a, 'f> {
     /// Skips the statement that begins with this word.
     fn skip_statement(&mut self, lo: u32, word: &'a str, hi: u32) -> Spanned<'a> {
         self.faults.push((Place { lo, hi }, Fault::UnknownStatement(word.to_owned())));
-        let has_block =
-            matches!(word, "gate" | "def" | "while" | "switch" | "box" | "cal" | "defcal" | "case" | "default");
+        let has_block = matches!(word, "while" | "switch" | "box" | "cal" | "defcal" | "case" | "default");
         let (mut depth, mut end, mut last_name) = (0usize, hi, None);
         while let Some(token) = self.raw() {
             match token.1 {
@@ -235,19 +283,21 @@ impl<'a> Iterator for Tokens<'a, '_> {
         if self.ended {
             return None;
         }
-        let mut token = self.raw()?;
+        let mut token = self.word()?;
         // An annotation precedes a statement and takes its whole line.
         while self.at_start && token.1 == Tok::At {
             if self.ahead.is_none() {
                 skip_line(&mut self.lexer);
             }
-            token = self.raw()?;
+            token = self.word()?;
         }
         if self.at_start {
             let text = self.lexer.source();
             match token {
                 (lo, Tok::Reserved(word), hi) => token = self.skip_statement(lo, word, hi),
-                (lo, Tok::Integer, hi) => token = self.skip_statement(lo, &text[lo as usize..hi as usize], hi),
+                (lo, Tok::Int | Tok::Uint | Tok::Float | Tok::Angle, hi) => {
+                    token = self.skip_statement(lo, &text[lo as usize..hi as usize], hi)
+                }
                 _ => {}
             }
         }

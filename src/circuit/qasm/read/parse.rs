@@ -83,18 +83,20 @@ fn words(expected: &[String]) -> Vec<String> {
     for name in expected {
         match name.trim_matches('"') {
             "OPENQASM" | "include" | "qubit" | "bit" | "qreg" | "creg" | "measure" | "reset" | "barrier" | "if"
-            | "for" | "ctrl" | "negctrl" | "inv" | "pow" | "skipped" | "name"
+            | "for" | "ctrl" | "negctrl" | "inv" | "pow" | "let" | "const" | "gate" | "def" | "return" | "skipped"
+            | "name"
                 if statement =>
             {
                 say("a statement");
             }
-            "+" | "-" | "*" | "/" if operator => say("an operator"),
+            "+" | "-" | "*" | "/" | "%" | "**" | "^" if operator => say("an operator"),
             "whole" | "real" => say("a number"),
             "-" => {}
             "name" => say("a name"),
             "text" => say("a file name in quotes"),
-            "reserved" | "operator" | "unreadable" | "skipped" => {}
-            "int" => say("`int` or `uint`"),
+            "reserved" | "operator" | "logic" | "unreadable" | "skipped" => {}
+            "int" | "uint" if !has("float") => say("`int` or `uint`"),
+            "int" | "uint" | "float" | "angle" => say("a type"),
             token => say(&format!("`{token}`")),
         }
     }

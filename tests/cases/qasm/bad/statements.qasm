@@ -1,13 +1,16 @@
 OPENQASM 3.0;
 include "stdgates.inc";
 qubit[2] q;
->>>gate<<< twice a { x a; x a; } // Q003
-twice q[0];
->>>def<<< f(qubit a) -> bit { return measure a; } // Q003
+bit[2] c;
 >>>while<<< (true) { x q[0]; } // Q003
+>>>switch<<< (c) { case 1 { x q[0]; } } // Q003
 >>>int<<< i = 3; // Q003
->>>const<<< float half = pi / 2; // Q003
-p(half) q[0];
->>>let<<< r = q[0:1]; // Q003
-x r;
+>>>input<<< angle[32] phi; // Q003
+p(phi) q[0];
+>>>output<<< bit r; // Q003
+>>>box<<< { x q[0]; } // Q003
+>>>delay<<<[100ns] q[0]; // Q003
+>>>extern<<< f(int) -> int; // Q003
+>>>opaque<<< g a; // Q003
+>>>end<<<; // Q003
 x q[>>>2<<<]; // Q013

@@ -1,7 +1,6 @@
-OPENQASM 3.0;
-include "stdgates.inc";
-qubit[2] q;
->>>u3<<<(1, 2, 3) q[0]; // Q010
->>>U<<<(1, 2, 3) q[0]; // Q010
->>>gphase<<<(1); // Q010
->>>cu<<<(1, 2, 3, 4) q[0], q[1]; // Q010
+OPENQASM 2.0;
+include "qelib1.inc";
+qreg q[2];
+>>>rzz<<<(1) q[0],q[1]; // Q010
+>>>cu3<<<(1,2,3) q[0],q[1]; // Q035
+>>>ctrl<<< q[0]; // Q008

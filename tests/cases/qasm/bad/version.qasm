@@ -1,2 +1,2 @@
->>>OPENQASM 2.0;<<< // Q004
+>>>OPENQASM 2.1;<<< // Q004
 qubit q;

@@ -1,6 +1,14 @@
-//! The gates of `stdgates.inc` by name, and how each is written in the gates of a [`Circuit`].
+//! The gates of the language and of its library by name.
+//!
+//! In version 3 the library is `stdgates.inc`. Its gates are unitary matrices, their global phase included, because a
+//! control makes it visible: `u2` and `u3` have determinant 1, and `U(a, b, c)` is e^(i a/2) times the matrix with
+//! cos(a/2) at its first place, as the standard's text has it from version 3.0 on.
+//!
+//! In version 2 the library is `qelib1.inc`. Nothing there can be controlled, gates are meant up to a global phase, and
+//! each is written in the form with the fewest gates. Names that were added to the file later are known where they mean
+//! what they mean in version 3.
 
-use crate::circuit::{Circuit, Condition, Control, Op, QubitId};
+use crate::circuit::Op;
 
 /// What a gate does to its targets.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -17,6 +25,29 @@ pub(super) enum Action {
     Rx,
     /// Exchanges two targets.
     Swap,
+    /// A general gate on one qubit.
+    General(General),
+    /// Multiplies by e^(i angle), without any target.
+    GlobalPhase,
+}
+
+/// How the angles of a general gate are meant: e^(i a) P(phi) Ry(theta) P(lambda).
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) enum General {
+    /// theta, phi, lambda, with a = theta / 2.
+    Standard,
+    /// theta, phi, lambda, with determinant 1.
+    Special,
+    /// phi, lambda, with theta = pi / 2 and determinant 1.
+    SpecialHalf,
+    /// theta, phi, lambda, with a = 0.
+    Plain,
+    /// phi, lambda, with theta = pi / 2 and a = 0.
+    PlainHalf,
+    /// theta, phi, lambda, a.
+    WithPhase,
+    /// theta, phi, lambda, where a = 0 and determinant 1 must be the same.
+    Either,
 }
 
 /// A gate of the library.
@@ -30,23 +61,48 @@ pub(super) struct LibraryGate {
 impl LibraryGate {
     /// How many targets.
     pub(super) fn targets(self) -> usize {
-        if self.action == Action::Swap { 2 } else { 1 }
+        match self.action {
+            Action::Swap => 2,
+            Action::GlobalPhase => 0,
+            _ => 1,
+        }
     }
 
     /// How many angles.
     pub(super) fn angles(self) -> usize {
         match self.action {
-            Action::Rx => 1,
+            Action::Rx | Action::GlobalPhase => 1,
             Action::Plain(op) => usize::from(op.has_angle()),
+            Action::General(General::SpecialHalf | General::PlainHalf) => 2,
+            Action::General(General::WithPhase) => 4,
+            Action::General(_) => 3,
             _ => 0,
         }
     }
 }
 
-/// The gate of this name; `u1`, `phase`, `cphase` and `CX` are the library's names from version 2.
-pub(super) fn library(name: &str) -> Option<LibraryGate> {
+/// The gate that the language itself has by this name.
+pub(super) fn built_in(name: &str, is_old: bool) -> Option<LibraryGate> {
+    let (action, controls) = match (name, is_old) {
+        ("U", false) => (Action::General(General::Standard), 0),
+        ("U", true) => (Action::General(General::Plain), 0),
+        ("CX", true) => (Action::Plain(Op::X), 1),
+        ("gphase", false) => (Action::GlobalPhase, 0),
+        _ => return None,
+    };
+    Some(LibraryGate { action, controls })
+}
+
+/// The gate that the library of the version has by this name.
+pub(super) fn library(name: &str, is_old: bool) -> Option<LibraryGate> {
+    let own = if is_old { library_2(name) } else { library_3(name) };
+    let (action, controls) = own.or_else(|| both(name))?;
+    Some(LibraryGate { action, controls })
+}
+
+fn both(name: &str) -> Option<(Action, usize)> {
     use Action::{Identity, Plain, RootX, Rx, Swap, Y};
-    let (action, controls) = match name {
+    Some(match name {
         "x" => (Plain(Op::X), 0),
         "y" => (Y, 0),
         "z" => (Plain(Op::Z), 0),
@@ -57,15 +113,15 @@ pub(super) fn library(name: &str) -> Option<LibraryGate> {
         "tdg" => (Plain(Op::Tdg), 0),
         "sx" => (RootX, 0),
         "id" => (Identity, 0),
-        "p" | "phase" | "u1" => (Plain(Op::P), 0),
+        "p" | "u1" => (Plain(Op::P), 0),
         "rx" => (Rx, 0),
         "ry" => (Plain(Op::Ry), 0),
         "rz" => (Plain(Op::Rz), 0),
-        "cx" | "CX" => (Plain(Op::X), 1),
+        "cx" => (Plain(Op::X), 1),
         "cy" => (Y, 1),
         "cz" => (Plain(Op::Z), 1),
         "ch" => (Plain(Op::H), 1),
-        "cp" | "cphase" => (Plain(Op::P), 1),
+        "cp" => (Plain(Op::P), 1),
         "crx" => (Rx, 1),
         "cry" => (Plain(Op::Ry), 1),
         "crz" => (Plain(Op::Rz), 1),
@@ -73,68 +129,33 @@ pub(super) fn library(name: &str) -> Option<LibraryGate> {
         "ccx" => (Plain(Op::X), 2),
         "cswap" => (Swap, 1),
         _ => return None,
-    };
-    Some(LibraryGate { action, controls })
+    })
 }
 
-/// Whether the standard or its library has a gate of this name that this reader does not know.
-pub(super) fn is_unsupported(name: &str) -> bool {
-    matches!(name, "U" | "gphase" | "cu" | "u2" | "u3")
+fn library_3(name: &str) -> Option<(Action, usize)> {
+    Some(match name {
+        "phase" => (Action::Plain(Op::P), 0),
+        "cphase" => (Action::Plain(Op::P), 1),
+        "CX" => (Action::Plain(Op::X), 1),
+        "cu" => (Action::General(General::WithPhase), 1),
+        "u2" => (Action::General(General::SpecialHalf), 0),
+        "u3" => (Action::General(General::Special), 0),
+        _ => return None,
+    })
 }
 
-/// A gate with everything it acts on.
-pub(super) struct Application<'a> {
-    pub(super) action: Action,
-    pub(super) inverse: bool,
-    pub(super) angle: f64,
-    pub(super) condition: Option<Condition>,
-    pub(super) controls: &'a [Control],
-    pub(super) targets: &'a [QubitId],
+fn library_2(name: &str) -> Option<(Action, usize)> {
+    Some(match name {
+        "cu1" => (Action::Plain(Op::P), 1),
+        "u2" => (Action::General(General::PlainHalf), 0),
+        "u3" => (Action::General(General::Plain), 0),
+        "cu3" => (Action::General(General::Either), 1),
+        _ => return None,
+    })
 }
 
-/// Appends the gate; controls stand on the inner gate only where the outer ones undo each other.
-pub(super) fn apply(circuit: &mut Circuit, gate: &Application<'_>) {
-    let target = gate.targets[0];
-    let angle = if gate.inverse { -gate.angle } else { gate.angle };
-    let mut put = |op: Op, controls: &[Control]| match op {
-        Op::P | Op::Rz | Op::Ry => circuit.push_angle(gate.condition, op, angle, controls, target),
-        op => circuit.push_if(gate.condition, op, controls, target),
-    };
-    match gate.action {
-        Action::Plain(op) => put(if gate.inverse { inverse(op) } else { op }, gate.controls),
-        Action::Identity => {}
-        Action::Y => {
-            put(Op::Sdg, &[]);
-            put(Op::X, gate.controls);
-            put(Op::S, &[]);
-        }
-        Action::RootX => {
-            put(Op::H, &[]);
-            put(if gate.inverse { Op::Sdg } else { Op::S }, gate.controls);
-            put(Op::H, &[]);
-        }
-        Action::Rx => {
-            put(Op::H, &[]);
-            put(Op::Rz, gate.controls);
-            put(Op::H, &[]);
-        }
-        Action::Swap => {
-            let other = gate.targets[1];
-            let mut controls = gate.controls.to_vec();
-            controls.push(Control::on(target));
-            circuit.push_if(gate.condition, Op::X, &[Control::on(other)], target);
-            circuit.push_if(gate.condition, Op::X, &controls, other);
-            circuit.push_if(gate.condition, Op::X, &[Control::on(other)], target);
-        }
-    }
-}
-
-fn inverse(op: Op) -> Op {
-    match op {
-        Op::S => Op::Sdg,
-        Op::Sdg => Op::S,
-        Op::T => Op::Tdg,
-        Op::Tdg => Op::T,
-        op => op,
-    }
+/// Whether some copies of `qelib1.inc` have a gate of this name that this reader does not know.
+pub(super) fn is_unsupported(name: &str, is_old: bool) -> bool {
+    let later = ["u0", "u", "cu", "rzz", "rxx", "ryy", "sxdg", "csx", "c3x", "c4x", "c3sqrtx", "rccx", "rc3x"];
+    is_old && later.contains(&name)
 }

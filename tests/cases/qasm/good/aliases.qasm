@@ -1,0 +1,16 @@
+OPENQASM 3.0;
+include "stdgates.inc";
+// An alias names elements in an order of its own; indices into it start anew.
+qubit[4] q;
+qubit r;
+bit[3] c;
+let even = q[0:2:3];
+let all = even ++ r ++ q[{3, 1}];
+let part = all[1:2];
+x even[1];
+cx part[0], part[1];
+h all;
+let low = c[0:1];
+low = measure part;
+if (low[1]) { let inner = q[3]; x inner; }
+// ---- expect
