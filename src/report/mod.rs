@@ -1,9 +1,12 @@
 //! Results as files and text: nothing is computed here.
 
+pub mod alone;
 pub mod dossier;
 pub mod explain;
 pub mod files;
 pub mod header;
 pub mod json;
 pub mod places;
+pub mod self_test;
+pub mod story;
 pub mod summary;

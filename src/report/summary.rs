@@ -29,7 +29,7 @@ fn head(loaded: &Loaded) -> String {
 }
 
 /// One `name   value` line of a summary.
-fn line(name: &str, value: impl std::fmt::Display) -> String {
+pub(super) fn line(name: &str, value: impl std::fmt::Display) -> String {
     format!("{name:<12}{value}\n")
 }
 
