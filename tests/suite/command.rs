@@ -6,22 +6,22 @@ use std::process::{Command, Output, Stdio};
 use serde_json::Value;
 
 /// A folder to work in, and the command run inside it.
-struct Desk {
+pub(super) struct Desk {
     folder: tempfile::TempDir,
 }
 
 impl Desk {
-    fn new() -> Self {
+    pub(super) fn new() -> Self {
         Self { folder: tempfile::tempdir().unwrap() }
     }
 
-    fn file(&self, name: &str, text: &str) -> PathBuf {
+    pub(super) fn file(&self, name: &str, text: &str) -> PathBuf {
         let path = self.folder.path().join(name);
         std::fs::write(&path, text).unwrap();
         path
     }
 
-    fn path(&self, name: &str) -> PathBuf {
+    pub(super) fn path(&self, name: &str) -> PathBuf {
         self.folder.path().join(name)
     }
 
@@ -31,27 +31,27 @@ impl Desk {
     }
 
     /// Runs with `--json` and gives the exit code and the object.
-    fn json(&self, arguments: &[&str]) -> (i32, Value) {
+    pub(super) fn json(&self, arguments: &[&str]) -> (i32, Value) {
         let output = self.run(&[arguments, &["--json"]].concat());
         let text = String::from_utf8(output.stdout).unwrap();
         let value = serde_json::from_str(&text).unwrap_or_else(|error| panic!("{arguments:?}: {error}\n{text}"));
         (output.status.code().unwrap(), value)
     }
 
-    fn exit(&self, arguments: &[&str]) -> i32 {
+    pub(super) fn exit(&self, arguments: &[&str]) -> i32 {
         self.run(arguments).status.code().unwrap()
     }
 
-    fn text(&self, arguments: &[&str]) -> String {
+    pub(super) fn text(&self, arguments: &[&str]) -> String {
         String::from_utf8(self.run(arguments).stdout).unwrap()
     }
 }
 
 /// Four bits, one of the sixteen strings is a solution: three iterations.
-const RARE: &str = "pick a\npick b\npick n in 0 to 3\nmust a != b\nmust n = 3 and a\n";
+pub(super) const RARE: &str = "pick a\npick b\npick n in 0 to 3\nmust a != b\nmust n = 3 and a\n";
 
 /// Four bits, three of the sixteen strings are solutions.
-const PUZZLE: &str = "title \"Four switches\"\n\
+pub(super) const PUZZLE: &str = "title \"Four switches\"\n\
     pick a\npick b\npick n in 0 to 3\n\
     must a != b\nmust n = 3 or (n = 2 and a)\n";
 

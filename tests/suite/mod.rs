@@ -1,8 +1,11 @@
 mod aims;
 mod auditing;
 mod command;
+mod command_audit;
 mod counting;
 mod dimacs;
+mod faults;
+mod identities;
 mod judging;
 mod known_counts;
 mod language;

@@ -34,7 +34,7 @@ pub enum Kind {
     CorrectionWrong,
     /// The H before a measurement is lost.
     HadamardLost,
-    /// A `reset` stands for the last step that erases a work qubit.
+    /// A `reset` stands for a step that erases a work qubit.
     ResetForErasing,
     /// Two bits of the register map are exchanged.
     MapPermuted,
@@ -160,7 +160,7 @@ impl<'c> Drawer<'c> {
             Kind::WrongTurn => gates(&|_, gate| apply::adjoint(gate.op()).is_some()),
             Kind::CorrectionMissing | Kind::CorrectionWrong => gates(&|_, gate| gate.condition().is_some()),
             Kind::HadamardLost => gates(&|at, gate| gate.op() == Op::H && self.is_before_measurement(at)),
-            Kind::ResetForErasing => self.last_steps(),
+            Kind::ResetForErasing => self.steps_on_work(),
             Kind::MapPermuted if is_search || self.places.search_len() < 2 => Vec::new(),
             Kind::MapPermuted => (0..self.places.search_len() as u32).collect(),
             Kind::MarkOutside if is_search => Vec::new(),
@@ -212,16 +212,12 @@ impl<'c> Drawer<'c> {
         next.is_some_and(|gate| gate.op() == Op::Measure)
     }
 
-    /// For each work qubit, the last gate that writes it, where it is not a measurement or a `reset`.
-    fn last_steps(&self) -> Vec<u32> {
+    /// Steps of erasing or computing a work qubit.
+    fn steps_on_work(&self) -> Vec<u32> {
         let work = self.circuit.register(WORK);
-        let last = |qubit: &QubitId| {
-            let gates = self.circuit.gates();
-            let writes = |gate: &Gate| gate.target() == *qubit && !matches!(gate.op(), Op::Z | Op::S | Op::T | Op::P);
-            let at = gates.iter().rposition(writes)?;
-            gates[at].op().is_unitary().then_some(at as u32)
-        };
-        work.iter().filter_map(last).collect()
+        let gates = self.circuit.gates().iter().enumerate();
+        let on_work = gates.filter(|(_, gate)| matches!(gate.op(), Op::X | Op::H) && work.contains(&gate.target()));
+        on_work.map(|(at, _)| at as u32).collect()
     }
 
     /// Variables that leave codes unused.
