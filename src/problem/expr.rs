@@ -176,6 +176,11 @@ impl Exprs {
         self.tables.push(table)
     }
 
+    /// Puts another node in the place of one; its operands are nodes before it.
+    pub fn replace(&mut self, id: ExprId, expr: Expr) {
+        self.nodes[id] = expr;
+    }
+
     /// The node.
     pub fn get(&self, id: ExprId) -> Expr {
         self.nodes[id]

@@ -8,7 +8,7 @@ use serde_json::{Value, json};
 use crate::diag::plural;
 use crate::id::{Id, IdVec};
 use crate::problem::check::{Interval, ranges};
-use crate::problem::{Compare, Expr, ExprId, Origin, Problem, Type};
+use crate::problem::{Compare, ConstraintId, Expr, ExprId, Origin, Problem, Type};
 use crate::report::places::domain;
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -61,14 +61,7 @@ pub fn reading(problem: &Problem, sources: &Sources, most: usize) -> Reading {
     let expressions = problem.constraints.iter().enumerate().map(|(at, constraint)| {
         constraint_line(problem, sources, (&ranges, &types), at.to_string(), &constraint.origin, constraint.expr)
     });
-    let first = problem.constraints.len();
-    let clauses = problem.clauses.iter().enumerate().map(|(at, clause)| ConstraintLine {
-        number: (first + at).to_string(),
-        line: None,
-        text: clause.iter().map(|lit| lit.to_dimacs().to_string()).collect::<Vec<_>>().join(" "),
-        bindings: String::new(),
-        ranges: String::new(),
-    });
+    let clauses = (0..problem.clauses.len()).map(|at| clause_line(problem, at));
     let objective = problem.objective.as_ref().map(|objective| {
         let origin = Origin { span: objective.span, bindings: Vec::new() };
         constraint_line(problem, sources, (&ranges, &types), "objective".to_owned(), &origin, objective.expr)
@@ -78,6 +71,29 @@ pub fn reading(problem: &Problem, sources: &Sources, most: usize) -> Reading {
         constraints: expressions.chain(clauses).take(most).collect(),
         objective,
         shown: problem.shown.as_ref().map(Vec::len),
+    }
+}
+
+/// One constraint, as it was read.
+pub fn constraint(problem: &Problem, sources: &Sources, id: ConstraintId) -> ConstraintLine {
+    let number = id.index().to_string();
+    match problem.constraints.get(id.index()) {
+        Some(constraint) => {
+            let (ranges, types) = (ranges(problem).0, problem.types());
+            constraint_line(problem, sources, (&ranges, &types), number, &constraint.origin, constraint.expr)
+        }
+        None => clause_line(problem, id.index() - problem.constraints.len()),
+    }
+}
+
+/// A clause as DIMACS would write it.
+fn clause_line(problem: &Problem, at: usize) -> ConstraintLine {
+    ConstraintLine {
+        number: (problem.constraints.len() + at).to_string(),
+        line: None,
+        text: problem.clauses.get(at).iter().map(|lit| lit.to_dimacs().to_string()).collect::<Vec<_>>().join(" "),
+        bindings: String::new(),
+        ranges: String::new(),
     }
 }
 
@@ -137,6 +153,13 @@ impl VariableLine {
 }
 
 impl ConstraintLine {
+    /// In one line of prose.
+    pub fn in_words(&self) -> String {
+        let place = self.line.map_or_else(String::new, |line| format!(", line {line}"));
+        let bindings = if self.bindings.is_empty() { String::new() } else { format!(", for {}", self.bindings) };
+        format!("constraint {}{place}: {}{bindings}", self.number, self.text)
+    }
+
     /// As data.
     pub fn json(&self) -> Value {
         json!({

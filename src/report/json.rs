@@ -41,6 +41,15 @@ pub fn bare_envelope(command: &str, partial: bool) -> Map<String, Value> {
     }
 }
 
+/// The object of a command that was given no problem.
+pub fn envelope_without_problem(command: &str) -> Map<String, Value> {
+    let value = json!({ "schema": SCHEMA, "command": command, "problem": null, "warnings": [], "partial": false });
+    match value {
+        Value::Object(map) => map,
+        _ => unreachable!("an object literal"),
+    }
+}
+
 /// `problem`.
 pub fn problem_json(loaded: &Loaded) -> Value {
     json!({
@@ -162,6 +171,7 @@ pub fn search_json(verdict: &SearchVerdict) -> Value {
     json!({
         "verdict": verdict.outcome,
         "iterations": verdict.iterations.to_string(),
+        "planned": verdict.planned.map(|planned| planned.to_string()),
         "iterations_checked": verdict.iterations_checked.to_string(),
         "success": verdict.success,
         "deviation": verdict.deviation,

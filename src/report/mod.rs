@@ -1,5 +1,6 @@
 //! Results as files and text: nothing is computed here.
 
+pub mod alone;
 pub mod dossier;
 pub mod explain;
 pub mod files;
@@ -7,6 +8,8 @@ pub mod header;
 pub mod json;
 pub mod places;
 pub mod plan;
+pub mod self_test;
 pub mod shots;
+pub mod story;
 pub mod summary;
 pub mod values;

@@ -48,10 +48,10 @@ impl Desk {
 }
 
 /// Four bits, one of the sixteen strings is a solution: three iterations.
-const RARE: &str = "pick a\npick b\npick n in 0 to 3\nmust a != b\nmust n = 3 and a\n";
+pub(super) const RARE: &str = "pick a\npick b\npick n in 0 to 3\nmust a != b\nmust n = 3 and a\n";
 
 /// Four bits, three of the sixteen strings are solutions.
-const PUZZLE: &str = "title \"Four switches\"\n\
+pub(super) const PUZZLE: &str = "title \"Four switches\"\n\
     pick a\npick b\npick n in 0 to 3\n\
     must a != b\nmust n = 3 or (n = 2 and a)\n";
 

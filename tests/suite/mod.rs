@@ -1,9 +1,12 @@
 mod aims;
 mod auditing;
 mod command;
+mod command_audit;
 mod counting;
 mod dimacs;
 mod engine;
+mod faults;
+mod identities;
 mod judging;
 mod known_counts;
 mod language;

@@ -6,9 +6,14 @@
 //! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases, so running
 //!   every basis state is complete (`basis`); where that is too much, a stated sample is run.
 //! - Every other circuit is run on a superposition of all inputs ([`superposition`]).
+//! - One circuit is held against another ([`compare`]), or looked at alone ([`alone`]).
+//! - The audit is put to the test with circuits that have a fault ([`faults`]).
 //! - A whole search is followed from its start to its measurement ([`search`]).
 
+pub mod alone;
 mod basis;
+pub mod compare;
+pub mod faults;
 mod oracle;
 pub mod search;
 mod state;
@@ -74,6 +79,12 @@ pub enum AuditError {
     /// A register that the contract does not know.
     #[error("the circuit has a register `{0}`, and only `search`, `mark` and `work` have a meaning here")]
     UnknownRegister(String),
+    /// Two circuits that are to be compared have different inputs.
+    #[error("the two circuits have different inputs: {what}")]
+    OtherInputs {
+        /// Which register.
+        what: String,
+    },
     /// A `reset` of a qubit whose value is an input.
     #[error("the circuit resets {qubit}, which would destroy an input")]
     ResetOfInput {
@@ -108,6 +119,9 @@ impl AuditError {
                 .help("give the places file of this circuit, or the problem it was made for"),
             Self::UnknownRegister(name) => {
                 error("P013").found(name.clone()).expected("`search`, `mark` or `work`").help("rename the register")
+            }
+            Self::OtherInputs { .. } => {
+                error("P020").expected("two circuits whose registers besides `work` have the same names and sizes")
             }
             Self::ResetOfInput { qubit } => {
                 error("A021").found(format!("reset {qubit};")).help("an oracle may reset `work`, nothing else")

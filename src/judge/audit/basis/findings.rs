@@ -8,6 +8,7 @@
 use crate::circuit::{Circuit, QubitId};
 use crate::id::Id;
 use crate::judge::audit::basis::kernel::Machine;
+use crate::judge::audit::basis::smallest::smallest;
 use crate::judge::audit::oracle::{Roles, Trace, problem_bits, trace};
 use crate::judge::audit::{How, Options, Outcome, Phases, Verdict, Witness};
 use crate::judge::rows::lanes::Row;
@@ -127,7 +128,7 @@ impl Findings {
     /// The verdict. `input` gives the value of the search register of an input by its number.
     pub(crate) fn verdict(&self, case: &Case, how: How, is_complete: bool, input: impl Fn(u64) -> Bits) -> Verdict {
         let global = self.global(case.options);
-        let witness = self.first_difference(case.options).map(|at| case.witness(&input(at), global as u8));
+        let witness = self.first_difference(case.options).map(|at| case.witness(input(at), global as u8));
         let mut notes = Vec::new();
         if witness.is_none() && global != 0 {
             notes.push(match global {
@@ -173,8 +174,17 @@ pub(crate) struct Case<'a> {
 }
 
 impl Case<'_> {
-    /// Explains a difference by running the one input gate by gate and asking the reference evaluator.
-    fn witness(&self, x: &Bits, global: u8) -> Witness {
+    /// Explains a difference on an input, or on one with fewer ones.
+    fn witness(&self, x: Bits, global: u8) -> Witness {
+        let explained = self.explain(&x, global);
+        assert!(explained.is_some(), "a fault of tallymark: rows and trace of a circuit disagree on the input {x}");
+        let smaller = self.explain(&smallest(self, x, global), global);
+        smaller.or(explained).expect("the first is there")
+    }
+
+    /// Explains a difference by running the one input gate by gate and asking the reference evaluator; `None` where
+    /// there is none.
+    pub(super) fn explain(&self, x: &Bits, global: u8) -> Option<Witness> {
         let bits = problem_bits(self.places, x);
         let is_solution = self.problem.holds(&bits);
         let expected = if is_solution { "marked" } else { "not marked" };
@@ -203,8 +213,7 @@ impl Case<'_> {
             },
         }
         got.dedup();
-        assert!(!got.is_empty(), "a fault of tallymark: rows and trace of a circuit disagree on the input {x}");
-        Witness { bits, expected: expected.to_owned(), got: got.join(", ") }
+        (!got.is_empty()).then(|| Witness { bits, expected: expected.to_owned(), got: got.join(", ") })
     }
 
     fn faults(&self, trace: &Trace, x: &Bits, got: &mut Vec<String>) {

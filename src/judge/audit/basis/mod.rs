@@ -4,6 +4,7 @@ mod exhaustive;
 mod findings;
 mod kernel;
 mod sample;
+mod smallest;
 
 use self::findings::Case;
 use self::kernel::Program;

@@ -45,8 +45,12 @@ const MOST_UNROLLED: u64 = 1 << 12;
 pub struct SearchVerdict {
     /// What was found.
     pub outcome: Outcome,
-    /// Iterations in the file; whoever planned the search compares this with the plan.
+    /// Iterations in the file.
     pub iterations: u64,
+    /// Iterations with the highest success at the first peak, for as many solutions as the problem has; `None` where
+    /// the search is too large to count them. A file with another number is a search for the problem all the same:
+    /// the notes say so.
+    pub planned: Option<u64>,
     /// Iterations that were followed gate by gate.
     pub iterations_checked: u64,
     /// The probability of the solutions after those iterations, from the amplitudes.
@@ -104,13 +108,24 @@ pub fn audit_search_against(
         Ok(()) => {}
         Err(end) => follower.end(&end),
     }
-    Ok(follower.verdict)
+    let mut verdict = follower.verdict;
+    let planned = follower.profile.planned();
+    verdict.planned = Some(planned);
+    if verdict.outcome == Outcome::Equal && verdict.iterations != planned {
+        let (iterations, marked) = (verdict.iterations, follower.profile.marked());
+        let success = follower.profile.success(planned);
+        let note =
+            format!("{iterations} iterations; with {marked} marked, {planned} have the highest success, {success:.9}");
+        verdict.notes.push(note);
+    }
+    Ok(verdict)
 }
 
 fn open() -> SearchVerdict {
     SearchVerdict {
         outcome: Outcome::Undecided,
         iterations: 0,
+        planned: None,
         iterations_checked: 0,
         success: 0.0,
         deviation: 0.0,

@@ -64,6 +64,21 @@ impl<'t> Profile<'t> {
         ((2.0 * turns as f64 + 1.0) * self.theta).sin().powi(2)
     }
 
+    /// How many strings are marked.
+    pub(super) fn marked(&self) -> u64 {
+        self.marked as u64
+    }
+
+    /// The least number of iterations with the highest success at the first peak: of the two whole numbers around
+    /// pi / (4 theta) - 1/2, where the angle is pi/2, the better one.
+    pub(super) fn planned(&self) -> u64 {
+        if self.marked == 0.0 {
+            return 0;
+        }
+        let below = (std::f64::consts::FRAC_PI_4 / self.theta - 0.5).max(0.0).floor() as u64;
+        if self.success(below + 1) > self.success(below) + 1e-12 { below + 1 } else { below }
+    }
+
     /// Sums over a state; `amplitude` gives that of each string.
     pub(super) fn sums(&self, amplitude: impl Fn(usize) -> Complex) -> Sums {
         let nothing = Complex { re: 0.0, im: 0.0 };
@@ -115,6 +130,18 @@ fn low(count: usize) -> u64 {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn the_planned_number_is_that_of_the_first_peak() {
+        // Boyer et al. 1998, section 3; N = 2^bits, M, k, computed from the formula with 40-digit arithmetic outside this
+        // program (the table of the plan's own tests).
+        let table = [(2, 1, 1), (3, 1, 2), (3, 2, 1), (3, 3, 1), (3, 5, 0), (3, 7, 0), (4, 1, 3), (4, 2, 2), (4, 3, 1)];
+        let table = table.into_iter().chain([(6, 1, 6), (6, 5, 2), (6, 32, 0), (6, 64, 0), (6, 0, 0)]);
+        for (bits, marked, planned) in table {
+            let truth = [if marked == 64 { u64::MAX } else { (1u64 << marked) - 1 }];
+            assert_eq!(Profile::new(&truth, bits).planned(), planned, "{marked} of 2^{bits}");
+        }
+    }
 
     #[test]
     fn success_is_that_of_the_published_table() {

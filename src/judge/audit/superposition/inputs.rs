@@ -76,8 +76,11 @@ fn value(places: &Places, number: u64) -> Bits {
     bits
 }
 
+/// Those with few ones first, so that a witness is one of these where there is one.
 fn all(places: &Places) -> Vec<Bits> {
-    (0..1u64 << places.search_len()).map(|number| value(places, number)).collect()
+    let mut numbers: Vec<u64> = (0..1u64 << places.search_len()).collect();
+    numbers.sort_by_key(|number| number.count_ones());
+    numbers.into_iter().map(|number| value(places, number)).collect()
 }
 
 /// Known solutions, their one-bit neighbours, and drawn inputs, each once.

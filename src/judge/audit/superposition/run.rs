@@ -15,7 +15,7 @@ use crate::random::SplitMix64;
 const MEMORY: u64 = 2 << 30;
 
 /// How free outcomes are chosen. An outcome is free where both values occur.
-pub(super) enum Draw {
+pub(in crate::judge::audit) enum Draw {
     Zeros,
     Ones,
     /// The bits of a number, lowest first.
@@ -24,7 +24,7 @@ pub(super) enum Draw {
 }
 
 impl Draw {
-    pub(super) fn seeded(seed: u64) -> Self {
+    pub(in crate::judge::audit) fn seeded(seed: u64) -> Self {
         Self::Drawn(SplitMix64::new(seed))
     }
 
@@ -39,7 +39,7 @@ impl Draw {
 }
 
 /// How a run ended.
-pub(super) enum End {
+pub(in crate::judge::audit) enum End {
     /// At the end of the circuit.
     Reached,
     /// The budget ran out.
@@ -51,7 +51,7 @@ pub(super) enum End {
 }
 
 /// A run.
-pub(super) struct Run<'c> {
+pub(in crate::judge::audit) struct Run<'c> {
     circuit: &'c Circuit,
     state: State<Exact>,
     most: usize,
@@ -64,7 +64,7 @@ pub(super) struct Run<'c> {
 }
 
 impl<'c> Run<'c> {
-    pub(super) fn new(
+    pub(in crate::judge::audit) fn new(
         circuit: &'c Circuit,
         starts: &[Bits],
         draw: Draw,
@@ -89,17 +89,17 @@ impl<'c> Run<'c> {
     }
 
     /// The state now.
-    pub(super) fn state(&self) -> &State<Exact> {
+    pub(in crate::judge::audit) fn state(&self) -> &State<Exact> {
         &self.state
     }
 
     /// How many outcomes were free so far.
-    pub(super) fn free(&self) -> usize {
+    pub(in crate::judge::audit) fn free(&self) -> usize {
         self.free
     }
 
     /// Follows the circuit to its end.
-    pub(super) fn follow(&mut self) -> Result<End, AuditError> {
+    pub(in crate::judge::audit) fn follow(&mut self) -> Result<End, AuditError> {
         let circuit = self.circuit;
         let mut done = 0u64;
         for block in circuit.blocks() {
@@ -122,7 +122,8 @@ impl<'c> Run<'c> {
         Ok(End::Reached)
     }
 
-    fn step(&mut self, gate: &Gate) -> Result<Option<End>, AuditError> {
+    /// Applies one gate; says so where the run cannot go on.
+    pub(in crate::judge::audit) fn step(&mut self, gate: &Gate) -> Result<Option<End>, AuditError> {
         if gate.condition().is_some_and(|condition| self.outcomes[condition.bit().index()] != condition.value()) {
             return Ok(None);
         }
