@@ -83,6 +83,13 @@ pub fn audit(
     Ok(audit::audit(problem, places, circuit, options, budget)?)
 }
 
+/// Writes the clauses and the proof of a verdict: `miter.cnf` and `proof.drat`.
+pub fn write_certificate(folder: &Path, certificate: &audit::Certificate) -> Result<(), Error> {
+    write_whole(&folder.join("miter.cnf"), |mut out| certificate.write_formula(&mut out))?;
+    write_whole(&folder.join("proof.drat"), |mut out| certificate.write_proof(&mut out))?;
+    Ok(())
+}
+
 /// The plan for a tally, with advice; `None` where the number of marked states is not known.
 pub fn plan_for(problem: &Problem, counted: &Counted) -> (Option<Plan>, Vec<Advice>) {
     let mut advice = Vec::new();

@@ -31,6 +31,9 @@ pub(super) struct Options {
     /// Inputs to draw where there are too many to try all
     #[arg(long, value_name = "NUMBER")]
     sample: Option<usize>,
+    /// Decide by proof, whatever the number of inputs, and write it: miter.cnf and proof.drat in this folder
+    #[arg(long, value_name = "DIR")]
+    proof: Option<PathBuf>,
     /// Amplitude updates to spend on a whole search, as a power of two
     #[arg(long, value_name = "POWER", default_value_t = 30, value_parser = clap::value_parser!(u32).range(0..=60))]
     effort: u32,
@@ -60,11 +63,17 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             sample: options.sample.unwrap_or(defaults.sample),
             ..defaults
         };
+        if options.proof.is_some() {
+            judged.exhaustive_bits = 0;
+        }
         if loaded.problem.bit_count() > judged.exhaustive_bits as usize {
             let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
         }
         let verdict = pipeline::audit(&loaded.problem, &places, &circuit, &judged, &budget).map_err(stage)?;
+        if let (Some(folder), Some(certificate)) = (&options.proof, &verdict.certificate) {
+            pipeline::write_certificate(folder, certificate).map_err(stage)?;
+        }
         object.insert("audit".to_owned(), json::audit_json(&loaded.problem, &verdict));
         (verdict.outcome, summary::verdict(&loaded.problem, &verdict))
     };

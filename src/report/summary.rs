@@ -102,6 +102,7 @@ pub fn verdict(problem: &Problem, verdict: &Verdict) -> String {
     let how = match verdict.how {
         How::Exhaustive => "every input, gate by gate",
         How::Superposition => "every input in superposition, measurement outcomes drawn",
+        How::Proof => "by proof",
         How::Sample => "known solutions, their neighbours, and drawn inputs",
     };
     let outcome = match verdict.outcome {
@@ -109,7 +110,11 @@ pub fn verdict(problem: &Problem, verdict: &Verdict) -> String {
         Outcome::Differs => "DIFFERS",
         Outcome::Undecided => "undecided: no difference found",
     };
-    let mut text = line("audit", format!("{outcome} ({how}; {} inputs)", verdict.inputs));
+    let inputs = match verdict.inputs {
+        u128::MAX => format!("2^{} inputs", problem.bit_count()),
+        inputs => format!("{inputs} inputs"),
+    };
+    let mut text = line("audit", format!("{outcome} ({how}; {inputs})"));
     if verdict.phases == Phases::Complement {
         text += &line("", "the complement is marked, which is a global sign");
     }
