@@ -15,10 +15,10 @@ use crate::budget::Budget;
 use crate::circuit::{Circuit, Figures, Level, Mark, Product, qasm};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::audit::{self, AuditError, Outcome, Verdict};
-use crate::ledger::{Cost, Entry};
 use crate::judge::count::certificate::text::Mistake;
 use crate::judge::count::certificate::{self, Certificate, Drawer, Formula, PickValues, Refusal};
 use crate::judge::count::{self, Counted, Over, Tally};
+use crate::ledger::{Cost, Entry};
 use crate::make::lower::{self, LowerError};
 use crate::make::network;
 use crate::places::{Places, PlacesError};
@@ -163,6 +163,13 @@ pub fn gates_of_iteration(
     let phase = oracle(problem, places, Settings { mark: Mark::Phase, ..settings }, budget)?;
     let gates = |iterations: u32| whole_search(&phase, &iterations.into()).map(|search| search.figures.gates);
     Ok(gates(2)?.saturating_sub(gates(1)?))
+}
+
+/// Writes the clauses and the proof of a verdict: `miter.cnf` and `proof.drat`.
+pub fn write_certificate(folder: &Path, certificate: &audit::Certificate) -> Result<(), Error> {
+    write_whole(&folder.join("miter.cnf"), |mut out| certificate.write_formula(&mut out))?;
+    write_whole(&folder.join("proof.drat"), |mut out| certificate.write_proof(&mut out))?;
+    Ok(())
 }
 
 /// What a tally says to every plan.

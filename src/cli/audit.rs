@@ -53,6 +53,9 @@ pub(super) struct Options {
     /// Inputs to draw where there are too many to try all
     #[arg(long, value_name = "NUMBER")]
     sample: Option<usize>,
+    /// Decide by proof, whatever the number of inputs, and write it: miter.cnf and proof.drat in this folder
+    #[arg(long, value_name = "DIR")]
+    proof: Option<PathBuf>,
     /// Amplitude updates to spend on a whole search, as a power of two
     #[arg(long, value_name = "POWER", default_value_t = 30, value_parser = clap::value_parser!(u32).range(0..=60))]
     effort: u32,
@@ -68,8 +71,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let Some(path) = &options.circuit else { return alone::run(global, options) };
     let (loaded, mut sources) = input::load(global, &options.file)?;
     let circuit = alone::read(path, &mut sources)?;
-    let circuit =
-        assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
+    let circuit = assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?;
     let places = places(options, path, &loaded, &circuit, &sources)?;
     let (budget, line) = progress::budget(global);
@@ -86,6 +88,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         let settings = input::settings(global, Level::Toffoli, Mark::Phase);
         let sample = options.sample.unwrap_or(seeded.sample);
         let mut judged = audit::Options { threads: settings.threads, sample, ..seeded.clone() };
+        if options.proof.is_some() {
+            judged.exhaustive_bits = 0;
+        }
         if loaded.problem.bit_count() > judged.exhaustive_bits as usize {
             let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
@@ -100,6 +105,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             }
             _ => None,
         };
+        if let (Some(folder), Some(certificate)) = (&options.proof, &verdict.certificate) {
+            pipeline::write_certificate(folder, certificate).map_err(stage)?;
+        }
         story::add_json(&mut value, reason.as_ref(), parted.as_ref());
         object.insert("audit".to_owned(), value);
         let text = summary::verdict(&loaded.problem, &verdict) + &story::text(reason.as_ref(), parted.as_ref());

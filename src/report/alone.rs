@@ -93,6 +93,8 @@ fn how(how: How) -> &'static str {
     match how {
         How::Exhaustive => "every input, gate by gate",
         How::Superposition => "every input in superposition",
+        How::Proof => "by proof",
+        How::Symbolic => "by structure",
         How::Sample => "drawn inputs",
     }
 }

@@ -143,6 +143,12 @@ pub fn audit_json(problem: &Problem, verdict: &Verdict) -> Value {
         "phases": verdict.phases,
         "witness": verdict.witness.as_ref().map(|witness| witness_json(problem, witness)),
         "notes": verdict.notes,
+        "proof": verdict.certificate.as_ref().map(|certificate| json!({
+            "clauses": certificate.formula.len(),
+            "equivalences": certificate.equivalences,
+            "steps": certificate.proof.len(),
+            "checked": certificate.checked.additions,
+        })),
     })
 }
 

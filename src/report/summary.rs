@@ -14,9 +14,9 @@ use crate::report::dossier::Dossier;
 use crate::report::header::CAUTION;
 use crate::report::json::mark_name;
 use crate::report::plan::answer_text;
+use crate::report::values::{CheckedFile, certificate_line};
 use crate::search::number::in_words;
 use crate::search::plan::Answer;
-use crate::report::values::{CheckedFile, certificate_line};
 use crate::search::{Advice, Plan};
 use crate::source::Loaded;
 
@@ -114,6 +114,7 @@ pub fn verdict(problem: &Problem, verdict: &Verdict) -> String {
     let how = match verdict.how {
         How::Exhaustive => "every input, gate by gate",
         How::Superposition => "every input in superposition, measurement outcomes drawn",
+        How::Proof => "by proof",
         How::Sample => "known solutions, their neighbours, and drawn inputs",
     };
     let outcome = match verdict.outcome {
@@ -121,7 +122,11 @@ pub fn verdict(problem: &Problem, verdict: &Verdict) -> String {
         Outcome::Differs => "DIFFERS",
         Outcome::Undecided => "undecided: no difference found",
     };
-    let mut text = line("audit", format!("{outcome} ({how}; {} inputs)", verdict.inputs));
+    let inputs = match verdict.inputs {
+        u128::MAX => format!("2^{} inputs", problem.bit_count()),
+        inputs => format!("{inputs} inputs"),
+    };
+    let mut text = line("audit", format!("{outcome} ({how}; {inputs})"));
     if verdict.phases == Phases::Complement {
         text += &line("", "the complement is marked, which is a global sign");
     }

@@ -7,7 +7,7 @@ use super::{Answer, Engine, Lit};
 use crate::budget::Budget;
 
 /// Calls of the library between two looks at the clock.
-const CALLS_A_LOOK: u32 = 16;
+const CALLS_A_LOOK: u64 = 16;
 
 /// The engine.
 pub struct Batsat {
@@ -18,7 +18,9 @@ pub struct Batsat {
 /// Tells the library when to stop. It is asked once a conflict or decision, far more often than the clock needs.
 struct Watch {
     budget: Budget,
-    calls: std::cell::Cell<u32>,
+    calls: std::cell::Cell<u64>,
+    /// Calls after which it stops whatever the clock says.
+    most: u64,
     stopped: std::cell::Cell<bool>,
 }
 
@@ -26,7 +28,7 @@ impl Callbacks for Watch {
     fn stop(&self) -> bool {
         let calls = self.calls.get().wrapping_add(1);
         self.calls.set(calls);
-        if calls.is_multiple_of(CALLS_A_LOOK) && self.budget.spent() {
+        if calls >= self.most || (calls.is_multiple_of(CALLS_A_LOOK) && self.budget.spent()) {
             self.stopped.set(true);
         }
         self.stopped.get()
@@ -40,6 +42,12 @@ impl std::fmt::Debug for Batsat {
 }
 
 impl Batsat {
+    /// Stops every later call of [`Engine::solve`] after so many conflicts and decisions: a limit that does not depend
+    /// on the machine.
+    pub fn limit(&mut self, steps: u64) {
+        self.solver.cb_mut().most = steps;
+    }
+
     fn theirs(&mut self, lit: Lit) -> TheirLit {
         // Makes the variables up to this one.
         let var = self.solver.var_of_int(lit.var() as u32);
@@ -58,7 +66,7 @@ impl Batsat {
 
 impl Engine for Batsat {
     fn new() -> Self {
-        let watch = Watch { budget: Budget::unlimited(), calls: 0.into(), stopped: false.into() };
+        let watch = Watch { budget: Budget::unlimited(), calls: 0.into(), most: u64::MAX, stopped: false.into() };
         Self { solver: Solver::new(SolverOpts::default(), watch), clause: Vec::new() }
     }
 
@@ -75,6 +83,7 @@ impl Engine for Batsat {
         }
         let watch = self.solver.cb_mut();
         watch.budget = budget.clone();
+        watch.calls.set(0);
         watch.stopped.set(false);
         let assumptions = self.take(assumptions);
         let answer = self.solver.solve_limited(&assumptions);

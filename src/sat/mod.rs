@@ -9,17 +9,20 @@
 //! | used for | listing without a deadline | deadlines, confirming |
 //!
 //! A budget is asked by `Varisat` only before a call begins. Whoever gives it a budget with a deadline must be ready to
-//! wait for the call, or run the engine on a thread that may be left behind. Neither engine's unsatisfiable cores are
+//! wait for the call, or run the engine on a thread that may be left behind, as [`refute`] does. Neither engine's unsatisfiable cores are
 //! offered: varisat 0.2.2 can give an incomplete one (see the guard tests in `varisat.rs`).
 
 mod batsat;
-mod refute;
+pub mod check;
+pub mod drat;
+pub mod formula;
+pub mod refute;
 mod varisat;
 
 use std::ops::Not;
 
 pub use self::batsat::Batsat;
-pub use self::refute::refute;
+pub use self::formula::Formula;
 pub use self::varisat::Varisat;
 use crate::budget::Budget;
 
@@ -48,6 +51,18 @@ impl Lit {
     /// Whether the literal holds where the variable is false.
     pub fn is_negated(self) -> bool {
         self.0 & 1 == 1
+    }
+
+    /// The literal of a DIMACS number, which is not 0: variable 1 of a file is variable 0 here.
+    pub fn from_dimacs(number: i64) -> Self {
+        assert!(number != 0, "0 ends a clause");
+        Self::new(number.unsigned_abs() as usize - 1, number > 0)
+    }
+
+    /// The DIMACS number of the literal.
+    pub fn to_dimacs(self) -> i64 {
+        let number = self.var() as i64 + 1;
+        if self.is_negated() { -number } else { number }
     }
 }
 

@@ -4,7 +4,8 @@
 //! [`Verdict`]. The circuit's gates are interpreted one by one; no sequence of gates is recognised.
 //!
 //! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases, so running
-//!   every basis state is complete (`basis`); where that is too much, a stated sample is run.
+//!   every basis state is complete (`basis`); where that is too much, a stated sample is run, and what shows no
+//!   difference there is proven (`proof`).
 //! - Every other circuit is run on a superposition of all inputs ([`superposition`]).
 //! - One circuit is held against another ([`compare`]), or looked at alone ([`alone`]).
 //! - The audit is put to the test with circuits that have a fault ([`faults`]).
@@ -15,13 +16,14 @@ mod basis;
 pub mod compare;
 pub mod faults;
 mod oracle;
+mod proof;
 pub mod search;
 mod state;
 pub mod superposition;
 pub mod verdict;
 
 pub use search::{SearchVerdict, audit_search};
-pub use verdict::{How, Outcome, Phases, Verdict, Witness};
+pub use verdict::{Certificate, How, Outcome, Phases, Verdict, Witness};
 
 use thiserror::Error;
 
@@ -46,11 +48,21 @@ pub struct Options {
     pub sample: usize,
     /// The largest search register of which every input is tried.
     pub exhaustive_bits: u32,
+    /// Whether a proof is tried where not every input can be.
+    pub proof: bool,
 }
 
 impl Default for Options {
     fn default() -> Self {
-        Self { strict_phase: false, seed: 1, threads: 2, known: Vec::new(), sample: 1 << 14, exhaustive_bits: 26 }
+        Self {
+            strict_phase: false,
+            seed: 1,
+            threads: 2,
+            known: Vec::new(),
+            sample: 1 << 14,
+            exhaustive_bits: 26,
+            proof: true,
+        }
     }
 }
 
@@ -140,7 +152,7 @@ impl AuditError {
 /// a global phase is free unless the options are strict.
 ///
 /// A verdict `equal` rests on every input. Above [`Options::exhaustive_bits`], or when the budget runs out, a sample is
-/// tried and the verdict is `undecided` unless a difference is found.
+/// tried, then a proof; where that does not end within the budget, the verdict is `undecided`.
 pub fn audit(
     problem: &Problem,
     places: &Places,

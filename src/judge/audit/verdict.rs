@@ -1,7 +1,10 @@
 //! The verdict on a circuit.
 
+use std::sync::Arc;
+
 use serde::Serialize;
 
+pub use super::proof::Certificate;
 use crate::problem::Bits;
 
 /// What was found.
@@ -24,6 +27,8 @@ pub enum How {
     Exhaustive,
     /// Every input in superposition, gate by gate, for several drawn strings of measurement outcomes.
     Superposition,
+    /// Every input, by a proof that was checked: what the circuit does, read symbolically, is what the problem asks.
+    Proof,
     /// Some inputs: all known solutions, their one-bit neighbours, and drawn ones.
     Sample,
 }
@@ -56,7 +61,7 @@ pub struct Verdict {
     pub outcome: Outcome,
     /// How.
     pub how: How,
-    /// How many inputs were covered.
+    /// How many inputs were covered; the largest number where they are more than 2^128.
     pub inputs: u128,
     /// Whether every work qubit was clean again on all of them.
     pub work_clean: bool,
@@ -66,4 +71,6 @@ pub struct Verdict {
     pub witness: Option<Witness>,
     /// What the verdict rests on, for people: drawn outcomes, seeds, limits.
     pub notes: Vec<String>,
+    /// What a verdict by proof rests on, for whoever wants to check it again.
+    pub certificate: Option<Arc<Certificate>>,
 }

@@ -130,11 +130,8 @@ impl Findings {
         let global = self.global(case.options);
         let witness = self.first_difference(case.options).map(|at| case.witness(input(at), global as u8));
         let mut notes = Vec::new();
-        if witness.is_none() && global != 0 {
-            notes.push(match global {
-                4 => "the circuit has the global phase -1".to_owned(),
-                _ => format!("the circuit has the global phase e^(i pi {global}/4)"),
-            });
+        if witness.is_none() {
+            notes.extend(global_note(global as u8));
         }
         Verdict {
             outcome: match (&witness, is_complete) {
@@ -148,7 +145,17 @@ impl Findings {
             phases: if global == 4 && case.roles.mark.is_none() { Phases::Complement } else { Phases::Equal },
             witness,
             notes,
+            certificate: None,
         }
+    }
+}
+
+/// What is said about a global phase, given in multiples of pi/4.
+pub(crate) fn global_note(global: u8) -> Option<String> {
+    match global {
+        0 => None,
+        4 => Some("the circuit has the global phase -1".to_owned()),
+        _ => Some(format!("the circuit has the global phase e^(i pi {global}/4)")),
     }
 }
 
@@ -184,7 +191,7 @@ impl Case<'_> {
 
     /// Explains a difference by running the one input gate by gate and asking the reference evaluator; `None` where
     /// there is none.
-    pub(super) fn explain(&self, x: &Bits, global: u8) -> Option<Witness> {
+    pub(crate) fn explain(&self, x: &Bits, global: u8) -> Option<Witness> {
         let bits = problem_bits(self.places, x);
         let is_solution = self.problem.holds(&bits);
         let expected = if is_solution { "marked" } else { "not marked" };

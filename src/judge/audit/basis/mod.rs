@@ -1,15 +1,18 @@
 //! Circuits whose gates keep basis states, up to phases: every input on bit rows, or a stated sample.
 
 mod exhaustive;
-mod findings;
+pub(in crate::judge::audit) mod findings;
 mod kernel;
 mod sample;
 mod smallest;
 
-use self::findings::Case;
+use std::sync::Arc;
+
+use self::findings::{Case, global_note};
 use self::kernel::Program;
 use super::oracle::{self, Roles};
-use super::{How, Options, Verdict};
+use super::proof::{self, Proved};
+use super::{How, Options, Outcome, Phases, Verdict};
 use crate::budget::Budget;
 use crate::circuit::Circuit;
 use crate::places::Places;
@@ -59,5 +62,39 @@ fn by_sample(case: &Case, program: &Program, why: String, budget: &Budget) -> Ve
     if sample.left_out > 0 {
         verdict.notes.push(format!("{} solutions and neighbours are beyond the size of a sample", sample.left_out));
     }
+    if verdict.outcome == Outcome::Undecided && case.options.proof && !budget.spent() {
+        by_proof(case, &mut verdict, budget);
+    }
     verdict
+}
+
+/// Decides by proof what a sample left undecided.
+fn by_proof(case: &Case, verdict: &mut Verdict, budget: &Budget) {
+    match proof::prove(case, budget) {
+        Proved::Equal { global, certificate } => {
+            let checked = certificate.checked;
+            verdict.outcome = Outcome::Equal;
+            verdict.how = How::Proof;
+            verdict.inputs = 1_u128.checked_shl(case.places.search_len() as u32).unwrap_or(u128::MAX);
+            let is_complement = global == 4 && case.roles.mark.is_none();
+            verdict.phases = if is_complement { Phases::Complement } else { Phases::Equal };
+            verdict.notes = global_note(global).into_iter().collect();
+            verdict.notes.push(format!(
+                "the proof: {} clauses, {} signals proven equal on the way, {} steps, each followed by the checker of \
+                 this program",
+                certificate.formula.len(),
+                certificate.equivalences,
+                checked.additions
+            ));
+            verdict.certificate = Some(Arc::new(certificate));
+        }
+        Proved::Differs(witness) => {
+            verdict.outcome = Outcome::Differs;
+            verdict.how = How::Proof;
+            verdict.work_clean = !witness.got.contains("left at 1");
+            verdict.notes.push("the input was found by a solver, then run gate by gate".to_owned());
+            verdict.witness = Some(witness);
+        }
+        Proved::Open(why) => verdict.notes.push(format!("a proof was tried: {why}")),
+    }
 }

@@ -114,6 +114,7 @@ fn open(how: How, inputs: u128) -> Verdict {
         work_clean: true,
         phases: Phases::Equal,
         witness: None,
+        certificate: None,
         notes: Vec::new(),
     }
 }

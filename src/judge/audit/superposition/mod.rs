@@ -214,6 +214,7 @@ impl Audit<'_> {
     fn verdict(&self, outcome: Outcome) -> Verdict {
         Verdict {
             outcome,
+            certificate: None,
             how: if self.inputs.are_all { How::Superposition } else { How::Sample },
             inputs: self.inputs.values,
             work_clean: true,

@@ -5,38 +5,27 @@
 //! Y. Novikov, "Verification of proofs of unsatisfiability for CNF formulas", DATE 2003, from memory). Clauses that only
 //! keep satisfiability (the RAT of DRAT) are refused: varisat writes none.
 
-use std::sync::mpsc::{self, RecvTimeoutError};
-use std::time::Duration;
-
 use super::unit::Unit;
 use super::{Formula, Refusal, plain};
 use crate::budget::Budget;
 use crate::id::Id;
 use crate::problem::BitLit;
-use crate::sat::{Lit, refute};
+use crate::sat::refute::{Refutation, refute};
+use crate::sat::{self, Lit};
 
-/// Time between two looks at the budget.
-const LOOK: Duration = Duration::from_millis(20);
 /// Steps between two looks at the budget.
 const CHECKED: usize = 64;
 
 /// A proof in DRAT text; `None` where there is a solution or the budget ran out.
 pub(super) fn find(formula: &Formula, budget: &Budget) -> Option<String> {
-    let (sender, receiver) = mpsc::channel();
-    let clauses = formula.clauses.clone();
-    let work = move || {
-        // The receiver may be gone by then.
-        let theirs = |lit: &BitLit| Lit::new(lit.bit().index(), !lit.is_negated());
-        let _ = sender.send(refute(clauses.iter().map(|clause| clause.iter().map(theirs).collect())));
-    };
-    std::thread::Builder::new().name("refuting".to_owned()).spawn(work).ok()?;
-    loop {
-        match receiver.recv_timeout(LOOK) {
-            Ok(proof) => return proof,
-            Err(RecvTimeoutError::Timeout) if !budget.spent() => {}
-            Err(_) => return None,
-        }
+    let mut theirs = sat::Formula::new(formula.var_count);
+    for clause in formula.clauses.iter() {
+        theirs.push(clause.iter().map(|lit| Lit::new(lit.bit().index(), !lit.is_negated())));
     }
+    let Refutation::Proof(proof) = refute(&theirs, budget) else { return None };
+    let mut text = Vec::new();
+    proof.write_text(&mut text).ok()?;
+    String::from_utf8(text).ok()
 }
 
 /// Checks a proof.
