@@ -9,4 +9,5 @@ mod language;
 mod making;
 mod random_problem;
 mod states;
+mod symbolic;
 mod walls;
