@@ -60,11 +60,16 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             sample: options.sample.unwrap_or(defaults.sample),
             ..defaults
         };
-        if loaded.problem.bit_count() > judged.exhaustive_bits as usize {
+        let judge = |judged: &audit::Options| {
+            pipeline::audit(&loaded.problem, &places, &circuit, judged, &budget).map_err(stage)
+        };
+        let mut verdict = judge(&judged)?;
+        if verdict.outcome == Found::Undecided && loaded.problem.bit_count() > judged.exhaustive_bits as usize {
+            // Only a sample was affordable: a better one has the solutions in it.
             let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
+            verdict = judge(&judged)?;
         }
-        let verdict = pipeline::audit(&loaded.problem, &places, &circuit, &judged, &budget).map_err(stage)?;
         object.insert("audit".to_owned(), json::audit_json(&loaded.problem, &verdict));
         (verdict.outcome, summary::verdict(&loaded.problem, &verdict))
     };

@@ -273,7 +273,8 @@ fn borrowed_qubits_are_read_by_multiplying_out() {
     }
     let verdict = judge_all(&problem, &circuit);
     assert_eq!((verdict.outcome, verdict.how), (Outcome::Equal, How::Symbolic));
-    assert_eq!(distinct_nodes(&problem, &Places::as_given(&problem), &circuit), Ok(Some(1)));
+    // The plain reading closes as well, on (ab xor e) c xor ec: two conjunctions and an exclusive or in one, and one more.
+    assert_eq!(distinct_nodes(&problem, &Places::as_given(&problem), &circuit), Ok(Some(5)));
     // Without the last gate the borrowed qubit is taken back, but its value shows in the mark.
     circuit.push(Op::X, &[Control::on(search[4]), Control::on(search[2])], mark);
     let verdict = judge_all(&problem, &circuit);
@@ -331,6 +332,24 @@ fn global_phases_are_free_unless_strict() {
             }
         }
     }
+}
+
+/// Clauses of one literal, which a maker takes out of others, and clauses that follow.
+#[test]
+fn required_literals_do_not_hide_the_structure() {
+    let problem = clauses(6, &[vec![2], vec![-2, 3], vec![-3, 4, 5], vec![-1, 2, 6], vec![-6, -2], vec![1, -4, 6]]);
+    for level in [Level::Wide, Level::Toffoli] {
+        let settings = Settings { level, mark: Mark::Phase, seed: 1, threads: 1 };
+        let places = Places::as_given(&problem);
+        let product = pipeline::oracle(&problem, &places, settings, &Budget::unlimited()).expect("a circuit");
+        let verdict = judge_all(&problem, &product.circuit);
+        assert_eq!((verdict.outcome, verdict.how), (Outcome::Equal, How::Symbolic));
+    }
+    let mut other = problem.clone();
+    other.clauses.push(&[BitLit::new(BitId::new(4), true)]);
+    let settings = Settings { level: Level::Wide, mark: Mark::Phase, seed: 1, threads: 1 };
+    let product = pipeline::oracle(&other, &Places::as_given(&other), settings, &Budget::unlimited());
+    assert_eq!(judge_all(&problem, &product.expect("a circuit").circuit).outcome, Outcome::Differs);
 }
 
 #[test]

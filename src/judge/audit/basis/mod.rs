@@ -79,7 +79,7 @@ fn why_open(case: &Case, open: Open) -> String {
     let what = match open {
         Open::Qubit(qubit) => format!("the structure does not show that {} is right", case.circuit.qubit_name(qubit)),
         Open::Phase => "the structure does not show that the phase is a sign of the mark".to_owned(),
-        Open::Limit => "the symbolic reading is too large".to_owned(),
+        Open::Limit => "the symbolic reading ran into its limit or the budget".to_owned(),
     };
     format!("{what}, so the gates were run one by one")
 }
@@ -106,7 +106,7 @@ fn by_nodes(case: &Case, function: &Function, budget: &Budget) -> Verdict {
             "more than {} qubits are searched, and the structure does not decide",
             case.options.exhaustive_bits.min(MAX_EXHAUSTIVE_BITS)
         );
-        return by_sample(case, &Program::new(case.circuit, case.first), why, budget);
+        return by_function_sample(case, why, budget);
     };
     let (findings, is_complete) = compared.exhaust(case, budget);
     if is_complete || findings.differ(case.options) {
@@ -114,7 +114,14 @@ fn by_nodes(case: &Case, function: &Function, budget: &Budget) -> Verdict {
         verdict.notes.push("the circuit was read symbolically, and what it marks evaluated on every input".to_owned());
         return verdict;
     }
-    by_sample(case, &Program::new(case.circuit, case.first), out_of_budget(case, &findings), budget)
+    by_function_sample(case, out_of_budget(case, &findings), budget)
+}
+
+/// Tries a sample where the symbolic reading has shown everything but the function that is marked.
+fn by_function_sample(case: &Case, why: String, budget: &Budget) -> Verdict {
+    let mut verdict = by_sample(case, &Program::new(case.circuit, case.first), why, budget);
+    verdict.notes.push("for every input the structure shows that all qubits but what is marked are right".to_owned());
+    verdict
 }
 
 /// The global phase with which circuit and problem are the same function, where their structures show that they are.

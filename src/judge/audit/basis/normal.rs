@@ -5,7 +5,10 @@
 //!
 //! Conjunctions of conjunctions become one, exclusive ors of exclusive ors too, so that it does not matter in which order and
 //! grouping either was built. A conjunction that several others use is taken into them up to a width, given by the
-//! caller: widely for finding equal nodes, not at all for evaluating each node once.
+//! caller: widely for finding equal nodes, not at all for evaluating each node once. For finding equal nodes, what must hold
+//! in any case is also taken out of the alternatives of others: `u` and `u -> r` become `u` and `r`.
+
+use rustc_hash::FxHashSet;
 
 use crate::id::Id;
 use crate::judge::reading::graph::{Graph, Node, Signal};
@@ -14,6 +17,8 @@ use crate::problem::Problem;
 
 /// The widest shared conjunction that is taken into its users to find equal nodes.
 const SHARED_WIDTH: usize = 16;
+/// The most rounds of taking conjuncts out of others.
+const MAX_ROUNDS: usize = 64;
 /// The most terms of an exclusive or that is taken into another one.
 const MAX_TERMS: usize = 64;
 
@@ -42,7 +47,8 @@ impl Meeting {
 
     /// What a function is the conjunction of.
     pub(crate) fn function(&mut self, graph: &Graph, root: Signal) -> Vec<Signal> {
-        Normal::new(graph, [root], SHARED_WIDTH).conjuncts(&[root], &mut self.graph)
+        let conjuncts = Normal::new(graph, [root], SHARED_WIDTH).conjuncts(&[root], &mut self.graph);
+        settled(&mut self.graph, conjuncts)
     }
 
     /// What the predicate of a problem is the conjunction of.
@@ -56,8 +62,36 @@ impl Meeting {
             let clause = !self.graph.all(none);
             take_apart(&self.graph, clause, &mut conjuncts);
         }
-        sorted(conjuncts)
+        settled(&mut self.graph, sorted(conjuncts))
     }
+}
+
+/// Takes conjuncts that are no alternatives out of those that are, until nothing changes.
+fn settled(graph: &mut Graph, mut conjuncts: Vec<Signal>) -> Vec<Signal> {
+    for _ in 0..MAX_ROUNDS {
+        let is_alternative = |signal: &&Signal| signal.is_negated() && !graph.factors(signal.node()).is_empty();
+        let holding: FxHashSet<Signal> = conjuncts.iter().filter(|signal| !is_alternative(signal)).copied().collect();
+        let mut next = Vec::with_capacity(conjuncts.len());
+        let mut has_changed = false;
+        for &conjunct in &conjuncts {
+            let none_of = if conjunct.is_negated() { graph.factors(conjunct.node()) } else { &[] };
+            if none_of.iter().any(|&factor| holding.contains(&!factor)) {
+                has_changed = true;
+            } else if none_of.iter().any(|factor| holding.contains(factor)) {
+                has_changed = true;
+                let rest: Vec<Signal> = none_of.iter().copied().filter(|factor| !holding.contains(factor)).collect();
+                let rest = !graph.all(rest);
+                take_apart(graph, rest, &mut next);
+            } else {
+                next.push(conjunct);
+            }
+        }
+        conjuncts = sorted(next);
+        if !has_changed {
+            break;
+        }
+    }
+    conjuncts
 }
 
 /// In order, each once; "never" alone where it is one of them, or where one negates another.
@@ -183,6 +217,22 @@ mod tests {
         assert_ne!(meeting.function(&graph, !other), found);
         assert_eq!(for_evaluation(&graph, one, 5).conjuncts.len(), 2);
         assert!(is_better_negated(&graph, !one) && !is_better_negated(&graph, one));
+    }
+
+    #[test]
+    fn what_must_hold_is_taken_out_of_alternatives() {
+        let mut graph = Graph::over(4);
+        let [a, b, c, d] = [0, 1, 2, 3].map(|bit| graph.bit(bit));
+        let implies_b = graph.or(!a, b);
+        let some = graph.any([!b, c, d]);
+        let held = graph.or(b, c);
+        let one = graph.all([a, implies_b, some, held]);
+        let either = graph.or(c, d);
+        let other = graph.all([a, b, either]);
+        let mut meeting = Meeting::over(4);
+        assert_eq!(meeting.function(&graph, one), meeting.function(&graph, other));
+        let never = graph.all([a, implies_b, !b]);
+        assert_eq!(meeting.function(&graph, never), [Signal::NO]);
     }
 
     #[test]
