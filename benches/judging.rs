@@ -1,15 +1,20 @@
 //! The judge's sweeps: inputs a second for counting, for truth tables and for the exhaustive audit.
 //!
-//! The audited circuit is the one that LIMITS.md measured: random 3-SAT over 30 bits with 120 clauses, every clause into
+//! The audited circuit is a plain one: random 3-SAT over 30 bits with 120 clauses, every clause into
 //! an ancilla, the conjunction in a chain, one sign, and everything undone; 2^24 of its inputs are tried (a problem of 24
 //! bits has all of them).
+//!
+//! Before the table, [`rates`] prints what the audit of the full 30 bits reaches by each way, beside what the machine does
+//! in the same run: AND/XOR of 256 bits, and one distinct node.
+
+mod machine;
 
 use divan::Bencher;
 use divan::counter::ItemsCount;
 use tallymark::budget::Budget;
 use tallymark::circuit::{Circuit, Control, Op, SEARCH, WORK};
 use tallymark::id::Id;
-use tallymark::judge::audit::{Options, Outcome, audit};
+use tallymark::judge::audit::{How, Options, Outcome, Way, audit, distinct_nodes};
 use tallymark::judge::clauses::encode;
 use tallymark::judge::rows;
 use tallymark::places::Places;
@@ -17,6 +22,9 @@ use tallymark::problem::{BitId, BitLit, Compare, Domain, Expr, ExprId, Origin, P
 use tallymark::random::SplitMix64;
 
 fn main() {
+    if std::env::args().any(|arg| arg == "--bench") {
+        rates();
+    }
     divan::main();
 }
 
@@ -115,12 +123,89 @@ fn truth_of_subset_sum(bencher: Bencher, bits: usize) {
     bencher.counter(ItemsCount::new(1u64 << bits)).bench(|| rows::truth(&problem, &searched));
 }
 
-/// Every input of an oracle like the one of LIMITS.md 2c (24 bits, 120 clauses, about 1900 gates), on 1 and 2 threads.
-#[divan::bench(args = [1, 2], sample_count = 5)]
-fn audit_oracle(bencher: Bencher, threads: usize) {
+/// The parity of the clauses instead of their conjunction: every node counts on every input, and nothing can be cut off.
+fn parity(clauses: &Problem) -> (Problem, Circuit) {
+    let mut problem = Problem::new();
+    let bits = clauses.bit_count();
+    let vars: Vec<ExprId> = (0..bits)
+        .map(|at| {
+            let var = problem.add_var(format!("x{at}"), Domain::YesNo, None);
+            problem.exprs.node(Expr::Var(var))
+        })
+        .collect();
+    let mut circuit = Circuit::new();
+    let search = circuit.add_qubits(SEARCH, bits);
+    let mut parts = Vec::new();
+    for clause in clauses.clauses.iter() {
+        let mut lits = Vec::new();
+        for lit in clause {
+            let var = vars[lit.bit().index()];
+            lits.push(if lit.is_negated() { problem.exprs.node(Expr::Not(var)) } else { var });
+        }
+        parts.push(problem.exprs.over(Expr::Some, &lits));
+        // The parity of the clauses that fail is that of those that hold: their number is even.
+        let [a, b, c] = [0, 1, 2].map(|at| Control::new(search[clause[at].bit().index()], clause[at].is_negated()));
+        let flips = c.is_negated();
+        (0..u8::from(flips)).for_each(|_| circuit.push(Op::X, &[], c.qubit()));
+        circuit.push(Op::Z, &[a, b], c.qubit());
+        (0..u8::from(flips)).for_each(|_| circuit.push(Op::X, &[], c.qubit()));
+    }
+    let odd = problem.exprs.over(Expr::Odd, &parts);
+    problem.must(odd, Origin::default());
+    (problem, circuit)
+}
+
+/// Prints inputs a second of the audit by each way, beside the machine's own rates of the same run.
+#[expect(clippy::print_stdout, reason = "a bench prints what it measured")]
+fn rates() {
+    let bits = 30;
+    let machine = machine::measure();
+    println!(
+        "machine, one core: {:.2} G AND/XOR of 256 bits a second, on rows in the first cache",
+        machine.and_xor / 1e9
+    );
+    println!("one distinct node, one core: {:.0} G inputs a second", machine.node / 1e9);
+    let clauses = random_3_sat(bits, 4 * bits, 3);
+    let (parity, of_parity) = parity(&clauses);
+    for (name, problem, circuit) in [("3-SAT", &clauses, oracle(&clauses)), ("parity of clauses", &parity, of_parity)] {
+        let places = Places::as_given(problem);
+        let nodes = distinct_nodes(problem, &places, &circuit).expect("an oracle").expect("it is read symbolically");
+        println!("{name}, {bits} bits, {} gates, {nodes} distinct nodes:", circuit.gates().len());
+        for (label, way, threads) in [
+            ("every gate", Way::Gates, 1),
+            ("distinct nodes", Way::Nodes, 1),
+            ("distinct nodes", Way::Nodes, 2),
+            ("by structure", Way::Best, 1),
+        ] {
+            let options = Options { threads, way, exhaustive_bits: 30, ..Options::default() };
+            let mut how = None;
+            let seconds = machine::seconds(threads, || {
+                let verdict = audit(problem, &places, &circuit, &options, &Budget::unlimited()).expect("an oracle");
+                assert_eq!(verdict.outcome, Outcome::Equal);
+                how = Some(verdict.how);
+            });
+            if how == Some(How::Symbolic) {
+                println!("  {label}: {:.2} ms for all of them", seconds * 1e3);
+                continue;
+            }
+            let rate = 2f64.powi(bits as i32) / seconds;
+            // The problem's own reading has as many nodes, and is evaluated beside the circuit's.
+            let share = rate * 2.0 * nodes as f64 / (machine.node * threads as f64);
+            print!("  {label}, {threads} threads: {:.2} G inputs a second", rate / 1e9);
+            match way {
+                Way::Nodes => println!("; that is {share:.2} of the rate of one node, for {} nodes", 2 * nodes),
+                _ => println!(),
+            }
+        }
+    }
+}
+
+/// Every input of the plain oracle (24 bits, 120 clauses, about 1900 gates), on 1 and 2 threads.
+#[divan::bench(args = [(1, Way::Gates), (2, Way::Gates), (1, Way::Nodes), (2, Way::Nodes), (1, Way::Best)], sample_count = 5)]
+fn audit_oracle(bencher: Bencher, (threads, way): (usize, Way)) {
     let problem = random_3_sat(24, 120, 3);
     let (places, circuit) = (Places::as_given(&problem), oracle(&problem));
-    let options = Options { threads, ..Options::default() };
+    let options = Options { threads, way, ..Options::default() };
     let budget = Budget::unlimited();
     bencher.counter(ItemsCount::new(1u64 << 24)).bench(|| {
         let verdict = audit(&problem, &places, &circuit, &options, &budget).expect("an oracle");

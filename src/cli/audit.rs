@@ -89,13 +89,18 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         let sample = options.sample.unwrap_or(seeded.sample);
         let mut judged = audit::Options { threads: settings.threads, sample, ..seeded.clone() };
         if options.proof.is_some() {
-            judged.exhaustive_bits = 0;
+            (judged.way, judged.exhaustive_bits) = (audit::Way::Gates, 0);
         }
-        if loaded.problem.bit_count() > judged.exhaustive_bits as usize {
+        let judge = |judged: &audit::Options| {
+            pipeline::audit(&loaded.problem, &places, &circuit, judged, &budget).map_err(stage)
+        };
+        let mut verdict = judge(&judged)?;
+        if verdict.outcome == Found::Undecided && loaded.problem.bit_count() > judged.exhaustive_bits as usize {
+            // Only a sample was affordable: a better one has the solutions in it.
             let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
+            verdict = judge(&judged)?;
         }
-        let verdict = pipeline::audit(&loaded.problem, &places, &circuit, &judged, &budget).map_err(stage)?;
         let mut value = json::audit_json(&loaded.problem, &verdict);
         let reason = verdict.witness.as_ref().map(|witness| story::reason(&loaded.problem, &sources, witness));
         let parted = match (&good, &verdict.witness) {

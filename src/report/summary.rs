@@ -112,7 +112,8 @@ fn cost_table<'a>(products: impl IntoIterator<Item = &'a Product>) -> String {
 /// The verdict on an oracle.
 pub fn verdict(problem: &Problem, verdict: &Verdict) -> String {
     let how = match verdict.how {
-        How::Exhaustive => "every input, gate by gate",
+        How::Symbolic => "by structure, all inputs at once",
+        How::Exhaustive => "every input",
         How::Superposition => "every input in superposition, measurement outcomes drawn",
         How::Proof => "by proof",
         How::Sample => "known solutions, their neighbours, and drawn inputs",

@@ -6,7 +6,7 @@ use std::collections::BTreeSet;
 use tallymark::budget::Budget;
 use tallymark::circuit::{Circuit, Control, MARK, Op, QubitId, SEARCH, WORK};
 use tallymark::id::Id;
-use tallymark::judge::audit::{AuditError, How, Options, Outcome, Phases, Verdict, audit};
+use tallymark::judge::audit::{AuditError, How, Options, Outcome, Phases, Verdict, Way, audit};
 use tallymark::places::{Places, PlacesError};
 use tallymark::problem::{BitId, BitLit, Bits, Problem};
 use tallymark::random::SplitMix64;
@@ -88,7 +88,7 @@ fn differs(circuit: &Circuit, input: u128, expected: &str, got: &str) {
 fn right_circuits_are_equal() {
     for has_mark in [false, true] {
         let verdict = judge(&Oracle::finished(has_mark).circuit);
-        assert_eq!((verdict.outcome, verdict.how, verdict.inputs), (Outcome::Equal, How::Exhaustive, 8));
+        assert_eq!((verdict.outcome, verdict.how, verdict.inputs), (Outcome::Equal, How::Symbolic, 8));
         assert_eq!((verdict.work_clean, verdict.phases, verdict.witness), (true, Phases::Equal, None));
     }
 }
@@ -237,7 +237,7 @@ fn places_say_which_qubit_carries_which_bit() {
 fn a_sample_is_undecided_unless_it_finds_a_difference() {
     let problem = problem();
     let known = vec![Bits::from_number(1, 3), Bits::from_number(2, 3)];
-    let options = Options { exhaustive_bits: 2, sample: 0, known, ..Options::default() };
+    let options = Options { exhaustive_bits: 2, sample: 0, known, way: Way::Gates, ..Options::default() };
     let judged = |circuit: &Circuit| {
         audit(&problem, &Places::as_given(&problem), circuit, &options, &Budget::unlimited()).expect("an oracle")
     };

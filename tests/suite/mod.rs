@@ -14,4 +14,5 @@ mod making;
 mod planning;
 mod random_problem;
 mod states;
+mod symbolic;
 mod walls;

@@ -3,9 +3,9 @@
 //! Input: a problem, the places that say which qubit carries which bit, and a circuit from whatever source. Output: a
 //! [`Verdict`]. The circuit's gates are interpreted one by one; no sequence of gates is recognised.
 //!
-//! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases, so running
-//!   every basis state is complete (`basis`); where that is too much, a stated sample is run, and what shows no
-//!   difference there is proven (`proof`).
+//! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases (`basis`). They
+//!   are read symbolically, which may decide at once; or every basis state is run, which is complete; where that is too
+//!   much, a stated sample is run, and what shows no difference there is proven (`proof`).
 //! - Every other circuit is run on a superposition of all inputs ([`superposition`]).
 //! - One circuit is held against another ([`compare`]), or looked at alone ([`alone`]).
 //! - The audit is put to the test with circuits that have a fault ([`faults`]).
@@ -46,10 +46,28 @@ pub struct Options {
     pub known: Vec<Bits>,
     /// How many inputs a sample draws, besides the known solutions and their neighbours.
     pub sample: usize,
-    /// The largest search register of which every input is tried.
+    /// The largest search register of which every input is tried, whatever that takes.
     pub exhaustive_bits: u32,
     /// Whether a proof is tried where not every input can be.
     pub proof: bool,
+    /// Larger ones are tried as well where the circuit is read symbolically and this many row operations are enough: an
+    /// operation takes one distinct node of circuit or problem through 1024 inputs, and a core does some 2^28 a second.
+    pub exhaustive_work: u64,
+    /// How circuits are judged whose gates keep basis states.
+    pub way: Way,
+}
+
+/// How circuits are judged whose gates keep basis states. Every way is complete; they differ in what they cost and in how
+/// much has to be right for the verdict to be.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Default)]
+pub enum Way {
+    /// By structure where that decides, else by nodes where the circuit can be read symbolically, else by gates.
+    #[default]
+    Best,
+    /// The distinct nodes of the function on every input where the circuit can be read symbolically, else by gates.
+    Nodes,
+    /// Every gate on every input.
+    Gates,
 }
 
 impl Default for Options {
@@ -62,6 +80,8 @@ impl Default for Options {
             sample: 1 << 14,
             exhaustive_bits: 26,
             proof: true,
+            exhaustive_work: 1 << 32,
+            way: Way::Best,
         }
     }
 }
@@ -144,6 +164,14 @@ impl AuditError {
     }
 }
 
+/// How many distinct nodes the function has that a circuit marks, where the circuit can be read symbolically: bits and
+/// constants are not counted, and a conjunction of any width is one node.
+pub fn distinct_nodes(problem: &Problem, places: &Places, circuit: &Circuit) -> Result<Option<usize>, AuditError> {
+    let roles = oracle::roles(problem, places, circuit)?;
+    oracle::check_gates(circuit)?;
+    Ok(oracle::keeps_basis_states(circuit).then(|| basis::distinct_nodes(places, circuit, &roles)).flatten())
+}
+
 /// Judges a circuit against a problem.
 ///
 /// The circuit has a register `search`, of the size that the places say; a register `mark` of one qubit if it is a bit
@@ -151,8 +179,9 @@ impl AuditError {
 /// must multiply the solutions by -1 and nothing else, a bit oracle must flip `mark` on the solutions and give no phase;
 /// a global phase is free unless the options are strict.
 ///
-/// A verdict `equal` rests on every input. Above [`Options::exhaustive_bits`], or when the budget runs out, a sample is
-/// tried, then a proof; where that does not end within the budget, the verdict is `undecided`.
+/// A verdict `equal` rests on every input. Where the structure does not decide, above [`Options::exhaustive_bits`] and
+/// [`Options::exhaustive_work`], or when the budget runs out, a sample is tried, then a proof; where that does not end
+/// within the budget, the verdict is `undecided`.
 pub fn audit(
     problem: &Problem,
     places: &Places,

@@ -23,7 +23,14 @@ pub enum Outcome {
 #[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize)]
 #[serde(rename_all = "kebab-case")]
 pub enum How {
-    /// Every input, gate by gate. Complete: the gates permute basis states up to signs.
+    /// A proof by structure, for every input at once and with no input tried. The circuit was read symbolically: every
+    /// qubit's value as a function of the input, every conjunction one node however often it is computed. All qubits
+    /// came out as they must, and the function that the circuit marks is, node for node, the problem's predicate as the
+    /// judge reads it (or its negation, which is a global sign).
+    Symbolic,
+    /// Every input. Complete: the gates permute basis states up to phases. Either each gate was run on each input; or the
+    /// circuit was read symbolically, which showed all but the function that it marks, and the distinct nodes of that
+    /// function were evaluated on each input. A note says which.
     Exhaustive,
     /// Every input in superposition, gate by gate, for several drawn strings of measurement outcomes.
     Superposition,

@@ -132,6 +132,19 @@ impl Graph {
         if matches!(self.nodes[node], Node::All { .. }) { self.operands(node) } else { &[] }
     }
 
+    /// How many operands all nodes have together.
+    pub(crate) fn operand_count(&self) -> usize {
+        self.pool.len()
+    }
+
+    /// Pushes what a signal is the conjunction of: the operands of a conjunction that is not negated, else itself.
+    pub(crate) fn push_factors(&self, signal: Signal, into: &mut Vec<Signal>) {
+        match self.factors(signal.node()) {
+            factors if !factors.is_empty() && !signal.is_negated() => into.extend_from_slice(factors),
+            _ => into.push(signal),
+        }
+    }
+
     fn add(&mut self, node: impl FnOnce(u32) -> Node, operands: &[Signal]) -> Signal {
         let start = u32::try_from(self.pool.len()).expect("fewer than 2^32 operands");
         self.pool.extend_from_slice(operands);

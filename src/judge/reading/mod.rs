@@ -44,7 +44,7 @@ pub(crate) fn read(problem: &Problem) -> Reading {
 }
 
 /// Pushes the operands of nested conjunctions; "always" is left out.
-fn take_apart(graph: &Graph, root: Signal, into: &mut Vec<Signal>) {
+pub(crate) fn take_apart(graph: &Graph, root: Signal, into: &mut Vec<Signal>) {
     let mut open = vec![root];
     while let Some(signal) = open.pop() {
         match graph.factors(signal.node()) {

@@ -15,8 +15,8 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use crate::budget::Budget;
 use crate::id::Id;
-use crate::judge::reading::read;
-use crate::problem::{BitId, Bits, Problem};
+use crate::judge::reading::{Reading, read};
+use crate::problem::{BitId, Bits, Clauses, Problem};
 use in_order::{Then, in_order};
 use lanes::{LANE_BITS, LANES, Row, WORDS};
 use sweep::Sweep;
@@ -42,9 +42,19 @@ pub struct SweepCount {
 
 /// The tape of a problem in which bit `searched[i]` is bit `i` of the number of an input.
 pub(crate) fn tape(problem: &Problem, searched: &[BitId]) -> Tape {
-    let mut places = vec![0; problem.bit_count()];
+    Tape::new(&problem.clauses, &read(problem), &places_of(searched))
+}
+
+/// The tape of conjuncts alone.
+pub(crate) fn tape_of(reading: &Reading, searched: &[BitId]) -> Tape {
+    Tape::new(&Clauses::default(), reading, &places_of(searched))
+}
+
+/// The place of each bit in the number of an input.
+fn places_of(searched: &[BitId]) -> Vec<usize> {
+    let mut places = vec![0; searched.len()];
     searched.iter().enumerate().for_each(|(place, bit)| places[bit.index()] = place);
-    Tape::new(problem, &read(problem), &places)
+    places
 }
 
 /// Counts the solutions by trying every bit string, keeping the first `keep` of them. `None` where the budget ran out,

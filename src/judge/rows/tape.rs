@@ -14,7 +14,7 @@ use crate::id::Id;
 use crate::judge::reading::Reading;
 use crate::judge::reading::graph::{Graph, Node, Signal};
 use crate::judge::rows::lanes::LANE_BITS;
-use crate::problem::Problem;
+use crate::problem::Clauses;
 
 /// Requirements between two looks at whether a lane is left, at the fastest level; slower levels look after each one.
 const REQUIREMENTS_A_LOOK: usize = 4;
@@ -51,10 +51,10 @@ pub(crate) struct Tape {
 }
 
 impl Tape {
-    /// The tape of a problem in which bit `i` is bit `places[i]` of the number of an input.
-    pub(crate) fn new(problem: &Problem, reading: &Reading, places: &[usize]) -> Self {
+    /// The tape of clauses and a reading in which bit `i` is bit `places[i]` of the number of an input.
+    pub(crate) fn new(clauses: &Clauses, reading: &Reading, places: &[usize]) -> Self {
         let mut builder = Builder::new(reading, places);
-        builder.plan(problem);
+        builder.plan(clauses);
         builder.allocate()
     }
 
@@ -69,6 +69,15 @@ impl Tape {
 
     pub(crate) fn pool(&self) -> &[Operand] {
         &self.pool
+    }
+
+    /// How many row operations a sweep over all blocks takes, at most: each step as often as its level changes.
+    pub(crate) fn work(&self) -> u64 {
+        let work = |(level, steps): (usize, &Vec<Step>)| {
+            let times = 1u64.checked_shl((self.top() - level) as u32).unwrap_or(u64::MAX);
+            times.saturating_mul(steps.iter().filter(|step| **step != Step::Look).count() as u64)
+        };
+        self.levels.iter().enumerate().map(work).fold(0, u64::saturating_add)
     }
 
     /// How many rows a run needs; those of the places come first.
@@ -134,9 +143,9 @@ impl<'a> Builder<'a> {
     }
 
     /// Orders the steps of every level, the slowest level first.
-    fn plan(&mut self, problem: &Problem) {
+    fn plan(&mut self, clauses: &Clauses) {
         let mut requirements: Vec<Vec<Vec<Signal>>> = (0..=self.top()).map(|_| Vec::new()).collect();
-        for clause in problem.clauses.iter() {
+        for clause in clauses.iter() {
             let lits = clause.iter().map(|lit| self.graph.bit(lit.bit().index()) ^ lit.is_negated());
             let mut lits: Vec<Signal> = lits.collect();
             lits.sort_unstable();

@@ -70,6 +70,39 @@ impl Findings {
         self.inputs += batch.lanes;
     }
 
+    /// Adds `count` inputs from number `first` on, on which the circuit marks what it must with one phase for all.
+    pub(crate) fn agree(&mut self, roles: &Roles, global: u8, first: u64, count: u64) {
+        if count == 0 {
+            return;
+        }
+        self.inputs += count;
+        self.fitting[usize::from(global)] += count * if roles.mark.is_some() { 2 } else { 1 };
+        for (at, misfit) in self.misfit.iter_mut().enumerate() {
+            if at != usize::from(global) {
+                *misfit = misfit.or(Some(first));
+            }
+        }
+    }
+
+    /// Adds `count` inputs from number `first` on, with one phase for all besides the mark, which is wrong in the lanes of
+    /// `wrong`.
+    pub(crate) fn compared(&mut self, roles: &Roles, global: u8, wrong: &Row, first: u64, count: u64) {
+        if roles.mark.is_some() {
+            note(&mut self.fault, wrong, first);
+            return self.agree(roles, global, first, count);
+        }
+        let lanes = Row::first_lanes(count);
+        self.inputs += count;
+        for at in 0..8 {
+            let fits = match (usize::from(global) + 8 - at) % 8 {
+                0 => !*wrong & lanes,
+                4 => *wrong,
+                _ => Row::ZEROS,
+            };
+            self.phase(at, &fits, &lanes, first);
+        }
+    }
+
     /// Compares the phases with those owed: a sign in the lanes of `owed`.
     fn phases(&mut self, machine: &Machine, owed: &Row, lanes: &Row, batch: &Batch) {
         let first = batch.first;
