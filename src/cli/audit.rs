@@ -118,6 +118,7 @@ fn assigned(options: &Options, circuit: Circuit) -> Result<Circuit, Box<Diagnost
         Box::new(
             Diagnostic::error(Code("P020"), error.to_string())
                 .in_file(options.circuit.display().to_string())
+                .expected("registers and elements of the circuit, such as q[0:4],r[2]")
                 .help(format!("the circuit has {}", registers.join(", "))),
         )
     })

@@ -340,7 +340,7 @@ fn registers_of_other_names_are_told_by_options() {
     let code = |more: &[&str]| {
         let (exit, object) = audit(more);
         assert_eq!(exit, 2, "{object:#}");
-        object["diagnostics"][0]["code"].as_str().unwrap().to_owned()
+        object["error"]["code"].as_str().unwrap().to_owned()
     };
     assert_eq!(code(&["--search", "q[0:3]"]), "P020");
     assert_eq!(code(&["--search", "q", "--work", "r[0]"]), "P020");

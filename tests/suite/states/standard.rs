@@ -184,7 +184,10 @@ fn matrix(circuit: &Circuit) -> Matrix {
     for gate in gates {
         let (inner, bit) = (on_target(circuit, gate), 1 << gate.target().index());
         let holds = |at: usize| {
-            circuit.controls(gate).iter().all(|control| (at >> control.qubit().index() & 1 == 1) != control.is_negated())
+            circuit
+                .controls(gate)
+                .iter()
+                .all(|control| (at >> control.qubit().index() & 1 == 1) != control.is_negated())
         };
         for column in &mut columns {
             for zero in (0..size).filter(|at| at & bit == 0 && holds(*at)) {
@@ -242,8 +245,11 @@ fn compare(call: &str, polarity: &[bool], inner: &Matrix, wrong: &mut Vec<String
     let expected = controlled(polarity, inner);
     let count = expected.len().trailing_zeros() as usize;
     let operands: Vec<String> = (0..count).rev().map(|at| format!("q[{at}]")).collect();
-    let text =
-        format!("OPENQASM 3.0;\ninclude \"stdgates.inc\";\nqubit[{}] q;\n{call} {};", count.max(1), operands.join(", "));
+    let text = format!(
+        "OPENQASM 3.0;\ninclude \"stdgates.inc\";\nqubit[{}] q;\n{call} {};",
+        count.max(1),
+        operands.join(", ")
+    );
     let got = matrix(&circuit(&text));
     let reversed = |at: usize| (0..count).map(|bit| (at >> bit & 1) << (count - 1 - bit)).sum::<usize>();
     let expected: Matrix = match count {
@@ -347,16 +353,22 @@ fn other_spellings_mean_the_same() {
         ("const int[8] n = 2; const float f = pi / 4; p(n * f) q[n];", "s q[2];"),
         ("const uint k = 3; for uint i in [0:k - 2] { p(pi / 2 ** i) q[i]; }", "z q[0]; p(pi / 2) q[1];"),
         ("for int i in {2, 0} cx q[i], q[1];", "cx q[2], q[1]; cx q[0], q[1];"),
-        ("for int i in [0:1] { for int j in [i + 1:2] { cp(pi / 2 ** (j - i)) q[i], q[j]; } }",
-            "cp(pi/2) q[0], q[1]; cp(pi/4) q[0], q[2]; cp(pi/2) q[1], q[2];"),
+        (
+            "for int i in [0:1] { for int j in [i + 1:2] { cp(pi / 2 ** (j - i)) q[i], q[j]; } }",
+            "cp(pi/2) q[0], q[1]; cp(pi/4) q[0], q[2]; cp(pi/2) q[1], q[2];",
+        ),
         ("gate g(a) x, y { rz(a / 2) x; cx x, y; } inv @ g(3) q[0], q[1];", "cx q[0], q[1]; rz(-1.5) q[0];"),
         ("gate g a { s a; h a; } pow(2) @ g q[0]; pow(-1) @ g q[0];", "s q[0]; h q[0];"),
-        ("gate g a, b { for int i in [1:3] { p(0.1 * i) a; h b; } } inv @ g q[0], q[1];",
-            "h q[1]; p(-0.3) q[0]; h q[1]; p(-0.2) q[0]; h q[1]; p(-0.1) q[0];"),
+        (
+            "gate g a, b { for int i in [1:3] { p(0.1 * i) a; h b; } } inv @ g q[0], q[1];",
+            "h q[1]; p(-0.3) q[0]; h q[1]; p(-0.2) q[0]; h q[1]; p(-0.1) q[0];",
+        ),
         ("gate none a { } none q; ctrl @ none q[0], q[1];", ""),
         ("gate g a, b { cx a, b; } g q[0:1], q[2];", "cx q[0], q[2]; cx q[1], q[2];"),
-        ("def f(qubit[2] a, qubit b, angle t) { cx a[0], b; p(t) a[1]; } f(q[1:2], q[0], pi / 3);",
-            "cx q[1], q[0]; p(pi / 3) q[2];"),
+        (
+            "def f(qubit[2] a, qubit b, angle t) { cx a[0], b; p(t) a[1]; } f(q[1:2], q[0], pi / 3);",
+            "cx q[1], q[0]; p(pi / 3) q[2];",
+        ),
         ("def g(qubit a) { h a; } def f(qubit[3] a, int n) { for int i in [0:n] { g(a[i]); } } f(q, 1);", "h q[0:1];"),
         ("if_is_a_gate q[0];", "x q[0];"),
         ("p(sin(pi / 6) * 4 - sqrt(4) + arccos(1) + 2 ** -1 - pow(2.0, -1) + 7 % 4 - mod(11, 8)) q[0];", ""),
@@ -470,4 +482,27 @@ fn definitions_that_grow_without_bound_are_refused() {
     (1..1000).for_each(|at| deep += &format!("gate g{at} a {{ g{} a; }}\n", at - 1));
     let faults = read(&deep, "a.qasm", &mut Sources::new()).unwrap_err();
     assert_eq!(faults.iter().map(|fault| fault.code.0).collect::<Vec<_>>(), ["Q026"]);
+}
+
+/// A definition with a mistake is not called by anything, so that a later one of its name cannot close a circle.
+#[test]
+fn definitions_never_call_themselves() {
+    let texts = [
+        "gate a q { a q; }\na q;",
+        "gate a q { nowhere q; }\ngate b q { a q; }\ngate a q { b q; }\na q; b q;",
+        "def a(qubit q) { a(q); }\na(q);",
+        "def a(qubit q) { nowhere q; }\ndef b(qubit q) { a(q); }\ndef a(qubit q) { b(q); }\na(q); b(q);",
+    ];
+    for text in texts {
+        let faults = read(&format!("qubit q;\n{text}"), "a.qasm", &mut Sources::new()).unwrap_err();
+        assert_eq!(faults.iter().map(|fault| fault.code.0).collect::<Vec<_>>(), ["Q008"], "{text}");
+    }
+}
+
+#[test]
+fn names_are_not_known_in_their_own_declaration() {
+    for text in ["let a = a;", "const int a = a;", "qubit[a] a;", "bit[a] a;", "const int a = b; const int b = a;"] {
+        let faults = read(text, "a.qasm", &mut Sources::new()).unwrap_err();
+        assert_eq!(faults.iter().map(|fault| fault.code.0).collect::<Vec<_>>(), ["Q006"], "{text}");
+    }
 }
