@@ -160,6 +160,7 @@ fn assigned(options: &Options, path: &Path, circuit: Circuit) -> Result<Circuit,
         Box::new(
             Diagnostic::error(Code("P020"), error.to_string())
                 .in_file(path.display().to_string())
+                .expected("registers and elements of the circuit, such as q[0:4],r[2]")
                 .help(format!("the circuit has {}", registers.join(", "))),
         )
     })

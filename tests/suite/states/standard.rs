@@ -483,3 +483,26 @@ fn definitions_that_grow_without_bound_are_refused() {
     let faults = read(&deep, "a.qasm", &mut Sources::new()).unwrap_err();
     assert_eq!(faults.iter().map(|fault| fault.code.0).collect::<Vec<_>>(), ["Q026"]);
 }
+
+/// A definition with a mistake is not called by anything, so that a later one of its name cannot close a circle.
+#[test]
+fn definitions_never_call_themselves() {
+    let texts = [
+        "gate a q { a q; }\na q;",
+        "gate a q { nowhere q; }\ngate b q { a q; }\ngate a q { b q; }\na q; b q;",
+        "def a(qubit q) { a(q); }\na(q);",
+        "def a(qubit q) { nowhere q; }\ndef b(qubit q) { a(q); }\ndef a(qubit q) { b(q); }\na(q); b(q);",
+    ];
+    for text in texts {
+        let faults = read(&format!("qubit q;\n{text}"), "a.qasm", &mut Sources::new()).unwrap_err();
+        assert_eq!(faults.iter().map(|fault| fault.code.0).collect::<Vec<_>>(), ["Q008"], "{text}");
+    }
+}
+
+#[test]
+fn names_are_not_known_in_their_own_declaration() {
+    for text in ["let a = a;", "const int a = a;", "qubit[a] a;", "bit[a] a;", "const int a = b; const int b = a;"] {
+        let faults = read(text, "a.qasm", &mut Sources::new()).unwrap_err();
+        assert_eq!(faults.iter().map(|fault| fault.code.0).collect::<Vec<_>>(), ["Q006"], "{text}");
+    }
+}

@@ -212,7 +212,8 @@ impl<'a, 'f> Tokens<'a, 'f> {
         let (lo, token, hi) = self.raw()?;
         let text = self.lexer.source();
         if token == Tok::OpenQasm && self.at_start {
-            self.is_old = text[hi as usize..].trim_start().starts_with('2');
+            let version = text[hi as usize..].trim_start();
+            self.is_old = version.starts_with("2.0") || version.starts_with("2;");
         }
         let is_later = self.is_old && token.is_word_of_version_3();
         Some((lo, if is_later { Tok::Name(&text[lo as usize..hi as usize]) } else { token }, hi))

@@ -1,19 +1,28 @@
-//! Reads OpenQASM 3: text in, a [`Circuit`] or diagnostics out.
+//! Reads OpenQASM 3 and 2.0: text in, a [`Circuit`] or diagnostics out.
 //!
 //! In three steps: [`lexer`] and [`parse`] give statements ([`ast`]), [`build`] gives them their meaning. The reader
-//! knows the gates that this crate writes and a good margin: registers, the gates of `stdgates.inc` that keep a circuit
-//! in the set of [`crate::circuit::Op`], `ctrl`, `negctrl` and `inv`, broadcast, constant angles, measurement, `reset`,
-//! `if` on one measured bit, `for` with constant bounds. A loop whose body does not use its variable stays a loop
-//! ([`crate::circuit::Block`]). All else is an error with its place and reason; nothing is skipped silently but
-//! comments, pragmas and annotations, which the standard allows to ignore.
+//! knows what describes a circuit with a fixed list of gates: registers and aliases, constants and arithmetic, the gates
+//! of the language and of its library, `gate` definitions, all modifiers with integer exponents, broadcast,
+//! measurement, `reset`, `if` on one measured bit, `for` with constant values, and `def` subroutines whose value, if
+//! any, is a measurement. A loop whose body does not use its variable stays a loop ([`crate::circuit::Block`]); all
+//! else is written out, under limits. What depends on the run (`while`, `switch`, `input`, classical variables), on
+//! time, or on what is not in the file is an error with its place and reason; nothing is skipped silently but comments,
+//! pragmas and annotations, which the standard allows to ignore.
 //!
-//! After: every operand is in range and no gate uses a qubit twice; a bit that is tested was measured before; gates
-//! that are not in the set are written by exact identities (`y` is `sdg x s`), with no global phase lost, so that
-//! their controlled forms are right too.
+//! After: every operand is in range and no gate uses a qubit twice; a bit that is tested was measured before (in
+//! version 2 it may be unmeasured, and is 0); gates that are not in the set are written by exact identities (`y` is
+//! `sdg x s`), with no global phase lost in version 3, so that their controlled forms are right too. In version 2 nothing
+//! can be controlled, and gates are meant up to a global phase. Qubits are taken to begin in |0> where a circuit is
+//! followed from its start: version 2 says so, version 3 leaves it to the file.
+//!
+//! Where careful readers differ, the text is refused with the way to say it plainly: a rounded quotient of integers,
+//! `negctrl(n)`, `cu3` with a phase on its control, names that some copies of `qelib1.inc` have. A condition on several
+//! bits is refused, because a gate of a [`Circuit`] depends on one.
 //!
 //! # References
 //! - A. Cross, A. Javadi-Abhari, T. Alexander and others: _OpenQASM 3: A broader and deeper quantum assembly language_,
 //!   ACM Transactions on Quantum Computing 3(3), 2022.
+//! - A. Cross, L. Bishop, J. Smolin, J. Gambetta: _Open quantum assembly language_, arXiv:1707.03429, 2017.
 
 mod ast;
 mod build;
@@ -28,7 +37,7 @@ use crate::span::Sources;
 /// At most so many mistakes of one file are reported.
 const MAX_MISTAKES: usize = 100;
 
-/// Reads an OpenQASM 3 text; `name` is what messages call the file.
+/// Reads an OpenQASM text, version 3 or 2.0; `name` is what messages call the file.
 pub fn read(text: &str, name: &str, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
     if text.len() > u32::MAX as usize {
         let message = "a circuit file of 4 GiB or more cannot be read";

@@ -150,7 +150,7 @@ impl<'a, 'p> Builder<'a, 'p> {
                 Gate::Library(gate) => {
                     let mut angles = [0.0; 4];
                     angles[..scratch.angles.len()].copy_from_slice(&scratch.angles);
-                    check_meaning(gate, angles, call)?;
+                    check_meaning(gate, angles, power, call)?;
                     let (action, condition, controls) = (gate.action, self.condition, &scratch.controls);
                     let application = Application { action, power, angles, condition, controls, targets };
                     emit::apply(&mut self.circuit, &application);
@@ -247,8 +247,13 @@ fn product(a: i64, b: i64) -> Result<i64, Fault> {
     a.checked_mul(b).filter(|&product| product != i64::MIN).ok_or(Fault::NumberTooLarge)
 }
 
-/// Refuses a gate that careful readers understand differently.
-fn check_meaning(gate: LibraryGate, [_, phi, lambda, _]: [f64; 4], call: &Call<'_>) -> Checked {
+/// Refuses a gate that careful readers understand differently, and angles that are too large to be computed with.
+fn check_meaning(gate: LibraryGate, angles: [f64; 4], power: i64, call: &Call<'_>) -> Checked {
+    let [_, phi, lambda, _] = angles;
+    let sum: f64 = angles.iter().map(|angle| angle.abs()).sum();
+    if !(2.0 * sum * power as f64).is_finite() {
+        return Err((call.gate.place, Fault::NotFinite));
+    }
     let turns = (phi + lambda) / 2.0 / TAU;
     let differs = gate.action == Action::General(General::Either) && (turns - turns.round()).abs() > 1e-12;
     if differs { Err((call.gate.place, Fault::Ambiguous(call.gate.text.to_owned()))) } else { Ok(()) }

@@ -23,29 +23,33 @@ impl<'a, 'p> Builder<'a, 'p> {
     pub(super) fn define_gate(&mut self, definition: &'p GateDefinition<'a>) -> Checked {
         let name = definition.name;
         self.check_definition(name)?;
-        self.excused.insert(name.text);
+        match self.check_gate(definition) {
+            Ok(true) => {
+                self.gates.push(Defined { definition, depth: self.deepest });
+                self.scope.declare(name, Meaning::Gate(self.gates.len() as u32 - 1), false);
+            }
+            Ok(false) => drop(self.excused.insert(name.text)),
+            Err(mistake) => self.excuse(name, mistake)?,
+        }
+        Ok(())
+    }
+
+    /// Whether the body has no mistake; those that it has are reported.
+    fn check_gate(&mut self, definition: &'p GateDefinition<'a>) -> Checked<bool> {
+        let name = definition.name;
         if definition.qubits.is_empty() {
             return Err((name.place, Fault::NoQubits(name.text.to_owned())));
         }
-        let mistakes = self.faults.len();
         let before = self.scope.enter_frame();
         let angles = definition.angles.iter().map(|&angle| (angle, Meaning::Value(Value::Real(1.0))));
         let qubits = definition.qubits.iter().enumerate();
         let qubits = qubits.map(|(at, &qubit)| (qubit, Meaning::Elements(Sort::Qubit, Lanes::run(at as u32, 1))));
         let declared = self.declare_all(angles.chain(qubits));
         (self.checking, self.deepest) = (true, 1);
-        if declared.is_ok() {
-            self.check_body(&definition.body);
-        }
+        let is_right = declared.is_ok() && self.check_body(&definition.body);
         self.checking = false;
         self.scope.leave_frame(&before);
-        declared?;
-        if self.faults.len() == mistakes {
-            self.excused.remove(name.text);
-            self.gates.push(Defined { definition, depth: self.deepest });
-            self.scope.declare(name, Meaning::Gate(self.gates.len() as u32 - 1), false);
-        }
-        Ok(())
+        declared.map(|()| is_right)
     }
 
     /// Whether a gate or a subroutine of this name may be defined here.
@@ -68,8 +72,11 @@ impl<'a, 'p> Builder<'a, 'p> {
         Ok(())
     }
 
-    fn check_body(&mut self, statements: &'p [Statement<'a>]) {
+    /// Whether these statements have no mistake. What calls a gate with a mistake has one too, even if it is not said
+    /// again: a definition must not come to mean something through what is defined later.
+    fn check_body(&mut self, statements: &'p [Statement<'a>]) -> bool {
         self.depth += 1;
+        let mut is_right = true;
         for statement in statements {
             let place = statement.place;
             let checked = match &statement.kind {
@@ -78,19 +85,24 @@ impl<'a, 'p> Builder<'a, 'p> {
                     let before = self.scope.enter_block();
                     if let Ok(value) = self.turn_value(turns, 0) {
                         self.scope.declare(repeat.variable, Meaning::Value(Value::Whole(value)), true);
-                        self.check_body(&repeat.body);
+                        is_right &= self.check_body(&repeat.body);
                     }
                     self.scope.leave_block(&before);
                 }),
                 Kind::Barrier(operands) => self.check_barrier(operands),
-                Kind::Nothing => Ok(()),
+                Kind::Nothing => {
+                    is_right = false;
+                    Ok(())
+                }
                 _ => Err((place, Fault::NotInGate)),
             };
             if let Err((place, fault)) = checked {
+                is_right = false;
                 self.report(place, fault);
             }
         }
         self.depth -= 1;
+        is_right
     }
 
     /// Notes how deep the definition at hand goes with a call of this gate.

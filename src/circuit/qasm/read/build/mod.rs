@@ -199,21 +199,28 @@ impl<'a, 'p> Builder<'a, 'p> {
         }
     }
 
-    /// Declares a register. Where the size is wrong the name is known all the same, so that one mistake is one message.
-    fn register(&mut self, sort: Sort, name: Name<'a>, size: Option<Expr>, place: Place) -> Checked<Lanes> {
+    /// Declares a register, and says whether that was possible. Where the size is wrong the name is known all the same, so
+    /// that one mistake is one message.
+    fn register(&mut self, sort: Sort, name: Name<'a>, size: Option<Expr>, place: Place) -> Checked<bool> {
         if self.depth > 0 {
             self.excused.insert(name.text);
             return Err((place, Fault::InnerDeclaration));
         }
         self.check_name(name)?;
-        let placed = self.place_register(sort, name, size);
-        if placed.is_err() {
-            self.excused.insert(name.text);
+        match self.place_register(sort, name, size) {
+            Ok(()) => Ok(true),
+            Err(mistake) => self.excuse(name, mistake).map(|()| false),
         }
-        placed
     }
 
-    fn place_register(&mut self, sort: Sort, name: Name<'a>, size: Option<Expr>) -> Checked<Lanes> {
+    /// Reports why a name has no meaning; using it is then no further mistake.
+    fn excuse(&mut self, name: Name<'a>, (place, fault): (Place, Fault)) -> Checked {
+        self.report(place, fault);
+        self.excused.insert(name.text);
+        Ok(())
+    }
+
+    fn place_register(&mut self, sort: Sort, name: Name<'a>, size: Option<Expr>) -> Checked {
         let (len, at) = match size {
             None => (1, name.place),
             Some(expr) => (self.integer(expr)?, expr.place),
@@ -236,24 +243,33 @@ impl<'a, 'p> Builder<'a, 'p> {
         }
         let lanes = Lanes::run(start as u32, len as u32);
         self.scope.declare(name, Meaning::Elements(sort, lanes), false);
-        Ok(lanes)
+        Ok(())
     }
 
     fn bits(&mut self, name: Name<'a>, size: Option<Expr>, from: Option<&'p Source<'a>>, place: Place) -> Checked {
-        self.register(Sort::Bit, name, size, place)?;
+        let is_known = self.register(Sort::Bit, name, size, place)?;
         match from {
-            None => Ok(()),
-            Some(from) => {
+            Some(from) if is_known => {
                 let into = Operand { name: name.text, index: Index::Whole, place: name.place };
                 self.write(Some(&into), from, place)
             }
+            _ => Ok(()),
         }
     }
 
     /// A name for elements of one or more registers.
     fn alias(&mut self, name: Name<'a>, joined: &Range<u32>) -> Checked {
         self.check_name(name)?;
-        self.excused.insert(name.text);
+        match self.joined(name, joined) {
+            Ok((sort, lanes)) => {
+                self.scope.declare(name, Meaning::Elements(sort, lanes), self.depth > 0);
+                Ok(())
+            }
+            Err(mistake) => self.excuse(name, mistake),
+        }
+    }
+
+    fn joined(&mut self, name: Name<'a>, joined: &Range<u32>) -> Checked<(Sort, Lanes)> {
         let operands = &self.ast.operands[joined.start as usize..joined.end as usize];
         let (sort, _) = self.whole_operand(&operands[0])?;
         let lanes = match operands {
@@ -267,21 +283,25 @@ impl<'a, 'p> Builder<'a, 'p> {
                 self.list(&all, name.place)?
             }
         };
-        self.excused.remove(name.text);
-        self.scope.declare(name, Meaning::Elements(sort, lanes), self.depth > 0);
-        Ok(())
+        Ok((sort, lanes))
     }
 
     fn constant(&mut self, kind: Type, size: Option<Expr>, name: Name<'a>, value: Expr) -> Checked {
         self.check_name(name)?;
-        self.excused.insert(name.text);
+        match self.constant_value(kind, size, value) {
+            Ok(value) => {
+                self.scope.declare(name, Meaning::Value(value), self.depth > 0);
+                Ok(())
+            }
+            Err(mistake) => self.excuse(name, mistake),
+        }
+    }
+
+    fn constant_value(&mut self, kind: Type, size: Option<Expr>, value: Expr) -> Checked<Value> {
         let size = size.map(|size| self.integer(size)).transpose()?;
         let fail = |fault| (value.place, fault);
         let value = constant::value(self.ast, &self.scope, value).map_err(fail)?;
-        let value = constant::cast(value, kind, size).map_err(fail)?;
-        self.excused.remove(name.text);
-        self.scope.declare(name, Meaning::Value(value), self.depth > 0);
-        Ok(())
+        constant::cast(value, kind, size).map_err(fail)
     }
 
     /// Bits that are written by a measurement, or by a subroutine that ends with one.

@@ -21,7 +21,18 @@ impl<'a, 'p> Builder<'a, 'p> {
     pub(super) fn define_subroutine(&mut self, definition: &'p Subroutine<'a>) -> Checked {
         let name = definition.name;
         self.check_definition(name)?;
-        self.excused.insert(name.text);
+        match self.check_subroutine(definition) {
+            Ok(()) => {
+                self.subroutines.push(Known { definition, depth: self.deepest });
+                self.scope.declare(name, Meaning::Subroutine(self.subroutines.len() as u32 - 1), false);
+                Ok(())
+            }
+            Err(mistake) => self.excuse(name, mistake),
+        }
+    }
+
+    fn check_subroutine(&mut self, definition: &'p Subroutine<'a>) -> Checked {
+        let name = definition.name;
         if let Some((_, bits)) = definition.parameters.iter().find(|(given, _)| matches!(given, Given::Bits)) {
             return Err((bits.place, Fault::BitParameter));
         }
@@ -42,9 +53,6 @@ impl<'a, 'p> Builder<'a, 'p> {
             _ if definition.returns => return Err((name.place, Fault::NoReturn)),
             _ => last.map_or(Ok(()), no_return)?,
         }
-        self.excused.remove(name.text);
-        self.subroutines.push(Known { definition, depth: self.deepest });
-        self.scope.declare(name, Meaning::Subroutine(self.subroutines.len() as u32 - 1), false);
         Ok(())
     }
 
@@ -64,6 +72,8 @@ impl<'a, 'p> Builder<'a, 'p> {
                 self.depth -= 1;
                 checked
             }
+            Kind::Gate(_) | Kind::Subroutine(_) => Err((statement.place, Fault::InnerDefinition)),
+            Kind::Qubits(..) | Kind::Bits(..) => Err((statement.place, Fault::InnerDeclaration)),
             _ => Ok(()),
         })
     }
