@@ -1,6 +1,7 @@
 //! `tallymark audit FILE CIRCUIT`: judge a circuit against the problem.
 
 use std::path::{Path, PathBuf};
+use std::time::Duration;
 
 use clap::Args;
 
@@ -67,7 +68,10 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             judged.exhaustive_bits = 0;
         }
         if loaded.problem.bit_count() > judged.exhaustive_bits as usize {
-            let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+            // The solutions only seed the sample: most of the time is left to the proof.
+            let share = budget.time_left().map_or(MOST_COUNTING, |left| MOST_COUNTING.min(left / 8));
+            let counting = budget.clone().within(share);
+            let counted = pipeline::count(&loaded.problem, &places, settings, &counting).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
         }
         let verdict = pipeline::audit(&loaded.problem, &places, &circuit, &judged, &budget).map_err(stage)?;
@@ -82,6 +86,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     object.insert("partial".to_owned(), (exit == Exit::Unfinished).into());
     Ok((exit, if global.json { json::print(object) } else { text }))
 }
+
+/// The longest that an audit looks for solutions to begin with.
+const MOST_COUNTING: Duration = Duration::from_secs(4);
 
 fn exit_of(outcome: Found) -> Exit {
     match outcome {

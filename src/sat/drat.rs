@@ -212,7 +212,9 @@ mod tests {
 
     #[test]
     fn damaged_proofs_are_refused() {
-        for bytes in [&[0x61, 0x82][..], &[0x61, 0x01, 0x00], &[0x62, 0x00], &[0x61], &[0x61, 255, 255, 255, 255, 255, 0]] {
+        for bytes in
+            [&[0x61, 0x82][..], &[0x61, 0x01, 0x00], &[0x62, 0x00], &[0x61], &[0x61, 255, 255, 255, 255, 255, 0]]
+        {
             assert_eq!(Proof::from_bytes(bytes).unwrap_err().step, 1, "{bytes:?}");
         }
         for text in ["1 2", "d", "1 d 2 0", "x 0", "d d 1 0", "9999999999 0"] {

@@ -9,9 +9,9 @@ use std::time::Duration;
 
 use varisat::{ExtendFormula, Lit as TheirLit, ProofFormat, Solver, Var};
 
+use super::Lit;
 use super::drat::Proof;
 use super::formula::Formula;
-use super::Lit;
 use crate::budget::Budget;
 
 /// What came of it.

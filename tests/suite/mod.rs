@@ -7,6 +7,7 @@ mod judging;
 mod known_counts;
 mod language;
 mod making;
+mod proofs;
 mod random_problem;
 mod states;
 mod walls;

@@ -49,7 +49,15 @@ pub struct Options {
 
 impl Default for Options {
     fn default() -> Self {
-        Self { strict_phase: false, seed: 1, threads: 2, known: Vec::new(), sample: 1 << 14, exhaustive_bits: 26, proof: true }
+        Self {
+            strict_phase: false,
+            seed: 1,
+            threads: 2,
+            known: Vec::new(),
+            sample: 1 << 14,
+            exhaustive_bits: 26,
+            proof: true,
+        }
     }
 }
 

@@ -270,7 +270,11 @@ mod tests {
         assert_eq!(graph.most(a, Signal::NO, b), ab);
         assert_eq!(graph.any(&[a, b]), !graph.all(&[!b, !a]));
         let nested = graph.all(&[!abc, d, ab]);
-        assert_eq!(graph.conjuncts(nested), { let mut c = vec![a, b, d, !abc]; c.sort_unstable(); c });
+        assert_eq!(graph.conjuncts(nested), {
+            let mut c = vec![a, b, d, !abc];
+            c.sort_unstable();
+            c
+        });
     }
 
     /// Long chains are not taken apart, and their conjuncts are found all the same.

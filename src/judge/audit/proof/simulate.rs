@@ -23,7 +23,14 @@ pub(super) struct Patterns {
 impl Patterns {
     /// Draws patterns: values inside the domains, and near the known solutions where there are some. The first pattern
     /// is all zeros.
-    pub(super) fn new(graph: &Graph, problem: &Problem, places: &Places, known: &[Bits], inputs: usize, seed: u64) -> Self {
+    pub(super) fn new(
+        graph: &Graph,
+        problem: &Problem,
+        places: &Places,
+        known: &[Bits],
+        inputs: usize,
+        seed: u64,
+    ) -> Self {
         let mut patterns = Self { words: Vec::new(), random: SplitMix64::new(seed), inputs };
         let known: Vec<&Bits> = known.iter().filter(|solution| solution.len() == problem.bit_count()).collect();
         for word in 0..WORDS.min(MOST_WORDS / graph.len()).max(1) {
