@@ -3,6 +3,7 @@
 mod alone;
 
 use std::path::{Path, PathBuf};
+use std::time::Duration;
 
 use clap::Args;
 
@@ -97,7 +98,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         let mut verdict = judge(&judged)?;
         if verdict.outcome == Found::Undecided && loaded.problem.bit_count() > judged.exhaustive_bits as usize {
             // Only a sample was affordable: a better one has the solutions in it.
-            let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+            let share = budget.time_left().map_or(MOST_COUNTING, |left| MOST_COUNTING.min(left / 8));
+            let counting = budget.clone().within(share);
+            let counted = pipeline::count(&loaded.problem, &places, settings, &counting).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
             verdict = judge(&judged)?;
         }
@@ -134,6 +137,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     object.insert("partial".to_owned(), (exit == Exit::Unfinished).into());
     Ok((exit, if global.json { json::print(object) } else { text }))
 }
+
+/// The longest that an audit looks for solutions to begin with.
+const MOST_COUNTING: Duration = Duration::from_secs(4);
 
 fn exit_of(outcome: Found) -> Exit {
     match outcome {

@@ -237,7 +237,7 @@ fn places_say_which_qubit_carries_which_bit() {
 fn a_sample_is_undecided_unless_it_finds_a_difference() {
     let problem = problem();
     let known = vec![Bits::from_number(1, 3), Bits::from_number(2, 3)];
-    let options = Options { exhaustive_bits: 2, sample: 0, known, way: Way::Gates, ..Options::default() };
+    let options = Options { exhaustive_bits: 2, sample: 0, known, proof: false, way: Way::Gates, ..Options::default() };
     let judged = |circuit: &Circuit| {
         audit(&problem, &Places::as_given(&problem), circuit, &options, &Budget::unlimited()).expect("an oracle")
     };

@@ -12,6 +12,7 @@ mod known_counts;
 mod language;
 mod making;
 mod planning;
+mod proofs;
 mod random_problem;
 mod states;
 mod symbolic;

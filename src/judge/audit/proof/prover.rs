@@ -142,8 +142,9 @@ impl<'a> Prover<'a> {
         let mut context = Vec::new();
         let mut size = FIRST_WINDOW.min(effort.nodes);
         let mut rounds = 0;
+        let mut is_linked = true;
         while !self.budget.spent() {
-            let window = Window::new(self, assumed, &context, side, size);
+            let window = Window::new(self, assumed, &context, side, size, is_linked);
             let mut engine = Batsat::new();
             engine.limit(effort.steps);
             window.formula.iter().for_each(|clause| engine.add_clause(clause));
@@ -159,15 +160,24 @@ impl<'a> Prover<'a> {
                 }
                 Answer::Sat => {
                     let input = window.input(self, |var| engine.value(var));
-                    let broken = self.broken(&input, side, &context);
+                    let broken = self.broken(&input, side);
                     if broken.is_empty() {
                         return Shown::Refuted(input);
                     }
                     let before = context.len();
-                    context.extend(broken.into_iter().filter(|&signal| window.touches(self.graph, signal)));
-                    context.truncate(before + FACTS_A_ROUND);
+                    let new = |signal: &Signal| !context.contains(signal) && window.touches(self.graph, *signal);
+                    let more: Vec<Signal> = broken.into_iter().filter(new).take(FACTS_A_ROUND).collect();
+                    context.extend(more);
                     rounds += 1;
-                    if context.len() == before || rounds > effort.rounds {
+                    if context.len() == before {
+                        // A signal of the window has another value there than on the input: nodes that are equal where
+                        // the facts hold were linked, and some fact is broken.
+                        if !is_linked {
+                            return Shown::Open;
+                        }
+                        is_linked = false;
+                    }
+                    if rounds > effort.rounds {
                         return Shown::Open;
                     }
                 }
@@ -177,10 +187,10 @@ impl<'a> Prover<'a> {
     }
 
     /// The facts, and the signals of a side, that do not hold on an input.
-    fn broken(&self, input: &Bits, side: Option<bool>, known: &[Signal]) -> Vec<Signal> {
+    fn broken(&self, input: &Bits, side: Option<bool>) -> Vec<Signal> {
         let values = self.values(input);
         let of_side = side.map_or(&[][..], |side| &self.sides[usize::from(side)]);
-        let is_broken = |signal: &&Signal| values[signal.node()] == signal.is_negated() && !known.contains(signal);
+        let is_broken = |signal: &&Signal| values[signal.node()] == signal.is_negated();
         self.facts.iter().chain(of_side).filter(is_broken).copied().collect()
     }
 
@@ -284,7 +294,14 @@ struct Window {
 }
 
 impl Window {
-    fn new(prover: &Prover, roots: &[Signal], context: &[Signal], side: Option<bool>, size: usize) -> Self {
+    fn new(
+        prover: &Prover,
+        roots: &[Signal],
+        context: &[Signal],
+        side: Option<bool>,
+        size: usize,
+        is_linked: bool,
+    ) -> Self {
         let mut window = Self {
             formula: Formula::new(0),
             globals: Vec::new(),
@@ -312,7 +329,7 @@ impl Window {
                 break;
             }
             left -= 1;
-            match prover.equal.get(&node) {
+            match prover.equal.get(&node).filter(|_| is_linked) {
                 Some(&equal) => {
                     let (a, b) = (miter.lit(Signal::of(node)), miter.lit(equal));
                     [[a, !b], [!a, b]].iter().for_each(|clause| window.push(clause));
