@@ -78,7 +78,6 @@ fn a_witness_is_told_in_the_terms_of_the_problem() {
     let desk = compiled(&["toffoli"]);
     // A sign on every value with a and b: with two ones; a = b breaks the first constraint, in line 5.
     let good = read_to_string(desk.path("toffoli.qasm")).unwrap();
-    desk.file("toffoli.places.json", &read_to_string(desk.path("toffoli.places.json")).unwrap());
     desk.file("spoilt.qasm", &format!("{good}cz search[0], search[1];\n"));
     let (exit, object) = desk.json(&["audit", "p.tally", "spoilt.qasm", "--against", "toffoli.qasm"]);
     let witness = &object["audit"]["witness"];

@@ -7,6 +7,7 @@
 
 pub mod apply;
 pub mod draw;
+mod local;
 pub mod proof;
 pub mod trial;
 

@@ -1,7 +1,8 @@
 //! Proofs that a fault does no harm, by another way than the audit that did not catch it.
 //!
-//! The audit holds a circuit against the problem. Here the changed circuit is held against the good one: in
-//! superposition where the audit ran basis states one by one, and over all strings of measurement outcomes. A changed
+//! The audit holds a circuit against the problem. Where the changed gates alone are the same operator, nothing more is
+//! asked (`local`). Else the changed circuit is held against the good one: in superposition where the audit ran basis
+//! states one by one, and over all strings of measurement outcomes. A changed
 //! problem, or a changed register map, is held against the good one by the reference evaluator on every input; a
 //! changed search is followed from its first gate to its last measurement, and so is the good one.
 

@@ -3,7 +3,7 @@
 use crate::budget::Budget;
 use crate::circuit::{Circuit, FOUND};
 use crate::judge::audit::faults::proof::{self, Proof};
-use crate::judge::audit::faults::{Drawer, Fault, Kind, apply};
+use crate::judge::audit::faults::{Drawer, Fault, Kind, apply, local};
 use crate::judge::audit::{AuditError, Options, Outcome, audit, audit_search};
 use crate::places::Places;
 use crate::problem::Problem;
@@ -123,6 +123,7 @@ impl<'c> Tester<'c> {
             Err(refusal) => return Ok(Found::Refused(refusal.to_string())),
         }
         let proof = match &circuit {
+            Some(circuit) if local::is_same(fault, self.circuit, circuit, self.budget) => Proof::Harmless,
             Some(circuit) if self.iterations.is_some() => proof::same_search(self.circuit, circuit, self.budget),
             Some(circuit) => proof::same_operator(self.circuit, circuit, self.budget)?,
             None => proof::same_meaning((self.problem, self.places), (judged.0, judged.1), self.budget),
