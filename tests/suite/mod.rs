@@ -1,5 +1,6 @@
 mod aims;
 mod auditing;
+mod certificate;
 mod command;
 mod counting;
 mod dimacs;
