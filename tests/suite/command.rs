@@ -392,3 +392,59 @@ fn the_mark_may_have_another_name() {
     assert_eq!(audit("q[2]"), 2);
     assert_eq!(desk.exit(&["audit", "p.tally", "c.qasm", "--search", "q[0:2:2]"]), 1, "a dirty ancilla");
 }
+
+#[test]
+fn certificates_are_written_and_checked() {
+    let desk = Desk::new();
+    desk.file("p.tally", PUZZLE);
+    let (exit, written) = desk.json(&["count", "p.tally", "--certificate", "p.nnf"]);
+    assert_eq!((exit, written["certificate"]["verdict"].as_str()), (0, Some("holds")));
+    assert_eq!(written["certificate"]["count"], written["tally"]["count"]);
+    let (exit, checked) = desk.json(&["count", "p.tally", "--check", "p.nnf"]);
+    assert_eq!((exit, checked["certificate"]["count"].as_str()), (0, Some("3")));
+    // Another count, another problem, no certificate at all.
+    let text = std::fs::read_to_string(desk.path("p.nnf")).unwrap();
+    desk.file("wrong.nnf", &text.replace("c count 3", "c count 4"));
+    assert_eq!(desk.exit(&["count", "p.tally", "--check", "wrong.nnf"]), 1);
+    desk.file("other.tally", &PUZZLE.replace("n = 3", "n = 1"));
+    assert_eq!(desk.exit(&["count", "other.tally", "--check", "p.nnf"]), 1);
+    let (exit, refused) = desk.json(&["count", "p.tally", "--check", "p.tally"]);
+    assert_eq!((exit, refused["certificate"]["verdict"].as_str()), (1, Some("refused")));
+    assert_eq!(desk.exit(&["count", "p.tally", "--check", "absent.nnf"]), 2);
+    assert_eq!(desk.exit(&["count", "p.tally", "--check", "p.nnf", "--values"]), 2);
+}
+
+#[test]
+fn a_count_of_zero_is_refuted() {
+    let desk = Desk::new();
+    desk.file("none.tally", &format!("{PUZZLE}must n = 0\n"));
+    let (exit, written) = desk.json(&["count", "none.tally", "--certificate", "none.drat"]);
+    assert_eq!((exit, written["certificate"]["kind"].as_str()), (0, Some("refutation")));
+    let (exit, checked) = desk.json(&["count", "none.tally", "--check", "none.drat"]);
+    assert_eq!((exit, checked["certificate"]["count"].as_str()), (0, Some("0")));
+    desk.file("some.tally", PUZZLE);
+    assert_eq!(desk.exit(&["count", "some.tally", "--check", "none.drat"]), 1);
+}
+
+#[test]
+fn values_and_draws_are_shown() {
+    let desk = Desk::new();
+    desk.file("p.tally", &format!("{PUZZLE}pick c\nmust c\n"));
+    let (exit, shown) = desk.json(&["count", "p.tally", "--values", "--draw", "5", "--seed", "9"]);
+    assert_eq!(exit, 0);
+    let counts = |pick: usize| -> Vec<&str> {
+        let counts = shown["values"]["picks"][pick]["counts"].as_array().unwrap();
+        counts.iter().map(|entry| entry["count"].as_str().unwrap()).collect()
+    };
+    // The solutions are (a, b, n) = (no, yes, 3), (yes, no, 3), (yes, no, 2), all with c.
+    assert_eq!(
+        [counts(0), counts(1), counts(2), counts(3)].concat(),
+        ["1", "2", "2", "1", "0", "0", "1", "2", "0", "3"]
+    );
+    assert_eq!(shown["values"]["backbone"], serde_json::json!([{ "name": "c", "value": "yes" }]));
+    let never: Vec<_> = shown["values"]["never"].as_array().unwrap().iter().map(|entry| &entry["value"]).collect();
+    assert_eq!(never, ["0", "1"]);
+    assert_eq!(shown["drawn"].as_array().unwrap().len(), 5);
+    let text = desk.text(&["count", "p.tally", "--values", "--draw", "5", "--seed", "9"]);
+    assert!(text.contains("always      c=yes\nnever       n=0 n=1\n"), "{text}");
+}

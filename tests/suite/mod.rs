@@ -1,5 +1,6 @@
 mod aims;
 mod auditing;
+mod certificate;
 mod command;
 mod command_audit;
 mod counting;

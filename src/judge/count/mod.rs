@@ -5,12 +5,12 @@
 //! Holds:  every way that was affordable gave the same number, and every kept solution satisfies the problem's own
 //!         evaluator; anything else is a [`Fault`] of this program.
 //!
-//! Five ways, by what they cost:
+//! The ways, by what they cost:
 //!
 //! 1. the sweep tries every bit string: first where that costs next to nothing;
 //! 2. the `engine` splits the clauses into components and remembers their counts: next, with little work at first;
-//! 3. the listing goes through the solutions one by one: next, for what the engine found hard may have few solutions;
-//! 4. the engine again, with all the work that is allowed;
+//! 3. the listing goes through the solutions one by one: next, in short, for what the engine found hard may have few solutions;
+//! 4. the engine again, then the listing again, with all the work that is allowed;
 //! 5. the sweep again, if it is possible at all.
 //!
 //! Whoever led is confirmed by another way that costs no more than a share: the listing up to [`CONFIRMED`] solutions,
@@ -54,10 +54,12 @@ pub const LISTED_WORK: u64 = 1 << 28;
 pub const CONFIRMED: u64 = 100_000;
 /// Work that the second engine does at most where no deadline is set, in the same units.
 pub const CONFIRMED_WORK: u64 = 1 << 28;
+/// Work of a first listing, in case that there are few solutions.
+pub const SHORT_LISTED_WORK: u64 = 1 << 25;
 /// Work of the engine's first try, in its own units: some tenths of a second.
 pub const QUICK_WORK: u64 = 1 << 24;
 /// Work of the engine at most where no deadline is set: some minutes.
-pub const LONG_WORK: u64 = 1 << 33;
+pub const LONG_WORK: u64 = 1 << 32;
 /// Size of the kept solutions (times the size of the problem) up to which the evaluator checks them all.
 const EVALUATED_WORK: usize = 1 << 28;
 
@@ -168,19 +170,20 @@ impl Job<'_> {
         if quick.exact().is_some() {
             return self.confirmed(quick, options, budget);
         }
-        let mut listed = self.listing(options, &half(budget))?;
-        within(&mut listed, &quick)?;
-        if listed.exact().is_some() {
-            return self.swept_too(listed, options, budget);
+        let short = Limits { solutions: CONFIRMED, work: SHORT_LISTED_WORK };
+        let mut short = self.listing_within(short, options, &half(budget), Again::Yes)?;
+        within(&mut short, &quick)?;
+        if short.exact().is_some() {
+            return self.swept_too(short, options, budget);
         }
-        let mut long = components::count(&self.cnf, &self.counted, LONG_WORK, budget);
-        within(&mut long, &listed)?;
-        if long.exact().is_none() {
-            long.method = listed.method;
-            long.solutions = listed.solutions;
-            return self.swept_too(long, options, budget);
+        let mut long = components::count(&self.cnf, &self.counted, LONG_WORK, &half(budget));
+        within(&mut long, &short)?;
+        if long.exact().is_some() {
+            return self.confirmed(long, options, budget);
         }
-        self.confirmed(long, options, budget)
+        let mut listed = self.listing(options, budget)?;
+        within(&mut listed, &long)?;
+        self.swept_too(listed, options, budget)
     }
 
     /// A count by components, with solutions and whoever can confirm it.

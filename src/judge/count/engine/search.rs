@@ -201,6 +201,11 @@ impl<'a, T: Trace> Search<'a, T> {
                     continue;
                 }
                 Step::Stopped(bounds) => {
+                    // Nobody knows whether this part and those behind it have models, so what learnt clauses forced in
+                    // the others may be wrong, and a later run must not find it.
+                    if self.p.learnt_used != used {
+                        self.cache.retract(start, if last { own } else { u64::MAX });
+                    }
                     let rest = &self.finder.parts[first + at + 1..];
                     let bits: u32 = rest.iter().map(|part| part.counted).sum();
                     let value = value.to_big();
