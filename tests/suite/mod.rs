@@ -4,6 +4,7 @@ mod command;
 mod counting;
 mod dimacs;
 mod engine;
+mod inputs;
 mod judging;
 mod known_counts;
 mod language;

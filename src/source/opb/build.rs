@@ -38,8 +38,7 @@ struct Builder {
 impl Builder {
     /// Whether the values of the sum fit 64 bits, on either side of 0.
     fn fits(&mut self, terms: &[Term], at: &std::ops::Range<usize>) -> bool {
-        let size: u128 = terms.iter().map(|term| u128::from(term.weight.unsigned_abs())).sum();
-        let fits = size <= i64::MAX as u128;
+        let fits = fit(terms);
         if !fits {
             self.faults.push(Fault { at: at.clone(), kind: Kind::WideSum });
         }
@@ -47,6 +46,8 @@ impl Builder {
     }
 
     fn row(&mut self, row: &Row) {
+        let lowered = if fit(&row.terms) { None } else { lowered(row) };
+        let row = lowered.as_ref().unwrap_or(row);
         if !self.fits(&row.terms, &row.at) {
             return;
         }
@@ -56,15 +57,23 @@ impl Builder {
             let items: Vec<_> = row.terms.iter().map(|term| self.product(term, span)).collect();
             let list = self.problem.exprs.list(&items);
             self.problem.exprs.add(Expr::Some(list), Some(span))
-        } else {
+        } else if let Ok(bound) = i64::try_from(row.bound) {
             let sum = self.sum(&row.terms, span);
-            let bound = self.problem.exprs.add(Expr::Number(row.bound), Some(span));
+            let bound = self.problem.exprs.add(Expr::Number(bound), Some(span));
             let compare = match row.relation {
                 Relation::AtLeast => Expr::Compare(Compare::Le, bound, sum),
                 Relation::Equal => Expr::Compare(Compare::Eq, sum, bound),
                 Relation::AtMost => Expr::Compare(Compare::Le, sum, bound),
             };
             self.problem.exprs.add(compare, Some(span))
+        } else {
+            // The sum fits 64 bits and the bound does not, so its sign decides.
+            let holds = match row.relation {
+                Relation::AtLeast => row.bound < 0,
+                Relation::Equal => false,
+                Relation::AtMost => row.bound > 0,
+            };
+            self.problem.exprs.add(Expr::Truth(holds), Some(span))
         };
         self.problem.must(expr, Origin { span: Some(span), bindings: Vec::new() });
     }
@@ -81,7 +90,8 @@ impl Builder {
         if term.weight == 1 {
             return number;
         }
-        let weight = self.problem.exprs.add(Expr::Number(term.weight), Some(span));
+        let weight = i64::try_from(term.weight).expect("the sum fits 64 bits");
+        let weight = self.problem.exprs.add(Expr::Number(weight), Some(span));
         self.problem.exprs.add(Expr::Product(weight, number), Some(span))
     }
 
@@ -101,4 +111,26 @@ impl Builder {
         let plain = *plain.get_or_insert_with(|| exprs.node(Expr::Var(VarId::new(at))));
         if !negated { plain } else { *inverse.get_or_insert_with(|| exprs.node(Expr::Not(plain))) }
     }
+}
+
+/// Whether the sizes of the weights add up to less than 2^63.
+fn fit(terms: &[Term]) -> bool {
+    terms.iter().map(|term| term.weight.unsigned_abs()).sum::<u128>() <= i64::MAX as u128
+}
+
+/// The same constraint with smaller weights (saturation, as in every pseudo-Boolean solver). Seen from the least value
+/// of the sum, a term adds the size of its weight or nothing, and `need` is what has to be added: more than that at
+/// once makes no difference. For `<=` all signs are turned. An equation stays as it is.
+fn lowered(row: &Row) -> Option<Row> {
+    let sign = match row.relation {
+        Relation::AtLeast => 1,
+        Relation::AtMost => -1,
+        Relation::Equal => return None,
+    };
+    let least = |terms: &[Term]| terms.iter().map(|term| (sign * term.weight).min(0)).sum::<i128>();
+    let need = (sign * row.bound - least(&row.terms)).max(0);
+    let lower = |term: &Term| Term { weight: term.weight.clamp(-need, need), literals: term.literals.clone() };
+    let terms: Vec<Term> = row.terms.iter().map(lower).collect();
+    let bound = sign * (least(&terms) + need);
+    Some(Row { terms, relation: row.relation, bound, at: row.at.clone() })
 }

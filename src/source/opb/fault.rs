@@ -21,7 +21,7 @@ pub(super) enum Kind {
     Unexpected(String, &'static str),
     #[error("the file ends inside a statement")]
     Unclosed(&'static str),
-    #[error("the number is beyond 64 bits")]
+    #[error("the number is too large")]
     TooLarge,
     #[error("the variable is out of range")]
     OutOfRange { announced: u64 },
@@ -54,8 +54,8 @@ impl Fault {
                 .expected(*expected)
                 .help("the file was probably cut short; if it is whole, add the ';'"),
             Kind::TooLarge => new("O003")
-                .expected("an integer from -9223372036854775807 to 9223372036854775807")
-                .help("the format allows integers of any size; divide the constraint by a common factor if it has one"),
+                .expected("an integer of size 10^29 at most")
+                .help("divide the constraint by a common factor if it has one"),
             Kind::OutOfRange { announced } => new("O004").expected(format!("a variable from x1 to x{announced}")),
             Kind::TooManyVars => new("O005").expected(format!("at most {MAX_VARS} variables")),
             Kind::WideSum => new("O006").expected("integers whose sizes add up to less than 2^63"),

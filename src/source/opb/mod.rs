@@ -1,7 +1,8 @@
 //! The OPB reader: pseudo-Boolean constraints, the text of the pseudo-Boolean competitions.
 //!
 //! Input:  text. Output: a [`Problem`] over yes/no variables `x1` to `xV`, or messages with places.
-//! Holds:  the invariants of [`check`](crate::problem::check); a sum whose values reach beyond 64 bits is refused.
+//! Holds:  the invariants of [`check`](crate::problem::check); a sum whose values reach beyond 64 bits is refused,
+//!         unless lowering weights to what the bound can tell apart makes it fit.
 //!
 //! ```text
 //! * #variable= 3 #constraint= 2
@@ -32,6 +33,8 @@ use crate::span::Sources;
 
 /// Variables a file may have.
 pub const MAX_VARS: u64 = 1 << 20;
+/// The size that a number may have: as many of them as a file can hold add up within 128 bits.
+const MAX_NUMBER: u128 = 10u128.pow(29);
 /// After so many mistakes reading stops.
 const MAX_MESSAGES: usize = 20;
 

@@ -16,7 +16,7 @@ pub(super) struct Literal {
 /// A weighed product.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub(super) struct Term {
-    pub(super) weight: i64,
+    pub(super) weight: i128,
     pub(super) literals: Vec<Literal>,
 }
 
@@ -33,7 +33,7 @@ pub(super) enum Relation {
 pub(super) struct Row {
     pub(super) terms: Vec<Term>,
     pub(super) relation: Relation,
-    pub(super) bound: i64,
+    pub(super) bound: i128,
     pub(super) at: Range<usize>,
 }
 
@@ -197,7 +197,7 @@ impl Parser<'_> {
         Ok(self.words[self.next - 1].1.end)
     }
 
-    fn number(&mut self, number: Option<i64>) -> Result<i64, Fault> {
+    fn number(&mut self, number: Option<i128>) -> Result<i128, Fault> {
         let at = self.words[self.next].1.clone();
         self.next += 1;
         number.ok_or(Fault { at, kind: Kind::TooLarge })

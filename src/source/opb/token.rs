@@ -2,11 +2,13 @@
 
 use std::ops::Range;
 
+use super::MAX_NUMBER;
+
 /// A word.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub(super) enum Token {
-    /// An integer; `None` beyond 64 bits.
-    Number(Option<i64>),
+    /// An integer; `None` where it is larger than [`MAX_NUMBER`](super::MAX_NUMBER).
+    Number(Option<i128>),
     /// `x` and a number from 1, `~` before it.
     Literal {
         var: Option<u64>,
@@ -82,11 +84,10 @@ fn token(word: &str) -> Token {
     }
 }
 
-/// The least number of 64 bits is left out: its size is beyond them.
 fn number(word: &str) -> Option<Token> {
     let digits = word.strip_prefix(['+', '-']).unwrap_or(word);
     let good = !digits.is_empty() && digits.bytes().all(|byte| byte.is_ascii_digit());
-    good.then(|| Token::Number(word.parse().ok().filter(|&number| number != i64::MIN)))
+    good.then(|| Token::Number(word.parse().ok().filter(|number: &i128| number.unsigned_abs() <= MAX_NUMBER)))
 }
 
 fn literal(word: &str) -> Option<Token> {
