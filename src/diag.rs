@@ -7,6 +7,8 @@
 //! |---|---|
 //! | `F` | files: opening, unpacking, writing |
 //! | `D` | the DIMACS reader |
+//! | `O` | the OPB reader |
+//! | `G` | the AIGER reader |
 //! | `T` | the tally language |
 //! | `Q` | the OpenQASM reader |
 //! | `P` | places, and how they fit a circuit |

@@ -32,7 +32,7 @@ pub fn answer_json(answer: &Answer) -> Value {
         "space": in_words(&answer.space),
         "advice": outline.advice,
         "confidence": answer.confidence,
-        "runs": answer.runs,
+        "runs_for_confidence": answer.runs,
     })));
     let mut put = |name: &str, value: Option<Value>| value.map(|value| object.insert(name.to_owned(), value));
     put("noise", answer.noise.as_ref().map(plain));
@@ -95,13 +95,10 @@ fn widths(schedule: &Schedule) -> Option<Vec<String>> {
 /// The answer in lines of text.
 pub fn answer_text(answer: &Answer) -> String {
     let outline = &answer.outline;
-    let mut text = String::new();
-    if !matches!(answer.details, Details::Plain(_)) {
-        text += &line("marked", known(answer));
-    }
+    let mut text = line("aim", outline.aim.name());
     text += &match &answer.details {
-        Details::Plain(plan) => line("aim", outline.aim.name()) + &plan_lines(Some(plan)),
-        _ => line("aim", outline.aim.name()) + &line("iterations", in_words(&outline.iterations)),
+        Details::Plain(plan) => plan_lines(Some(plan)),
+        _ => line("marked", known(answer)) + &line("iterations", in_words(&outline.iterations)),
     };
     text += &match &answer.details {
         Details::Plain(_) => String::new(),

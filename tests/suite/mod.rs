@@ -8,6 +8,7 @@ mod dimacs;
 mod engine;
 mod faults;
 mod identities;
+mod inputs;
 mod judging;
 mod known_counts;
 mod language;

@@ -96,8 +96,8 @@ fn counting_on_the_machine() {
     let points: f64 = found["points"].as_str().unwrap().parse().unwrap();
     let bound = |m: f64| std::f64::consts::PI / m + (std::f64::consts::PI / m).powi(2);
     assert!(bound(points) <= 0.01 && bound(points / 2.0) > 0.01, "{points}");
-    // One run is within the bound with probability 8/pi^2 = 0.81.
-    assert_eq!((&found["runs"], found["iterations"].as_str().unwrap().parse()), (&Value::Null, Ok(points - 1.0)));
+    // One run is within the bound with probability 8/pi^2 = 0.81, so that is enough here.
+    assert_eq!(found["iterations"].as_str().unwrap().parse(), Ok(points - 1.0));
 }
 
 /// The table of noise: the closed form p_k = (1-q)^k sin^2((2k+1) theta) + (1-(1-q)^k) M/N, evaluated outside.
@@ -176,6 +176,7 @@ fn questions_without_an_answer() {
         (&["--space", "8", "--error", "1.5"], "U001"),
         (&["--space", "8", "--failure", "1"], "U001"),
         (&["--space", "2^99999"], "U001"),
+        (&["--space", "8", "--count", "1", "--within", "2^5000"], "U001"),
         (&["free.cnf", "--space", "8"], "U001"),
         (&[], "U001"),
     ] {

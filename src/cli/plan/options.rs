@@ -6,6 +6,7 @@ use num_traits::One;
 
 use crate::circuit::Level;
 use crate::cli::input;
+use crate::search::number::PRINTED_BITS;
 use crate::search::plan::Aim;
 
 #[derive(Args)]
@@ -30,7 +31,7 @@ pub(in crate::cli) struct Options {
     #[arg(long, value_name = "NUMBER", value_parser = number)]
     pub(super) high: Option<BigUint>,
     /// highest-within-bound: the most iterations
-    #[arg(long, value_name = "NUMBER", value_parser = number)]
+    #[arg(long, value_name = "NUMBER", value_parser = bound)]
     pub(super) within: Option<BigUint>,
     /// What a try costs besides its iterations (preparing, measuring, checking), in units of one iteration
     #[arg(long, value_name = "COST", default_value_t = 1.0, value_parser = cost)]
@@ -103,6 +104,13 @@ pub(in crate::cli) fn number(text: &str) -> Result<BigUint, String> {
 
 fn too_long() -> String {
     format!("expected a number below 2^{MAX_BITS}")
+}
+
+/// A count of iterations that can still be told to its last digit.
+fn bound(text: &str) -> Result<BigUint, String> {
+    let short = number(text)?;
+    let fits = short.bits() <= PRINTED_BITS;
+    fits.then_some(short).ok_or_else(|| format!("expected a number below 2^{PRINTED_BITS}"))
 }
 
 fn aim(name: &str) -> Result<Aim, String> {

@@ -203,7 +203,8 @@ pub fn answer(question: &Question) -> Result<Answer, Unanswerable> {
     }
     let (mut outline, details) = of_aim(question, &low, &high)?;
     let runs = match question.aim {
-        Aim::CountOnMachine => None,
+        // Neither is a run of one circuit again and again.
+        Aim::NothingKnown | Aim::CountOnMachine => None,
         _ => runs_for(Wide::new(outline.success_low), question.confidence),
     };
     let noise = match &question.erring {

@@ -4,7 +4,7 @@ use std::io;
 
 use thiserror::Error;
 
-use super::MAX_TALLY_BYTES;
+use super::Format;
 use super::unpack::{Damage, Packing};
 use crate::diag::{Code, Diagnostic};
 
@@ -25,12 +25,22 @@ pub(super) enum Failure {
     Damaged(Damage),
     #[error("nothing to read")]
     Empty,
-    #[error("the file is longer than {MAX_TALLY_BYTES} bytes")]
-    TooLong,
+    #[error("the file is longer than {0} bytes")]
+    TooLong(u64),
     #[error("the file is not UTF-8 text (line {line})")]
     NotText { line: usize },
-    #[error("a DIMACS file has no constants to set")]
-    NoConstants,
+    #[error("{} file has no constants to set", article(*.0))]
+    NoConstants(Format),
+}
+
+/// The format with its article.
+fn article(format: Format) -> &'static str {
+    match format {
+        Format::Tally => "a tally",
+        Format::Dimacs => "a DIMACS",
+        Format::Opb => "an OPB",
+        Format::Aiger => "an AIGER",
+    }
 }
 
 /// A failure with the file it is about.
@@ -62,9 +72,9 @@ impl<'a> Opening<'a> {
             Failure::Empty => diagnostic
                 .found("an empty file")
                 .expected("a DIMACS header 'p cnf VARIABLES CLAUSES' or a tally problem"),
-            Failure::TooLong => diagnostic.expected(format!("at most {MAX_TALLY_BYTES} bytes of text")),
+            Failure::TooLong(limit) => diagnostic.expected(format!("at most {limit} bytes")),
             Failure::NotText { .. } => diagnostic.found("bytes that are no UTF-8").expected("UTF-8 text"),
-            Failure::NoConstants => diagnostic
+            Failure::NoConstants(_) => diagnostic
                 .found("'--set'")
                 .expected("a tally file, whose 'known' lines can be set")
                 .help("leave out '--set'"),
@@ -81,10 +91,10 @@ impl Failure {
             Failure::NotPacked(..) => "F004",
             Failure::Cut(_) | Failure::Damaged(Damage::Cut { .. }) => "F005",
             Failure::Damaged(Damage::Broken { .. }) => "F006",
-            Failure::TooLong | Failure::Damaged(Damage::TooLong { .. }) => "F007",
+            Failure::TooLong(_) | Failure::Damaged(Damage::TooLong { .. }) => "F007",
             Failure::Empty => "F008",
             Failure::NotText { .. } => "F009",
-            Failure::NoConstants => "F010",
+            Failure::NoConstants(_) => "F010",
         })
     }
 }

@@ -1,7 +1,7 @@
 //! Opening: from a name on the command line to a problem.
 //!
 //! The packing is told by the suffix (`.gz`, `.xz`, `.zst`) and checked against the first bytes, the format by the
-//! suffix before it (`.cnf`, `.dimacs`, `.tally`); standard input and other suffixes are told by their first line. The
+//! suffix before it (`.cnf`, `.dimacs`, `.opb`, `.aag`, `.aig`, `.tally`); standard input and other suffixes are told by their first line. The
 //! bytes as stored are hashed while they stream by.
 
 mod fault;
@@ -17,11 +17,13 @@ use unpack::Packing;
 
 use crate::diag::Diagnostic;
 use crate::problem::Problem;
-use crate::source::{dimacs, tally};
+use crate::source::{aiger, dimacs, opb, tally};
 use crate::span::Sources;
 
 /// Bytes of text a tally file may have once unpacked: it is read as a whole. No person writes a longer one.
 pub const MAX_TALLY_BYTES: u64 = 16 << 20;
+/// Bytes an OPB or AIGER file may have once unpacked: it is read as a whole.
+pub const MAX_WHOLE_BYTES: u64 = 256 << 20;
 /// Bytes that are looked at to tell the format.
 const SNIFFED: usize = 4096;
 /// The name of standard input in messages.
@@ -34,6 +36,10 @@ pub enum Format {
     Tally,
     /// DIMACS CNF.
     Dimacs,
+    /// OPB: pseudo-Boolean constraints.
+    Opb,
+    /// AIGER: an and-inverter graph.
+    Aiger,
 }
 
 impl Format {
@@ -42,6 +48,8 @@ impl Format {
         match self {
             Format::Tally => "tally",
             Format::Dimacs => "dimacs",
+            Format::Opb => "opb",
+            Format::Aiger => "aiger",
         }
     }
 
@@ -100,8 +108,8 @@ pub fn load_from(
         (Some(named), found) => return Err(refuse(Failure::NotPacked(named, found))),
         (None, None) => {}
     }
-    let whole = Cursor::new(head).chain(&mut stored);
-    let mut text = unpack::unpack(whole, packing).map_err(fault)?;
+    let stream = Cursor::new(head).chain(&mut stored);
+    let mut text = unpack::unpack(stream, packing).map_err(fault)?;
     let start = take_head(&mut text, SNIFFED).map_err(fault)?;
     let format = match format_of_name(plain_name).or_else(|| sniff(&start)) {
         Some(format) => format,
@@ -109,8 +117,12 @@ pub fn load_from(
     };
     let text = Cursor::new(start).chain(text);
     let (problem, warnings) = match format {
-        Format::Dimacs if !sets.is_empty() => return Err(refuse(Failure::NoConstants)),
+        Format::Dimacs | Format::Opb | Format::Aiger if !sets.is_empty() => {
+            return Err(refuse(Failure::NoConstants(format)));
+        }
         Format::Dimacs => dimacs::read(text, name, sources)?,
+        Format::Opb => opb::read(&whole_text(text, name, MAX_WHOLE_BYTES)?, name, sources)?,
+        Format::Aiger => aiger::read(&whole(text, name, MAX_WHOLE_BYTES)?, name, sources)?,
         Format::Tally => read_tally(text, name, sets, sources)?,
     };
     let sha256 = stored.finish().map_err(fault)?;
@@ -123,18 +135,26 @@ fn read_tally(
     sets: &[(String, String)],
     sources: &mut Sources,
 ) -> Result<(Problem, Vec<Diagnostic>), Vec<Diagnostic>> {
-    let refuse = |failure| vec![Opening::new(name, failure).into_diagnostic()];
+    tally::read(&whole_text(text, name, MAX_TALLY_BYTES)?, name, sets, sources)
+}
+
+/// All bytes of a stream that has at most so many.
+fn whole(text: impl Read, name: &str, limit: u64) -> Result<Vec<u8>, Vec<Diagnostic>> {
     let mut bytes = Vec::new();
-    text.take(MAX_TALLY_BYTES + 1).read_to_end(&mut bytes).map_err(|fault| vec![read_fault(name, &fault)])?;
-    if bytes.len() as u64 > MAX_TALLY_BYTES {
-        return Err(refuse(Failure::TooLong));
+    text.take(limit + 1).read_to_end(&mut bytes).map_err(|fault| vec![read_fault(name, &fault)])?;
+    if bytes.len() as u64 > limit {
+        return Err(vec![Opening::new(name, Failure::TooLong(limit)).into_diagnostic()]);
     }
-    let text = String::from_utf8(bytes).map_err(|fault| {
+    Ok(bytes)
+}
+
+/// The same as text.
+fn whole_text(text: impl Read, name: &str, limit: u64) -> Result<String, Vec<Diagnostic>> {
+    String::from_utf8(whole(text, name, limit)?).map_err(|fault| {
         let good = &fault.as_bytes()[..fault.utf8_error().valid_up_to()];
         let line = good.iter().filter(|&&byte| byte == b'\n').count() + 1;
-        refuse(Failure::NotText { line })
-    })?;
-    tally::read(&text, name, sets, sources)
+        vec![Opening::new(name, Failure::NotText { line }).into_diagnostic()]
+    })
 }
 
 /// The format that the name tells.
@@ -142,18 +162,28 @@ fn format_of_name(name: &str) -> Option<Format> {
     let ends = |suffix: &str| unpack::strip_suffix(name, suffix).is_some();
     match () {
         () if ends(".cnf") || ends(".dimacs") => Some(Format::Dimacs),
+        () if ends(".opb") => Some(Format::Opb),
+        () if ends(".aag") || ends(".aig") => Some(Format::Aiger),
         () if ends(".tally") => Some(Format::Tally),
         () => None,
     }
 }
 
-/// The format that the first line tells: a DIMACS comment, header, or number; `None` for nothing but blanks.
+/// The format that the first line tells: a DIMACS comment, header, or number; an OPB comment, objective or signed
+/// number; an AIGER header; `None` for nothing but blanks.
 fn sniff(start: &[u8]) -> Option<Format> {
     let start = start.strip_prefix(b"\xef\xbb\xbf").unwrap_or(start);
     let start = start.trim_ascii_start();
     let first = start.split(u8::is_ascii_whitespace).next().filter(|word| !word.is_empty())?;
     let is_number = first[0] == b'-' || first[0].is_ascii_digit();
-    Some(if first == b"c" || first == b"p" || is_number { Format::Dimacs } else { Format::Tally })
+    Some(match first {
+        b"aag" | b"aig" => Format::Aiger,
+        b"min:" | b"max:" => Format::Opb,
+        b"c" | b"p" => Format::Dimacs,
+        _ if first[0] == b'*' || first[0] == b'+' => Format::Opb,
+        _ if is_number => Format::Dimacs,
+        _ => Format::Tally,
+    })
 }
 
 /// The first bytes, fewer at the end of the stream.
