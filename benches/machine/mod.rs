@@ -9,15 +9,15 @@ use std::time::Instant;
 struct Row([u64; 16]);
 
 /// Rates of one core.
-pub struct Machine {
+pub(crate) struct Machine {
     /// AND or XOR of 256 bits, one operand from the first cache, a second.
-    pub and_xor: f64,
+    pub(crate) and_xor: f64,
     /// Inputs through one node a second: two rows in the first cache, each or its complement, conjoined into a third.
-    pub node: f64,
+    pub(crate) node: f64,
 }
 
 /// Measures the rates: the best of many short runs, so that other work on the machine shows little.
-pub fn measure() -> Machine {
+pub(crate) fn measure() -> Machine {
     let mut rows = vec![Row([0x9e37_79b9_7f4a_7c15; 16]); 96];
     let nodes: Vec<[u32; 3]> =
         (0..512).map(|at| [at * 7 % 64 * 2 + at % 2, at * 5 % 64 * 2 + at / 3 % 2, 64 + at % 32]).collect();
@@ -37,17 +37,18 @@ fn wall(work: impl FnOnce()) -> f64 {
     start.elapsed().as_secs_f64()
 }
 
-/// Seconds of the best of three runs: of this thread's own processor time where the system tells and one thread works,
-/// else of the clock.
-pub fn seconds(threads: usize, mut work: impl FnMut()) -> f64 {
-    let mut one = || match (threads, thread_time()) {
-        (1, Some(start)) => {
-            work();
-            thread_time().map_or(f64::MAX, |end| (end - start) as f64 / 1e9)
+/// Seconds of the best of some runs: by the clock, or this thread's own processor time where one thread works, the system
+/// tells, and the run is long beside the grain of that figure.
+pub(crate) fn seconds(threads: usize, runs: usize, mut work: impl FnMut()) -> f64 {
+    let mut one = || {
+        let start = thread_time();
+        let by_clock = wall(&mut work);
+        match (start, thread_time()) {
+            (Some(start), Some(end)) if threads == 1 && by_clock > 0.2 => (end - start) as f64 / 1e9,
+            _ => by_clock,
         }
-        _ => wall(&mut work),
     };
-    (0..3).map(|_| one()).fold(f64::MAX, f64::min)
+    (0..runs).map(|_| one()).fold(f64::MAX, f64::min)
 }
 
 /// Nanoseconds that this thread has run.
