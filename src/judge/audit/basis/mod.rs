@@ -169,7 +169,10 @@ const MAX_EXHAUSTIVE_BITS: u32 = 48;
 
 fn by_sample(case: &Case, program: &Program, why: String, budget: &Budget) -> Verdict {
     let sample = sample::draw(case);
-    let findings = sample::try_sample(case, program, &sample, budget);
+    // With a deadline, most of the time is left to the proof.
+    let share = budget.time_left().filter(|_| case.options.proof).map(|left| left / 4);
+    let sampling = share.map_or_else(|| budget.clone(), |share| budget.clone().within(share));
+    let findings = sample::try_sample(case, program, &sample, &sampling);
     let mut verdict = findings.verdict(case, How::Sample, false, |at| sample.inputs[at as usize].clone());
     verdict.notes.push(why);
     let (tried, seed) = (findings.inputs, case.options.seed);
