@@ -4,8 +4,8 @@
 //! witness over those registers in the order of the first circuit, `search[0]` first where that is the first one. Work
 //! qubits begin as 0 and must end as 0 in both, and a global phase is free, as for an oracle.
 //!
-//! Circuits that keep basis states are run on every input, 64 at a time ([`words`]); others on a superposition of all
-//! inputs ([`columns`]), for all strings of measurement outcomes where these are few. [`parting`] says where on the way
+//! Circuits that keep basis states are run on every input, 64 at a time (`words`); others on a superposition of all
+//! inputs (`columns`), for all strings of measurement outcomes where these are few. [`mod@parting`] says where on the way
 //! the two part.
 
 pub(in crate::judge::audit) mod columns;
