@@ -267,8 +267,11 @@ fn a_plan_for_a_given_number() {
 #[test]
 fn time_that_runs_out_gives_what_was_reached() {
     let desk = Desk::new();
-    let clauses: String = (1..60).map(|v| format!("{v} {} {} 0\n", v + 1, v + 2)).collect();
-    desk.file("large.cnf", &format!("p cnf 61 59\n{clauses}"));
+    // Clauses of three among 400 variables, drawn: no way to count is near in this time.
+    let mut random = tallymark::random::SplitMix64::new(4);
+    let mut lit = || (1 + random.below(400) as i64) * if random.coin() { 1 } else { -1 };
+    let clauses: String = (0..1100).map(|_| format!("{} {} {} 0\n", lit(), lit(), lit())).collect();
+    desk.file("large.cnf", &format!("p cnf 400 1100\n{clauses}"));
     let (exit, object) = desk.json(&["count", "large.cnf", "--time", "0.2"]);
     assert_eq!(exit, 3, "{object:#}");
     assert_eq!((&object["partial"], &object["tally"]["count"]), (&true.into(), &Value::Null));

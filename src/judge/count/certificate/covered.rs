@@ -1,11 +1,11 @@
 //! Every solution of the formula is in the graph.
 //!
-//! From the top down, each node has a *context*: clauses that follow from the formula along the path, over the node's
-//! own variables. To be shown of a node: what satisfies its context is one of its models (projected: extends to one).
+//! From the top down, each node has a *context*: clauses that follow from the formula along the path. To be shown of a node: what satisfies its context is one of its models (projected: extends to one).
 //!
 //! - A conjunction: each of its literals follows from the context, by unit propagation, or else by varisat. Then the
-//!   context is reduced by these literals, and each part gets the clauses that lie within its variables; clauses
-//!   that lie across are dropped, which makes a context weaker and never wrong.
+//!   context is reduced by these literals, and each part gets the clauses that share variables with it and with no other
+//!   part (a part need not speak of a variable that its own literals set free); clauses that lie across are dropped,
+//!   which makes a context weaker and never wrong.
 //! - A decision: each side gets the same context with the literal of its value.
 //! - A node without models: the context is a contradiction.
 //! - Projected, a node without shown variables: nothing, if it has a model.
@@ -181,15 +181,15 @@ impl<'a> Checker<'a> {
         for given in task.context.clauses().filter(|given| !given.iter().any(|&lit| self.unit.is_true(lit))) {
             clause.clear();
             clause.extend(given.iter().copied().filter(|&lit| !self.unit.is_true(!lit)));
-            let place = |lit: &BitLit| self.place[lit.bit().index()];
-            match clause.first().map(place) {
-                Some(NONE) => {}
-                Some(part) if clause.iter().all(|lit| place(lit) == part) => {
-                    contexts[part as usize].push(clause.iter().copied());
-                }
+            if clause.is_empty() {
                 // The context is a contradiction: it is for every part.
-                None => contexts.iter_mut().for_each(|context| context.push([])),
-                Some(_) => {}
+                contexts.iter_mut().for_each(|context| context.push([]));
+            }
+            let mut places = clause.iter().map(|lit| self.place[lit.bit().index()]).filter(|&place| place != NONE);
+            if let Some(part) = places.next()
+                && places.all(|place| place == part)
+            {
+                contexts[part as usize].push(clause.iter().copied());
             }
         }
         self.unit.clear();

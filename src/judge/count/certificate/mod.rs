@@ -16,7 +16,7 @@
 //! | K6 | the count, recomputed from the graph, is the one that the file states | [`check`] |
 //!
 //! K4 and K5 make the graph equivalent to the formula (projected: with the same shown assignments), K1 to K3 make its
-//! count right. K5 is shown from clauses within the variables of a node: a graph for which that is not enough is
+//! count right. K5 is shown from the clauses that a node shares with no node beside it: a graph for which that is not enough is
 //! refused although it may be right. Graphs of the engine are never such graphs.
 
 mod covered;
@@ -205,7 +205,7 @@ impl Refusal {
 }
 
 /// Work after which no certificate is made where no deadline is set: it bounds the memory that the graph takes.
-pub const CERTIFIED_WORK: u64 = 1 << 32;
+pub const CERTIFIED_WORK: u64 = 1 << 30;
 
 /// Counts once more and keeps the way. `None` where the budget or [`CERTIFIED_WORK`] ran out.
 pub fn certify(formula: &Formula, budget: &Budget) -> Option<Certificate> {
