@@ -18,7 +18,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {
-    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input
     file: String,
     /// The circuit: an OpenQASM 3 file; one that measures into `found` is judged as a whole search
     circuit: PathBuf,
