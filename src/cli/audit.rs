@@ -26,7 +26,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {
-    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input; or a circuit (.qasm) alone
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input; or a circuit (.qasm) alone
     file: String,
     /// The circuit: an OpenQASM file, version 3 or 2.0; one that measures into `found` is judged as a whole search
     circuit: Option<PathBuf>,

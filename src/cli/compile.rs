@@ -23,7 +23,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {
-    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input
     file: String,
     /// The gate set: wide, toffoli, clifford-t or feedback
     #[arg(long, default_value = "toffoli", value_parser = input::level)]

@@ -21,7 +21,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {
-    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input
     file: String,
     /// Print this many solutions, lowest first
     #[arg(long, value_name = "NUMBER", default_value_t = 0)]

@@ -8,7 +8,7 @@ use crate::report::{explain, json};
 
 #[derive(Args)]
 pub(super) struct Options {
-    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input
     file: String,
     /// Print at most this many variables, and as many constraints
     #[arg(long, value_name = "NUMBER", default_value_t = 200)]

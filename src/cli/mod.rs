@@ -35,8 +35,8 @@ const EXIT_CODES: &str = "Exit codes:
 
 /// Turns a constraint problem into a quantum search that can be trusted.
 ///
-/// Counts the solutions of a puzzle (.tally) or a DIMACS file (.cnf), compiles the oracle that marks them, proves that
-/// the two agree, and plans the search.
+/// Counts the solutions of a puzzle (.tally) or of a DIMACS (.cnf), OPB (.opb) or AIGER (.aag, .aig) file, compiles the
+/// oracle that marks them, proves that the two agree, and plans the search.
 #[derive(Parser)]
 #[command(name = "tallymark", version, after_help = EXIT_CODES)]
 struct Cli {

@@ -22,7 +22,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {
-    /// The problem: .tally, .cnf (also .gz, .xz, .zst), or - for standard input
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input
     file: String,
     /// What was measured: plain lines, CSV or a JSON object of bit strings and counts; or - for standard input
     results: String,

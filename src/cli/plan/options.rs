@@ -11,7 +11,8 @@ use crate::search::plan::Aim;
 
 #[derive(Args)]
 pub(in crate::cli) struct Options {
-    /// The problem, or - for standard input; without it the numbers alone are planned for
+    /// The problem: .tally, .cnf, .opb, .aag, .aig (also .gz, .xz, .zst), or - for standard input; without it, --space
+    /// and what else is known are planned for
     #[arg(required_unless_present = "space", conflicts_with = "space")]
     pub(super) file: Option<String>,
     /// What the plan is to make as good as it can: highest-success, highest-within-bound, least-work, certainty,
