@@ -10,5 +10,5 @@ h search[1];
 ctrl @ U(pi, 0, pi) search[0], search[1];
 sdg search[0];
 h search[1];
-cu(pi, 0, pi, 0.5) search[0], search[1];
-cu(-pi, pi, 0, -0.5) search[0], search[1];
+cu(pi, 0, pi, pi / 2) search[0], search[1];
+cu(-pi, pi, 0, -pi / 2) search[0], search[1];

@@ -13,7 +13,7 @@ gate angle_missing(t) a { p(>>>u<<<) a; >>>rz<<< a; } // Q006 Q012
 gate >>>nothing<<< { } // Q032
 gate >>>x<<< a { } // Q007
 gate >>>U<<< a { } // Q007
-gate fine(t) a { p(1 / t) a; }
+gate fine(t) a { p(>>>1 / t<<<) a; } // Q019
 >>>fine<<< q[0]; // Q012
 fine(0) q[0]; again q; twice q[0], q[1];
 for int i in [0:1] { gate >>>inner<<< a { x a; } } // Q025

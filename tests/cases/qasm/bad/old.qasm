@@ -9,5 +9,4 @@ ctrl >>>@<<< x q[0],q[1]; // Q001
 measure q -> c;
 if (>>>c<<< == 3) x q[0]; // Q021
 if (c == >>>4<<<) x q[0]; // Q021
-if (c == 0) x q[>>>2<<<]; // Q013
 >>>opaque<<< magic a,b; // Q003

@@ -6,7 +6,7 @@ def loop(qubit a) { >>>loop<<<(a); } // Q008
 def given(bit >>>b<<<) { } // Q030
 def >>>silent<<<(qubit a) -> bit { x a; } // Q034
 def early(qubit a) -> bit { if (c[0]) { >>>return measure a;<<< } return measure a; } // Q034
-def valued(qubit a) -> bit { >>>return a == 1;<<< } // Q034
+def valued(qubit a) -> bit { >>>return 1;<<< } // Q034
 def none(qubit a) { >>>return measure a;<<< } // Q034
 def f(qubit[2] a, int n) -> bit { x a[n]; return measure a[0]; }
 def outside() { x >>>q[0]<<<; } // Q006

@@ -14,3 +14,15 @@ let low = c[0:1];
 low = measure part;
 if (low[1]) { let inner = q[3]; x inner; }
 // ---- expect
+// qubits q[4] r[1]
+// bits c[3]
+// x q[2]
+// x q[2] : r[0]
+// h q[0]
+// h q[2]
+// h r[0]
+// h q[3]
+// h q[1]
+// measure q[2] -> c[0]
+// measure r[0] -> c[1]
+// if c[1]: x q[3]

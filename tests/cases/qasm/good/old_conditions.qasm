@@ -10,3 +10,9 @@ if (c == 2) z q[2];
 if (c == 0) h q[2];
 if (c == 3) h q[0];
 // ---- expect
+// qubits q[3]
+// bits c[3]
+// x q[0]
+// measure q[1] -> c[1]
+// if c[1]: z q[2]
+// if !c[1]: h q[2]

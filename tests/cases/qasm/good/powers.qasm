@@ -13,3 +13,16 @@ pow(2) @ cswap q[0], q[1], q[2];
 pow(0) @ U(1, 2, 3) q[0];
 pow(2) @ ctrl @ gphase(pi / 8) q[1];
 // ---- expect
+// qubits q[3]
+// bits
+// s q[0]
+// t q[0]
+// z q[0]
+// t q[0]
+// x q[0]
+// p(-0.500000) q[0]
+// rz(-1.500000) q[0] : q[1]
+// h q[0]
+// z q[0]
+// h q[0]
+// t q[1]

@@ -139,7 +139,7 @@ impl<'a, 'p> Builder<'a, 'p> {
                 return Err((place, Fault::Repeated(self.qubit_words(&operands[at], scratch.qubits[at]))));
             }
             if self.checking {
-                return self.check_nesting(gate, place);
+                return self.check_nesting(gate, power.unsigned_abs(), place);
             }
             let (controls, targets) = scratch.qubits.split_at(scratch.polarity.len());
             scratch.controls.clear();

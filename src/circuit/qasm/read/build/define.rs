@@ -16,6 +16,8 @@ pub(super) struct Defined<'a, 'p> {
     pub(super) definition: &'p GateDefinition<'a>,
     /// How deep its expansion goes.
     pub(super) depth: usize,
+    /// At least so many calls of definitions are made by one call, itself included.
+    calls: u64,
 }
 
 impl<'a, 'p> Builder<'a, 'p> {
@@ -25,7 +27,7 @@ impl<'a, 'p> Builder<'a, 'p> {
         self.check_definition(name)?;
         match self.check_gate(definition) {
             Ok(true) => {
-                self.gates.push(Defined { definition, depth: self.deepest });
+                self.gates.push(Defined { definition, depth: self.deepest, calls: self.calls });
                 self.scope.declare(name, Meaning::Gate(self.gates.len() as u32 - 1), false);
             }
             Ok(false) => drop(self.excused.insert(name.text)),
@@ -45,7 +47,7 @@ impl<'a, 'p> Builder<'a, 'p> {
         let qubits = definition.qubits.iter().enumerate();
         let qubits = qubits.map(|(at, &qubit)| (qubit, Meaning::Elements(Sort::Qubit, Lanes::run(at as u32, 1))));
         let declared = self.declare_all(angles.chain(qubits));
-        (self.checking, self.deepest) = (true, 1);
+        (self.checking, self.deepest, self.calls) = (true, 1, 1);
         let is_right = declared.is_ok() && self.check_body(&definition.body);
         self.checking = false;
         self.scope.leave_frame(&before);
@@ -82,12 +84,15 @@ impl<'a, 'p> Builder<'a, 'p> {
             let checked = match &statement.kind {
                 Kind::Call(call) => self.gate_call(call, place, super::call::NOTHING),
                 Kind::For(repeat) => self.turns(repeat).map(|turns| {
+                    // How many turns there are may depend on the loops around.
+                    let calls = self.calls;
                     let before = self.scope.enter_block();
                     if let Ok(value) = self.turn_value(turns, 0) {
                         self.scope.declare(repeat.variable, Meaning::Value(Value::Whole(value)), true);
                         is_right &= self.check_body(&repeat.body);
                     }
                     self.scope.leave_block(&before);
+                    self.calls = calls;
                 }),
                 Kind::Barrier(operands) => self.check_barrier(operands),
                 Kind::Nothing => {
@@ -105,10 +110,12 @@ impl<'a, 'p> Builder<'a, 'p> {
         is_right
     }
 
-    /// Notes how deep the definition at hand goes with a call of this gate.
-    pub(super) fn check_nesting(&mut self, gate: Gate, place: Place) -> Checked {
+    /// Notes how deep the definition at hand goes with so many calls of this gate, and how many calls it makes.
+    pub(super) fn check_nesting(&mut self, gate: Gate, times: u64, place: Place) -> Checked {
         let Gate::Defined(number) = gate else { return Ok(()) };
-        self.go_to(self.gates[number as usize].depth, place)
+        let Defined { depth, calls, .. } = self.gates[number as usize];
+        self.calls = self.calls.saturating_add(calls.saturating_mul(times));
+        self.go_to(depth, place)
     }
 
     /// Notes that the definition at hand calls one of this depth.
@@ -120,7 +127,12 @@ impl<'a, 'p> Builder<'a, 'p> {
     /// Counts an expansion.
     pub(super) fn spend(&mut self, place: Place) -> Checked {
         self.expansions += 1;
-        if self.expansions > MAX_EXPANSIONS {
+        self.check_calls_left(0, place)
+    }
+
+    /// Whether so many more calls are within the limit: what cannot end in time is not begun.
+    fn check_calls_left(&self, calls: u64, place: Place) -> Checked {
+        if self.expansions.saturating_add(calls) > MAX_EXPANSIONS {
             return Err((place, Fault::Limit { what: "the number of calls of definitions", most: MAX_EXPANSIONS }));
         }
         Ok(())
@@ -136,7 +148,8 @@ impl<'a, 'p> Builder<'a, 'p> {
         outer: Outer<'_>,
         place: Place,
     ) -> Checked {
-        let definition = self.gates[number as usize].definition;
+        let Defined { definition, calls, .. } = self.gates[number as usize];
+        self.check_calls_left(calls.saturating_mul(times), place)?;
         for _ in 0..times {
             self.spend(place)?;
             let before = self.scope.enter_frame();

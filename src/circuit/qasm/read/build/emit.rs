@@ -188,7 +188,7 @@ impl Pen<'_> {
 
     fn matrix(&mut self, matrix: Matrix, controls: &[Control], target: QubitId) {
         let Matrix { theta, phi, lambda, phase } = matrix;
-        if theta == 0.0 && phase == -(phi + lambda) / 2.0 {
+        if theta == 0.0 && phase != 0.0 && phase == -(phi + lambda) / 2.0 {
             self.angle(Op::Rz, phi + lambda, controls, target);
         } else if theta == 0.0 {
             self.phase(phi + lambda, controls, target);

@@ -35,7 +35,7 @@ const MAX_TURNS: u64 = 1 << 20;
 /// Controls of all these gates together.
 const MAX_CONTROLS: u64 = 1 << 28;
 /// Calls of gates and subroutines that the file defines.
-const MAX_EXPANSIONS: u64 = 1 << 24;
+const MAX_EXPANSIONS: u64 = 1 << 23;
 /// How deep such calls go, brackets included.
 const MAX_DEPTH: usize = 64;
 
@@ -54,6 +54,7 @@ pub(super) fn build(parsed: &Parsed<'_>) -> (Circuit, Vec<(Place, Fault)>) {
         destination: None,
         checking: false,
         deepest: 0,
+        calls: 0,
         expansions: 0,
         measured: Vec::new(),
         has_library: false,
@@ -94,6 +95,8 @@ struct Builder<'a, 'p> {
     checking: bool,
     /// How deep the definition at hand goes.
     deepest: usize,
+    /// How many calls of definitions it makes.
+    calls: u64,
     /// Calls of definitions so far.
     expansions: u64,
     /// For each measured bit, whether it was measured.
