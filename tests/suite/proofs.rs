@@ -2,7 +2,7 @@
 
 use tallymark::budget::Budget;
 use tallymark::circuit::{Circuit, Level, Mark};
-use tallymark::judge::audit::{How, Options, Outcome, Verdict, audit};
+use tallymark::judge::audit::{How, Options, Outcome, Verdict, Way, audit};
 use tallymark::make::{lower, network};
 use tallymark::places::Places;
 use tallymark::problem::{BitLit, Problem};
@@ -134,7 +134,7 @@ fn oracle(problem: &Problem, level: Level, mark: Mark) -> Option<Circuit> {
 
 fn judge(problem: &Problem, circuit: &Circuit, by_proof: bool) -> Verdict {
     let options = match by_proof {
-        true => Options { exhaustive_bits: 0, sample: 0, ..Options::default() },
+        true => Options { exhaustive_bits: 0, sample: 0, way: Way::Gates, ..Options::default() },
         false => Options { threads: 1, ..Options::default() },
     };
     audit(problem, &Places::as_given(problem), circuit, &options, &Budget::unlimited()).expect("an oracle")

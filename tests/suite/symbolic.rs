@@ -373,7 +373,7 @@ fn what_is_affordable_is_tried_beyond_the_limit() {
     let settings = Settings { level: Level::Toffoli, mark: Mark::Phase, seed: 1, threads: 1 };
     let product = pipeline::oracle(&problem, &places, settings, &Budget::unlimited()).expect("a circuit");
     let judged = |circuit: &Circuit, exhaustive_work| {
-        let options = Options { way: Way::Nodes, exhaustive_work, sample: 0, ..Options::default() };
+        let options = Options { way: Way::Nodes, exhaustive_work, sample: 0, proof: false, ..Options::default() };
         audit(&problem, &places, circuit, &options, &Budget::unlimited()).expect("an oracle")
     };
     let verdict = judged(&product.circuit, Options::default().exhaustive_work);

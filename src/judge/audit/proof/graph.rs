@@ -166,6 +166,13 @@ impl Graph {
 
     /// At least two of the three hold.
     pub(super) fn most(&mut self, a: Signal, b: Signal, c: Signal) -> Signal {
+        for (one, others) in [(a, [b, c]), (b, [a, c]), (c, [a, b])] {
+            match one {
+                Signal::NO => return self.all(&others),
+                Signal::YES => return self.any(&others),
+                _ => {}
+            }
+        }
         let (x, y) = (self.odd(&[a, c]), self.odd(&[b, c]));
         let both = self.all(&[x, y]);
         self.odd(&[both, c])

@@ -106,7 +106,7 @@ fn below(bound: &BigUint, random: &mut SplitMix64) -> BigUint {
     loop {
         let mut digits: Vec<u32> = (0..words).map(|_| (random.next_u64() >> 32) as u32).collect();
         if let Some(last) = digits.last_mut()
-            && bits % 32 != 0
+            && !bits.is_multiple_of(32)
         {
             *last &= (1 << (bits % 32)) - 1;
         }
