@@ -155,7 +155,7 @@ fn without(circuit: &Circuit, dropped: usize) -> Circuit {
 fn a_proof_agrees_with_trying_every_input() {
     let mut random = SplitMix64::new(7);
     let (mut equal, mut differ) = (0, 0);
-    for seed in 0..60 {
+    for seed in 0..90 {
         let problem = random_problem(seed);
         let level = if random.coin() { Level::Toffoli } else { Level::Wide };
         let mark = if random.coin() { Mark::Phase } else { Mark::Bit };
