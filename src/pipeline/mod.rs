@@ -1,0 +1,158 @@
+//! The whole compiler on one screen: each stage by name, each result of its own type.
+//!
+//! ```text
+//! Problem ─► Places ─► Network ─► Circuit ─► oracle file ─► Verdict
+//!     └────► Counted ─► Plan ─► whole search ─► search file ─► SearchVerdict
+//! ```
+
+mod certificate;
+mod error;
+mod files;
+mod oracle;
+mod planning;
+
+use std::path::Path;
+
+use num_bigint::BigUint;
+use num_traits::Zero;
+
+use crate::budget::Budget;
+use crate::circuit::{Circuit, Figures, Level, Mark, Product};
+use crate::judge::audit::{self, Outcome, Verdict};
+use crate::judge::count::{self, Counted, Over};
+use crate::ledger::{Cost, Entry};
+use crate::places::Places;
+use crate::problem::Problem;
+use crate::report::dossier::{Dossier, Judged};
+use crate::report::files::WriteError;
+use crate::report::places::places_json;
+use crate::source::Loaded;
+
+pub use certificate::{Certified, certify, check_certificate, draw, values};
+pub use error::Error;
+pub use files::{read_circuit, write_certificate, write_json};
+pub use oracle::{gates_of_iteration, oracle, whole_search};
+pub use planning::{advice_on, plan_for};
+
+use files::write_and_read;
+use oracle::{every_level, why_no_oracle};
+
+/// What the user asked for.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Settings {
+    /// The gate set.
+    pub level: Level,
+    /// How the oracle marks.
+    pub mark: Mark,
+    /// Seeds everything that is drawn.
+    pub seed: u64,
+    /// Threads to use.
+    pub threads: usize,
+}
+
+/// Solutions that a tally keeps, to be shown and to be tried by an audit that cannot try everything.
+pub const KEPT_SOLUTIONS: usize = 1 << 12;
+
+/// Counts the solutions, and the marked states where these are not the same.
+pub fn count(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Counted, Error> {
+    let options = count::Options { threads: settings.threads, keep: KEPT_SOLUTIONS };
+    let tally = count::count(problem, Over::Shown, &options, budget)?;
+    let states = match Counted::needs_states(places) {
+        true => Some(count::count(problem, Over::AllBits, &options, budget)?),
+        false => None,
+    };
+    Ok(Counted { tally, states, space: Counted::space(places) })
+}
+
+/// Judges a circuit that was read from a file.
+pub fn audit(
+    problem: &Problem,
+    places: &Places,
+    circuit: &Circuit,
+    options: &audit::Options,
+    budget: &Budget,
+) -> Result<Verdict, Error> {
+    places.check(problem)?;
+    Ok(audit::audit(problem, places, circuit, options, budget)?)
+}
+
+/// The main job: counts, compiles, audits what is on the disk, plans, and writes the folder.
+pub fn dossier(
+    loaded: &Loaded,
+    places: &Places,
+    folder: &Path,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<Dossier, Error> {
+    let problem = &loaded.problem;
+    let counted = count(problem, places, settings, budget)?;
+    write_json(&folder.join("places.json"), &places_json(loaded, places))?;
+    let (oracle, levels) = match oracle(problem, places, settings, budget) {
+        Ok(product) => {
+            let circuit = write_and_read(&folder.join("oracle.qasm"), loaded, places, &product, &counted)?;
+            let verdict = audit(problem, places, &circuit, &audit_options(settings, &counted), budget)?;
+            let levels = every_level(problem, places, settings, budget)?;
+            (Ok(Judged { product, verdict }), levels)
+        }
+        Err(Error::Lower(error)) => (Err(why_no_oracle(error)?), Vec::new()),
+        Err(error) => return Err(error),
+    };
+    let (plan, mut advice) = plan_for(problem, &counted);
+    let search = match (&plan, &oracle) {
+        (Some(plan), Ok(_)) if plan.success > 0.0 && plan.success < 1.0 || !plan.iterations.is_zero() => {
+            let phase = self::oracle(problem, places, Settings { mark: Mark::Phase, ..settings }, budget)?;
+            let product = whole_search(&phase, &plan.iterations)?;
+            let circuit = write_and_read(&folder.join("search.qasm"), loaded, places, &product, &counted)?;
+            let verdict = audit::audit_search(problem, places, &circuit, SEARCH_WORK, budget)?;
+            if verdict.iterations_checked > 0 && BigUint::from(verdict.iterations) != plan.iterations {
+                let (wanted, found) = (&plan.iterations, verdict.iterations);
+                return Err(Error::Fault(format!("the search file has {found} iterations, planned were {wanted}")));
+            }
+            Some(Judged { product, verdict })
+        }
+        _ => None,
+    };
+    if let Err(reason) = &oracle
+        && !advice.contains(reason)
+    {
+        advice.push(reason.clone());
+    }
+    Ok(Dossier { counted, oracle, levels, plan, search, advice })
+}
+
+/// What the ledger keeps of a problem: the main job without its folder.
+pub fn ledger_entry(loaded: &Loaded, places: &Places, settings: Settings, budget: &Budget) -> Result<Entry, Error> {
+    let scratch = tempfile::tempdir().map_err(|error| WriteError { path: std::env::temp_dir(), error })?;
+    let found = dossier(loaded, places, scratch.path(), settings, budget)?;
+    let cost = |product: &Product| {
+        let Figures { qubits, t_count, depth, gates, .. } = product.figures;
+        (product.level.name().to_owned(), Cost { qubits, and_count: product.and_count, t_count, depth, gates })
+    };
+    let verdict = |judged: &Judged<Verdict>| match judged.verdict.outcome {
+        Outcome::Equal => "equal",
+        Outcome::Differs => "differs",
+        Outcome::Undecided => "undecided",
+    };
+    Ok(Entry {
+        sha256: loaded.sha256.clone(),
+        version: env!("CARGO_PKG_VERSION").to_owned(),
+        count: found.counted.tally.exact().map(BigUint::to_string),
+        marked: found.counted.marked().map(BigUint::to_string),
+        space: found.counted.space.to_string(),
+        verdict: found.oracle.as_ref().map_or_else(|advice| advice.code, verdict).to_owned(),
+        costs: found.levels.iter().map(cost).collect(),
+    })
+}
+
+/// Amplitude updates that the audit of a search file may spend: some tenths of a second.
+const SEARCH_WORK: u64 = 1 << 27;
+
+/// The options of an audit that follows a count.
+pub fn audit_options(settings: Settings, counted: &Counted) -> audit::Options {
+    audit::Options {
+        seed: settings.seed,
+        threads: settings.threads,
+        known: counted.marks().solutions.clone(),
+        ..audit::Options::default()
+    }
+}

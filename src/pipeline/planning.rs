@@ -1,0 +1,34 @@
+//! The stage between a tally and a search: the plan, and what has to be said about it.
+
+use crate::judge::count::Counted;
+use crate::problem::Problem;
+use crate::search::{Advice, Plan, plan};
+
+/// What a tally says to every plan.
+pub fn advice_on(problem: &Problem, counted: &Counted) -> Vec<Advice> {
+    let mut advice = Vec::new();
+    if problem.bit_count() == 0 {
+        advice.push(Advice::nothing_to_search());
+    }
+    if let Some(count) = counted.tally.exact() {
+        advice.push(Advice::already_decided(count));
+    }
+    if counted.states.is_some() {
+        let shown = problem.shown.as_ref().map_or(0, Vec::len);
+        advice.push(Advice::hidden_bits_searched(problem.bit_count() - shown));
+    }
+    if counted.marked().is_none() {
+        advice.push(Advice::marked_unknown());
+    }
+    advice
+}
+
+/// The plan for a tally, with advice; `None` where the number of marked states is not known.
+pub fn plan_for(problem: &Problem, counted: &Counted) -> (Option<Plan>, Vec<Advice>) {
+    let mut advice = advice_on(problem, counted);
+    let Some(marked) = counted.marked() else { return (None, advice) };
+    let mut plan = plan(&counted.space, marked);
+    advice.append(&mut plan.advice);
+    plan.advice.clone_from(&advice);
+    (Some(plan), advice)
+}
