@@ -4,7 +4,7 @@ use num_bigint::BigUint;
 use num_traits::One;
 
 use crate::judge::count::Tally;
-use crate::places::{Claim, Places, Start};
+use crate::places::{Claim, Part, Places};
 
 /// How many solutions, how many states, and how many of these are marked.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -20,9 +20,9 @@ pub struct Counted {
 impl Counted {
     /// N of these places.
     pub fn space(places: &Places) -> BigUint {
-        match places.start {
-            Start::AllStrings => BigUint::one() << places.search_len(),
-        }
+        let parts = places.start.parts();
+        let free = places.search_len() - parts.iter().map(|part| part.qubits().len()).sum::<usize>();
+        parts.iter().map(strings_of).product::<BigUint>() << free
     }
 
     /// Whether the states have to be counted apart from the solutions.
@@ -52,5 +52,16 @@ impl Counted {
             text += &format!("; {} among {} states", states.in_words("marked state", "marked states"), self.space);
         }
         text
+    }
+}
+
+/// How many strings of its qubits a part of a start state allows.
+fn strings_of(part: &Part) -> BigUint {
+    match part {
+        Part::Below { size, .. } => BigUint::from(*size),
+        Part::Weight { qubits, ones } => {
+            let n = qubits.len() as u64;
+            (0..u64::from(*ones)).fold(BigUint::one(), |so_far, at| so_far * (n - at) / (at + 1))
+        }
     }
 }
