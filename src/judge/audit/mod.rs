@@ -6,7 +6,9 @@
 //! - Circuits whose gates are X, Z, S, T and inverses with any controls permute basis states up to phases (`basis`). They
 //!   are read symbolically, which may decide at once; or every basis state is run, which is complete; where that is too
 //!   much, a stated sample is run, and what shows no difference there is proven (`proof`).
-//! - Every other circuit is run on a superposition of all inputs ([`superposition`]).
+//! - Every other circuit is read as a sum over paths (`paths`), with measurement outcomes as free symbols, and then judged
+//!   as one that keeps basis states. Where that does not close it is run on a superposition of all inputs
+//!   ([`superposition`]).
 //! - One circuit is held against another ([`compare`]), or looked at alone ([`alone`]).
 //! - The audit is put to the test with circuits that have a fault ([`faults`]).
 //! - A whole search is followed from its start to its measurement ([`search`]).
@@ -14,8 +16,10 @@
 pub mod alone;
 mod basis;
 pub mod compare;
+mod eighths;
 pub mod faults;
 mod oracle;
+mod paths;
 mod proof;
 pub mod search;
 mod state;
@@ -34,10 +38,12 @@ use crate::places::{Places, PlacesError};
 use crate::problem::{Bits, Problem};
 
 /// How to audit.
-#[derive(Clone, PartialEq, Eq, Debug)]
+#[derive(Clone, PartialEq, Debug)]
 pub struct Options {
     /// Whether a phase oracle must be right without any global phase: one that marks the complement is then wrong.
     pub strict_phase: bool,
+    /// The phase that an oracle without `mark` gives to solutions, in radians, where it is another than the sign -1.
+    pub angle: Option<f64>,
     /// The seed of everything drawn.
     pub seed: u64,
     /// How many threads work.
@@ -74,6 +80,7 @@ impl Default for Options {
     fn default() -> Self {
         Self {
             strict_phase: false,
+            angle: None,
             seed: 1,
             threads: 2,
             known: Vec::new(),
@@ -191,8 +198,16 @@ pub fn audit(
 ) -> Result<Verdict, AuditError> {
     let roles = oracle::roles(problem, places, circuit)?;
     oracle::check_gates(circuit)?;
-    if !oracle::keeps_basis_states(circuit) {
-        return superposition::audit_superposition(problem, places, circuit, options, budget);
+    let exact = eighths::with_eighths(circuit, options.strict_phase);
+    if oracle::keeps_basis_states(&exact) && (options.angle.is_none() || roles.mark.is_some()) {
+        return Ok(basis::audit_basis(problem, places, &exact, &roles, options, budget));
     }
-    Ok(basis::audit_basis(problem, places, circuit, &roles, options, budget))
+    match paths::audit_paths(problem, places, circuit, &roles, options, budget)? {
+        Ok(verdict) => Ok(verdict),
+        Err(open) => {
+            let mut verdict = superposition::audit_superposition(problem, places, circuit, options, budget)?;
+            verdict.notes.push(format!("run in superposition, since {open}"));
+            Ok(verdict)
+        }
+    }
 }

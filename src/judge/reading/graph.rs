@@ -111,6 +111,12 @@ impl Graph {
         Signal::new(bit + 1)
     }
 
+    /// One more bit, of something else than the problem; its node comes after all others so far.
+    pub(crate) fn new_bit(&mut self) -> Signal {
+        self.nodes.push(Node::Bit(self.nodes.len() as u32 - 1));
+        Signal::new(self.nodes.len() - 1)
+    }
+
     /// The nodes; operands come before users.
     pub(crate) fn nodes(&self) -> &[Node] {
         &self.nodes

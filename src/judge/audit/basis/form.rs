@@ -7,7 +7,7 @@
 use crate::judge::reading::graph::{Graph, Signal};
 
 /// An exclusive or of terms, or its negation. No terms: a constant.
-#[derive(Clone, PartialEq, Eq, Debug, Default)]
+#[derive(Clone, PartialEq, Eq, PartialOrd, Ord, Hash, Debug, Default)]
 pub(crate) struct Form {
     /// Bits and conjunctions, not negated, in increasing order.
     pub(crate) terms: Vec<Signal>,

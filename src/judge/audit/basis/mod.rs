@@ -8,7 +8,7 @@
 mod by_nodes;
 mod exhaustive;
 pub(in crate::judge::audit) mod findings;
-mod form;
+pub(in crate::judge::audit) mod form;
 mod kernel;
 mod normal;
 mod sample;

@@ -9,6 +9,9 @@ use crate::places::Places;
 use crate::problem::{Bits, Problem};
 use crate::random::SplitMix64;
 
+/// So many neighbours and so many drawn inputs stand beside one that is to be confirmed.
+const NEAR: usize = 24;
+
 /// One basis state of the inputs.
 pub(super) struct Input {
     /// The searched bits, over the bits of the problem.
@@ -55,15 +58,35 @@ impl Inputs {
         let len = places.search_len();
         let are_all = len <= all_bits;
         let values = if are_all { all(places) } else { sample(places, options, most) };
+        Self { are_all, ..Self::listed(problem, has_mark, &values) }
+    }
+
+    /// These values of the search register, each once.
+    pub(super) fn listed(problem: &Problem, has_mark: bool, values: &[Bits]) -> Self {
         let mut list = Vec::with_capacity(values.len() << usize::from(has_mark));
-        for bits in &values {
+        for bits in values {
             let holds = problem.holds(bits);
             list.push(Input { bits: bits.clone(), holds, mark: false });
             if has_mark {
                 list.push(Input { bits: bits.clone(), holds, mark: true });
             }
         }
-        Self { list, are_all, values: values.len() as u128 }
+        Self { list, are_all: false, values: values.len() as u128 }
+    }
+
+    /// An input, some of its neighbours, and drawn ones.
+    pub(super) fn near(problem: &Problem, has_mark: bool, input: &Bits, seed: u64) -> Self {
+        let (mut seen, mut list) = (FxHashSet::default(), vec![input.clone()]);
+        let mut random = SplitMix64::new(seed);
+        seen.insert(input.clone());
+        let neighbours = (0..input.len().min(NEAR)).map(|at| {
+            let mut near = input.clone();
+            near.set_at(at, !near.at(at));
+            near
+        });
+        let drawn = (0..NEAR).map(|_| (0..input.len()).map(|_| random.coin()).collect());
+        list.extend(neighbours.chain(drawn).filter(|bits| seen.insert(bits.clone())));
+        Self::listed(problem, has_mark, &list)
     }
 }
 

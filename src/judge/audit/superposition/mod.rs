@@ -17,15 +17,17 @@
 mod inputs;
 pub(in crate::judge::audit) mod run;
 
+use std::f64::consts::FRAC_PI_4;
+
 use self::inputs::{Input, Inputs};
 use self::run::{Draw, End, Run};
 use super::oracle::{self, Roles};
-use super::state::amplitude::{Amplitude, Exact};
+use super::state::amplitude::{Amplitude, Exact, multiples};
 use super::{AuditError, How, Options, Outcome, Phases, Verdict, Witness};
 use crate::budget::Budget;
 use crate::circuit::Circuit;
 use crate::places::Places;
-use crate::problem::Problem;
+use crate::problem::{Bits, Problem};
 
 /// All inputs are tried up to so many searched bits.
 const ALL_BITS: usize = 16;
@@ -52,8 +54,30 @@ pub fn audit_superposition(
     let most = (labels >> u32::from(has_mark)).clamp(16, 1 << ALL_BITS) as usize;
     let all_bits = ALL_BITS.min(options.exhaustive_bits as usize).min(most.ilog2() as usize);
     let inputs = Inputs::choose(problem, places, has_mark, options, all_bits, most);
-    let audit = Audit { places, circuit, options, budget, roles, inputs };
-    audit.judge()
+    let eighths = eighths_of(options)?;
+    Audit { places, circuit, options, budget, roles, inputs, eighths }.judge()
+}
+
+/// Judges a circuit on one input, and others beside it.
+pub(super) fn audit_near(
+    problem: &Problem,
+    places: &Places,
+    circuit: &Circuit,
+    input: &Bits,
+    options: &Options,
+    budget: &Budget,
+) -> Result<Verdict, AuditError> {
+    let roles = oracle::roles(problem, places, circuit)?;
+    let inputs = Inputs::near(problem, roles.mark.is_some(), input, options.seed);
+    let eighths = eighths_of(options)?;
+    Audit { places, circuit, options, budget, roles, inputs, eighths }.judge()
+}
+
+/// The phase of what is marked, in multiples of pi/4.
+fn eighths_of(options: &Options) -> Result<u8, AuditError> {
+    let Some(angle) = options.angle else { return Ok(4) };
+    let gate = || format!("a phase of {angle} on what is marked, which is no multiple of pi/4");
+    multiples(angle, FRAC_PI_4).ok_or_else(|| AuditError::Gate { gate: gate() })
 }
 
 struct Audit<'p> {
@@ -63,6 +87,8 @@ struct Audit<'p> {
     budget: &'p Budget,
     roles: Roles,
     inputs: Inputs,
+    /// The phase of what is marked, in multiples of pi/4.
+    eighths: u8,
 }
 
 /// The constant by which all amplitudes agree with the oracle.
@@ -144,8 +170,8 @@ impl Audit<'_> {
             if let Some((expected, got, clean)) = self.compare_qubits(input, |qubit| entry.qubit(qubit)) {
                 return Finding::Differs { input: at, expected, got, clean };
             }
-            let sign = input.holds && self.roles.mark.is_none();
-            factors.push(if sign { entry.amplitude.negated() } else { entry.amplitude });
+            let is_turned = input.holds && self.roles.mark.is_none();
+            factors.push(entry.amplitude.turned(if is_turned { 8 - self.eighths } else { 0 }));
         }
         let constant = majority(&factors);
         let kind = match constant {
@@ -194,7 +220,13 @@ impl Audit<'_> {
 
     fn wrong_phase(&self, input: usize, factor: Exact, wanted: Option<Exact>) -> Finding {
         let holds = self.inputs.list[input].holds && self.roles.mark.is_none();
-        let expected = if holds { "phase -1" } else { "phase +1" };
+        let said = |eighths: u8| match eighths {
+            0 => "phase +1".to_owned(),
+            4 => "phase -1".to_owned(),
+            eighths => format!("phase e^({eighths} i pi/4)"),
+        };
+        let owed = if holds { self.eighths } else { 0 };
+        let expected = said(owed);
         let against = if wanted.is_some() { ", against most other inputs" } else { "" };
         // The phase of the factor against the constant, where it is a multiple of pi/4.
         let constant = wanted.unwrap_or(Exact::ONE);
@@ -202,10 +234,8 @@ impl Audit<'_> {
             Some(constant) => constant.turned(eighths) == factor,
             None => factor.turned(8 - eighths).is_positive(),
         });
-        let got = match turn.map(|eighths| (eighths + if holds { 4 } else { 0 }) % 8) {
-            Some(0) => "phase +1".to_owned(),
-            Some(4) => "phase -1".to_owned(),
-            Some(eighths) => format!("phase e^({eighths} i pi/4)"),
+        let got = match turn.map(|eighths| (eighths + owed) % 8) {
+            Some(eighths) => said(eighths),
             None => format!("another amplitude: {:?} against {:?}", factor.0, constant.0),
         };
         Finding::Differs { input, expected: format!("{expected}{against}"), got, clean: true }
