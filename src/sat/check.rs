@@ -102,6 +102,10 @@ struct Checker {
     propagated: usize,
     /// Clauses by a hash of their literals, whatever the order of these.
     known: FxHashMap<u64, Vec<u32>>,
+    /// For each literal of a variable that the proof brought in, the clauses that have it.
+    having: Vec<Vec<u32>>,
+    /// How many literals the formula has; those beyond are the proof's.
+    given: usize,
     /// Whether the clauses have no model.
     refuted: bool,
 }
@@ -132,6 +136,8 @@ impl Checker {
             trail: Vec::new(),
             propagated: 0,
             known: FxHashMap::default(),
+            having: Vec::new(),
+            given: 2 * var_count,
             refuted: false,
         }
     }
@@ -147,6 +153,7 @@ impl Checker {
         if needed > self.holds.len() {
             self.holds.resize(needed, false);
             self.watches.resize(needed, Vec::new());
+            self.having.resize(needed - self.given, Vec::new());
         }
     }
 
@@ -182,6 +189,11 @@ impl Checker {
         self.pool.extend_from_slice(&lits);
         self.clauses.push(Clause { start, len: lits.len() as u32, is_dead: false });
         self.known.entry(key).or_default().push(id);
+        for &lit in &lits {
+            if let Some(place) = code(lit).checked_sub(self.given) {
+                self.having[place].push(id);
+            }
+        }
         if let [a, b, ..] = lits[..] {
             self.watches[code(a)].push(Watch { clause: id, other: b });
             self.watches[code(b)].push(Watch { clause: id, other: a });
@@ -226,7 +238,11 @@ impl Checker {
     /// With a clause denied: whether every resolvent of it on `pivot` follows.
     fn is_tautology_on(&mut self, pivot: Lit) -> bool {
         let denied = self.trail.len();
-        for id in 0..self.clauses.len() as u32 {
+        let candidates = match code(!pivot).checked_sub(self.given) {
+            Some(place) => self.having[place].clone(),
+            None => (0..self.clauses.len() as u32).collect(),
+        };
+        for id in candidates {
             if self.clauses[id as usize].is_dead || !self.lits(id).contains(&!pivot) {
                 continue;
             }

@@ -4,9 +4,10 @@
 //! proven equal, and those without a partner from all conjuncts of the other side. All that with little effort first;
 //! what stays open is tried again after a sweep, with more. The last resort is the whole miter at once.
 
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 use super::graph::Signal;
+use super::groups;
 use super::miter::Sides;
 use super::prover::{Effort, Prover, Shown};
 use super::simulate::Patterns;
@@ -21,6 +22,13 @@ const LITTLE: Effort = Effort { steps: 4_000, nodes: 3_000, rounds: 24 };
 const SWEEP: Effort = Effort { steps: 2_000, nodes: 3_000, rounds: 8 };
 /// After it.
 const MUCH: Effort = Effort { steps: 400_000, nodes: 100_000, rounds: 200 };
+
+/// Steps of diagrams for a group of conjuncts, at first.
+const FEW_STEPS: usize = 1 << 16;
+/// For those that this is not enough for.
+const MANY_STEPS: usize = 1 << 21;
+/// For all of them together: some seconds.
+const ALL_STEPS: usize = 1 << 23;
 
 /// What came of it.
 pub(super) enum Found {
@@ -46,12 +54,14 @@ pub(super) struct Closing<'a, 'p> {
     prover: Prover<'a>,
     sides: Sides,
     patterns: &'p mut Patterns,
+    /// Conjuncts, of the problem or of the circuit, that were shown to follow from the other side.
+    done: FxHashSet<(bool, Signal)>,
 }
 
 impl<'a, 'p> Closing<'a, 'p> {
     /// A miter with nothing shown.
     pub(super) fn new(prover: Prover<'a>, sides: Sides, patterns: &'p mut Patterns) -> Self {
-        Self { prover, sides, patterns }
+        Self { prover, sides, patterns, done: FxHashSet::default() }
     }
 
     /// The proof, and how many signals were proven equal.
@@ -77,6 +87,8 @@ impl<'a, 'p> Closing<'a, 'p> {
         common.into_iter().for_each(|signal| self.prover.fact(signal));
         self.pair(LITTLE);
         self.state_sides();
+        groups::follow(&mut self.prover, &self.sides, &mut self.done, FEW_STEPS, usize::MAX);
+        groups::follow(&mut self.prover, &self.sides, &mut self.done, MANY_STEPS, ALL_STEPS);
         match self.show(self.implications()) {
             Found::Closed => self.conclude(),
             Found::Open(_) => self.last_resort(),
@@ -87,7 +99,11 @@ impl<'a, 'p> Closing<'a, 'p> {
     fn implications(&self) -> Vec<Goal> {
         let theirs = self.sides.circuit.iter().map(|&signal| Goal::Follows(true, signal));
         let ours = self.sides.problem.iter().map(|&signal| Goal::Follows(false, signal));
-        theirs.chain(ours).collect()
+        theirs.chain(ours).filter(|goal| !self.is_done(*goal)).collect()
+    }
+
+    fn is_done(&self, goal: Goal) -> bool {
+        matches!(goal, Goal::Follows(side, signal) if self.done.contains(&(!side, signal)))
     }
 
     fn state_sides(&mut self) {
@@ -110,6 +126,7 @@ impl<'a, 'p> Closing<'a, 'p> {
         if let Goal::Follows(..) = goals[0] {
             self.pair(MUCH);
             self.state_sides();
+            groups::follow(&mut self.prover, &self.sides, &mut self.done, MANY_STEPS, ALL_STEPS);
             goals = self.implications();
         }
         if let Some(input) = self.try_goals(&mut goals, MUCH) {

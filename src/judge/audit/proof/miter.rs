@@ -109,6 +109,16 @@ impl Miter {
         from as usize..to as usize
     }
 
+    /// The literals that a parity in use has on the way, one for each operand after the first; the last is its own.
+    pub(super) fn sums(&self, node: usize) -> impl Iterator<Item = Lit> {
+        self.definition(node).step_by(4).map(|at| !self.formula.clause(at)[0])
+    }
+
+    /// The literal that says which side holds where the two differ: the problem's (`true`) or the circuit's.
+    pub(super) fn side(&self, is_problem: bool) -> Lit {
+        if is_problem { self.problem } else { !self.problem }
+    }
+
     fn define(&mut self, graph: &Graph, node: usize) {
         let defined = self.lit(Signal::of(node));
         let operands: Vec<Lit> = graph.operands(node).iter().map(|&operand| self.lit(operand)).collect();

@@ -16,7 +16,10 @@
 //! into the graph, is not part of it.
 
 mod close;
+mod diagram;
+mod drawn;
 mod graph;
+mod groups;
 mod miter;
 mod prover;
 mod simulate;

@@ -12,6 +12,8 @@ use std::collections::BinaryHeap;
 
 use rustc_hash::{FxHashMap, FxHashSet};
 
+use super::diagram::TooLarge;
+use super::drawn::Drawn;
 use super::graph::{Graph, Node, Signal};
 use super::miter::Miter;
 use crate::budget::Budget;
@@ -68,6 +70,8 @@ pub(super) struct Prover<'a> {
     facts: Vec<Signal>,
     /// Signals that hold on one side of the difference: the problem's (true) and the circuit's.
     sides: [Vec<Signal>; 2],
+    /// The first variable that neither the miter nor the proof uses.
+    next_var: usize,
     budget: &'a Budget,
 }
 
@@ -75,7 +79,24 @@ impl<'a> Prover<'a> {
     /// A prover without claims; `base` is an input on which as much as possible holds.
     pub(super) fn new(graph: &'a Graph, miter: &'a Miter, base: Bits, budget: &'a Budget) -> Self {
         let (equal, facts, sides) = (FxHashMap::default(), Vec::new(), [Vec::new(), Vec::new()]);
-        Self { graph, miter, proof: Proof::new(), base, equal, facts, sides, budget }
+        let next_var = miter.formula.var_count();
+        Self { graph, miter, proof: Proof::new(), base, equal, facts, sides, next_var, budget }
+    }
+
+    /// Diagrams over some nodes, of so many steps, whose proof may become a part of this one.
+    pub(super) fn drawn(&self, leaves: &[usize], steps: usize) -> Result<Drawn<'_>, TooLarge> {
+        Drawn::new((self.graph, self.miter), &self.equal, leaves, self.next_var, steps)
+    }
+
+    /// Appends a proof that stands on the miter and the proof so far.
+    pub(super) fn absorb(&mut self, part: &Proof, next_var: usize) {
+        self.next_var = next_var;
+        for step in part.steps() {
+            match step {
+                Step::Add(clause) => self.proof.add(clause.iter().copied()),
+                Step::Delete(clause) => self.proof.delete(clause.iter().copied()),
+            }
+        }
     }
 
     /// The graph.
