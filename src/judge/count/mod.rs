@@ -23,6 +23,7 @@ mod components;
 mod confirm;
 pub mod counted;
 pub mod engine;
+pub mod hashing;
 mod list;
 mod parts;
 mod path;
