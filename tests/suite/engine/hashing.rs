@@ -3,18 +3,21 @@
 use num_bigint::BigUint;
 use tallymark::budget::Budget;
 use tallymark::id::Id;
-use tallymark::judge::count::hashing::{Accuracy, Hashed, count};
+use tallymark::judge::count::hashing::{Accuracy, Hashed, Options, count};
 use tallymark::problem::BitId;
 use tallymark::random::SplitMix64;
 
 use super::families::{self, Formula};
 use super::{brute, exact, small};
 
+fn hashed_with(formula: &Formula, options: &Options, budget: &Budget) -> Option<Hashed> {
+    let answer = count(&formula.clauses, formula.vars, formula.shown.as_deref(), options, budget);
+    answer.expect("models are right")
+}
+
 fn hashed(formula: &Formula, tolerance: f64, confidence: f64, seed: u64) -> Hashed {
-    let accuracy = Accuracy::new(tolerance, confidence).unwrap();
-    let shown = formula.shown.as_deref();
-    let answer = count(&formula.clauses, formula.vars, shown, &accuracy, seed, &Budget::unlimited());
-    answer.unwrap().expect("no budget to run out")
+    let options = Options { accuracy: Accuracy::new(tolerance, confidence).unwrap(), seed, threads: 1 };
+    hashed_with(formula, &options, &Budget::unlimited()).expect("no budget to run out")
 }
 
 /// Over so many seeds: how often the interval holds the count.
@@ -60,14 +63,16 @@ fn the_same_seed_gives_the_same_interval() {
     let (first, second) = (hashed(&formula, 0.5, 0.8, 9), hashed(&formula, 0.5, 0.8, 9));
     assert_eq!(first, second);
     assert_ne!(first, hashed(&formula, 0.5, 0.8, 10));
+    let options = Options { accuracy: Accuracy::new(0.5, 0.8).unwrap(), seed: 9, threads: 3 };
+    assert_eq!(Some(first), hashed_with(&formula, &options, &Budget::unlimited()), "on three threads");
 }
 
 #[test]
 fn a_spent_budget_gives_no_interval() {
     let formula = families::random(60, 120, 3, 1);
     let budget = Budget::unlimited().within(std::time::Duration::ZERO);
-    let answer = count(&formula.clauses, formula.vars, None, &Accuracy::USUAL, 1, &budget);
-    assert_eq!(answer, Ok(None));
+    let options = Options { accuracy: Accuracy::USUAL, seed: 1, threads: 2 };
+    assert_eq!(hashed_with(&formula, &options, &budget), None);
 }
 
 /// Projected counts above 2^20: the hash speaks of shown variables only.

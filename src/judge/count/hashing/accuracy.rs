@@ -15,29 +15,34 @@ pub struct Accuracy {
 #[derive(Clone, Copy, PartialEq, Debug, Error)]
 pub enum NotPossible {
     /// The tolerance is too small or no number.
-    #[error("a tolerance from {LEAST_TOLERANCE} up is expected, not {0}")]
-    Tolerance(f64),
+    #[error("a tolerance from {least} up is expected, not {wrong}", least = Accuracy::LEAST_TOLERANCE)]
+    Tolerance {
+        /// What was asked for.
+        wrong: f64,
+    },
     /// The confidence is not between 0 and 1.
-    #[error("a confidence above 0 and up to {MOST_CONFIDENCE} is expected, not {0}")]
-    Confidence(f64),
+    #[error("a confidence above 0 and up to {most} is expected, not {wrong}", most = Accuracy::MOST_CONFIDENCE)]
+    Confidence {
+        /// What was asked for.
+        wrong: f64,
+    },
 }
 
-/// The least tolerance: cells have some 10 / tolerance^2 members, each of which takes a call of the solver.
-pub(super) const LEAST_TOLERANCE: f64 = 1e-3;
-/// The highest confidence: beyond it the machine errs more often than the coins.
-pub(super) const MOST_CONFIDENCE: f64 = 1.0 - 1e-12;
-
 impl Accuracy {
+    /// The least tolerance: cells have some 10 / tolerance^2 members, each of which takes a call of the solver.
+    pub const LEAST_TOLERANCE: f64 = 1e-3;
+    /// The highest confidence: beyond it the machine errs more often than the coins.
+    pub const MOST_CONFIDENCE: f64 = 1.0 - 1e-12;
     /// The usual one: within 0.3 with a confidence of 0.95.
     pub const USUAL: Self = Self { tolerance: 0.3, confidence: 0.95 };
 
     /// An accuracy that can be had.
     pub fn new(tolerance: f64, confidence: f64) -> Result<Self, NotPossible> {
-        if !(tolerance >= LEAST_TOLERANCE && tolerance.is_finite()) {
-            return Err(NotPossible::Tolerance(tolerance));
+        if !(tolerance >= Self::LEAST_TOLERANCE && tolerance.is_finite()) {
+            return Err(NotPossible::Tolerance { wrong: tolerance });
         }
-        if !(confidence > 0.0 && confidence <= MOST_CONFIDENCE) {
-            return Err(NotPossible::Confidence(confidence));
+        if !(confidence > 0.0 && confidence <= Self::MOST_CONFIDENCE) {
+            return Err(NotPossible::Confidence { wrong: confidence });
         }
         Ok(Self { tolerance, confidence })
     }

@@ -17,6 +17,9 @@ pub(super) struct Formula {
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub(super) struct WrongModel;
 
+/// Conflicts and decisions of one call of the solver: a limit for where no deadline is set, some tens of seconds.
+const STEPS: u64 = 1 << 22;
+
 /// How many members were found.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub(super) enum Size {
@@ -24,7 +27,7 @@ pub(super) enum Size {
     Exactly(u64),
     /// As many as were looked for, or more.
     Large,
-    /// The budget ran out.
+    /// The budget ran out, or a call took too long.
     Stopped,
 }
 
@@ -41,6 +44,7 @@ impl Formula {
     /// Counts the members of a cell up to a limit.
     pub(super) fn cell(&self, cell: &Solved, limit: u64, budget: &Budget) -> Result<Size, WrongModel> {
         let mut engine = Batsat::new();
+        engine.limit(STEPS);
         self.clauses.iter().for_each(|clause| engine.add_clause(clause));
         let parities: Vec<(Vec<usize>, bool)> =
             cell.equations.iter().map(|sum| (sum.bits().map(|bit| self.counted[bit]).collect(), sum.odd)).collect();

@@ -52,7 +52,7 @@ impl Hash {
 }
 
 /// Equations each of which gives one bit, its pivot, from bits that are no pivots.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Default)]
 pub(super) struct Solved {
     pub(super) equations: Vec<Equation>,
 }

@@ -4,7 +4,7 @@
 //! Input:  clauses, the bits that are counted over, a tolerance t, a confidence, a seed.
 //! Output: [`Hashed`]: an interval of the form `[c / (1 + t), c (1 + t)]` that holds the count with at least that
 //!         confidence over the coins; or the count itself, where it is below the size of a cell.
-//! Holds:  the same seed gives the same interval. Every member of a cell was checked against the clauses.
+//! Holds:  the same seed gives the same interval, with any number of threads. Every member of a cell was checked against the clauses.
 //!
 //! - S. Chakraborty, K. S. Meel, M. Y. Vardi, "A scalable approximate model counter", CP 2013.
 //! - The same, "Algorithmic improvements in approximate counting for probabilistic inference: from linear to logarithmic
@@ -26,6 +26,8 @@ mod hash;
 mod promise;
 
 use std::collections::BTreeMap;
+use std::sync::atomic::{AtomicU64, Ordering};
+use std::thread;
 
 use num_bigint::BigUint;
 use num_traits::Zero;
@@ -34,9 +36,9 @@ use super::engine::{Effort, prepare};
 use crate::budget::Budget;
 use crate::problem::{BitId, Clauses};
 use crate::random::SplitMix64;
-pub use accuracy::Accuracy;
+pub use accuracy::{Accuracy, NotPossible};
 use cell::{Formula, Size, WrongModel};
-use hash::Hash;
+use hash::{Hash, Solved};
 use promise::Promise;
 
 /// What hashing found.
@@ -61,13 +63,23 @@ impl From<WrongModel> for Fault {
     }
 }
 
-/// Counts about; `None` where the budget ran out before all rounds were done.
+/// How to hash.
+#[derive(Clone, Copy, PartialEq, Debug)]
+pub struct Options {
+    /// How near, and how surely.
+    pub accuracy: Accuracy,
+    /// Seeds the equations.
+    pub seed: u64,
+    /// Threads for the rounds; the answer does not depend on it.
+    pub threads: usize,
+}
+
+/// Counts about; `None` where the budget ran out, or a call of the solver took too long, before all rounds were done.
 pub fn count(
     clauses: &Clauses,
     var_count: usize,
     shown: Option<&[BitId]>,
-    accuracy: &Accuracy,
-    seed: u64,
+    options: &Options,
     budget: &Budget,
 ) -> Result<Option<Hashed>, Fault> {
     let prepared = prepare(clauses, var_count, shown, Effort::Count, budget);
@@ -76,29 +88,55 @@ pub fn count(
         return Ok(Some(exactly(BigUint::zero())));
     }
     let formula = Formula::of(&prepared);
-    let promise = Promise::of(accuracy.tolerance(), accuracy.confidence());
-    let mut random = SplitMix64::new(seed);
-    let bits = formula.counted.len();
-    let mut guesses: Vec<BigUint> = Vec::new();
-    let mut start = 1;
-    for round in 0..promise.rounds {
-        budget.report("hashing, rounds", round.into(), Some(promise.rounds.into()));
-        let hash = Hash::draw(bits, bits, || random.coin());
-        let mut cells = Cells { formula: &formula, hash, limit: promise.threshold, known: BTreeMap::new(), budget };
-        if round == 0 {
-            match cells.size(0)? {
-                Size::Exactly(count) => return Ok(Some(exactly(BigUint::from(count) << prepared.free))),
-                Size::Stopped => return Ok(None),
-                Size::Large => {}
-            }
-        }
-        let Some((equations, size)) = cells.smallest(start)? else { return Ok(None) };
-        start = equations;
-        guesses.push(BigUint::from(size) << (equations + prepared.free));
+    let promise = Promise::of(options.accuracy.tolerance(), options.accuracy.confidence());
+    let whole = Solved::default();
+    match formula.cell(&whole, promise.threshold, budget)? {
+        Size::Exactly(count) => return Ok(Some(exactly(BigUint::from(count) << prepared.free))),
+        Size::Stopped => return Ok(None),
+        Size::Large => {}
     }
-    guesses.sort_unstable();
-    let (low, high) = accuracy.around(&guesses[guesses.len() / 2]);
+    let Some(guesses) = rounds(&formula, promise, options, budget)? else { return Ok(None) };
+    let (low, high) = options.accuracy.around(&(&guesses[guesses.len() / 2] << prepared.free));
     Ok(Some(Hashed { low, high, exact: false }))
+}
+
+/// The guesses of all rounds, in increasing order.
+fn rounds(
+    formula: &Formula,
+    promise: Promise,
+    options: &Options,
+    budget: &Budget,
+) -> Result<Option<Vec<BigUint>>, WrongModel> {
+    let mut random = SplitMix64::new(options.seed);
+    let seeds: Vec<u64> = (0..promise.rounds).map(|_| random.next_u64()).collect();
+    let done = AtomicU64::new(0);
+    let round = |seed: u64, start: usize| {
+        let mut random = SplitMix64::new(seed);
+        let bits = formula.counted.len();
+        let hash = Hash::draw(bits, bits, || random.coin());
+        let found = Cells { formula, hash, limit: promise.threshold, known: BTreeMap::new(), budget }.smallest(start);
+        budget.report("hashing, rounds", done.fetch_add(1, Ordering::Relaxed) + 1, Some(promise.rounds.into()));
+        found
+    };
+    // The first round finds about where the others have to look.
+    let Some(first) = round(seeds[0], 1)? else { return Ok(None) };
+    let work = &|seeds: &[u64]| seeds.iter().map(|&seed| round(seed, first.0)).collect();
+    let share = (seeds.len() - 1).div_ceil(options.threads.max(1)).max(1);
+    let parts: Vec<Result<Option<Vec<(usize, u64)>>, WrongModel>> = thread::scope(|scope| {
+        let handles: Vec<_> = seeds[1..].chunks(share).map(|seeds| scope.spawn(move || work(seeds))).collect();
+        let joined = handles.into_iter().map(|handle| handle.join());
+        joined.map(|part| part.unwrap_or_else(|panic| std::panic::resume_unwind(panic))).collect()
+    });
+    let mut found = vec![first];
+    for part in parts {
+        match part? {
+            Some(part) => found.extend(part),
+            None => return Ok(None),
+        }
+    }
+    let mut guesses: Vec<BigUint> = found.into_iter().map(|(count, size)| BigUint::from(size) << count).collect();
+    guesses.sort_unstable();
+    Ok(Some(guesses))
 }
 
 /// The nested cells of one round.
