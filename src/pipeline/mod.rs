@@ -10,6 +10,7 @@ mod error;
 mod files;
 mod oracle;
 mod planning;
+mod tally;
 
 use std::path::Path;
 
@@ -33,6 +34,7 @@ pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
 pub use oracle::{gates_of_iteration, oracle, whole_search};
 pub use planning::{advice_on, plan_for};
+pub use tally::{Margin, Tallied, tally, tally_for_plan};
 
 use files::write_and_read;
 use oracle::{every_level, why_no_oracle};
@@ -55,7 +57,7 @@ pub const KEPT_SOLUTIONS: usize = 1 << 12;
 
 /// Counts the solutions, and the marked states where these are not the same.
 pub fn count(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Counted, Error> {
-    let options = count::Options { threads: settings.threads, keep: KEPT_SOLUTIONS };
+    let options = count::Options { threads: settings.threads, keep: KEPT_SOLUTIONS, ..count::Options::default() };
     let tally = count::count(problem, Over::Shown, &options, budget)?;
     let states = match Counted::needs_states(places) {
         true => Some(count::count(problem, Over::AllBits, &options, budget)?),

@@ -86,7 +86,7 @@ pub fn tally_json(counted: &Counted) -> Value {
         "exact": tally.exact().is_some(),
         "low": tally.low.to_string(),
         "high": tally.high.to_string(),
-        "confidence": 1.0,
+        "confidence": tally.confidence,
         "method": tally.method,
         "checked_by": tally.checked_by,
         "space": counted.space.to_string(),

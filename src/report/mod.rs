@@ -13,3 +13,4 @@ pub mod shots;
 pub mod story;
 pub mod summary;
 pub mod values;
+pub mod ways;

@@ -3,6 +3,7 @@
 use batsat::interface::SolverInterface;
 use batsat::{Callbacks, Lit as TheirLit, Solver, SolverOpts, lbool};
 
+use super::parity::Parities;
 use super::{Answer, Engine, Lit};
 use crate::budget::Budget;
 
@@ -12,6 +13,7 @@ const CALLS_A_LOOK: u64 = 16;
 /// The engine.
 pub struct Batsat {
     solver: Solver<Watch>,
+    parities: Parities,
     clause: Vec<TheirLit>,
 }
 
@@ -48,6 +50,15 @@ impl Batsat {
         self.solver.cb_mut().most = steps;
     }
 
+    /// Adds an equation, at any time: the sum of these variables is odd, or even. It is propagated as a whole with the
+    /// others, by elimination.
+    pub fn add_parity(&mut self, vars: &[usize], odd: bool) {
+        let vars: Vec<_> = vars.iter().map(|&var| self.solver.var_of_int(var as u32)).collect();
+        if !self.parities.add(&vars, odd) {
+            self.add_clause(&[]);
+        }
+    }
+
     fn theirs(&mut self, lit: Lit) -> TheirLit {
         // Makes the variables up to this one.
         let var = self.solver.var_of_int(lit.var() as u32);
@@ -67,7 +78,7 @@ impl Batsat {
 impl Engine for Batsat {
     fn new() -> Self {
         let watch = Watch { budget: Budget::unlimited(), calls: 0.into(), most: u64::MAX, stopped: false.into() };
-        Self { solver: Solver::new(SolverOpts::default(), watch), clause: Vec::new() }
+        Self { solver: Solver::new(SolverOpts::default(), watch), parities: Parities::default(), clause: Vec::new() }
     }
 
     fn add_clause(&mut self, clause: &[Lit]) {
@@ -86,7 +97,7 @@ impl Engine for Batsat {
         watch.calls.set(0);
         watch.stopped.set(false);
         let assumptions = self.take(assumptions);
-        let answer = self.solver.solve_limited(&assumptions);
+        let answer = self.solver.solve_limited_th(&mut self.parities, &assumptions);
         self.clause = assumptions;
         match answer {
             answer if answer == lbool::TRUE => Answer::Sat,

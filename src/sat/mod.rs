@@ -6,7 +6,8 @@
 //! | | [`Varisat`] | [`Batsat`] |
 //! |---|---|---|
 //! | can be stopped inside a call | no | yes |
-//! | used for | listing without a deadline | deadlines, confirming |
+//! | takes parities | no | yes, propagated by elimination |
+//! | used for | listing without a deadline | deadlines, confirming, cells of a hash |
 //!
 //! A budget is asked by `Varisat` only before a call begins. Whoever gives it a budget with a deadline must be ready to
 //! wait for the call, or run the engine on a thread that may be left behind, as [`refute`] does. Neither engine's unsatisfiable cores are
@@ -16,6 +17,7 @@ mod batsat;
 pub mod check;
 pub mod drat;
 pub mod formula;
+mod parity;
 pub mod refute;
 mod varisat;
 

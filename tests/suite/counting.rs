@@ -20,7 +20,7 @@ use tallymark::span::Sources;
 const EVERYDAY: u64 = 5000;
 
 fn tally(problem: &Problem, over: Over) -> Tally {
-    count(problem, over, &Options { threads: 1, keep: 20 }, &Budget::unlimited()).expect("the ways agree")
+    count(problem, over, &Options { keep: 20, ..Options::default() }, &Budget::unlimited()).expect("the ways agree")
 }
 
 fn cnf(vars: usize, clauses: impl IntoIterator<Item = Vec<i64>>) -> Problem {
@@ -418,7 +418,7 @@ proptest! {
         for over in [Over::AllBits, Over::Shown] {
             let expected = brute_force(&problem, over);
             for keep in [1 << 11, 3] {
-                let tally = count(&problem, over, &Options { threads: 1, keep }, &budget).unwrap();
+                let tally = count(&problem, over, &Options { keep, ..Options::default() }, &budget).unwrap();
                 prop_assert_eq!(tally.exact(), Some(&expected.len().into()));
                 prop_assert!(tally.solutions.is_sorted());
                 prop_assert_eq!(tally.solutions.len(), expected.len().min(keep));
@@ -434,7 +434,7 @@ proptest! {
     #[test]
     fn without_a_sweep_components_and_listing_agree_with_brute_force(problem in small_problem()) {
         let expected = brute_force(&problem, Over::Shown).len();
-        let tally = count(&padded(&problem), Over::Shown, &Options { threads: 1, keep: 1 << 11 }, &Budget::unlimited()).unwrap();
+        let tally = count(&padded(&problem), Over::Shown, &Options { keep: 1 << 11, ..Options::default() }, &Budget::unlimited()).unwrap();
         prop_assert_eq!(tally.exact(), Some(&expected.into()));
         prop_assert_eq!((tally.method, &tally.checked_by[..]), (Method::Components, &[Method::Listing][..]));
         prop_assert_eq!((tally.solutions.len(), tally.complete), (expected, true));

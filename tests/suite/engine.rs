@@ -1,6 +1,7 @@
 //! The counting engine against brute force, against laws that need no reference, and against published counts.
 
 mod families;
+mod hashing;
 
 use std::collections::BTreeSet;
 use std::path::Path;

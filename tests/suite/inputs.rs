@@ -131,7 +131,7 @@ fn what_is_read_is_counted() {
         let (bytes, _) = parts(&path);
         let suffix = if path.parent().unwrap().ends_with("opb") { "opb" } else { "aag" };
         let Ok(loaded) = load_from(&bytes[..], &format!("a.{suffix}"), &[], &mut Sources::new()) else { continue };
-        let options = count::Options { threads: 1, keep: 0 };
+        let options = count::Options { keep: 0, ..count::Options::default() };
         let tally = count::count(&loaded.problem, Over::AllBits, &options, &Budget::unlimited()).unwrap();
         let wanted = solutions(&loaded.problem).len();
         assert_eq!(tally.exact(), Some(&wanted.into()), "{}", path.display());

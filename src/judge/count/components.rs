@@ -1,7 +1,8 @@
 //! Counting by components: the engine plugged into the tally, and its certificate as a confirmation.
 
 use super::certificate::{Formula, certify_within, check};
-use super::{Fault, Method, Over, Tally, disagree, engine};
+use super::combine::disagree;
+use super::{Fault, Method, Over, Tally, engine};
 use crate::budget::Budget;
 use crate::judge::clauses::Cnf;
 use crate::problem::{BitId, Problem};
@@ -14,14 +15,7 @@ pub(super) fn count(cnf: &Cnf, counted: &[BitId], work: u64, budget: &Budget) ->
     let shown = (counted.len() < cnf.var_count).then_some(counted);
     let options = engine::Options { work, ..engine::Options::default() };
     let count = engine::count(&cnf.clauses, cnf.var_count, shown, &options, budget);
-    Tally {
-        low: count.low,
-        high: count.high,
-        method: Method::Components,
-        checked_by: Vec::new(),
-        solutions: Vec::new(),
-        complete: false,
-    }
+    Tally::between(count.low, count.high, Method::Components)
 }
 
 /// Whether a certificate of this count is quickly made, and holds. One that does not hold is a fault.

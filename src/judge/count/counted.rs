@@ -7,7 +7,7 @@ use crate::judge::count::Tally;
 use crate::places::{Claim, Part, Places};
 
 /// How many solutions, how many states, and how many of these are marked.
-#[derive(Clone, PartialEq, Eq, Debug)]
+#[derive(Clone, PartialEq, Debug)]
 pub struct Counted {
     /// The solutions, on the shown bits where the problem shows only some.
     pub tally: Tally,

@@ -19,6 +19,20 @@ pub enum Method {
     Listing,
     /// Solutions listed one by one by the second solver (batsat).
     SecondListing,
+    /// Random equations, and the solutions of a few cells: an interval with a confidence.
+    Hashing,
+}
+
+impl Method {
+    /// Every way.
+    pub const ALL: [Method; 6] = [
+        Method::Sweep,
+        Method::Components,
+        Method::Certificate,
+        Method::Listing,
+        Method::SecondListing,
+        Method::Hashing,
+    ];
 }
 
 impl std::fmt::Display for Method {
@@ -29,17 +43,20 @@ impl std::fmt::Display for Method {
             Method::Certificate => "certificate",
             Method::Listing => "listing",
             Method::SecondListing => "second listing",
+            Method::Hashing => "hashing",
         })
     }
 }
 
 /// A number of solutions, or the bounds that are proven.
-#[derive(Clone, PartialEq, Eq, Debug)]
+#[derive(Clone, PartialEq, Debug)]
 pub struct Tally {
     /// At least so many.
     pub low: BigUint,
     /// At most so many; equal to `low` where the tally is exact.
     pub high: BigUint,
+    /// 1 where `low` and `high` are proven; else the probability, over the seeds, with which both hold.
+    pub confidence: f64,
     /// How it was obtained.
     pub method: Method,
     /// Other ways that gave the same number.
@@ -51,15 +68,29 @@ pub struct Tally {
 }
 
 impl Tally {
+    /// Proven bounds, or a number if they are equal, without solutions and without anyone who confirms them.
+    pub(super) fn between(low: BigUint, high: BigUint, method: Method) -> Self {
+        Self { low, high, confidence: 1.0, method, checked_by: Vec::new(), solutions: Vec::new(), complete: false }
+    }
+
     /// The number, where it is known exactly.
     pub fn exact(&self) -> Option<&BigUint> {
-        (self.low == self.high).then_some(&self.low)
+        (self.low == self.high && self.confidence >= 1.0).then_some(&self.low)
+    }
+
+    /// Whether the number is known, or an interval with the confidence that was asked for.
+    pub fn is_answer(&self) -> bool {
+        self.exact().is_some() || self.confidence < 1.0
     }
 
     /// `410 solutions (sweep, confirmed by listing)` or `between 12 and 4096 solutions (listing, unfinished)`.
     pub fn in_words(&self, one: &str, many: &str) -> String {
         let Some(count) = self.exact() else {
-            return format!("between {} and {} {many} ({}, unfinished)", self.low, self.high, self.method);
+            let how = match self.confidence < 1.0 {
+                true => format!("with confidence {}", self.confidence),
+                false => "unfinished".to_owned(),
+            };
+            return format!("between {} and {} {many} ({}, {how})", self.low, self.high, self.method);
         };
         let noun = if count == &BigUint::from(1u32) { one } else { many };
         let confirmed = match self.checked_by.as_slice() {

@@ -12,6 +12,7 @@
 //! | values to compare | the least of them | [`minimum`] | the random schedule, threshold by threshold |
 //! | M | all solutions | [`collect`] | a plan again and again |
 //! | M and an error rate | the best there is | [`noise`] | fewer plain iterations |
+//! | a margin of success | how near M must be known | [`tolerance`] | |
 //! | M and a depth | the same on shallow machines | [`split`] | some bits guessed, the rest searched |
 //!
 //! Everywhere N is the size of the start state, M the number of its states that are marked, and `theta` the angle with
@@ -32,6 +33,7 @@ pub mod restart;
 pub mod schedule;
 pub mod split;
 pub mod success;
+pub mod tolerance;
 
 pub use outline::Outline;
 pub use question::{Answer, Details, Erring, Known, NoiseFigures, Question, Unanswerable, answer};

@@ -45,7 +45,7 @@ use crate::budget::Budget;
 use crate::problem::{BitId, Clauses};
 pub use order::OrderKind;
 pub use prepare::Effort;
-use prepare::{Prepared, prepare};
+pub(super) use prepare::{Class, Prepared, prepare};
 use race::{Finish, race, runners};
 use search::Search;
 pub use trace::{Silent, Trace};
