@@ -24,7 +24,7 @@ pub fn build(problem: &Problem, places: &Places) -> Network {
         }
     }
     clauses(&mut builder, problem, &bits, &mut conjuncts);
-    conjuncts.finish(builder, places.searched.clone()).0
+    conjuncts.finish(builder, places.searched.clone())
 }
 
 /// The conjuncts found so far, each literal once.
@@ -45,10 +45,20 @@ impl Conjuncts {
         self.list.push(Conjunct { lit, constraint });
     }
 
-    /// The network whose root is their conjunction, a balanced tree, and where each node of the builder went.
-    pub(super) fn finish(self, mut builder: Builder, searched: Vec<BitId>) -> (Network, IdVec<NodeId, Option<Lit>>) {
+    /// The network whose root is their conjunction, a balanced tree.
+    fn finish(self, builder: Builder, searched: Vec<BitId>) -> Network {
+        self.finish_by(builder, searched, |builder, lits| builder.all(&lits)).0
+    }
+
+    /// The same with the tree that `all` makes, and where each node of the builder went.
+    pub(super) fn finish_by(
+        self,
+        mut builder: Builder,
+        searched: Vec<BitId>,
+        all: impl FnOnce(&mut Builder, Vec<Lit>) -> Lit,
+    ) -> (Network, IdVec<NodeId, Option<Lit>>) {
         let lits: Vec<Lit> = self.list.iter().map(|conjunct| conjunct.lit).collect();
-        let root = if self.contradictory { Lit::NO } else { builder.all(&lits) };
+        let root = if self.contradictory { Lit::NO } else { all(&mut builder, lits) };
         builder.finish(searched, self.list, root)
     }
 }

@@ -86,6 +86,11 @@ impl Builder {
         Lit::new(id, false)
     }
 
+    /// What a node computes.
+    pub(super) fn node_at(&self, node: NodeId) -> Node {
+        self.nodes[node.index()]
+    }
+
     /// At least one holds.
     pub(super) fn or(&mut self, a: Lit, b: Lit) -> Lit {
         !self.and(!a, !b)

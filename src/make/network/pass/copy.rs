@@ -15,6 +15,8 @@ pub(super) struct Copy<'a> {
     pub(super) builder: Builder,
     /// What stands for an old node, where it was asked for.
     map: NodeMap,
+    /// Whether something assumed is in what stands for the node.
+    assumed: IdVec<NodeId, bool>,
     open: Vec<NodeId>,
 }
 
@@ -25,12 +27,18 @@ impl<'a> Copy<'a> {
         for id in 0..=old.searched().len() {
             map[NodeId::new(id)] = Some(Lit::new(NodeId::new(id), false));
         }
-        Self { old, builder: Builder::new(old.searched()), map, open: Vec::new() }
+        Self { old, builder: Builder::new(old.searched()), map, assumed: vec![false; old.nodes().len()].into(), open: Vec::new() }
     }
 
-    /// What an old node shall become from here on, wherever it is used.
+    /// What an old node shall become from here on, wherever it is used: a literal that computes the same.
     pub(super) fn replace(&mut self, node: NodeId, by: Lit) {
         self.map[node] = Some(by);
+    }
+
+    /// What an old node shall become from here on, though it is the same only where the root holds.
+    pub(super) fn assume(&mut self, node: NodeId, by: Lit) {
+        self.map[node] = Some(by);
+        self.assumed[node] = true;
     }
 
     /// What an old node has become, if it was copied.
@@ -50,6 +58,7 @@ impl<'a> Copy<'a> {
                     continue;
                 }
                 self.map[node] = Some(self.from_operands(node));
+                self.assumed[node] = self.assumed[a.node()] || self.assumed[b.node()];
             }
             self.open.pop();
         }
@@ -89,9 +98,21 @@ impl<'a> Copy<'a> {
         }
     }
 
-    /// The network whose root is the conjunction of these.
+    /// The network whose root is the conjunction of these, a balanced tree.
     pub(super) fn finish(self, conjuncts: Conjuncts) -> Passed {
-        let (network, moved) = conjuncts.finish(self.builder, self.old.searched().to_vec());
+        self.finish_by(conjuncts, |builder, lits| builder.all(&lits))
+    }
+
+    /// The same with another tree over the conjuncts.
+    pub(super) fn finish_by(
+        mut self,
+        conjuncts: Conjuncts,
+        all: impl FnOnce(&mut Builder, Vec<Lit>) -> Lit,
+    ) -> Passed {
+        for node in self.assumed.ids().filter(|&node| self.assumed[node]) {
+            self.map[node] = None;
+        }
+        let (network, moved) = conjuncts.finish_by(self.builder, self.old.searched().to_vec(), all);
         Passed { network, map: through(&self.map, &moved) }
     }
 }

@@ -4,9 +4,17 @@
 //! after it, and returns, for every node of the old network, the literal of the new one that computes the same, or none
 //! where nothing does any more. [`simplify`] runs them all and keeps a result only where the ANDs do not become more.
 
+mod cone;
 mod copy;
+mod cuts;
+mod known;
+mod parities;
 mod pivots;
+mod share;
+mod subsume;
 mod view;
+mod weights;
+mod windows;
 
 use super::{Lit, Network, NodeId};
 use crate::id::IdVec;
@@ -27,7 +35,17 @@ pub struct Passed {
 type Pass = (&'static str, fn(&Network) -> Passed);
 
 /// The passes in the order they run.
-const PASSES: &[Pass] = &[("pivots", pivots::pivots)];
+const PASSES: &[Pass] = &[
+    ("known", known::known),
+    ("subsume", subsume::subsume),
+    ("known again", known::known),
+    ("parities", parities::parities),
+    ("weights", weights::weights),
+    ("windows", windows::windows),
+    ("pivots", pivots::pivots),
+    ("cuts", cuts::cuts),
+    ("share", share::share),
+];
 
 /// Runs the passes. `each` sees every step that was kept: the name of the pass, the network before and what it made.
 pub fn simplify(network: Network, mut each: impl FnMut(&'static str, &Network, &Passed)) -> Network {

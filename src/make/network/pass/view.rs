@@ -7,6 +7,7 @@
 //! Holds: literals of a clause are sorted, none occurs twice and none with its complement; a clause that always holds is
 //! left out. A clause without literals never holds.
 
+use super::copy::Copy;
 use crate::id::{ConstraintId, Id, IdVec};
 use crate::make::network::build::Conjuncts;
 use crate::make::network::{Lit, Network, Node, NodeId};
@@ -19,6 +20,8 @@ const MAX_SHARED: usize = 64;
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub(super) struct Clause {
     pub(super) lits: Vec<Lit>,
+    /// The OR as the network has it.
+    pub(super) root: Lit,
     pub(super) constraint: Option<ConstraintId>,
 }
 
@@ -34,7 +37,7 @@ pub(super) fn clauses(network: &Network) -> Vec<Clause> {
                 _ => {
                     let mut lits = leaves(network, &uses, lit);
                     if tidy(&mut lits) {
-                        clauses.push(Clause { lits, constraint: conjunct.constraint });
+                        clauses.push(Clause { lits, root: lit, constraint: conjunct.constraint });
                     }
                 }
             }
@@ -86,13 +89,9 @@ pub(super) fn is_settled(network: &Network) -> bool {
     network.root().is_constant() || network.root().node().index() <= network.searched().len()
 }
 
-/// The conjunct for each clause, as ORs.
-pub(super) fn rebuild(copy: &mut super::copy::Copy<'_>, clauses: &[Clause]) -> Conjuncts {
-    let mut conjuncts = Conjuncts::default();
-    for clause in clauses {
-        let fails: Vec<Lit> = clause.lits.iter().map(|&lit| !copy.lit(lit)).collect();
-        let fails = copy.builder.all(&fails);
-        conjuncts.add(!fails, clause.constraint);
-    }
-    conjuncts
+/// The clause as a conjunct of the new network, an OR.
+pub(super) fn add(copy: &mut Copy<'_>, conjuncts: &mut Conjuncts, clause: &Clause) {
+    let fails: Vec<Lit> = clause.lits.iter().map(|&lit| !copy.lit(lit)).collect();
+    let fails = copy.builder.all(&fails);
+    conjuncts.add(!fails, clause.constraint);
 }
