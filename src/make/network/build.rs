@@ -4,8 +4,8 @@ use super::builder::Builder;
 use super::expr::Values;
 use super::linear::{Linear, Range};
 use super::{Conjunct, Lit, Network, NodeId, Places};
-use crate::id::{ConstraintId, Id};
-use crate::problem::Problem;
+use crate::id::{ConstraintId, Id, IdVec};
+use crate::problem::{BitId, Problem};
 
 /// The network of a problem over its searched bits. The problem passed [`check`](crate::problem::check::check), and the
 /// places are about it ([`Places::check`]).
@@ -24,20 +24,20 @@ pub fn build(problem: &Problem, places: &Places) -> Network {
         }
     }
     clauses(&mut builder, problem, &bits, &mut conjuncts);
-    let root = if conjuncts.contradictory { Lit::NO } else { builder.all(&conjuncts.lits()) };
-    builder.finish(places.searched.clone(), conjuncts.list, root)
+    conjuncts.finish(builder, places.searched.clone())
 }
 
 /// The conjuncts found so far, each literal once.
 #[derive(Default)]
-struct Conjuncts {
+pub(super) struct Conjuncts {
     list: Vec<Conjunct>,
     seen: rustc_hash::FxHashSet<Lit>,
     contradictory: bool,
 }
 
 impl Conjuncts {
-    fn add(&mut self, lit: Lit, constraint: Option<ConstraintId>) {
+    /// Adds what must hold too.
+    pub(super) fn add(&mut self, lit: Lit, constraint: Option<ConstraintId>) {
         if lit == Lit::YES || !self.seen.insert(lit) {
             return;
         }
@@ -45,8 +45,21 @@ impl Conjuncts {
         self.list.push(Conjunct { lit, constraint });
     }
 
-    fn lits(&self) -> Vec<Lit> {
-        self.list.iter().map(|conjunct| conjunct.lit).collect()
+    /// The network whose root is their conjunction, a balanced tree.
+    fn finish(self, builder: Builder, searched: Vec<BitId>) -> Network {
+        self.finish_by(builder, searched, |builder, lits| builder.all(&lits)).0
+    }
+
+    /// The same with the tree that `all` makes, and where each node of the builder went.
+    pub(super) fn finish_by(
+        self,
+        mut builder: Builder,
+        searched: Vec<BitId>,
+        all: impl FnOnce(&mut Builder, Vec<Lit>) -> Lit,
+    ) -> (Network, IdVec<NodeId, Option<Lit>>) {
+        let lits: Vec<Lit> = self.list.iter().map(|conjunct| conjunct.lit).collect();
+        let root = if self.contradictory { Lit::NO } else { all(&mut builder, lits) };
+        builder.finish(searched, self.list, root)
     }
 }
 

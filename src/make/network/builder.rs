@@ -86,6 +86,11 @@ impl Builder {
         Lit::new(id, false)
     }
 
+    /// What a node computes.
+    pub(super) fn node_at(&self, node: NodeId) -> Node {
+        self.nodes[node.index()]
+    }
+
     /// At least one holds.
     pub(super) fn or(&mut self, a: Lit, b: Lit) -> Lit {
         !self.and(!a, !b)
@@ -143,26 +148,34 @@ impl Builder {
         }
     }
 
-    /// The network of the nodes that are used.
-    pub(super) fn finish(self, searched: Vec<BitId>, mut conjuncts: Vec<Conjunct>, root: Lit) -> Network {
+    /// The network of the nodes that are used, and where each node of the builder went.
+    pub(super) fn finish(
+        self,
+        searched: Vec<BitId>,
+        mut conjuncts: Vec<Conjunct>,
+        root: Lit,
+    ) -> (Network, IdVec<NodeId, Option<Lit>>) {
         let nodes: IdVec<NodeId, Node> = self.nodes.into();
         let roots: Vec<Lit> = conjuncts.iter().map(|conjunct| conjunct.lit).chain([root]).collect();
         let live = mark_live(&nodes, &roots);
         let mut kept: IdVec<NodeId, Node> = IdVec::new();
-        let mut moved: IdVec<NodeId, NodeId> = vec![NodeId::new(0); nodes.len()].into();
+        let mut moved: IdVec<NodeId, Option<Lit>> = vec![None; nodes.len()].into();
+        let follow = |moved: &IdVec<NodeId, Option<Lit>>, lit: Lit| {
+            moved[lit.node()].expect("used, so kept").complement_if(lit.is_complemented())
+        };
         for (id, &node) in nodes.iter() {
-            let lit = |lit: Lit| Lit::new(moved[lit.node()], lit.is_complemented());
+            let lit = |lit: Lit| follow(&moved, lit);
             let new = match node {
                 Node::Const | Node::Input(_) => node,
                 _ if !live[id] => continue,
                 Node::And(a, b) => Node::And(lit(a), lit(b)),
                 Node::Xor(a, b) => Node::Xor(lit(a), lit(b)),
             };
-            moved[id] = kept.push(new);
+            moved[id] = Some(Lit::new(kept.push(new), false));
         }
-        let lit = |lit: Lit| Lit::new(moved[lit.node()], lit.is_complemented());
-        conjuncts.iter_mut().for_each(|conjunct| conjunct.lit = lit(conjunct.lit));
-        Network { nodes: kept, searched, conjuncts, root: lit(root) }
+        conjuncts.iter_mut().for_each(|conjunct| conjunct.lit = follow(&moved, conjunct.lit));
+        let root = follow(&moved, root);
+        (Network { nodes: kept, searched, conjuncts, root }, moved)
     }
 }
 

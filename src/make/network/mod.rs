@@ -20,6 +20,8 @@ mod columns;
 mod expr;
 mod linear;
 mod lookup;
+pub mod pass;
+mod small;
 mod text;
 
 use crate::define_id;

@@ -1,0 +1,97 @@
+//! The root as clauses over nodes.
+//!
+//! Takes a network, gives its root as a list of [`Clause`]s, each an OR of literals, whose conjunction is the root. An
+//! AND among the conjuncts becomes several clauses; a conjunct that is no OR is a clause of one literal. So passes that
+//! know clauses work on CNF files and on conditions of the language alike.
+//!
+//! Holds: literals of a clause are sorted, none occurs twice and none with its complement; a clause that always holds is
+//! left out. A clause without literals never holds.
+
+use super::copy::Copy;
+use crate::id::{ConstraintId, Id, IdVec};
+use crate::make::network::build::Conjuncts;
+use crate::make::network::{Lit, Network, Node, NodeId};
+
+/// A shared AND is taken apart again only in clauses that stay below this length, so that a clause is never read from a
+/// graph much smaller than itself.
+const MAX_SHARED: usize = 64;
+
+/// At least one of the literals holds.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub(super) struct Clause {
+    pub(super) lits: Vec<Lit>,
+    /// The OR as the network has it.
+    pub(super) root: Lit,
+    pub(super) constraint: Option<ConstraintId>,
+}
+
+/// The clauses whose conjunction is the root.
+pub(super) fn clauses(network: &Network) -> Vec<Clause> {
+    let uses = uses(network);
+    let mut clauses = Vec::with_capacity(network.conjuncts().len());
+    for conjunct in network.conjuncts() {
+        let mut open = vec![conjunct.lit];
+        while let Some(lit) = open.pop() {
+            match network.nodes()[lit.node()] {
+                Node::And(a, b) if !lit.is_complemented() && uses[lit.node()] <= 1 => open.extend([b, a]),
+                _ => {
+                    let mut lits = leaves(network, &uses, lit);
+                    if tidy(&mut lits) {
+                        clauses.push(Clause { lits, root: lit, constraint: conjunct.constraint });
+                    }
+                }
+            }
+        }
+    }
+    clauses
+}
+
+/// Sorts the literals, keeps each once; false where the clause always holds.
+pub(super) fn tidy(lits: &mut Vec<Lit>) -> bool {
+    lits.retain(|&lit| lit != Lit::NO);
+    lits.sort_unstable();
+    lits.dedup();
+    // The two literals of a node are neighbours now.
+    !lits.contains(&Lit::YES) && lits.windows(2).all(|pair| pair[0] != !pair[1])
+}
+
+/// How many nodes and conjuncts use each node, of those that a conjunct needs.
+pub(super) fn uses(network: &Network) -> IdVec<NodeId, u32> {
+    let mut uses: IdVec<NodeId, u32> = vec![0; network.nodes().len()].into();
+    network.conjuncts().iter().for_each(|conjunct| uses[conjunct.lit.node()] += 1);
+    for (id, &node) in network.nodes().iter().rev() {
+        if let Node::And(a, b) | Node::Xor(a, b) = node
+            && uses[id] > 0
+        {
+            uses[a.node()] += 1;
+            uses[b.node()] += 1;
+        }
+    }
+    uses
+}
+
+fn leaves(network: &Network, uses: &IdVec<NodeId, u32>, lit: Lit) -> Vec<Lit> {
+    let mut lits = Vec::new();
+    let mut open = vec![lit];
+    while let Some(lit) = open.pop() {
+        match network.nodes()[lit.node()] {
+            Node::And(a, b) if lit.is_complemented() && (uses[lit.node()] <= 1 || lits.len() + open.len() < MAX_SHARED) => {
+                open.extend([!b, !a]);
+            }
+            _ => lits.push(lit),
+        }
+    }
+    lits
+}
+
+/// Whether folding has already shown that the conjunction never holds.
+pub(super) fn is_settled(network: &Network) -> bool {
+    network.root().is_constant() || network.root().node().index() <= network.searched().len()
+}
+
+/// The clause as a conjunct of the new network, an OR.
+pub(super) fn add(copy: &mut Copy<'_>, conjuncts: &mut Conjuncts, clause: &Clause) {
+    let fails: Vec<Lit> = clause.lits.iter().map(|&lit| !copy.lit(lit)).collect();
+    let fails = copy.builder.all(&fails);
+    conjuncts.add(!fails, clause.constraint);
+}
