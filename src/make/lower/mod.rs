@@ -15,8 +15,11 @@
 
 mod conjugation;
 mod emit;
+mod gates;
 mod plan;
 mod reflection;
+mod replay;
+mod schedule;
 mod steps;
 
 use thiserror::Error;

@@ -4,7 +4,8 @@
 //! clean ancillas hold the ANDs of pairs, in a balanced tree. With n qubits this costs no T gate at `feedback` beyond
 //! 4(n - 2), and 8(n - 3) + 7 at `clifford-t` (n at least 3).
 
-use super::emit::{OUTCOME, and, erase, sign};
+use super::emit::OUTCOME;
+use super::gates::Pen;
 use crate::circuit::{Circuit, Control, Level, MeasuredId, Op, Part, QubitId};
 
 /// How many qubits a sign flip may depend on at this level.
@@ -36,14 +37,14 @@ pub fn append_reflection(circuit: &mut Circuit, search: &[QubitId], work: &[Qubi
     for &ancilla in ancillas {
         let mut next = || Control::on(operands.pop_front().expect("more operands than the sign takes"));
         let pair = [next(), next()];
-        and(circuit, level, &pair, ancilla);
+        Pen::new(circuit, level).and(&pair, ancilla);
         operands.push_back(ancilla);
         pairs.push((pair, ancilla));
     }
     let controls: Vec<Control> = operands.into_iter().map(Control::on).collect();
-    sign(circuit, level, &controls);
+    Pen::new(circuit, level).sign(&controls);
     for (at, (pair, ancilla)) in pairs.iter().enumerate().rev() {
-        erase(circuit, level, pair, *ancilla, outcomes.get(at).copied());
+        Pen::new(circuit, level).erase(pair, *ancilla, outcomes.get(at).copied());
     }
     search.iter().for_each(|&qubit| circuit.push(Op::X, &[], qubit));
     search.iter().for_each(|&qubit| circuit.push(Op::H, &[], qubit));
