@@ -7,17 +7,17 @@ use num_bigint::BigUint;
 use num_traits::Zero;
 
 use crate::budget::Budget;
-use crate::circuit::{Level, Mark, Product, qasm};
+use crate::circuit::{Figures, Level, Mark, Product, qasm};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
-use crate::cli::{Global, Outcome, input, plan, progress};
+use crate::cli::{Global, Outcome, input, limits, plan, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
 use crate::pipeline::{self, Settings};
 use crate::places::Places;
 use crate::report::header::header;
 use crate::report::places::places_json;
-use crate::report::{files, json, summary};
+use crate::report::{self, files, json, summary};
 use crate::source::Loaded;
 use crate::span::Sources;
 
@@ -31,6 +31,11 @@ pub(super) struct Options {
     /// How the oracle marks: phase or bit
     #[arg(long, default_value = "phase", value_parser = input::mark)]
     mark: Mark,
+    #[command(flatten)]
+    limits: limits::Options,
+    /// List all circuits found of which none is better than another; with -o a picture of them in SVG
+    #[arg(long, conflicts_with_all = ["whole", "qubits", "t_count", "depth"])]
+    front: bool,
     /// The whole search: prepare, iterate, measure
     #[arg(long)]
     whole: bool,
@@ -48,16 +53,23 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     if options.whole && options.mark == Mark::Bit {
         return Err(Failure::usage(whole_needs_phase()));
     }
+    let limits = options.limits.limits(options.level)?;
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
     let places = Places::as_given(&loaded.problem);
     let stage = |error| Failure::stage(&error, &sources);
-    let mut product = pipeline::oracle(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+    if options.front {
+        let front = pipeline::front(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+        drop(line);
+        return show_front(global, options, &loaded, &sources, &front);
+    }
+    let mut product =
+        pipeline::oracle_within(&loaded.problem, &places, settings, &limits, &budget).map_err(stage)?;
     let mut counted = None;
     if options.whole {
         let iterations;
         (iterations, counted) = iterations_for(&loaded, &places, settings, options, &budget, &sources)?;
-        product = pipeline::whole_search(&product, &iterations).map_err(stage)?;
+        product = pipeline::whole_search_within(&product, &iterations, &limits).map_err(stage)?;
     }
     drop(line);
     let header = header(&loaded, &places, &product, counted.as_ref());
@@ -79,6 +91,28 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let mut object = json::envelope("compile", &loaded, &sources, false);
     object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem));
     object.insert("circuit".to_owned(), json::circuit_json(&product));
+    object.insert("file".to_owned(), options.output.clone().into());
+    Ok((Exit::Done, json::print(object)))
+}
+
+fn show_front(
+    global: &Global,
+    options: &Options,
+    loaded: &Loaded,
+    sources: &Sources,
+    front: &[Product],
+) -> Outcome {
+    let figures: Vec<Figures> = front.iter().map(|product| product.figures).collect();
+    if let Some(path) = options.output.as_deref().filter(|path| *path != "-") {
+        let picture = report::front::picture(options.level, &figures);
+        files::write_whole(Path::new(path), |out| out.write_all(picture.as_bytes()))
+            .map_err(|error| Failure::stage(&error.into(), sources))?;
+    }
+    if !global.json {
+        return Ok((Exit::Done, report::front::table(options.level, &figures)));
+    }
+    let mut object = json::envelope("compile", loaded, sources, false);
+    object.insert("front".to_owned(), report::front::json(options.level, &figures));
     object.insert("file".to_owned(), options.output.clone().into());
     Ok((Exit::Done, json::print(object)))
 }

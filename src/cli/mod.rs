@@ -11,6 +11,7 @@ mod exit;
 mod explain;
 mod input;
 mod ledger;
+mod limits;
 mod plan;
 mod progress;
 mod render;
@@ -76,7 +77,7 @@ enum Command {
     /// The tally: how many solutions
     Count(count::Options),
     /// The oracle, or with --whole the search circuit
-    Compile(compile::Options),
+    Compile(Box<compile::Options>),
     /// Judge an OpenQASM circuit against the problem
     Audit(audit::Options),
     /// All problems of a folder against the expected tallies and costs

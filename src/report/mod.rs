@@ -4,6 +4,7 @@ pub mod alone;
 pub mod dossier;
 pub mod explain;
 pub mod files;
+pub mod front;
 pub mod header;
 pub mod json;
 pub mod places;

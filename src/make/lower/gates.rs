@@ -50,6 +50,27 @@ impl<'c> Pen<'c> {
         }
     }
 
+    /// A Toffoli up to phases on the basis states, which applying it again takes back (the Margolus form; D. Maslov, Phys.
+    /// Rev. A 93:022311, 2016): 4 T gates where a Toffoli has 7.
+    pub(super) fn toffoli_up_to_phases(&mut self, [a, b]: [QubitId; 2], target: QubitId) {
+        if self.level <= Level::Toffoli {
+            self.push(Op::X, &[Control::on(a), Control::on(b)], target);
+            return;
+        }
+        let gates = [
+            (Op::H, None),
+            (Op::T, None),
+            (Op::X, Some(b)),
+            (Op::Tdg, None),
+            (Op::X, Some(a)),
+            (Op::T, None),
+            (Op::X, Some(b)),
+            (Op::Tdg, None),
+            (Op::H, None),
+        ];
+        gates.into_iter().for_each(|(op, control)| self.put(op, control, target));
+    }
+
     /// The AND of the controls into a target that is 0.
     pub(super) fn and(&mut self, controls: &[Control], target: QubitId) {
         if self.level <= Level::Toffoli {

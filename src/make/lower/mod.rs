@@ -16,11 +16,13 @@
 mod conjugation;
 mod emit;
 mod gates;
+mod multi;
 mod plan;
 mod reflection;
 mod replay;
 mod schedule;
 mod steps;
+mod within;
 
 use thiserror::Error;
 
@@ -29,7 +31,9 @@ use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part};
 use crate::diag::{Code, Diagnostic};
 use crate::make::network::{Lit, Network};
 
-pub use reflection::{append_reflection, reflection_work};
+pub use multi::{Idle, Way, append_controlled, ways};
+pub use reflection::{append_reflection, least_reflection_work, reflection_work};
+pub use within::{Favour, Limits, Lowered, front_of, lower_within};
 
 /// What kind of oracle is wanted.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -55,18 +59,53 @@ pub enum LowerError {
     /// The budget ran out; half an oracle is of no use.
     #[error("the time for compiling ran out")]
     OutOfTime,
+    /// No circuit was found with so few qubits.
+    #[error("no circuit was found with {asked} qubits; the least that was found has {least}")]
+    TooFewQubits {
+        /// The limit.
+        asked: u64,
+        /// What would do.
+        least: u64,
+    },
+    /// No circuit within the limit of qubits was found with so few T gates.
+    #[error("no circuit within the limit of qubits was found with a T-count of {asked}; the least is {least}")]
+    TooFewT {
+        /// The limit.
+        asked: u64,
+        /// What would do.
+        least: u64,
+    },
+    /// No circuit within the other limits was found with so few layers.
+    #[error("no circuit within the other limits was found with a depth of {asked}; the least is {least}")]
+    TooShallow {
+        /// The limit.
+        asked: u64,
+        /// What would do.
+        least: u64,
+    },
 }
 
 impl LowerError {
     /// The message with its stable code.
     pub fn diagnostic(&self) -> Diagnostic {
+        let limit = |code, option, least| {
+            Diagnostic::error(Code(code), self.to_string()).help(format!("give at least {option} {least}"))
+        };
         let (code, help) = match self {
+            Self::TooFewQubits { least, .. } => return limit("C005", "--qubits", least),
+            Self::TooFewT { least, .. } => return limit("C006", "--t-count", least),
+            Self::TooShallow { least, .. } => return limit("C007", "--depth", least),
             Self::NoBits => ("C001", "every variable has one value only: `count` says whether the constraints hold"),
             Self::NothingMarked => ("C002", "there is nothing to search for; `count` gives the tally, which is 0"),
             Self::EverythingMarked => ("C003", "any assignment is a solution: nothing has to be searched"),
             Self::OutOfTime => ("C004", "give more time with --time"),
         };
         Diagnostic::error(Code(code), self.to_string()).help(help)
+    }
+
+    /// Whether a budget was too small, rather than there being no circuit at all.
+    pub fn is_unfinished(&self) -> bool {
+        !matches!(self, Self::NoBits | Self::NothingMarked | Self::EverythingMarked)
     }
 }
 

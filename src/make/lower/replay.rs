@@ -20,7 +20,7 @@ use super::schedule::program::Move;
 use super::{LowerError, Options};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Condition, Control, Level, MARK, Mark, MeasuredId, Op, Part, QubitId, SEARCH, WORK};
-use crate::id::{ConstraintId, Id, IdVec};
+use crate::id::{ConstraintId, IdVec};
 
 /// How many moves are written between two looks at the clock.
 const MOVES_BETWEEN_LOOKS: usize = 1024;

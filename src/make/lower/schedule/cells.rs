@@ -7,6 +7,8 @@
 //!
 //! XORs are free of T gates and are collected in place wherever they are used, so only ANDs need an ancilla.
 
+#![allow(unreachable_pub, reason = "the macro of ids makes them public")]
+
 use crate::define_id;
 use crate::id::{ConstraintId, Id, IdVec};
 use crate::make::lower::plan::{keep_odd, owners};
@@ -74,6 +76,14 @@ pub(in crate::make::lower) struct Cells {
 }
 
 impl Cells {
+    /// The cells that are marked without being held.
+    pub(in crate::make::lower) fn direct(&self) -> impl Iterator<Item = CellId> + '_ {
+        self.terms.iter().filter_map(|term| match term {
+            Term::Direct(cell) => Some(*cell),
+            Term::Held(_) => None,
+        })
+    }
+
     /// The cells to hold for marking; sorted.
     pub(in crate::make::lower) fn marked_from(&self) -> Vec<CellId> {
         let mut needed: Vec<CellId> = Vec::new();

@@ -6,10 +6,9 @@
 use super::cells::{CellId, Cells};
 use super::chunks::Conjunction;
 use super::line::Line;
-use super::program::{Cost, Move, backwards, cost};
+use super::program::{Cost, Move, Pay, backwards, cost};
 use super::table::{Game, Table};
 use crate::budget::Budget;
-use crate::circuit::Level;
 use crate::make::lower::LowerError;
 
 /// Every number of ancillas up to this one is tried.
@@ -26,8 +25,8 @@ pub(in crate::make::lower) struct Point {
 }
 
 /// The front, from few ancillas to many; each point costs less than those before it.
-pub(in crate::make::lower) fn front(cells: &Cells, level: Level, budget: &Budget) -> Result<Vec<Point>, LowerError> {
-    let mut found = Front { cells, level, points: Vec::new() };
+pub(in crate::make::lower) fn front(cells: &Cells, pay: Pay, budget: &Budget) -> Result<Vec<Point>, LowerError> {
+    let mut found = Front { cells, pay, points: Vec::new() };
     let rooms = rooms(cells.list.len());
     let order = order(cells);
     let wanted = cells.marked_from();
@@ -51,7 +50,7 @@ pub(in crate::make::lower) fn front(cells: &Cells, level: Level, budget: &Budget
 
 struct Front<'a> {
     cells: &'a Cells,
-    level: Level,
+    pay: Pay,
     points: Vec<Point>,
 }
 
@@ -64,7 +63,7 @@ impl Front<'_> {
         let units = [conjunction.unit(true), conjunction.unit(false)];
         for unit in &units[..if units[0] == units[1] { 1 } else { 2 }] {
             let largest = rooms.last().copied().unwrap_or(1).min(DENSE);
-            let table = Table::new(conjunction.units(), largest, *unit, Game::at(self.level));
+            let table = Table::new(conjunction.units(), largest, *unit, Game::of(self.pay));
             for &room in rooms {
                 self.time(budget)?;
                 let Some(left) = room.checked_sub(conjunction.kept()) else { continue };
@@ -78,7 +77,7 @@ impl Front<'_> {
         let Some(moves) = moves else { return };
         let cost = cost(self.cells, &moves).unwrap_or_else(|fault| unreachable!("a schedule is wrong: {fault}"));
         let better = |point: &Point| {
-            point.cost.ancillas <= cost.ancillas && point.cost.at(self.level) <= cost.at(self.level)
+            point.cost.ancillas <= cost.ancillas && point.cost.paid(self.pay) <= cost.paid(self.pay)
         };
         if !self.points.iter().any(better) {
             self.points.push(Point { cost, moves });
@@ -86,13 +85,13 @@ impl Front<'_> {
     }
 
     fn finish(mut self) -> Vec<Point> {
-        let level = self.level;
-        let key = |point: &Point| (point.cost.ancillas, point.cost.at(level));
+        let pay = self.pay;
+        let key = |point: &Point| (point.cost.ancillas, point.cost.paid(pay));
         self.points.sort_by(|a, b| key(a).partial_cmp(&key(b)).expect("costs are numbers"));
         let mut least = f64::INFINITY;
         self.points.retain(|point| {
-            let better = point.cost.at(level) < least;
-            least = least.min(point.cost.at(level));
+            let better = point.cost.paid(pay) < least;
+            least = least.min(point.cost.paid(pay));
             better
         });
         self.points

@@ -26,23 +26,41 @@ pub(in crate::make::lower) enum Move {
 
 /// What a program costs, counted move by move.
 #[derive(Clone, Copy, PartialEq, Debug, Default)]
-pub struct Cost {
+pub(in crate::make::lower) struct Cost {
     /// Ancillas held at once, at most.
-    pub ancillas: usize,
+    pub(in crate::make::lower) ancillas: usize,
     /// ANDs computed if every measured sign has to be repaired.
-    pub worst: u64,
+    pub(in crate::make::lower) worst: u64,
     /// ANDs computed on average: each measured sign has to be repaired in half of all cases.
-    pub expected: f64,
+    pub(in crate::make::lower) expected: f64,
     /// ANDs erased with their operands at hand.
-    pub erased: u64,
+    pub(in crate::make::lower) erased: u64,
+}
+
+/// Which ANDs are paid for.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(in crate::make::lower) enum Pay {
+    /// Erasing is free, and signs are repaired in half of all cases.
+    Expected,
+    /// Erasing is free, and all signs are repaired.
+    Worst,
+    /// Erasing costs what computing does; there is no measurement.
+    Unitary,
+}
+
+impl Pay {
+    pub(in crate::make::lower) fn at(level: Level) -> Self {
+        if level == Level::Feedback { Self::Expected } else { Self::Unitary }
+    }
 }
 
 impl Cost {
-    /// What a level pays for, in ANDs: at `feedback` erasing is free and signs are repaired half the time.
-    pub fn at(&self, level: Level) -> f64 {
-        match level {
-            Level::Feedback => self.expected,
-            _ => (self.worst + self.erased) as f64,
+    /// What is paid, in ANDs.
+    pub(in crate::make::lower) fn paid(&self, pay: Pay) -> f64 {
+        match pay {
+            Pay::Expected => self.expected,
+            Pay::Worst => self.worst as f64,
+            Pay::Unitary => (self.worst + self.erased) as f64,
         }
     }
 }

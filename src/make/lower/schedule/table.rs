@@ -8,10 +8,10 @@
 //!
 //! Chunk sizes are tried up to [`DENSE`] and then on a geometric grid.
 
-use crate::circuit::Level;
+use super::program::Pay;
 
 /// Every chunk size up to this one is tried; beyond it sizes grow by a tenth.
-const DENSE: usize = 24;
+const DENSE: usize = 64;
 
 /// How a held chunk is erased.
 #[derive(Clone, Copy, PartialEq, Debug)]
@@ -23,8 +23,12 @@ pub(in crate::make::lower) enum Game {
 }
 
 impl Game {
-    pub(in crate::make::lower) fn at(level: Level) -> Self {
-        if level == Level::Feedback { Self::Measured(0.5) } else { Self::Unitary }
+    pub(in crate::make::lower) fn of(pay: Pay) -> Self {
+        match pay {
+            Pay::Expected => Self::Measured(0.5),
+            Pay::Worst => Self::Measured(1.0),
+            Pay::Unitary => Self::Unitary,
+        }
     }
 }
 

@@ -1,9 +1,9 @@
-use super::cells::{Cells, cells};
+use super::cells::cells;
 use super::front::front;
-use super::line::Line;
-use super::program::{Cost, Move, backwards, cost};
+
+use super::program::Pay;
 use crate::budget::Budget;
-use crate::circuit::Level;
+
 use crate::make::network::Network;
 
 /// The AND of `m` clauses of three literals each, nothing shared.
@@ -27,23 +27,24 @@ fn conjunction(m: usize) -> Network {
     format!("{text}\nroot {gathered}\n").parse().unwrap()
 }
 
-fn print(m: usize, level: Level) {
+fn print(m: usize, pay: Pay) {
     let network = conjunction(m);
     let cells = cells(&network, true);
     let start = std::time::Instant::now();
-    let front = front(&cells, level, &Budget::unlimited()).unwrap();
-    eprintln!("{m} {level} {:?}", start.elapsed());
-    for point in front {
-        eprint!("{}:{}/{}/{} ", point.cost.ancillas, point.cost.at(level), point.cost.worst, point.cost.erased);
+    let front = front(&cells, pay, &Budget::unlimited()).unwrap();
+    eprintln!("{m} {pay:?} {:?}", start.elapsed());
+    let at: &[usize] = if m == 100 { &[10,15,16,28,101,199] } else { &[14,21,23,29,30,88,89,1001,1999] };
+    for point in at.iter().filter_map(|p| front.iter().rfind(|x| x.cost.ancillas <= *p)) {
+        eprint!("{}:{}/{}/{} ", point.cost.ancillas, point.cost.paid(pay), point.cost.worst, point.cost.erased);
     }
     eprintln!();
 }
 
 #[test]
 fn look() {
-    for level in [Level::Feedback, Level::CliffordT] {
-        print(20, level);
-        print(100, level);
-        print(1000, level);
+    for pay in [Pay::Expected, Pay::Worst, Pay::Unitary] {
+        
+        print(100, pay);
+        print(1000, pay);
     }
 }
