@@ -7,10 +7,10 @@ use num_bigint::BigUint;
 use num_traits::Zero;
 
 use crate::budget::Budget;
-use crate::circuit::{Figures, Level, Mark, Product, qasm};
+use crate::circuit::{Figures, Level, Mark, Product};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
-use crate::cli::{Global, Outcome, input, limits, plan, progress};
+use crate::cli::{Global, Outcome, input, limits, plan, progress, texts, turns};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
 use crate::pipeline::{self, Settings};
@@ -42,6 +42,10 @@ pub(super) struct Options {
     /// With --whole: plan for this many marked states instead of counting them
     #[arg(long, value_name = "NUMBER", requires = "whole", value_parser = plan::number)]
     count: Option<BigUint>,
+    #[command(flatten)]
+    turns: turns::Options,
+    #[command(flatten)]
+    texts: texts::Options,
     /// Where the circuit goes; - is standard output. The places file is written beside it [default: -]
     #[arg(short, long, value_name = "FILE")]
     output: Option<String>,
@@ -63,8 +67,12 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         drop(line);
         return show_front(global, options, &loaded, &sources, &front);
     }
-    let mut product =
-        pipeline::oracle_within(&loaded.problem, &places, settings, &limits, &budget).map_err(stage)?;
+    let turn = options.turns.turn(options.mark, options.whole)?;
+    let mut product = match turn {
+        Some(turn) => pipeline::turned(&loaded.problem, &places, settings, turn, &limits, &budget),
+        None => pipeline::oracle_within(&loaded.problem, &places, settings, &limits, &budget),
+    }
+    .map_err(stage)?;
     let mut counted = None;
     if options.whole {
         let iterations;
@@ -72,6 +80,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         product = pipeline::whole_search_within(&product, &iterations, &limits).map_err(stage)?;
     }
     drop(line);
+    options.texts.check(&product)?;
     let header = header(&loaded, &places, &product, counted.as_ref());
     let figures = summary::circuit(&product);
     match options.output.as_deref() {
@@ -79,11 +88,15 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         None | Some("-") if global.json => return Err(Failure::usage(one_output())),
         None | Some("-") => {
             let mut text = Vec::new();
-            qasm::write::write(&product.circuit, &header, &mut text).expect("memory takes everything");
+            options.texts.write(&product, &header, (&loaded, &sources), &mut text).expect("memory takes everything");
             return Ok((Exit::Done, String::from_utf8(text).expect("OpenQASM is text")));
         }
-        Some(path) => write(Path::new(path), &loaded, &places, &product, &header)
-            .map_err(|error| Failure::stage(&error.into(), &sources))?,
+        Some(path) => {
+            let path = Path::new(path);
+            files::write_whole(path, |out| options.texts.write(&product, &header, (&loaded, &sources), out))
+                .and_then(|()| pipeline::write_json(&places_path(path), &places_json(&loaded, &places)))
+                .map_err(|error| Failure::stage(&error.into(), &sources))?;
+        }
     }
     if !global.json {
         return Ok((Exit::Done, figures));
@@ -115,17 +128,6 @@ fn show_front(
     object.insert("front".to_owned(), report::front::json(options.level, &figures));
     object.insert("file".to_owned(), options.output.clone().into());
     Ok((Exit::Done, json::print(object)))
-}
-
-fn write(
-    path: &Path,
-    loaded: &Loaded,
-    places: &Places,
-    product: &Product,
-    header: &[String],
-) -> Result<(), files::WriteError> {
-    files::write_whole(path, |mut out| qasm::write::write(&product.circuit, header, &mut out))?;
-    pipeline::write_json(&places_path(path), &places_json(loaded, places))
 }
 
 /// `S.places.json` beside `S.qasm`.

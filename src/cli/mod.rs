@@ -16,6 +16,8 @@ mod plan;
 mod progress;
 mod render;
 mod shots;
+mod texts;
+mod turns;
 
 use std::ffi::OsString;
 use std::io::{self, Write};

@@ -5,7 +5,7 @@ use num_bigint::BigUint;
 use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::circuit::{Level, Mark, Product};
-use crate::make::lower::{self, Limits, LowerError, Lowered};
+use crate::make::lower::{self, Limits, LowerError, Lowered, Turn};
 use crate::make::network;
 use crate::places::Places;
 use crate::problem::Problem;
@@ -27,6 +27,19 @@ pub fn oracle_within(
     let network = network::build(problem, places);
     let lowered = lower::lower_within(&network, &options(settings), limits, budget)?;
     Ok(product(lowered, settings))
+}
+
+/// Compiles another form of the oracle: an angle in place of the sign, or under a control.
+pub fn turned(
+    problem: &Problem,
+    places: &Places,
+    settings: Settings,
+    turn: Turn,
+    limits: &Limits,
+    budget: &Budget,
+) -> Result<Product, Error> {
+    let network = network::build(problem, places);
+    Ok(product(lower::lower_turn(&network, settings.level, turn, limits, budget)?, settings))
 }
 
 /// The circuits of which none is better than another in qubits, T gates and depth at once.

@@ -10,6 +10,7 @@ pub mod json;
 pub mod places;
 pub mod plan;
 pub mod self_test;
+pub mod readable;
 pub mod shots;
 pub mod story;
 pub mod summary;

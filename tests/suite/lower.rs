@@ -3,6 +3,7 @@
 
 mod budgets;
 mod conjunction;
+mod forms;
 mod multi;
 
 use tallymark::budget::Budget;

@@ -4,6 +4,7 @@
 //! C. Gidney, "Halving the cost of quantum addition", Quantum 2:74 (2018). Its inverse is the list backwards at
 //! `clifford-t`; at `feedback` it is a measurement in the X basis and, where that gave 1, a CZ on the two operands.
 
+use crate::circuit::qasm::gadget::{Gadget, GadgetGate};
 use crate::circuit::{Circuit, Condition, Control, Level, MeasuredId, Op, QubitId};
 
 /// Writes gates of a level, all of them under one condition.
@@ -117,29 +118,33 @@ impl<'c> Pen<'c> {
         }
     }
 
-    /// CCZ by 7 T gates, one for each parity of the three qubits: the textbook Toffoli without its Hadamards.
     fn ccz(&mut self, a: QubitId, b: QubitId, c: QubitId) {
-        let gates: [(Op, Option<QubitId>, QubitId); 13] = [
-            (Op::X, Some(b), c),
-            (Op::Tdg, None, c),
-            (Op::X, Some(a), c),
-            (Op::T, None, c),
-            (Op::X, Some(b), c),
-            (Op::Tdg, None, c),
-            (Op::X, Some(a), c),
-            (Op::T, None, b),
-            (Op::T, None, c),
-            (Op::X, Some(a), b),
-            (Op::T, None, a),
-            (Op::Tdg, None, b),
-            (Op::X, Some(a), b),
-        ];
-        gates.into_iter().for_each(|(op, control, target)| self.put(op, control, target));
+        let qubits = [a, b, c];
+        for (op, control, at) in CCZ {
+            self.put(op, control.map(|at| qubits[at]), qubits[at]);
+        }
     }
 }
 
+/// CCZ by 7 T gates, one for each parity of the three qubits: the textbook Toffoli without its Hadamards.
+const CCZ: [GadgetGate; 13] = [
+    (Op::X, Some(1), 2),
+    (Op::Tdg, None, 2),
+    (Op::X, Some(0), 2),
+    (Op::T, None, 2),
+    (Op::X, Some(1), 2),
+    (Op::Tdg, None, 2),
+    (Op::X, Some(0), 2),
+    (Op::T, None, 1),
+    (Op::T, None, 2),
+    (Op::X, Some(0), 1),
+    (Op::T, None, 0),
+    (Op::Tdg, None, 1),
+    (Op::X, Some(0), 1),
+];
+
 /// The gates of the AND with 4 T gates, in the qubits `[a, b, target]`: the operation, its control, its target.
-const AND: [(Op, Option<usize>, usize); 13] = [
+const AND: [GadgetGate; 13] = [
     (Op::H, None, 2),
     (Op::T, None, 2),
     (Op::X, Some(0), 2),
@@ -154,6 +159,17 @@ const AND: [(Op, Option<usize>, usize); 13] = [
     (Op::H, None, 2),
     (Op::S, None, 2),
 ];
+
+/// The runs of gates that this file writes, by name: an AND into a clean ancilla, its inverse, and a CCZ.
+pub fn gadgets() -> Vec<Gadget> {
+    let qubits = &["a", "b", "c"];
+    let undone = AND.into_iter().rev().map(|(op, control, at)| (inverse(op), control, at)).collect();
+    vec![
+        Gadget { name: "and_into_clean", qubits, gates: AND.to_vec() },
+        Gadget { name: "undo_and", qubits, gates: undone },
+        Gadget { name: "sign_of_three", qubits, gates: CCZ.to_vec() },
+    ]
+}
 
 fn inverse(op: Op) -> Op {
     match op {

@@ -15,6 +15,7 @@
 
 mod conjugation;
 mod emit;
+mod forms;
 mod gates;
 mod multi;
 mod plan;
@@ -27,10 +28,12 @@ mod within;
 use thiserror::Error;
 
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part};
+use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part, tidy};
 use crate::diag::{Code, Diagnostic};
 use crate::make::network::{Lit, Network};
 
+pub use forms::{Turn, lower_turn};
+pub use gates::gadgets;
 pub use multi::{Idle, Way, append_controlled, ways};
 pub use reflection::{append_reflection, least_reflection_work, reflection_work};
 pub use within::{Favour, Limits, Lowered, front_of, lower_within};
@@ -111,17 +114,29 @@ impl LowerError {
 
 /// The oracle of a network.
 pub fn lower(network: &Network, options: &Options, budget: &Budget) -> Result<Circuit, LowerError> {
-    if network.searched().is_empty() {
-        return Err(LowerError::NoBits);
-    }
-    match network.root() {
-        Lit::NO => return Err(LowerError::NothingMarked),
-        Lit::YES => return Err(LowerError::EverythingMarked),
-        _ => {}
-    }
+    refuse_trivial(network)?;
     let plan = plan::plan(network, options);
     let steps = steps::steps(&plan, options, budget)?;
-    emit::emit(&plan, &steps, options, budget)
+    Ok(tidied(emit::emit(&plan, &steps, options, budget)?, options.level))
+}
+
+/// The circuit without gates that undo each other, and at `clifford-t` with rotations merged.
+fn tidied(circuit: Circuit, level: Level) -> Circuit {
+    match level {
+        Level::Wide => circuit,
+        Level::Toffoli | Level::Feedback => tidy::cancel(&circuit),
+        Level::CliffordT => tidy::cancel(&tidy::fold(&tidy::cancel(&circuit))),
+    }
+}
+
+/// Where there is nothing to search or to tell there is no circuit.
+fn refuse_trivial(network: &Network) -> Result<(), LowerError> {
+    match network.root() {
+        _ if network.searched().is_empty() => Err(LowerError::NoBits),
+        Lit::NO => Err(LowerError::NothingMarked),
+        Lit::YES => Err(LowerError::EverythingMarked),
+        _ => Ok(()),
+    }
 }
 
 /// The ANDs that an oracle computes or marks, those it undoes not included, measured on the gates of the network's

@@ -17,7 +17,8 @@ use super::gates::Pen;
 use super::plan::keep_odd;
 use super::schedule::cells::{CellId, Cells, Form, Term};
 use super::schedule::program::Move;
-use super::{LowerError, Options};
+use super::{LowerError, Options, Turn};
+use std::f64::consts::PI;
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Condition, Control, Level, MARK, Mark, MeasuredId, Op, Part, QubitId, SEARCH, WORK};
 use crate::id::{ConstraintId, IdVec};
@@ -25,21 +26,56 @@ use crate::id::{ConstraintId, IdVec};
 /// How many moves are written between two looks at the clock.
 const MOVES_BETWEEN_LOOKS: usize = 1024;
 
-/// Writes the oracle of a program that needs so many ancillas, over so many searched qubits.
+/// What is done where the root holds.
+#[derive(Clone, Copy, PartialEq, Debug)]
+pub(super) enum Marking {
+    /// The sign is flipped.
+    Sign,
+    /// The mark is flipped.
+    Toggle,
+    /// The phase is turned; the root is held.
+    Turn(Turn),
+}
+
+/// The name of the register of the control.
+const CONTROL: &str = "control";
+
+impl Marking {
+    pub(super) fn of(mark: Mark) -> Self {
+        if mark == Mark::Bit { Self::Toggle } else { Self::Sign }
+    }
+
+    fn register(self) -> Option<&'static str> {
+        match self {
+            Self::Toggle => Some(MARK),
+            Self::Turn(Turn { controlled: true, .. }) => Some(CONTROL),
+            _ => None,
+        }
+    }
+
+    /// How many ancillas it needs besides those of the program: a turn under a control, unless it is a sign, is a turn
+    /// where the AND of root and control holds.
+    pub(super) fn qubits(self) -> usize {
+        usize::from(matches!(self, Self::Turn(turn) if turn.controlled && turn.angle != PI))
+    }
+}
+
+/// Writes the oracle of a program over so many searched qubits, with so many ancillas for the program and the marking.
 pub(super) fn replay(
     cells: &Cells,
     moves: &[Move],
     (search, ancillas): (usize, usize),
     options: &Options,
+    marking: Marking,
     budget: &Budget,
 ) -> Result<Circuit, LowerError> {
     let mut circuit = Circuit::new();
     let search = circuit.add_qubits(SEARCH, search);
-    let mark = (options.mark == Mark::Bit).then(|| circuit.add_qubits(MARK, 1)[0]);
+    let mark = marking.register().map(|name| circuit.add_qubits(name, 1)[0]);
     let work = if ancillas > 0 { circuit.add_qubits(WORK, ancillas) } else { Vec::new() };
     work.iter().for_each(|&qubit| circuit.push(Op::Reset, &[], qubit));
     circuit.note(0, Part::Prepare, None);
-    let measured = if options.level == Level::Feedback { measured(moves) } else { 0 };
+    let measured = if options.level == Level::Feedback { measured(moves) + marking.qubits() } else { 0 };
     let outcomes = if measured > 0 { circuit.add_measured(OUTCOME, measured) } else { Vec::new() };
     let mut writer = Writer {
         cells,
@@ -47,6 +83,7 @@ pub(super) fn replay(
         level: options.level,
         condition: None,
         search,
+        marking,
         mark,
         places: vec![None; cells.list.len()].into(),
         free: work.into_iter().map(Reverse).collect(),
@@ -76,6 +113,8 @@ struct Writer<'a> {
     level: Level,
     condition: Option<Condition>,
     search: Vec<QubitId>,
+    marking: Marking,
+    /// The qubit of the mark or of the control.
     mark: Option<QubitId>,
     /// Where each held cell is.
     places: IdVec<CellId, Option<QubitId>>,
@@ -210,6 +249,10 @@ impl Writer<'_> {
     /// complemented.
     fn mark(&mut self) -> Result<(), LowerError> {
         let cells = self.cells;
+        if let Marking::Turn(turn) = self.marking {
+            self.turn(turn);
+            return Ok(());
+        }
         let mut complemented = cells.root_complemented;
         for term in &cells.terms {
             match (term, self.mark) {
@@ -241,6 +284,54 @@ impl Writer<'_> {
             }
         }
         Ok(())
+    }
+}
+
+/// The turn of a root that is held.
+impl Writer<'_> {
+    fn turn(&mut self, turn: Turn) {
+        let terms: Vec<&Form> = self.cells.terms.iter().filter_map(Term::held).collect();
+        let mut qubits: Vec<QubitId> = terms.iter().flat_map(|form| self.qubits(form)).collect();
+        keep_odd(&mut qubits);
+        let complemented = terms.iter().fold(self.cells.root_complemented, |sum, form| sum ^ form.complemented);
+        let Some((&root, others)) = qubits.split_last() else {
+            return self.turn_everywhere(turn, complemented);
+        };
+        others.iter().for_each(|&other| self.pen().cx(other, root));
+        (0..usize::from(complemented)).for_each(|_| self.pen().push(Op::X, &[], root));
+        self.turn_on(turn, root);
+        (0..usize::from(complemented)).for_each(|_| self.pen().push(Op::X, &[], root));
+        others.iter().rev().for_each(|&other| self.pen().cx(other, root));
+    }
+
+    /// The phase where `root` is 1.
+    fn turn_on(&mut self, turn: Turn, root: QubitId) {
+        match self.mark {
+            None if turn.angle == PI => self.pen().push(Op::Z, &[], root),
+            None => self.circuit.push_angle(None, Op::P, turn.angle, &[], root),
+            Some(control) if turn.angle == PI => self.pen().push(Op::Z, &[Control::on(control)], root),
+            Some(control) => {
+                let Reverse(both) = self.free.pop().expect("counted by the marking");
+                let controls = [Control::on(control), Control::on(root)];
+                let outcome = self.outcomes.next();
+                self.pen().and(&controls, both);
+                self.circuit.push_angle(None, Op::P, turn.angle, &[], both);
+                self.pen().erase(&controls, both, outcome);
+                self.free.push(Reverse(both));
+            }
+        }
+    }
+
+    /// A root whose parts cancel is constant: the phase is turned everywhere, or nowhere.
+    fn turn_everywhere(&mut self, turn: Turn, holds: bool) {
+        if holds {
+            let qubit = self.mark.unwrap_or(self.search[0]);
+            let times = if self.mark.is_some() { 1 } else { 2 };
+            for _ in 0..times {
+                self.circuit.push_angle(None, Op::P, turn.angle, &[], qubit);
+                (0..times - 1).for_each(|_| self.circuit.push(Op::X, &[], qubit));
+            }
+        }
     }
 }
 

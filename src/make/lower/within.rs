@@ -8,10 +8,11 @@
 //! ([`schedule`](super::schedule)). Where only qubits are limited, the schedules' own counts decide, which are counts of
 //! moves; otherwise all candidates are written and their gates counted.
 
+use super::replay::Marking;
 use super::schedule::cells::{Cells, cells};
 use super::schedule::front::{Point, front};
 use super::schedule::program::Pay;
-use super::{LowerError, Options, and_count, lower, replay};
+use super::{LowerError, Options, and_count, lower, replay, tidied};
 use crate::budget::Budget;
 use crate::circuit::figures::{Figures, figures};
 use crate::circuit::{Circuit, Level, Mark};
@@ -170,7 +171,8 @@ fn write(
     budget: &Budget,
 ) -> Result<Lowered, LowerError> {
     let size = (network.searched().len(), point.cost.ancillas);
-    let circuit = replay::replay(cells, &point.moves, size, options, budget)?;
+    let circuit = replay::replay(cells, &point.moves, size, options, Marking::of(options.mark), budget)?;
+    let circuit = tidied(circuit, options.level);
     let figures = figures(&circuit);
     // A cell that is marked directly into a qubit is one AND more; a sign is none.
     let toggled = if options.mark == Mark::Bit { cells.direct().count() as u64 } else { 0 };

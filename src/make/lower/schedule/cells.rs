@@ -65,6 +65,16 @@ pub(in crate::make::lower) enum Term {
     Held(Form),
 }
 
+impl Term {
+    /// The form that is held for marking.
+    pub(in crate::make::lower) fn held(&self) -> Option<&Form> {
+        match self {
+            Self::Held(form) => Some(form),
+            Self::Direct(_) => None,
+        }
+    }
+}
+
 /// The ANDs of a network.
 pub(in crate::make::lower) struct Cells {
     pub(in crate::make::lower) list: IdVec<CellId, Cell>,

@@ -98,6 +98,13 @@ impl Front<'_> {
     }
 }
 
+/// The program that computes every cell once and keeps it.
+pub(in crate::make::lower) fn keep_all(cells: &Cells) -> Point {
+    let moves = there_and_back(order(cells).into_iter().map(Move::Compute).collect());
+    let cost = cost(cells, &moves).unwrap_or_else(|fault| unreachable!("a schedule is wrong: {fault}"));
+    Point { cost, moves }
+}
+
 fn there_and_back(mut moves: Vec<Move>) -> Vec<Move> {
     let back: Vec<Move> = backwards(&moves).collect();
     moves.push(Move::Mark);
