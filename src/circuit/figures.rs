@@ -6,7 +6,7 @@ use crate::circuit::{Circuit, Gate, Op, PerQubit};
 use crate::id::Id;
 
 /// Counts over a circuit, every block as often as it is applied.
-#[derive(Clone, Copy, PartialEq, Eq, Debug, Default, Serialize)]
+#[derive(Clone, Copy, PartialEq, Debug, Default, Serialize)]
 pub struct Figures {
     /// Qubits.
     pub qubits: u64,
@@ -14,6 +14,9 @@ pub struct Figures {
     pub gates: u64,
     /// T gates and their inverses; those that depend on a measured bit count in full (the worst case).
     pub t_count: u64,
+    /// T gates applied on average: a gate under conditions counts by the chance that they hold, where a qubit measured
+    /// right after a Hadamard gate gives 1 in half of all cases, and any other measurement in all.
+    pub t_count_expected: f64,
     /// Layers that hold a T gate, when every gate starts as soon as its qubits and its measured bit are ready.
     pub t_depth: u64,
     /// CNOT gates: X with one control.
@@ -38,14 +41,20 @@ pub fn figures(circuit: &Circuit) -> Figures {
     for block in circuit.blocks() {
         let mut one = Figures::default();
         let mut layers = Layers::new(circuit);
+        let mut chances = Chances::new(circuit);
         for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
             count(&mut one, gate);
+            if matches!(gate.op(), Op::T | Op::Tdg) {
+                one.t_count_expected += chances.of(gate);
+            }
+            chances.follow(gate);
             layers.place(circuit, gate);
         }
         // A file may repeat a block up to 2^63 times: the count then stays at the largest number.
         let add = |total: &mut u64, one: u64| *total = total.saturating_add(one.saturating_mul(block.repeat));
         add(&mut total.gates, one.gates);
         add(&mut total.t_count, one.t_count);
+        total.t_count_expected += one.t_count_expected * block.repeat as f64;
         add(&mut total.cx_count, one.cx_count);
         add(&mut total.and_gates, one.and_gates);
         add(&mut total.rotations, one.rotations);
@@ -65,6 +74,35 @@ fn count(figures: &mut Figures, gate: &Gate) {
         Op::P | Op::Rz | Op::Ry => figures.rotations += 1,
         Op::Measure => figures.measurements += 1,
         _ => {}
+    }
+}
+
+/// The chance that each measured bit is 1.
+struct Chances {
+    bits: Vec<f64>,
+    /// For each qubit, the chance that its last gate was a Hadamard gate.
+    turned: PerQubit<Option<f64>>,
+}
+
+impl Chances {
+    fn new(circuit: &Circuit) -> Self {
+        Self { bits: vec![1.0; circuit.measured_count()], turned: vec![None; circuit.qubit_count()].into() }
+    }
+
+    /// The chance that a gate is applied.
+    fn of(&self, gate: &Gate) -> f64 {
+        gate.condition().map_or(1.0, |condition| match condition.value() {
+            true => self.bits[condition.bit().index()],
+            false => 1.0,
+        })
+    }
+
+    fn follow(&mut self, gate: &Gate) {
+        let turned = (gate.op() == Op::H).then(|| self.of(gate));
+        if let Some(bit) = gate.measured() {
+            self.bits[bit.index()] = self.turned[gate.target()].map_or(1.0, |chance| chance / 2.0);
+        }
+        self.turned[gate.target()] = turned;
     }
 }
 

@@ -11,6 +11,7 @@ pub mod level;
 pub mod product;
 pub mod qasm;
 pub mod registers;
+pub mod tidy;
 
 use std::num::NonZeroU32;
 use std::ops::Range;

@@ -7,17 +7,17 @@ use num_bigint::BigUint;
 use num_traits::Zero;
 
 use crate::budget::Budget;
-use crate::circuit::{Level, Mark, Product, qasm};
+use crate::circuit::{Figures, Level, Mark, Product};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
-use crate::cli::{Global, Outcome, input, plan, progress};
+use crate::cli::{Global, Outcome, input, limits, plan, progress, texts, turns};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
 use crate::pipeline::{self, Settings};
 use crate::places::Places;
 use crate::report::header::header;
 use crate::report::places::places_json;
-use crate::report::{files, json, summary};
+use crate::report::{self, files, json, summary};
 use crate::source::Loaded;
 use crate::span::Sources;
 
@@ -31,12 +31,21 @@ pub(super) struct Options {
     /// How the oracle marks: phase or bit
     #[arg(long, default_value = "phase", value_parser = input::mark)]
     mark: Mark,
+    #[command(flatten)]
+    limits: limits::Options,
+    /// List all circuits found of which none is better than another; with -o a picture of them in SVG
+    #[arg(long, conflicts_with_all = ["whole", "qubits", "t_count", "depth"])]
+    front: bool,
     /// The whole search: prepare, iterate, measure
     #[arg(long)]
     whole: bool,
     /// With --whole: plan for this many marked states instead of counting them
     #[arg(long, value_name = "NUMBER", requires = "whole", value_parser = plan::number)]
     count: Option<BigUint>,
+    #[command(flatten)]
+    turns: turns::Options,
+    #[command(flatten)]
+    texts: texts::Options,
     /// Where the circuit goes; - is standard output. The places file is written beside it [default: -]
     #[arg(short, long, value_name = "FILE")]
     output: Option<String>,
@@ -48,18 +57,30 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     if options.whole && options.mark == Mark::Bit {
         return Err(Failure::usage(whole_needs_phase()));
     }
+    let limits = options.limits.limits(options.level)?;
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
     let places = Places::as_given(&loaded.problem);
     let stage = |error| Failure::stage(&error, &sources);
-    let mut product = pipeline::oracle(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+    if options.front {
+        let front = pipeline::front(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+        drop(line);
+        return show_front(global, options, &loaded, &sources, &front);
+    }
+    let turn = options.turns.turn(options.mark, options.whole)?;
+    let mut product = match turn {
+        Some(turn) => pipeline::turned(&loaded.problem, &places, settings, turn, &limits, &budget),
+        None => pipeline::oracle_within(&loaded.problem, &places, settings, &limits, &budget),
+    }
+    .map_err(stage)?;
     let mut counted = None;
     if options.whole {
         let iterations;
         (iterations, counted) = iterations_for(&loaded, &places, settings, options, &budget, &sources)?;
-        product = pipeline::whole_search(&product, &iterations).map_err(stage)?;
+        product = pipeline::whole_search_within(&product, &iterations, &limits).map_err(stage)?;
     }
     drop(line);
+    options.texts.check(&product)?;
     let header = header(&loaded, &places, &product, counted.as_ref());
     let figures = summary::circuit(&product);
     match options.output.as_deref() {
@@ -67,11 +88,15 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         None | Some("-") if global.json => return Err(Failure::usage(one_output())),
         None | Some("-") => {
             let mut text = Vec::new();
-            qasm::write::write(&product.circuit, &header, &mut text).expect("memory takes everything");
+            options.texts.write(&product, &header, (&loaded, &sources), &mut text).expect("memory takes everything");
             return Ok((Exit::Done, String::from_utf8(text).expect("OpenQASM is text")));
         }
-        Some(path) => write(Path::new(path), &loaded, &places, &product, &header)
-            .map_err(|error| Failure::stage(&error.into(), &sources))?,
+        Some(path) => {
+            let path = Path::new(path);
+            files::write_whole(path, |out| options.texts.write(&product, &header, (&loaded, &sources), out))
+                .and_then(|()| pipeline::write_json(&places_path(path), &places_json(&loaded, &places)))
+                .map_err(|error| Failure::stage(&error.into(), &sources))?;
+        }
     }
     if !global.json {
         return Ok((Exit::Done, figures));
@@ -83,15 +108,26 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     Ok((Exit::Done, json::print(object)))
 }
 
-fn write(
-    path: &Path,
+fn show_front(
+    global: &Global,
+    options: &Options,
     loaded: &Loaded,
-    places: &Places,
-    product: &Product,
-    header: &[String],
-) -> Result<(), files::WriteError> {
-    files::write_whole(path, |mut out| qasm::write::write(&product.circuit, header, &mut out))?;
-    pipeline::write_json(&places_path(path), &places_json(loaded, places))
+    sources: &Sources,
+    front: &[Product],
+) -> Outcome {
+    let figures: Vec<Figures> = front.iter().map(|product| product.figures).collect();
+    if let Some(path) = options.output.as_deref().filter(|path| *path != "-") {
+        let picture = report::front::picture(options.level, &figures);
+        files::write_whole(Path::new(path), |out| out.write_all(picture.as_bytes()))
+            .map_err(|error| Failure::stage(&error.into(), sources))?;
+    }
+    if !global.json {
+        return Ok((Exit::Done, report::front::table(options.level, &figures)));
+    }
+    let mut object = json::envelope("compile", loaded, sources, false);
+    object.insert("front".to_owned(), report::front::json(options.level, &figures));
+    object.insert("file".to_owned(), options.output.clone().into());
+    Ok((Exit::Done, json::print(object)))
 }
 
 /// `S.places.json` beside `S.qasm`.

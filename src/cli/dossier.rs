@@ -7,7 +7,7 @@ use clap::Args;
 use crate::circuit::{Level, Mark};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
-use crate::cli::{Global, Outcome, input, progress};
+use crate::cli::{Global, Outcome, input, limits, progress};
 use crate::judge::audit::Outcome as Found;
 use crate::pipeline;
 use crate::places::Places;
@@ -26,6 +26,8 @@ pub(super) struct Options {
     /// How the oracle marks: phase or bit; the search always has a phase oracle
     #[arg(long, default_value = "phase", value_parser = input::mark)]
     mark: Mark,
+    #[command(flatten)]
+    limits: limits::Options,
     /// The folder to write [default: out/NAME]
     #[arg(short, long, value_name = "DIR")]
     output: Option<PathBuf>,
@@ -34,10 +36,11 @@ pub(super) struct Options {
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let (loaded, sources) = input::load(global, &options.file)?;
     let folder = options.output.clone().unwrap_or_else(|| Path::new("out").join(name(&options.file)));
+    let limits = options.limits.limits(options.level)?;
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
     let places = Places::as_given(&loaded.problem);
-    let dossier = pipeline::dossier(&loaded, &places, &folder, settings, &budget)
+    let dossier = pipeline::dossier(&loaded, &places, &folder, settings, &limits, &budget)
         .map_err(|error| Failure::stage(&error, &sources))?;
     drop(line);
     let exit = exit_of(&dossier);

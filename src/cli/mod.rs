@@ -11,10 +11,13 @@ mod exit;
 mod explain;
 mod input;
 mod ledger;
+mod limits;
 mod plan;
 mod progress;
 mod render;
 mod shots;
+mod texts;
+mod turns;
 
 use std::ffi::OsString;
 use std::io::{self, Write};
@@ -76,7 +79,7 @@ enum Command {
     /// The tally: how many solutions
     Count(count::Options),
     /// The oracle, or with --whole the search circuit
-    Compile(compile::Options),
+    Compile(Box<compile::Options>),
     /// Judge an OpenQASM circuit against the problem
     Audit(audit::Options),
     /// All problems of a folder against the expected tallies and costs

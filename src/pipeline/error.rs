@@ -79,7 +79,7 @@ impl Error {
     /// Whether a budget ran out, rather than anything being wrong.
     pub fn is_unfinished(&self) -> bool {
         match self {
-            Error::Lower(error) => matches!(error, LowerError::OutOfTime),
+            Error::Lower(error) => error.is_unfinished(),
             Error::Certificate(refusal) => refusal.is_undecided(),
             _ => false,
         }

@@ -22,6 +22,7 @@ use crate::circuit::{Circuit, Figures, Level, Mark, Product};
 use crate::judge::audit::{self, Outcome, Verdict};
 use crate::judge::count::{self, Counted, Over};
 use crate::ledger::{Cost, Entry};
+use crate::make::lower::Limits;
 use crate::places::Places;
 use crate::problem::Problem;
 use crate::report::dossier::{Dossier, Judged};
@@ -32,7 +33,7 @@ use crate::source::Loaded;
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
-pub use oracle::{gates_of_iteration, oracle, whole_search};
+pub use oracle::{front, gates_of_iteration, oracle, oracle_within, turned, whole_search, whole_search_within};
 pub use planning::{advice_on, plan_for};
 pub use tally::{Margin, Tallied, tally, tally_for_plan};
 
@@ -84,16 +85,17 @@ pub fn dossier(
     places: &Places,
     folder: &Path,
     settings: Settings,
+    limits: &Limits,
     budget: &Budget,
 ) -> Result<Dossier, Error> {
     let problem = &loaded.problem;
     let counted = count(problem, places, settings, budget)?;
     write_json(&folder.join("places.json"), &places_json(loaded, places))?;
-    let (oracle, levels) = match oracle(problem, places, settings, budget) {
+    let (oracle, levels) = match oracle_within(problem, places, settings, limits, budget) {
         Ok(product) => {
             let circuit = write_and_read(&folder.join("oracle.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit(problem, places, &circuit, &audit_options(settings, &counted), budget)?;
-            let levels = every_level(problem, places, settings, budget)?;
+            let levels = every_level(problem, places, settings, limits, budget)?;
             (Ok(Judged { product, verdict }), levels)
         }
         Err(Error::Lower(error)) => (Err(why_no_oracle(error)?), Vec::new()),
@@ -102,8 +104,8 @@ pub fn dossier(
     let (plan, mut advice) = plan_for(problem, &counted);
     let search = match (&plan, &oracle) {
         (Some(plan), Ok(_)) if plan.success > 0.0 && plan.success < 1.0 || !plan.iterations.is_zero() => {
-            let phase = self::oracle(problem, places, Settings { mark: Mark::Phase, ..settings }, budget)?;
-            let product = whole_search(&phase, &plan.iterations)?;
+            let phase = oracle_within(problem, places, Settings { mark: Mark::Phase, ..settings }, limits, budget)?;
+            let product = whole_search_within(&phase, &plan.iterations, limits)?;
             let circuit = write_and_read(&folder.join("search.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit::audit_search(problem, places, &circuit, SEARCH_WORK, budget)?;
             if verdict.iterations_checked > 0 && BigUint::from(verdict.iterations) != plan.iterations {
@@ -125,7 +127,7 @@ pub fn dossier(
 /// What the ledger keeps of a problem: the main job without its folder.
 pub fn ledger_entry(loaded: &Loaded, places: &Places, settings: Settings, budget: &Budget) -> Result<Entry, Error> {
     let scratch = tempfile::tempdir().map_err(|error| WriteError { path: std::env::temp_dir(), error })?;
-    let found = dossier(loaded, places, scratch.path(), settings, budget)?;
+    let found = dossier(loaded, places, scratch.path(), settings, &Limits::default(), budget)?;
     let cost = |product: &Product| {
         let Figures { qubits, t_count, depth, gates, .. } = product.figures;
         (product.level.name().to_owned(), Cost { qubits, and_count: product.and_count, t_count, depth, gates })

@@ -5,7 +5,7 @@ use num_bigint::BigUint;
 use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::circuit::{Level, Mark, Product};
-use crate::make::lower::{self, LowerError};
+use crate::make::lower::{self, Limits, LowerError, Lowered, Turn};
 use crate::make::network;
 use crate::places::Places;
 use crate::problem::Problem;
@@ -13,17 +13,70 @@ use crate::search::{Advice, whole};
 
 /// Compiles the oracle.
 pub fn oracle(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Product, Error> {
+    oracle_within(problem, places, settings, &Limits::default(), budget)
+}
+
+/// Compiles the oracle that keeps to the limits.
+pub fn oracle_within(
+    problem: &Problem,
+    places: &Places,
+    settings: Settings,
+    limits: &Limits,
+    budget: &Budget,
+) -> Result<Product, Error> {
     let network = network::build(problem, places);
-    let options = lower::Options { level: settings.level, mark: settings.mark };
-    let circuit = lower::lower(&network, &options, budget)?;
-    let and_count = lower::and_count(&network, settings.mark, budget)?;
-    Ok(Product::new(circuit, settings.level, settings.mark, and_count))
+    let lowered = lower::lower_within(&network, &options(settings), limits, budget)?;
+    Ok(product(lowered, settings))
+}
+
+/// Compiles another form of the oracle: an angle in place of the sign, or under a control.
+pub fn turned(
+    problem: &Problem,
+    places: &Places,
+    settings: Settings,
+    turn: Turn,
+    limits: &Limits,
+    budget: &Budget,
+) -> Result<Product, Error> {
+    let network = network::build(problem, places);
+    Ok(product(lower::lower_turn(&network, settings.level, turn, limits, budget)?, settings))
+}
+
+/// The circuits of which none is better than another in qubits, T gates and depth at once.
+pub fn front(
+    problem: &Problem,
+    places: &Places,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<Vec<Product>, Error> {
+    let network = network::build(problem, places);
+    let front = lower::front_of(&network, &options(settings), budget)?;
+    Ok(front.into_iter().map(|lowered| product(lowered, settings)).collect())
+}
+
+fn options(settings: Settings) -> lower::Options {
+    lower::Options { level: settings.level, mark: settings.mark }
+}
+
+fn product(lowered: Lowered, settings: Settings) -> Product {
+    let Lowered { circuit, and_count, figures } = lowered;
+    Product { circuit, level: settings.level, mark: settings.mark, and_count, figures }
 }
 
 /// Puts a phase oracle into the whole search circuit.
 pub fn whole_search(oracle: &Product, iterations: &BigUint) -> Result<Product, Error> {
+    whole_search_within(oracle, iterations, &Limits::default())
+}
+
+/// Puts a phase oracle into the whole search circuit, whose reflection keeps to the limit of qubits.
+pub fn whole_search_within(oracle: &Product, iterations: &BigUint, limits: &Limits) -> Result<Product, Error> {
     let iterations = u64::try_from(iterations).map_err(|_| Error::TooManyIterations(iterations.clone()))?;
-    let circuit = whole::whole_search(&oracle.circuit, iterations, oracle.level);
+    let most = limits.qubits.unwrap_or(u64::MAX);
+    let circuit = whole::whole_search_within(&oracle.circuit, iterations, oracle.level, most);
+    let least = circuit.qubit_count() as u64;
+    if least > most {
+        return Err(LowerError::TooFewQubits { asked: most, least }.into());
+    }
     Ok(Product::new(circuit, oracle.level, oracle.mark, oracle.and_count))
 }
 
@@ -39,13 +92,24 @@ pub fn gates_of_iteration(
     Ok(gates(2)?.saturating_sub(gates(1)?))
 }
 
+/// The oracle at every level that has one with so many qubits.
 pub(super) fn every_level(
     problem: &Problem,
     places: &Places,
     settings: Settings,
+    limits: &Limits,
     budget: &Budget,
 ) -> Result<Vec<Product>, Error> {
-    Level::ALL.iter().map(|&level| oracle(problem, places, Settings { level, ..settings }, budget)).collect()
+    let mut levels = Vec::new();
+    for level in Level::ALL {
+        let limits = Limits { qubits: limits.qubits, ..Limits::default() };
+        match oracle_within(problem, places, Settings { level, ..settings }, &limits, budget) {
+            Ok(product) => levels.push(product),
+            Err(Error::Lower(LowerError::TooFewQubits { .. })) => {}
+            Err(error) => return Err(error),
+        }
+    }
+    Ok(levels)
 }
 
 /// A problem without an oracle is an answer with advice; a budget that ran out is not.
@@ -54,6 +118,6 @@ pub(super) fn why_no_oracle(error: LowerError) -> Result<Advice, Error> {
         LowerError::NoBits => Ok(Advice::nothing_to_search()),
         LowerError::NothingMarked => Ok(Advice::no_solution()),
         LowerError::EverythingMarked => Ok(Advice::everything_marked()),
-        LowerError::OutOfTime => Err(error.into()),
+        _ => Err(error.into()),
     }
 }

@@ -112,6 +112,7 @@ pub fn circuit_json(product: &Product) -> Value {
         "work": register_len(&product.circuit, circuit::WORK),
         "and_count": product.and_count,
         "t_count": has_t.then_some(figures.t_count),
+        "t_count_expected": (product.level == Level::Feedback).then_some(figures.t_count_expected),
         "t_depth": has_t.then_some(figures.t_depth),
         "cx_count": figures.cx_count,
         "depth": figures.depth,

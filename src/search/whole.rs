@@ -9,13 +9,20 @@
 
 use crate::circuit::{Circuit, Control, FOUND, Gate, Level, MARK, Op, Part, QubitId, SEARCH, WORK};
 use crate::id::{Id, IdVec};
-use crate::make::lower::{append_reflection, reflection_work};
+use crate::make::lower::{append_reflection, least_reflection_work, reflection_work};
 
 /// The search circuit around an oracle whose registers are `search` and, where it has them, `mark` and `work`.
 pub fn whole_search(oracle: &Circuit, iterations: u64, level: Level) -> Circuit {
+    whole_search_within(oracle, iterations, level, u64::MAX)
+}
+
+/// The search circuit with at most so many qubits, where the oracle itself and one ancilla for the reflection fit.
+pub fn whole_search_within(oracle: &Circuit, iterations: u64, level: Level, qubits: u64) -> Circuit {
     let mut circuit = Circuit::new();
     let (search, mark) = (oracle.register(SEARCH), oracle.register(MARK));
-    let work = oracle.register(WORK).len().max(if iterations > 0 { reflection_work(search.len(), level) } else { 0 });
+    let room = usize::try_from(qubits).unwrap_or(usize::MAX).saturating_sub(search.len() + mark.len());
+    let reflecting = reflection_work(search.len(), level).min(room.max(least_reflection_work(search.len(), level)));
+    let work = oracle.register(WORK).len().max(if iterations > 0 { reflecting } else { 0 });
     let search_len = search.len();
     let search = circuit.add_qubits(SEARCH, search_len);
     let mark = if mark.is_empty() { Vec::new() } else { circuit.add_qubits(MARK, mark.len()) };

@@ -12,6 +12,7 @@ mod inputs;
 mod judging;
 mod known_counts;
 mod language;
+mod lower;
 mod making;
 mod network;
 mod planning;

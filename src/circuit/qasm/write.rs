@@ -10,17 +10,41 @@
 use std::f64::consts::PI;
 use std::io::{self, Write};
 
+use super::gadget::Gadget;
 use crate::circuit::{Circuit, Control, Gate, Op, Part, Region, Register};
-use crate::id::Id;
+use crate::id::{ConstraintId, Id};
+
+/// What makes a text readable.
+#[derive(Clone, Copy)]
+pub struct Readable<'a> {
+    /// Runs of gates that are written by name, the first that fits; those that occur are defined.
+    pub gadgets: &'a [Gadget],
+    /// What is said of a constraint beside its number.
+    pub note: &'a dyn Fn(ConstraintId) -> String,
+}
 
 /// Writes the circuit; `header` lines become comments below the version line.
 pub fn write(circuit: &Circuit, header: &[String], out: &mut impl Write) -> io::Result<()> {
+    write_readable(circuit, header, &Readable { gadgets: &[], note: &|_| String::new() }, out)
+}
+
+/// Writes the circuit with names for gadgets and words for constraints.
+pub fn write_readable(
+    circuit: &Circuit,
+    header: &[String],
+    readable: &Readable<'_>,
+    out: &mut impl Write,
+) -> io::Result<()> {
     let mut out = io::BufWriter::with_capacity(1 << 16, out);
     writeln!(out, "OPENQASM 3.0;")?;
     for line in header.iter().flat_map(|line| line.lines().chain(line.is_empty().then_some(""))) {
         writeln!(out, "{}", format!("// {line}").trim_end())?;
     }
     writeln!(out, "include \"stdgates.inc\";")?;
+    let occurs = |gadget: &&Gadget| {
+        (0..circuit.gates().len()).any(|at| gadget.found_in(circuit, &circuit.gates()[at..]).is_some())
+    };
+    readable.gadgets.iter().filter(occurs).try_for_each(|gadget| gadget.define(keyword, &mut out))?;
     for register in &circuit.qubits {
         writeln!(out, "qubit[{}] {};", register.len, register.name)?;
     }
@@ -34,6 +58,7 @@ pub fn write(circuit: &Circuit, header: &[String], out: &mut impl Write) -> io::
         regions: circuit.regions.iter().peekable(),
         part: None,
         indent: "",
+        readable: *readable,
     };
     for block in circuit.blocks() {
         let gates = block.gates.start as usize..block.gates.end as usize;
@@ -85,6 +110,7 @@ struct Writer<'a> {
     /// What the gates being written are for.
     part: Option<Part>,
     indent: &'static str,
+    readable: Readable<'a>,
 }
 
 impl Writer<'_> {
@@ -102,6 +128,10 @@ impl Writer<'_> {
             out.write_all(self.indent.as_bytes())?;
             let next_region = self.regions.peek().map_or(gates.end, |region| region.gates.start as usize);
             let limit = gates.end.min(next_region.max(at + 1));
+            if let Some(len) = self.gadget(out, at..limit)? {
+                at += len;
+                continue;
+            }
             match self.whole_register(at, limit) {
                 Some(register) => {
                     self.statement_on_register(out, at, register)?;
@@ -116,6 +146,19 @@ impl Writer<'_> {
         Ok(())
     }
 
+    /// Writes the gadget that the run begins with, if there is one, and says how many gates it has.
+    fn gadget(&self, out: &mut impl Write, run: std::ops::Range<usize>) -> io::Result<Option<usize>> {
+        let run = &self.circuit.gates()[run];
+        for gadget in self.readable.gadgets {
+            if let Some(qubits) = gadget.found_in(self.circuit, run) {
+                let names: Vec<&str> = qubits.iter().map(|qubit| self.qubits.get(qubit.index())).collect();
+                writeln!(out, "{} {};", gadget.name, names.join(", "))?;
+                return Ok(Some(gadget.gates.len()));
+            }
+        }
+        Ok(None)
+    }
+
     fn comment(&self, out: &mut impl Write, region: &Region) -> io::Result<()> {
         let part = match region.part {
             Part::Prepare => "prepare",
@@ -126,7 +169,10 @@ impl Writer<'_> {
             Part::Measure => "measure",
         };
         match region.constraint {
-            Some(constraint) => writeln!(out, "{}// {part} {constraint}", self.indent),
+            Some(constraint) => {
+                let note = (self.readable.note)(constraint);
+                writeln!(out, "{}", format!("{}// {part} {constraint} {note}", self.indent).trim_end())
+            }
             None => writeln!(out, "{}// {part}", self.indent),
         }
     }

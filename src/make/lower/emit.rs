@@ -1,14 +1,11 @@
-//! From steps to the gates of a level.
-//!
-//! An AND into a clean ancilla is one gate at `wide` and `toffoli`; below it is the 13-gate list with 4 T gates of
-//! C. Gidney, "Halving the cost of quantum addition", Quantum 2:74 (2018). Its inverse is the list backwards at
-//! `clifford-t`; at `feedback` it is a measurement in the X basis and, where that gave 1, a CZ on the two operands.
+//! From steps to gates: compute, mark, and undo in reverse order.
 
+use super::gates::Pen;
 use super::plan::Plan;
 use super::steps::{Step, Steps};
 use super::{LowerError, Options};
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Condition, Control, Level, MARK, MeasuredId, Op, Part, QubitId, SEARCH, WORK};
+use crate::circuit::{Circuit, Level, MARK, MeasuredId, Op, Part, SEARCH, WORK};
 
 /// The name of the register of measured bits that corrections depend on.
 pub(super) const OUTCOME: &str = "outcome";
@@ -61,135 +58,22 @@ struct Writer {
 
 impl Writer {
     fn step(&mut self, steps: &Steps, step: &Step) {
+        let mut pen = Pen::new(&mut self.circuit, self.level);
         match *step {
-            Step::Flip(qubit) => self.circuit.push(Op::X, &[], qubit),
-            Step::Cnot(source, target) => cx(&mut self.circuit, source, target),
-            Step::And(controls, target) => and(&mut self.circuit, self.level, steps.controls(controls), target),
-            Step::Toggle(controls, target) => match (self.level, steps.controls(controls)) {
-                (Level::Wide | Level::Toffoli, controls) => self.circuit.push(Op::X, controls, target),
-                (_, [a, b]) => {
-                    self.circuit.push(Op::H, &[], target);
-                    ccz(&mut self.circuit, a.qubit(), b.qubit(), target);
-                    self.circuit.push(Op::H, &[], target);
-                }
-                (_, controls) => unreachable!("{} controls at {}", controls.len(), self.level),
-            },
-            Step::Sign(controls) => sign(&mut self.circuit, self.level, steps.controls(controls)),
+            Step::Flip(qubit) => pen.push(Op::X, &[], qubit),
+            Step::Cnot(source, target) => pen.cx(source, target),
+            Step::And(controls, target) => pen.and(steps.controls(controls), target),
+            Step::Toggle(controls, target) => pen.toggle(steps.controls(controls), target),
+            Step::Sign(controls) => pen.sign(steps.controls(controls)),
         }
     }
 
     fn undo(&mut self, steps: &Steps, step: &Step) {
         if let Step::And(controls, target) = *step {
             let outcome = self.outcomes.next();
-            erase(&mut self.circuit, self.level, steps.controls(controls), target, outcome);
+            Pen::new(&mut self.circuit, self.level).erase(steps.controls(controls), target, outcome);
         } else {
             self.step(steps, step);
         }
     }
-}
-
-fn cx(circuit: &mut Circuit, source: QubitId, target: QubitId) {
-    circuit.push(Op::X, &[Control::on(source)], target);
-}
-
-/// -1 where all controls hold; the last of them holds on 1.
-pub(super) fn sign(circuit: &mut Circuit, level: Level, controls: &[Control]) {
-    let (&last, rest) = controls.split_last().expect("at least one control");
-    match (level, rest) {
-        (Level::CliffordT | Level::Feedback, [a, b]) => ccz(circuit, a.qubit(), b.qubit(), last.qubit()),
-        _ => circuit.push(Op::Z, rest, last.qubit()),
-    }
-}
-
-/// The gates of the AND with 4 T gates, in the qubits `[a, b, target]`: the operation, its control, its target.
-const AND: [(Op, Option<usize>, usize); 13] = [
-    (Op::H, None, 2),
-    (Op::T, None, 2),
-    (Op::X, Some(0), 2),
-    (Op::X, Some(1), 2),
-    (Op::X, Some(2), 0),
-    (Op::X, Some(2), 1),
-    (Op::Tdg, None, 0),
-    (Op::Tdg, None, 1),
-    (Op::T, None, 2),
-    (Op::X, Some(2), 0),
-    (Op::X, Some(2), 1),
-    (Op::H, None, 2),
-    (Op::S, None, 2),
-];
-
-fn inverse(op: Op) -> Op {
-    match op {
-        Op::T => Op::Tdg,
-        Op::Tdg => Op::T,
-        Op::S => Op::Sdg,
-        Op::Sdg => Op::S,
-        other => other,
-    }
-}
-
-/// The AND of the controls into a target that is 0.
-pub(super) fn and(circuit: &mut Circuit, level: Level, controls: &[Control], target: QubitId) {
-    if level <= Level::Toffoli {
-        circuit.push(Op::X, controls, target);
-        return;
-    }
-    let qubits = [controls[0].qubit(), controls[1].qubit(), target];
-    for (op, control, at) in AND {
-        put(circuit, op, control.map(|at| qubits[at]), qubits[at]);
-    }
-}
-
-fn put(circuit: &mut Circuit, op: Op, control: Option<QubitId>, target: QubitId) {
-    match control {
-        Some(control) => circuit.push(op, &[Control::on(control)], target),
-        None => circuit.push(op, &[], target),
-    }
-}
-
-/// Undoes [`and`]; the measured bit is used at `feedback` only.
-pub(super) fn erase(
-    circuit: &mut Circuit,
-    level: Level,
-    controls: &[Control],
-    target: QubitId,
-    outcome: Option<MeasuredId>,
-) {
-    match level {
-        Level::Wide | Level::Toffoli => circuit.push(Op::X, controls, target),
-        Level::CliffordT => {
-            let qubits = [controls[0].qubit(), controls[1].qubit(), target];
-            for (op, control, at) in AND.into_iter().rev() {
-                put(circuit, inverse(op), control.map(|at| qubits[at]), qubits[at]);
-            }
-        }
-        Level::Feedback => {
-            let outcome = outcome.expect("one measured bit for each AND");
-            circuit.push(Op::H, &[], target);
-            circuit.push_measure(None, target, outcome);
-            let condition = Some(Condition::new(outcome, true));
-            circuit.push_if(condition, Op::Z, &controls[..1], controls[1].qubit());
-            circuit.push(Op::Reset, &[], target);
-        }
-    }
-}
-
-/// CCZ by 7 T gates, one for each parity of the three qubits: the textbook Toffoli without its Hadamards.
-fn ccz(circuit: &mut Circuit, a: QubitId, b: QubitId, c: QubitId) {
-    let gates: [(Op, Option<QubitId>, QubitId); 13] = [
-        (Op::X, Some(b), c),
-        (Op::Tdg, None, c),
-        (Op::X, Some(a), c),
-        (Op::T, None, c),
-        (Op::X, Some(b), c),
-        (Op::Tdg, None, c),
-        (Op::X, Some(a), c),
-        (Op::T, None, b),
-        (Op::T, None, c),
-        (Op::X, Some(a), b),
-        (Op::T, None, a),
-        (Op::Tdg, None, b),
-        (Op::X, Some(a), b),
-    ];
-    gates.into_iter().for_each(|(op, control, target)| put(circuit, op, control, target));
 }

@@ -15,18 +15,28 @@
 
 mod conjugation;
 mod emit;
+mod forms;
+mod gates;
+mod multi;
 mod plan;
 mod reflection;
+mod replay;
+mod schedule;
 mod steps;
+mod within;
 
 use thiserror::Error;
 
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part};
+use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part, tidy};
 use crate::diag::{Code, Diagnostic};
 use crate::make::network::{Lit, Network};
 
-pub use reflection::{append_reflection, reflection_work};
+pub use forms::{Turn, lower_turn};
+pub use gates::gadgets;
+pub use multi::{Idle, Way, append_controlled, ways};
+pub use reflection::{append_reflection, least_reflection_work, reflection_work};
+pub use within::{Favour, Limits, Lowered, front_of, lower_within};
 
 /// What kind of oracle is wanted.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -52,12 +62,42 @@ pub enum LowerError {
     /// The budget ran out; half an oracle is of no use.
     #[error("the time for compiling ran out")]
     OutOfTime,
+    /// No circuit was found with so few qubits.
+    #[error("no circuit was found with {asked} qubits; the least that was found has {least}")]
+    TooFewQubits {
+        /// The limit.
+        asked: u64,
+        /// What would do.
+        least: u64,
+    },
+    /// No circuit within the limit of qubits was found with so few T gates.
+    #[error("no circuit within the limit of qubits was found with a T-count of {asked}; the least is {least}")]
+    TooFewT {
+        /// The limit.
+        asked: u64,
+        /// What would do.
+        least: u64,
+    },
+    /// No circuit within the other limits was found with so few layers.
+    #[error("no circuit within the other limits was found with a depth of {asked}; the least is {least}")]
+    TooShallow {
+        /// The limit.
+        asked: u64,
+        /// What would do.
+        least: u64,
+    },
 }
 
 impl LowerError {
     /// The message with its stable code.
     pub fn diagnostic(&self) -> Diagnostic {
+        let limit = |code, option, least| {
+            Diagnostic::error(Code(code), self.to_string()).help(format!("give at least {option} {least}"))
+        };
         let (code, help) = match self {
+            Self::TooFewQubits { least, .. } => return limit("C005", "--qubits", least),
+            Self::TooFewT { least, .. } => return limit("C006", "--t-count", least),
+            Self::TooShallow { least, .. } => return limit("C007", "--depth", least),
             Self::NoBits => ("C001", "every variable has one value only: `count` says whether the constraints hold"),
             Self::NothingMarked => ("C002", "there is nothing to search for; `count` gives the tally, which is 0"),
             Self::EverythingMarked => ("C003", "any assignment is a solution: nothing has to be searched"),
@@ -65,21 +105,38 @@ impl LowerError {
         };
         Diagnostic::error(Code(code), self.to_string()).help(help)
     }
+
+    /// Whether a budget was too small, rather than there being no circuit at all.
+    pub fn is_unfinished(&self) -> bool {
+        !matches!(self, Self::NoBits | Self::NothingMarked | Self::EverythingMarked)
+    }
 }
 
 /// The oracle of a network.
 pub fn lower(network: &Network, options: &Options, budget: &Budget) -> Result<Circuit, LowerError> {
-    if network.searched().is_empty() {
-        return Err(LowerError::NoBits);
-    }
-    match network.root() {
-        Lit::NO => return Err(LowerError::NothingMarked),
-        Lit::YES => return Err(LowerError::EverythingMarked),
-        _ => {}
-    }
+    refuse_trivial(network)?;
     let plan = plan::plan(network, options);
     let steps = steps::steps(&plan, options, budget)?;
-    emit::emit(&plan, &steps, options, budget)
+    Ok(tidied(emit::emit(&plan, &steps, options, budget)?, options.level))
+}
+
+/// The circuit without gates that undo each other, and at `clifford-t` with rotations merged.
+fn tidied(circuit: Circuit, level: Level) -> Circuit {
+    match level {
+        Level::Wide => circuit,
+        Level::Toffoli | Level::Feedback => tidy::cancel(&circuit),
+        Level::CliffordT => tidy::cancel(&tidy::fold(&tidy::cancel(&circuit))),
+    }
+}
+
+/// Where there is nothing to search or to tell there is no circuit.
+fn refuse_trivial(network: &Network) -> Result<(), LowerError> {
+    match network.root() {
+        _ if network.searched().is_empty() => Err(LowerError::NoBits),
+        Lit::NO => Err(LowerError::NothingMarked),
+        Lit::YES => Err(LowerError::EverythingMarked),
+        _ => Ok(()),
+    }
 }
 
 /// The ANDs that an oracle computes or marks, those it undoes not included, measured on the gates of the network's

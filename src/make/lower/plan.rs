@@ -298,7 +298,7 @@ fn collapse(
 }
 
 /// The first constraint that needs each node.
-fn owners(network: &Network) -> IdVec<NodeId, Option<ConstraintId>> {
+pub(super) fn owners(network: &Network) -> IdVec<NodeId, Option<ConstraintId>> {
     let mut owners: IdVec<NodeId, Option<ConstraintId>> = vec![None; network.nodes().len()].into();
     let mut seen: IdVec<NodeId, bool> = vec![false; network.nodes().len()].into();
     let mut open = Vec::new();

@@ -1,0 +1,169 @@
+//! Schedules against published tables, and what they say they cost against the gates.
+
+use super::cells::{Cell, CellId, Cells, Form, Term, cells};
+use super::front::front;
+use super::line::Line;
+use super::program::{Cost, Move, Pay, backwards, cost};
+use crate::budget::Budget;
+use crate::circuit::figures::figures;
+use crate::circuit::{Level, Mark};
+use crate::id::{Id, IdVec};
+use crate::make::lower::Options;
+use crate::make::lower::replay::{Marking, replay};
+use crate::make::network::Network;
+
+/// The AND of `m` clauses of three literals each, nothing shared.
+fn conjunction(m: usize) -> Network {
+    let mut text = "search".to_owned();
+    (0..3 * m).for_each(|at| text += &format!(" b{at}"));
+    let mut next = 3 * m + 1;
+    let mut gathered = String::new();
+    for clause in 0..m {
+        let [a, b, c] = [1, 2, 3].map(|at| 3 * clause + at);
+        text += &format!("\nn{next} = and n{a} n{b}\nn{} = and n{c} n{next}", next + 1);
+        next += 2;
+        if gathered.is_empty() {
+            gathered = format!("!n{}", next - 1);
+        } else {
+            text += &format!("\nn{next} = and {gathered} !n{}", next - 1);
+            gathered = format!("n{next}");
+            next += 1;
+        }
+    }
+    format!("{text}\nroot {gathered}\n").parse().unwrap()
+}
+
+/// A line: each cell is the AND of the one before it and an input of its own; the last is marked.
+fn line(n: usize) -> Cells {
+    let mut list: IdVec<CellId, Cell> = IdVec::new();
+    let input = |at: usize| Form { inputs: vec![at as u32], ..Form::default() };
+    for at in 0..n {
+        let before = match at.checked_sub(1) {
+            Some(before) => Form { cells: vec![CellId::new(before)], ..Form::default() },
+            None => input(n),
+        };
+        let needs = before.cells.clone();
+        list.push(Cell { operands: [before, input(at)], needs, owner: None });
+    }
+    let last = Form { cells: vec![CellId::new(n - 1)], ..Form::default() };
+    Cells { list, terms: vec![Term::Held(last)], root_complemented: false, chain: Vec::new() }
+}
+
+/// The moves of the two games on a line: end with only the last node held, and merely reach it.
+fn moves(n: usize, pebbles: usize) -> (Option<usize>, Option<usize>) {
+    let cells = line(n);
+    let order: Vec<CellId> = cells.list.ids().collect();
+    let line = Line::new(&cells, &order, &order[n - 1..]);
+    let clean = line.clean(pebbles);
+    if let Some(clean) = &clean {
+        let erased: Vec<Move> = clean.iter().cloned().chain([Move::Mark]).chain(backwards(clean)).collect();
+        assert!(cost(&cells, &erased).unwrap().ancillas <= pebbles);
+    }
+    (clean.map(|moves| moves.len()), line.visit(pebbles).map(|moves| moves.len()))
+}
+
+/// Exact values by breadth-first search over all states (n up to 14), and by E. Knill's recursion beyond, "An analysis of
+/// Bennett's pebble game" (1995); p = n gives 2n - 1 (C. H. Bennett, SIAM J. Comput. 18:766, 1989).
+#[test]
+fn lines_take_the_fewest_moves_for_each_number_of_pebbles() {
+    for (n, table) in [
+        (2, &[(2, 3)][..]),
+        (3, &[(3, 5)]),
+        (4, &[(3, 9), (4, 7)]),
+        (5, &[(4, 11), (5, 9)]),
+        (6, &[(4, 15), (5, 13), (6, 11)]),
+        (7, &[(4, 19), (5, 17), (6, 15), (7, 13)]),
+        (8, &[(4, 25), (5, 21), (6, 19), (7, 17), (8, 15)]),
+        (9, &[(5, 25), (6, 23), (7, 21), (8, 19), (9, 17)]),
+        (10, &[(5, 29), (6, 27), (10, 19)]),
+        (12, &[(5, 39), (6, 35), (7, 33), (12, 23)]),
+        (14, &[(5, 53), (6, 43), (7, 41), (14, 27)]),
+        (16, &[(5, 71), (6, 51), (7, 49), (16, 31)]),
+        (32, &[(6, 193), (7, 145), (8, 117), (32, 63)]),
+    ] {
+        for &(pebbles, fewest) in table {
+            assert_eq!(moves(n, pebbles).0, Some(fewest), "{n} nodes, {pebbles} pebbles");
+        }
+    }
+}
+
+/// The fewest pebbles: ceil(log2 n) + 1 to end with the last node alone, ceil(log2 (n + 1)) to reach it; and the fewest
+/// moves to reach it (breadth-first search).
+#[test]
+fn lines_take_the_fewest_pebbles_in_both_games() {
+    for n in 2..=16usize {
+        let log = |n: usize| n.next_power_of_two().ilog2() as usize;
+        let fewest = |reached: fn((Option<usize>, Option<usize>)) -> Option<usize>| {
+            (1..=n).find(|&pebbles| reached(moves(n, pebbles)).is_some())
+        };
+        assert_eq!(fewest(|games| games.0), Some(log(n) + 1), "{n} nodes, the last alone");
+        assert_eq!(fewest(|games| games.1), Some(log(n + 1)), "{n} nodes, reached");
+    }
+    for (n, pebbles, fewest) in [
+        (2, 2, 2),
+        (3, 2, 4),
+        (3, 3, 3),
+        (4, 3, 5),
+        (4, 4, 4),
+        (5, 3, 7),
+        (6, 3, 9),
+        (7, 3, 13),
+        (7, 4, 10),
+        (7, 5, 9),
+        (8, 4, 12),
+        (11, 4, 20),
+        (11, 5, 17),
+        (15, 4, 38),
+        (15, 5, 25),
+        (15, 6, 24),
+    ] {
+        assert_eq!(moves(n, pebbles).1, Some(fewest), "{n} nodes, {pebbles} pebbles");
+    }
+}
+
+fn points(m: usize, pay: Pay) -> Vec<Cost> {
+    let cells = cells(&conjunction(m), true);
+    front(&cells, pay, &Budget::unlimited()).unwrap().into_iter().map(|point| point.cost).collect()
+}
+
+/// A dynamic programme over all splits of a conjunction of opaque clauses of three literals gave these costs in ANDs:
+/// with measured erasure on average and at worst, and without measurement. Where a hundred clauses are kept whole the
+/// circuit that keeps everything is used instead of a schedule.
+#[test]
+fn conjunctions_cost_what_a_dynamic_programme_gives() {
+    let check = |m: usize, pay: Pay, table: &[(usize, f64)]| {
+        let points = points(m, pay);
+        for &(ancillas, aim) in table {
+            let best = points.iter().rfind(|cost| cost.ancillas <= ancillas).expect("it fits").paid(pay);
+            assert!(best <= aim, "{m} clauses, {ancillas} ancillas, {pay:?}: {best}");
+        }
+    };
+    check(100, Pay::Expected, &[(199, 348.0), (101, 446.0), (28, 433.0), (16, 578.0), (15, 590.0), (10, 933.0)]);
+    check(100, Pay::Worst, &[(199, 398.0), (101, 594.0), (28, 568.0), (16, 948.0), (15, 980.0), (10, 2007.0)]);
+    check(100, Pay::Unitary, &[(199, 796.0), (101, 1398.0), (28, 1136.0), (16, 1904.0), (15, 1980.0), (10, 5072.0)]);
+    check(1000, Pay::Expected, &[(1999, 3498.0), (1001, 4496.0), (88, 4474.0), (30, 6548.0), (21, 8700.0), (14, 15363.0)]);
+}
+
+/// What a program is said to cost is what its gates cost.
+#[test]
+fn costs_of_programs_are_those_of_the_gates() {
+    let network = conjunction(9);
+    for (level, pay) in [(Level::Feedback, Pay::Expected), (Level::Feedback, Pay::Worst), (Level::Toffoli, Pay::Unitary)] {
+        let cells = cells(&network, true);
+        let points = front(&cells, pay, &Budget::unlimited()).unwrap();
+        assert!(points.len() > 8);
+        for point in points {
+            let options = Options { level, mark: Mark::Phase };
+            let size = (27, point.cost.ancillas);
+            let circuit = replay(&cells, &point.moves, size, &options, Marking::Sign, &Budget::unlimited()).unwrap();
+            let figures = figures(&circuit);
+            if level == Level::Feedback {
+                assert_eq!(figures.t_count, 4 * point.cost.worst);
+                assert!((figures.t_count_expected - 4.0 * point.cost.expected).abs() < 1e-6);
+            } else {
+                assert_eq!(figures.and_gates, point.cost.worst + point.cost.erased);
+            }
+            assert_eq!(figures.qubits as usize, 27 + point.cost.ancillas);
+        }
+    }
+}

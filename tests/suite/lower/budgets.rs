@@ -1,0 +1,140 @@
+//! Budgets of qubits in steps of one: from the least to the circuit that keeps everything.
+
+use tallymark::budget::Budget;
+use tallymark::circuit::Level;
+use tallymark::make::lower::{Favour, Limits, LowerError, Lowered, front_of, lower, lower_within};
+use tallymark::make::network::Network;
+use tallymark::problem::Problem;
+
+use super::super::making::problems::random_problem;
+use super::{MARKS, check, check_level, network_of, options, within};
+
+/// What a level pays for.
+fn paid(level: Level, lowered: &Lowered) -> f64 {
+    match level {
+        Level::Feedback => lowered.figures.t_count_expected,
+        Level::CliffordT => lowered.figures.t_count as f64,
+        _ => lowered.figures.and_gates as f64,
+    }
+}
+
+/// Walks down from the circuit that keeps everything; the circuits met, most qubits first.
+fn every_budget(network: &Network, level: Level, mark: tallymark::circuit::Mark) -> Vec<Lowered> {
+    let budget = Budget::unlimited();
+    let within = |qubits| lower_within(network, &options(level, mark), &within(qubits), &budget);
+    let mut met: Vec<Lowered> = Vec::new();
+    let mut qubits = lower(network, &options(level, mark), &budget).unwrap().qubit_count() as u64;
+    loop {
+        match within(qubits) {
+            Ok(lowered) => {
+                assert!(lowered.figures.qubits <= qubits);
+                if let Some(wider) = met.last() {
+                    assert!(paid(level, wider) <= paid(level, &lowered), "{level} {mark:?} at {qubits}");
+                }
+                qubits = lowered.figures.qubits - 1;
+                met.push(lowered);
+            }
+            Err(LowerError::TooFewQubits { asked, least }) => {
+                assert_eq!((asked, least), (qubits, qubits + 1), "the least that would do");
+                return met;
+            }
+            Err(error) => panic!("{error}"),
+        }
+    }
+}
+
+fn has_oracle(network: &Network) -> bool {
+    lower(network, &options(Level::Toffoli, MARKS[0]), &Budget::unlimited()).is_ok()
+}
+
+fn small_problems(count: u64) -> impl Iterator<Item = (u64, Problem, Network)> {
+    (0..count).filter_map(|seed| {
+        let problem = random_problem(seed, 7);
+        let network = network_of(&problem);
+        (has_oracle(&network) && network.and_count() <= 60).then_some((seed, problem, network))
+    })
+}
+
+#[test]
+fn every_budget_of_a_random_problem_has_a_right_circuit_and_more_never_costs_more() {
+    let mut narrowed = 0;
+    for (seed, problem, network) in small_problems(60) {
+        for level in Level::ALL {
+            for mark in MARKS {
+                let met = every_budget(&network, level, mark);
+                narrowed += met.len() - 1;
+                for lowered in &met {
+                    check_level(&lowered.circuit, level);
+                    let what = format!("seed {seed} {level} {mark:?} {} qubits", lowered.figures.qubits);
+                    check(&problem, &lowered.circuit, &what);
+                }
+            }
+        }
+    }
+    assert!(narrowed > 400, "{narrowed}");
+}
+
+#[test]
+fn limits_of_t_and_depth_are_kept_and_the_least_is_said() {
+    let budget = Budget::unlimited();
+    for (_, problem, network) in small_problems(12) {
+        let (level, mark) = (Level::Feedback, MARKS[0]);
+        let lower = |limits: &Limits| lower_within(&network, &options(level, mark), limits, &budget);
+        let front = front_of(&network, &options(level, mark), &budget).unwrap();
+        let least = |of: fn(&Lowered) -> u64| front.iter().map(of).min().unwrap();
+        for favour in [Favour::Qubits, Favour::T, Favour::Depth, Favour::Volume] {
+            let found = lower(&Limits { favour, ..Limits::default() }).unwrap();
+            check(&problem, &found.circuit, "favoured");
+            match favour {
+                Favour::Qubits => assert_eq!(found.figures.qubits, least(|one| one.figures.qubits)),
+                Favour::T => assert_eq!(found.figures.t_count, least(|one| one.figures.t_count)),
+                Favour::Depth => assert_eq!(found.figures.depth, least(|one| one.figures.depth)),
+                Favour::Volume => {
+                    let volume = |one: &Lowered| one.figures.t_count * one.figures.qubits;
+                    assert_eq!(volume(&found), front.iter().map(volume).min().unwrap());
+                }
+            }
+        }
+        for one in &front {
+            let limits = Limits {
+                qubits: Some(one.figures.qubits),
+                t_count: Some(one.figures.t_count),
+                depth: Some(one.figures.depth),
+                favour: Favour::T,
+            };
+            let found = lower(&limits).unwrap().figures;
+            assert!(found.qubits <= one.figures.qubits && found.t_count <= one.figures.t_count);
+            assert!(found.depth <= one.figures.depth);
+        }
+        let few = least(|one| one.figures.t_count);
+        if few > 0 {
+            let found = lower(&Limits { t_count: Some(few - 1), ..Limits::default() });
+            assert_eq!(found.unwrap_err(), LowerError::TooFewT { asked: few - 1, least: few });
+        }
+        let few = least(|one| one.figures.depth);
+        let found = lower(&Limits { depth: Some(few - 1), ..Limits::default() });
+        assert_eq!(found.unwrap_err(), LowerError::TooShallow { asked: few - 1, least: few });
+    }
+}
+
+#[test]
+fn no_circuit_of_the_front_is_worse_than_another_in_everything() {
+    for (_, _, network) in small_problems(8) {
+        for level in [Level::CliffordT, Level::Feedback] {
+            let front = front_of(&network, &options(level, MARKS[0]), &Budget::unlimited()).unwrap();
+            let figures = |one: &Lowered| (one.figures.qubits, one.figures.t_count, one.figures.depth);
+            for (at, one) in front.iter().enumerate() {
+                let dominated = front.iter().enumerate().any(|(other, better)| {
+                    let ((q, t, d), (p, s, e)) = (figures(one), figures(better));
+                    other != at
+                        && p <= q
+                        && s <= t
+                        && e <= d
+                        && (p, s, e) != (q, t, d)
+                        && better.figures.t_count_expected <= one.figures.t_count_expected
+                });
+                assert!(!dominated);
+            }
+        }
+    }
+}
