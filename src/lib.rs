@@ -23,6 +23,8 @@ pub mod source;
 pub mod problem;
 // Which bits are searched is plain data.
 pub mod places;
+// Definitions are read back from clauses.
+pub mod structure;
 // The maker turns the problem into a circuit.
 pub mod circuit;
 pub mod make;

@@ -1,4 +1,5 @@
 //! The maker: from a problem to an oracle circuit.
 
 pub mod lower;
+pub mod narrow;
 pub mod network;

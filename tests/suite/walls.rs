@@ -22,7 +22,8 @@ const MATRIX: &[(&str, &[&str])] = &[
     ("sat", &[]),
     ("source", &["problem"]),
     ("places", &["problem"]),
-    ("make", &["problem", "places", "circuit"]),
+    ("structure", &["problem"]),
+    ("make", &["problem", "places", "circuit", "structure"]),
     // The wall of the house: the judge never names the maker.
     ("judge", &["problem", "places", "circuit", "sat"]),
     ("search", &["problem", "places", "circuit", "make", "judge"]),
