@@ -1,6 +1,8 @@
 //! `tallymark audit FILE CIRCUIT`: judge a circuit against the problem, or a circuit alone.
 
+mod against;
 mod alone;
+mod form;
 
 use std::path::{Path, PathBuf};
 use std::time::Duration;
@@ -48,6 +50,15 @@ pub(super) struct Options {
     /// Which bit of the problem each searched qubit carries, as in 3,1,2,0, or a file with such a list
     #[arg(long, value_name = "LIST", conflicts_with = "places")]
     bits: Option<String>,
+    /// Judge an oracle that gives solutions this phase and not a sign: radians, or a multiple of pi such as pi/4 or -3pi/8
+    #[arg(long, value_name = "ANGLE", allow_hyphen_values = true, value_parser = form::angle)]
+    angle: Option<f64>,
+    /// Judge an oracle that acts where this qubit is 1 and is the identity, global phase included, where it is 0
+    #[arg(long, value_name = "QUBIT")]
+    control: Option<String>,
+    /// Judge the inverse of the oracle
+    #[arg(long)]
+    inverse: bool,
     /// Refuse a phase oracle that marks the complement, which is right up to a global sign
     #[arg(long)]
     strict_phase: bool,
@@ -70,21 +81,37 @@ pub(super) struct Options {
 
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let Some(path) = &options.circuit else { return alone::run(global, options) };
-    let (loaded, mut sources) = input::load(global, &options.file)?;
+    let (mut loaded, mut sources) = input::load(global, &options.file)?;
     let circuit = alone::read(path, &mut sources)?;
     let circuit = assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?;
-    let places = places(options, path, &loaded, &circuit, &sources)?;
+    let mut places = places(options, path, &loaded, &circuit, &sources)?;
+    form::check(options, &circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
+    if options.control.is_some() {
+        (loaded.problem, places) = audit::controlled(&loaded.problem, &places);
+    }
     let (budget, line) = progress::budget(global);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
     let mut object = json::envelope("audit", &loaded, &sources, false);
-    let seeded = audit::Options { strict_phase: options.strict_phase, seed: global.seed, ..audit::Options::default() };
+    let seeded = audit::Options {
+        strict_phase: options.strict_phase,
+        angle: form::turn(options),
+        seed: global.seed,
+        ..audit::Options::default()
+    };
     let (outcome, mut text) = if circuit.measured.iter().any(|register| register.name == FOUND) {
         places.check(&loaded.problem).map_err(|error| stage(error.into()))?;
         let verdict = audit::audit_search(&loaded.problem, &places, &circuit, 1 << options.effort, &budget)
             .map_err(|error| stage(error.into()))?;
-        object.insert("audit".to_owned(), json::search_json(&verdict));
-        (verdict.outcome, summary::search_verdict(&verdict))
+        let mut value = json::search_json(&verdict);
+        let mut text = summary::search_verdict(&verdict);
+        if let Some(good) = &good {
+            let compared = against::searches(good, &circuit, &budget).map_err(|error| stage(error.into()))?;
+            against::add_json(&mut value, &compared);
+            text += &against::text(&compared);
+        }
+        object.insert("audit".to_owned(), value);
+        (verdict.outcome, text)
     } else {
         let settings = input::settings(global, Level::Toffoli, Mark::Phase);
         let sample = options.sample.unwrap_or(seeded.sample);
@@ -102,10 +129,16 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             let counting = budget.clone().within(share);
             let counted = pipeline::count(&loaded.problem, &places, settings, &counting).map_err(stage)?;
             judged.known.clone_from(&counted.marks().solutions);
-            verdict = judge(&judged)?;
+            let second = if budget.spent() { verdict.clone() } else { judge(&judged)? };
+            // What ran out of time says less than what came before it.
+            if second.outcome != Found::Undecided || second.inputs >= verdict.inputs {
+                verdict = second;
+            }
         }
         let mut value = json::audit_json(&loaded.problem, &verdict);
-        let reason = verdict.witness.as_ref().map(|witness| story::reason(&loaded.problem, &sources, witness));
+        value["form"] = form::json(options, &circuit);
+        let of_problem = |witness: &&audit::Witness| form::acts_on(options, &loaded.problem, witness);
+        let reason = verdict.witness.as_ref().filter(of_problem).map(|witness| story::reason(&loaded.problem, &sources, witness));
         let parted = match (&good, &verdict.witness) {
             (Some(good), Some(witness)) => {
                 let search = places.searched.iter().map(|&bit| witness.bits.get(bit)).collect();
@@ -151,8 +184,13 @@ fn exit_of(outcome: Found) -> Exit {
 
 /// The circuit with its qubits in the registers of their roles.
 fn assigned(options: &Options, path: &Path, circuit: Circuit) -> Result<Circuit, Box<Diagnostic>> {
-    let Options { search, mark, work, found, .. } = options;
-    let roles = Roles { search: search.clone(), mark: mark.clone(), work: work.clone(), found: found.clone() };
+    let Options { search, mark, work, found, control, .. } = options;
+    // The control is the last of the searched qubits.
+    let search = match (search, control) {
+        (_, None) => search.clone(),
+        (search, Some(control)) => Some(format!("{},{control}", search.as_deref().unwrap_or(SEARCH))),
+    };
+    let roles = Roles { search, mark: mark.clone(), work: work.clone(), found: found.clone() };
     if roles.is_empty() {
         return Ok(circuit);
     }
@@ -212,7 +250,8 @@ fn places(
     if let Some(path) = found {
         return input::read_places(&path).map_err(|diagnostics| Failure::input(diagnostics, sources));
     }
-    let (searched, bits) = (circuit.register(SEARCH).len(), loaded.problem.bit_count());
+    let searched = circuit.register(SEARCH).len() - usize::from(options.control.is_some());
+    let bits = loaded.problem.bit_count();
     if searched != bits {
         let diagnostic = Diagnostic::error(Code("P003"), "it is not known which qubit carries which bit")
             .in_file(circuit_path.display().to_string())

@@ -15,6 +15,7 @@ mod language;
 mod lower;
 mod making;
 mod network;
+mod paths;
 mod planning;
 mod proofs;
 mod random_problem;

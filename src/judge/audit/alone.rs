@@ -5,7 +5,10 @@
 //! phases). Without `mark` a value is marked by the phase -1; a circuit whose phases are no signs is read against its
 //! most common phase. With `mark` a value is marked where `mark` is flipped.
 //!
-//! Circuits that keep basis states are run on every value, 64 at a time; others on a superposition of all.
+//! Circuits that keep basis states, as they are or as sums over paths, are run on every value, 64 at a time; others on a
+//! superposition of all.
+
+use std::borrow::Cow;
 
 use crate::budget::Budget;
 use crate::circuit::{Circuit, MARK, QubitId, SEARCH};
@@ -14,6 +17,9 @@ use crate::judge::audit::compare::Shared;
 use crate::judge::audit::compare::columns::{Column, columns, start};
 use crate::judge::audit::compare::words::{Words, input_word};
 use crate::judge::audit::state::amplitude::{Amplitude, Exact};
+use crate::judge::audit::eighths::with_eighths;
+use crate::judge::audit::oracle::Roles;
+use crate::judge::audit::paths::{self, Read};
 use crate::judge::audit::superposition::run::{Draw, End};
 use crate::judge::audit::{AuditError, How, Options, Outcome, oracle};
 use crate::problem::Bits;
@@ -80,18 +86,40 @@ pub fn marks(circuit: &Circuit, options: &Options, budget: &Budget) -> Result<Ma
     let mut inputs = search.clone();
     inputs.extend(&mark);
     let mut tally = Tally::new(search.len(), mark.len());
-    let most = if oracle::keeps_basis_states(circuit) { ROW_BITS } else { ALL_BITS };
+    let exact = as_basis_states(circuit, &search, &mark, budget);
+    let most = if exact.is_some() { ROW_BITS } else { ALL_BITS };
     if search.len() > most {
         return Err(AuditError::TooLarge {
             what: format!("{} searched qubits, and without a problem {most} are the limit", search.len()),
         });
     }
-    if oracle::keeps_basis_states(circuit) {
-        by_rows(circuit, &inputs, &mut tally, budget);
-    } else {
-        in_superposition(circuit, &inputs, &mut tally, options, budget)?;
+    match exact {
+        Some(exact) => {
+            let mut inputs = exact.register(SEARCH);
+            inputs.extend(exact.register(MARK));
+            by_rows(&exact, &inputs, &mut tally, budget);
+        }
+        None => in_superposition(circuit, &inputs, &mut tally, options, budget)?,
     }
     Ok(tally.marks())
+}
+
+/// The circuit, or one that is the same operator by the sums over paths, where its gates keep basis states.
+fn as_basis_states<'c>(
+    circuit: &'c Circuit,
+    search: &[QubitId],
+    mark: &[QubitId],
+    budget: &Budget,
+) -> Option<Cow<'c, Circuit>> {
+    let exact = with_eighths(circuit, false);
+    if oracle::keeps_basis_states(&exact) {
+        return Some(exact);
+    }
+    let inputs: Vec<QubitId> = search.iter().chain(mark).copied().collect();
+    let work = Shared::rest(circuit, &inputs);
+    let roles = Roles { search: search.to_vec(), mark: mark.first().copied(), work };
+    let read = paths::read(circuit, &roles, None, budget).ok().filter(Read::is_shown)?;
+    Some(Cow::Owned(paths::plain_circuit(&read, search.len(), !mark.is_empty())))
 }
 
 /// Runs every value on words.

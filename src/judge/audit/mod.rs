@@ -18,6 +18,7 @@ mod basis;
 pub mod compare;
 mod eighths;
 pub mod faults;
+mod forms;
 mod oracle;
 mod paths;
 mod proof;
@@ -26,6 +27,7 @@ mod state;
 pub mod superposition;
 pub mod verdict;
 
+pub use forms::controlled;
 pub use search::{SearchVerdict, audit_search};
 pub use verdict::{Certificate, How, Outcome, Phases, Verdict, Witness};
 

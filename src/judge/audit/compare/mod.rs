@@ -4,21 +4,25 @@
 //! witness over those registers in the order of the first circuit, `search[0]` first where that is the first one. Work
 //! qubits begin as 0 and must end as 0 in both, and a global phase is free, as for an oracle.
 //!
-//! Circuits that keep basis states are run on every input, 64 at a time (`words`); others on a superposition of all
-//! inputs (`columns`), for all strings of measurement outcomes where these are few. [`mod@parting`] says where on the way
+//! Circuits that keep basis states are run on every input, 64 at a time (`words`). Others, and those with too many inputs,
+//! are read as sums over paths (`by_paths`); where that does not close, they are run on a superposition of all inputs
+//! (`columns`), for all strings of measurement outcomes where these are few. [`mod@parting`] says where on the way
 //! the two part.
 
+mod by_paths;
 pub(in crate::judge::audit) mod columns;
 pub mod parting;
 mod superposed;
 mod text;
 pub(in crate::judge::audit) mod words;
 
+pub(in crate::judge::audit) use by_paths::compare_by_paths;
 pub use parting::{Parting, parting};
 pub(in crate::judge::audit) use superposed::compare_superposed;
 pub use text::gate_in_words;
 
 use self::words::{Words, input_word};
+use super::eighths::with_eighths;
 use super::{AuditError, How, Options, Outcome, Phases, Verdict, Witness, oracle};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, QubitId, Register, WORK};
@@ -99,10 +103,23 @@ pub fn compare(
     let shared = Shared::of(good, circuit)?;
     oracle::check_gates(good)?;
     oracle::check_gates(circuit)?;
-    if oracle::keeps_basis_states(good) && oracle::keeps_basis_states(circuit) {
-        return Ok(Sides::new(good, circuit, &shared, options).compare(budget));
+    let exact = [good, circuit].map(|circuit| with_eighths(circuit, options.strict_phase));
+    let is_plain = exact.iter().all(|circuit| oracle::keeps_basis_states(circuit));
+    let by_rows = is_plain.then(|| Sides::new(&exact[0], &exact[1], &shared, options).compare(budget));
+    if let Some(verdict) = by_rows.as_ref().filter(|verdict| verdict.outcome != Outcome::Undecided) {
+        return Ok(verdict.clone());
     }
-    compare_superposed(good, circuit, &shared, options, budget)
+    let open = match compare_by_paths(good, circuit, &shared, options, budget)? {
+        Ok(verdict) if verdict.outcome != Outcome::Undecided || by_rows.is_none() => return Ok(verdict),
+        Ok(verdict) => verdict.notes.join("; "),
+        Err(open) => open,
+    };
+    let mut verdict = match by_rows {
+        Some(verdict) => verdict,
+        None => compare_superposed(good, circuit, &shared, options, budget)?,
+    };
+    verdict.notes.push(format!("as sums over paths: {open}"));
+    Ok(verdict)
 }
 
 /// The verdict before anything was found.

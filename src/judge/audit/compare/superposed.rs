@@ -27,13 +27,24 @@ pub(in crate::judge::audit) fn compare_superposed(
 ) -> Result<Verdict, AuditError> {
     let bits = shared.first.len();
     let is_all = bits <= ALL_BITS;
-    let inputs = inputs(bits, is_all, options);
+    compare_on(good, circuit, shared, options, (&inputs(bits, is_all, options), is_all), budget)
+}
+
+/// Compares on these inputs, which may be all there are.
+pub(super) fn compare_on(
+    good: &Circuit,
+    circuit: &Circuit,
+    shared: &Shared,
+    options: &CompareOptions,
+    (inputs, is_all): (&[Bits], bool),
+    budget: &Budget,
+) -> Result<Verdict, AuditError> {
     let mut verdict = open(if is_all { How::Superposition } else { How::Sample }, inputs.len() as u128);
     let starts = |circuit, qubits| -> Vec<Bits> { inputs.iter().map(|input| start(circuit, qubits, input)).collect() };
     let reference = columns(good, &shared.first, &starts(good, &shared.first), Draw::Zeros, budget)?;
     let reference = match reference {
         Ok(reference) => reference,
-        Err(end) => return Ok(ended(verdict, &end, &inputs, "the good circuit")),
+        Err(end) => return Ok(ended(verdict, &end, inputs, "the good circuit")),
     };
     let starts = starts(circuit, &shared.second);
     let (mut strings, mut at, mut free, mut even) = (1usize, 0usize, 0usize, true);
@@ -47,7 +58,7 @@ pub(in crate::judge::audit) fn compare_superposed(
         };
         let found = match columns(circuit, &shared.second, &starts, draw, budget)? {
             Ok(found) => found,
-            Err(end) => return Ok(ended(verdict, &end, &inputs, "the circuit")),
+            Err(end) => return Ok(ended(verdict, &end, inputs, "the circuit")),
         };
         if at == 0 {
             free = found.free;

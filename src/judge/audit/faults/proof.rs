@@ -1,15 +1,15 @@
 //! Proofs that a fault does no harm, by another way than the audit that did not catch it.
 //!
 //! The audit holds a circuit against the problem. Where the changed gates alone are the same operator, nothing more is
-//! asked (`local`). Else the changed circuit is held against the good one: in superposition where the audit ran basis
-//! states one by one, and over all strings of measurement outcomes. A changed
+//! asked (`local`). Else the changed circuit is held against the good one: in superposition, over all strings of
+//! measurement outcomes where they are few, or both as sums over paths, which covers all strings. A changed
 //! problem, or a changed register map, is held against the good one by the reference evaluator on every input; a
 //! changed search is followed from its first gate to its last measurement, and so is the good one.
 
 use crate::budget::Budget;
 use crate::circuit::{Circuit, FOUND, Gate, Op};
 use crate::id::Id;
-use crate::judge::audit::compare::{CompareOptions, Shared, compare, compare_superposed};
+use crate::judge::audit::compare::{CompareOptions, Shared, compare, compare_by_paths, compare_superposed};
 use crate::judge::audit::oracle::problem_bits;
 use crate::judge::audit::state::State;
 use crate::judge::audit::state::amplitude::Complex;
@@ -44,10 +44,15 @@ const TOLERANCE: f64 = 1e-9;
 pub fn same_operator(good: &Circuit, changed: &Circuit, budget: &Budget) -> Result<Proof, AuditError> {
     let options = CompareOptions { all_strings: STRINGS, ..CompareOptions::default() };
     let shared = Shared::of(good, changed)?;
-    let verdict = match shared.first.len() <= SUPERPOSED_BITS {
+    let mut verdict = match shared.first.len() <= SUPERPOSED_BITS {
         true => compare_superposed(good, changed, &shared, &options, budget)?,
         false => compare(good, changed, &options, budget)?,
     };
+    // Where not every string of outcomes was followed, the sums over paths may cover them all.
+    if verdict.outcome != Outcome::Differs && !verdict.notes.is_empty() {
+        let exact = compare_by_paths(good, changed, &shared, &options, budget)?;
+        verdict = exact.ok().filter(|exact| exact.outcome != Outcome::Undecided).unwrap_or(verdict);
+    }
     Ok(match verdict.outcome {
         Outcome::Equal => Proof::Harmless,
         Outcome::Undecided => Proof::Open(verdict.notes.join("; ")),

@@ -22,7 +22,7 @@ const TOLERANCE: f64 = 1e-9;
 const MAX_PIECES: usize = 32;
 
 /// What a circuit does, where everything else was shown.
-#[derive(Debug)]
+#[derive(Clone, Debug)]
 pub(in crate::judge::audit) struct Read {
     /// The graph of the functions below; input `i` of it is the search qubit `i`, and `mark` the one after them.
     pub(super) graph: Graph,
@@ -36,6 +36,23 @@ pub(in crate::judge::audit) struct Read {
     pub(super) outcomes: usize,
     /// How many path variables were summed over.
     pub(super) paths: usize,
+}
+
+impl Read {
+    /// The phase besides that of the function, in multiples of pi/4; `None` where it depends on outcomes, or is none.
+    pub(in crate::judge::audit) fn global(&self) -> Option<u8> {
+        self.global
+    }
+
+    /// The same with no phase besides.
+    pub(in crate::judge::audit) fn without_global(&self) -> Self {
+        Self { global: Some(0), ..self.clone() }
+    }
+
+    /// Whether everything but the function was shown.
+    pub(in crate::judge::audit) fn is_shown(&self) -> bool {
+        self.zeros.iter().all(|zero| zero.as_constant() == Some(false))
+    }
 }
 
 /// Looks at the end of a circuit that was followed. The phase of what is marked is the angle, or a sign.
@@ -56,16 +73,7 @@ pub(super) fn end(mut reader: Reader, roles: &Roles, angle: Option<f64>) -> Resu
             return Err(Open::Qubit(mark));
         }
     }
-    let polynomial = std::mem::take(&mut reader.phase);
-    let left = match sign_of(&mut reader.space, polynomial) {
-        Ok(sign) => {
-            let mut left = Polynomial::default();
-            left.constant = sign.constant;
-            left.add(&reader.space, &sign.form, 4);
-            left
-        }
-        Err(left) => left,
-    };
+    let left = settled(&mut reader);
     let mut phases = Phases::new(&mut reader, left);
     phases.add_angles()?;
     if roles.mark.is_some() {
@@ -74,6 +82,53 @@ pub(super) fn end(mut reader: Reader, roles: &Roles, angle: Option<f64>) -> Resu
         function = phases.function(angle)?;
     }
     let global = phases.global;
+    finished(reader, function, global)
+}
+
+/// Looks at the end of the second of two circuits on the same inputs: what must be 0 for the two to be the same.
+/// `ours` is what the qubits of the first hold, `pairs` are the inputs, and the other qubits must be 0.
+pub(super) fn difference(mut reader: Reader, ours: &[Form], pairs: &[(QubitId, QubitId)]) -> Result<Read, Open> {
+    let (first, second): (Vec<QubitId>, Vec<QubitId>) = pairs.iter().copied().unzip();
+    let shared = pairs.iter().map(|&(a, b)| (Some(a), Some(b)));
+    let rest = |count: usize, shared: &[QubitId]| -> Vec<QubitId> {
+        (0..count).map(QubitId::new).filter(|qubit| !shared.contains(qubit)).collect()
+    };
+    let (good, other) = (rest(ours.len(), &first), rest(reader.values.len(), &second));
+    let alone = good.into_iter().map(|a| (Some(a), None)).chain(other.into_iter().map(|b| (None, Some(b))));
+    for (a, b) in shared.chain(alone) {
+        let mut left = a.map_or_else(Form::default, |a| ours[a.index()].clone());
+        if let Some(b) = b {
+            left.add(&reader.values[b.index()]);
+            if reader.space.paths(&left.terms).next().is_some() {
+                return Err(Open::Qubit(b));
+            }
+        }
+        let parts = reader.space.coefficients(&left);
+        reader.zeros.extend(parts.into_values().filter(|part| part.as_constant() != Some(false)));
+    }
+    let left = settled(&mut reader);
+    let mut phases = Phases::new(&mut reader, left);
+    phases.add_angles()?;
+    phases.none()?;
+    let global = phases.global;
+    finished(reader, Form::default(), global)
+}
+
+/// The phase, as a sign where it is one.
+fn settled(reader: &mut Reader) -> Polynomial {
+    let polynomial = std::mem::take(&mut reader.phase);
+    match sign_of(&mut reader.space, polynomial) {
+        Ok(sign) => {
+            let mut left = Polynomial::default();
+            left.constant = sign.constant;
+            left.add(&reader.space, &sign.form, 4);
+            left
+        }
+        Err(left) => left,
+    }
+}
+
+fn finished(reader: Reader, function: Form, global: Option<u8>) -> Result<Read, Open> {
     let Reader { space, mut zeros, outcomes, paths, .. } = reader;
     if space.is_too_large() {
         return Err(Open::Limit);

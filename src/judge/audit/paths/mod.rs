@@ -22,6 +22,7 @@ mod rules;
 mod space;
 
 pub(super) use self::end::Read;
+pub(super) use self::plain::plain_circuit;
 pub(super) use self::reader::Open;
 
 use self::reader::Reader;
@@ -30,7 +31,7 @@ use super::oracle::{self, Roles};
 use super::superposition;
 use super::{AuditError, Options, Outcome, Verdict};
 use crate::budget::Budget;
-use crate::circuit::Circuit;
+use crate::circuit::{Circuit, QubitId};
 use crate::places::Places;
 use crate::problem::Problem;
 
@@ -40,6 +41,21 @@ pub(super) fn read(circuit: &Circuit, roles: &Roles, angle: Option<f64>, budget:
     let mut reader = Reader::new(circuit, &inputs);
     reader.follow(budget)?;
     end::end(reader, roles, angle)
+}
+
+/// Reads two circuits with the same inputs; what must be 0 for them to be the same operator.
+pub(super) fn read_both(
+    good: &Circuit,
+    circuit: &Circuit,
+    pairs: &[(QubitId, QubitId)],
+    budget: &Budget,
+) -> Result<Read, Open> {
+    let (first, second): (Vec<QubitId>, Vec<QubitId>) = pairs.iter().copied().unzip();
+    let mut reader = Reader::new(good, &first);
+    reader.follow(budget)?;
+    let ours = reader.begin_again(circuit, &second)?;
+    reader.follow(budget)?;
+    end::difference(reader, &ours, pairs)
 }
 
 /// Judges a circuit against a problem; or says why the reading does not close.
@@ -59,7 +75,7 @@ pub(super) fn audit_paths(
         return Ok(Err("the global phase depends on outcomes, or is no multiple of pi/4".to_owned()));
     }
     let is_sign = options.angle.is_none();
-    let plain = plain::circuit(&read, roles.search.len(), roles.mark.is_some());
+    let plain = plain_circuit(&read, roles.search.len(), roles.mark.is_some());
     let plain_roles = oracle::roles(problem, places, &plain)?;
     // What marks the complement by another angle than pi is no oracle.
     let judged = Options { strict_phase: options.strict_phase || !is_sign, ..options.clone() };

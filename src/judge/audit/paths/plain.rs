@@ -10,7 +10,7 @@ use crate::judge::audit::basis::form::Form;
 use crate::judge::reading::graph::{Node, Signal};
 
 /// Writes the circuit; the phase of the function is a sign.
-pub(super) fn circuit(read: &Read, search: usize, has_mark: bool) -> Circuit {
+pub(in crate::judge::audit) fn plain_circuit(read: &Read, search: usize, has_mark: bool) -> Circuit {
     let roots = read.zeros.iter().chain([&read.function]).flat_map(|form| form.terms.iter().copied());
     let needed = read.graph.needed(roots);
     let nodes: Vec<usize> =

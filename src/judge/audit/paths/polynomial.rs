@@ -112,6 +112,14 @@ impl Polynomial {
         taken
     }
 
+    /// The opposite phase; no path variable stands in it.
+    pub(super) fn negate(&mut self, space: &Space) {
+        self.constant = (8 - self.constant) % 8;
+        for (form, coefficient) in self.take_all() {
+            self.add(space, &form, 8 - coefficient);
+        }
+    }
+
     /// Applies the rules that are new.
     pub(super) fn settle(&mut self, space: &mut Space) {
         for key in space.rules.take_fresh() {

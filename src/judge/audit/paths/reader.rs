@@ -93,6 +93,24 @@ impl<'a> Reader<'a> {
         }
     }
 
+    /// Begins again with another circuit on the same inputs, its phase taken against that of the one that was read.
+    /// What the qubits of that one hold at the end; or one that is in a superposition.
+    pub(super) fn begin_again(&mut self, circuit: &'a Circuit, inputs: &[QubitId]) -> Result<Vec<Form>, Open> {
+        let is_open = |value: &Form| self.space.paths(&value.terms).next().is_some();
+        if let Some(at) = self.values.iter().position(is_open) {
+            return Err(Open::Qubit(QubitId::new(at)));
+        }
+        let mut values = vec![Form::default(); circuit.qubit_count()];
+        for (at, qubit) in inputs.iter().enumerate() {
+            values[qubit.index()] = Form::term(self.space.graph.bit(at));
+        }
+        self.circuit = circuit;
+        self.bits = vec![Form::default(); circuit.measured_count()];
+        self.phase.negate(&self.space);
+        self.angles.iter_mut().for_each(|(angle, _)| *angle = -*angle);
+        Ok(std::mem::replace(&mut self.values, values))
+    }
+
     /// Reads every gate.
     pub(super) fn follow(&mut self, budget: &Budget) -> Result<(), Open> {
         let mut done = 0;

@@ -196,6 +196,9 @@ impl Space {
             return rows.swap_remove(0);
         }
         let pair = if let [a, b] = &rows[..] { Some((a.clone(), b.clone())) } else { None };
+        if !self.absorb(&mut rows) {
+            return Form::constant(false);
+        }
         self.flatten(&mut rows);
         if !reduce(&mut rows) {
             return Form::constant(false);
@@ -209,6 +212,25 @@ impl Space {
             self.rules.note(&a, &b, node);
         }
         Form::term(node)
+    }
+
+    /// Leaves out what another factor implies; `false` where it implies the opposite.
+    fn absorb(&mut self, rows: &mut Vec<Form>) -> bool {
+        let signals: Vec<Signal> = rows.iter().map(|row| row.signal(&mut self.graph)).collect();
+        let implies = |by: Signal, what: Signal| {
+            let factors = if by.is_negated() { &[] } else { self.graph.factors(by.node()) };
+            let has = |factor: &Signal| factors.binary_search(factor).is_ok();
+            let of_what = if what.is_negated() { &[] } else { self.graph.factors(what.node()) };
+            has(&what) || !of_what.is_empty() && of_what.len() <= factors.len() && of_what.iter().all(has)
+        };
+        let by_other = |what: Signal| signals.iter().any(|&other| other != what && implies(other, what));
+        let is_left: Vec<bool> = signals.iter().map(|&signal| !by_other(signal)).collect();
+        if signals.iter().any(|&signal| by_other(!signal)) {
+            return false;
+        }
+        let mut is_left = is_left.into_iter();
+        rows.retain(|_| is_left.next() == Some(true));
+        true
     }
 
     /// Takes conjunctions apart into their factors, as far as the whole stays narrow.
