@@ -115,6 +115,12 @@ impl<'a> Drawn<'a> {
         self.diagrams.result(&lits);
     }
 
+    /// A diagram holds on one side of the difference, by propagation.
+    pub(super) fn holds(&mut self, is_problem: bool, edge: Edge) {
+        let side = self.miter.side(is_problem);
+        self.diagrams.conclude(&[!side], &[edge]);
+    }
+
     fn tie(&mut self, lit: Lit, edge: Edge) {
         self.diagrams.conclude(&[!lit], &[edge]);
         self.diagrams.conclude(&[lit], &[!edge]);

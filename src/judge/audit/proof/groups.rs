@@ -15,8 +15,6 @@ use super::prover::Prover;
 
 /// The most inputs of a group.
 const MAX_INPUTS: usize = 512;
-/// The most conjuncts of a group.
-const MAX_CONJUNCTS: usize = 1 << 13;
 
 /// A conjunct and the inputs it depends on, in order.
 struct Conjunct {
