@@ -145,7 +145,8 @@ impl<'a> System<'a> {
     fn give(&mut self, equation: &Equation) -> Result<(), TooLarge> {
         let mut row = self.row(equation)?;
         if equation.said_by.len() > 1 {
-            let clauses = equation.said_by.iter().map(|&clause| self.drawn.edge(clause)).collect::<Result<Vec<_>, _>>()?;
+            let clauses =
+                equation.said_by.iter().map(|&clause| self.drawn.edge(clause)).collect::<Result<Vec<_>, _>>()?;
             let all = clauses.into_iter().try_fold(Edge::YES, |all, clause| self.drawn.diagrams.all(all, clause))?;
             let is_said = self.drawn.diagrams.never([all, !row.edge, Edge::YES])?;
             debug_assert!(is_said, "the clauses forbid every other parity");
