@@ -9,6 +9,9 @@
 //! clause may still be a resolution asymmetric tautology on its first literal (N. Wetzler, M. Heule, W. Hunt, SAT
 //! 2014), which is then looked for among all clauses.
 //!
+//! A step may come with hints, as in L. Cruz-Filipe et al., "Efficient certified RAT verification", CADE 2017: which
+//! clauses to take, and in which order. They are tried first and save the search; where they do not do, it is searched.
+//!
 //! What clauses of one literal imply stays for good: as in the reference checker, deleting the clause that implied a
 //! literal does not take the literal back. That keeps more clauses than the proof asks for, which is sound.
 
@@ -50,6 +53,9 @@ pub fn check(formula: &Formula, proof: &Proof, budget: &Budget) -> Result<Checke
     let mut checker = Checker::new(formula.var_count());
     formula.iter().for_each(|clause| checker.insert(clause));
     let mut checked = Checked { additions: 0, deletions: 0 };
+    let mut hinted = proof.hints().peekable();
+    // The clause of each step that adds one.
+    let mut clause_of = vec![u32::MAX; if hinted.peek().is_some() { proof.len() } else { 0 }];
     for (at, step) in proof.steps().enumerate() {
         if checker.refuted {
             break;
@@ -59,8 +65,13 @@ pub fn check(formula: &Formula, proof: &Proof, budget: &Budget) -> Result<Checke
         }
         match step {
             Step::Add(clause) => {
-                if !checker.follows(clause) {
+                let hints = hinted.next_if(|&(step, _)| step == at).map_or(&[][..], |(_, hints)| hints);
+                let hints = hints.iter().filter_map(|&hint| clause_of.get(hint as usize).copied());
+                if !checker.follows_by(clause, hints) && !checker.follows(clause) {
                     return Err(Refused::Step(at + 1));
+                }
+                if let Some(place) = clause_of.get_mut(at) {
+                    *place = checker.clauses.len() as u32;
                 }
                 checker.insert(clause);
                 checked.additions += 1;
@@ -218,6 +229,27 @@ impl Checker {
         }
         self.known.get_mut(&hash(&wanted)).expect("just found").swap_remove(at);
         self.clauses[id as usize].is_dead = true;
+    }
+
+    /// Whether a clause follows from some clauses taken in this order, each with at most one literal left. Those that are
+    /// not there, or of no use, are passed over: hints are not trusted.
+    fn follows_by(&mut self, clause: &[Lit], hints: impl Iterator<Item = u32>) -> bool {
+        self.make_room(clause);
+        let root = self.trail.len();
+        let mut follows = !clause.iter().all(|&lit| self.assign(!lit));
+        for id in hints {
+            let Some(&Clause { start, len, is_dead: false }) = self.clauses.get(id as usize) else { continue };
+            let lits = &self.pool[start as usize..(start + len) as usize];
+            let mut open = lits.iter().filter(|&&lit| !self.holds[code(!lit)]);
+            match (follows, open.next().copied(), open.next()) {
+                (true, ..) => break,
+                (_, None, _) => follows = true,
+                (_, Some(lit), None) => drop(self.assign(lit)),
+                _ => {}
+            }
+        }
+        self.take_back(root);
+        follows
     }
 
     /// Whether a clause follows from those before it, or keeps them satisfiable if they are.
@@ -379,5 +411,28 @@ mod tests {
         // A deleted clause is gone, in any order of its literals.
         assert_eq!(judge(&[&[1, 2], &[1, -2], &[-1, 2], &[-1, -2]], "1 0"), Ok(Checked { additions: 1, deletions: 0 }));
         assert_eq!(judge(&[&[1, 2], &[1, -2], &[-1, 2], &[-1, -2]], "d -2 1 0 1 0"), Err(Refused::Step(2)));
+    }
+
+    /// Hints save the search; wrong ones do not make a step follow, nor keep one from following.
+    #[test]
+    fn hints_are_not_trusted() {
+        let all = formula(&[&[1, 2], &[1, -2], &[-1, 2], &[-1, -2]]);
+        let lits = |numbers: &[i64]| numbers.iter().map(|&lit| Lit::from_dimacs(lit)).collect::<Vec<_>>();
+        for hints in [&[0, 1][..], &[7, 0, 0], &[1]] {
+            let mut proof = Proof::new();
+            proof.add(lits(&[3, 1, 2]));
+            proof.add(lits(&[3, 1, -2]));
+            proof.add_with(lits(&[3, 1]), hints);
+            proof.add(lits(&[1]));
+            proof.add(lits(&[]));
+            assert_eq!(check(&all, &proof, &Budget::unlimited()), Ok(Checked { additions: 4, deletions: 0 }));
+            let mut other = Proof::new();
+            other.add(lits(&[3, 1, 2]));
+            other.append(&proof);
+            assert!(check(&all, &other, &Budget::unlimited()).is_ok());
+            // Without one of the clauses there is a model.
+            let fewer = formula(&[&[1, 2], &[1, -2], &[-1, 2]]);
+            assert_eq!(check(&fewer, &proof, &Budget::unlimited()), Err(Refused::Step(5)));
+        }
     }
 }

@@ -26,6 +26,9 @@ pub struct Proof {
     lits: Vec<Lit>,
     /// Where each step ends in the pool, and whether it deletes.
     ends: Vec<(u32, bool)>,
+    /// Hints, and for the steps that have some: the step, and where its hints end. Not a part of the format.
+    hints: Vec<u32>,
+    hinted: Vec<(u32, u32)>,
 }
 
 /// Why bytes or text are no proof.
@@ -60,6 +63,41 @@ impl Proof {
     /// Appends a clause that is added.
     pub fn add(&mut self, clause: impl IntoIterator<Item = Lit>) {
         self.push(clause, false);
+    }
+
+    /// Appends a clause that is added, with hints: earlier steps whose clauses, taken in this order, are enough for it to
+    /// follow. They are advice for a checker in this program, and are not written out.
+    pub fn add_with(&mut self, clause: impl IntoIterator<Item = Lit>, hints: &[u32]) {
+        if !hints.is_empty() {
+            self.hints.extend_from_slice(hints);
+            let end = u32::try_from(self.hints.len()).expect("fewer than 2^32 hints");
+            self.hinted.push((self.ends.len() as u32, end));
+        }
+        self.add(clause);
+    }
+
+    /// The hints of each step that has some, in the order of the steps.
+    pub fn hints(&self) -> impl Iterator<Item = (usize, &[u32])> {
+        self.hinted.iter().enumerate().map(|(at, &(step, end))| {
+            let start = if at == 0 { 0 } else { self.hinted[at - 1].1 };
+            (step as usize, &self.hints[start as usize..end as usize])
+        })
+    }
+
+    /// Appends the steps of another proof, with their hints.
+    pub fn append(&mut self, other: &Proof) {
+        let base = self.len() as u32;
+        let mut hints = other.hints().peekable();
+        for (at, step) in other.steps().enumerate() {
+            match step {
+                Step::Add(clause) => {
+                    let hints = hints.next_if(|&(step, _)| step == at).map_or(&[][..], |(_, hints)| hints);
+                    let hints: Vec<u32> = hints.iter().map(|hint| base + hint).collect();
+                    self.add_with(clause.iter().copied(), &hints);
+                }
+                Step::Delete(clause) => self.delete(clause.iter().copied()),
+            }
+        }
     }
 
     /// Appends a clause that is deleted.

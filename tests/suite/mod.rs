@@ -19,6 +19,7 @@ mod paths;
 mod planning;
 mod proofs;
 mod random_problem;
+mod rebuilt;
 mod states;
 mod symbolic;
 mod walls;

@@ -9,6 +9,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 use super::graph::Signal;
 use super::groups;
 use super::miter::Sides;
+use super::parities;
 use super::prover::{Effort, Prover, Shown};
 use super::simulate::Patterns;
 use super::sweep::sweep;
@@ -88,6 +89,7 @@ impl<'a, 'p> Closing<'a, 'p> {
         self.pair(LITTLE);
         self.state_sides();
         groups::follow(&mut self.prover, &self.sides, &mut self.done, FEW_STEPS, usize::MAX);
+        parities::follow(&mut self.prover, &self.sides, &mut self.done, ALL_STEPS);
         groups::follow(&mut self.prover, &self.sides, &mut self.done, MANY_STEPS, ALL_STEPS);
         match self.show(self.implications()) {
             Found::Closed => self.conclude(),

@@ -81,7 +81,8 @@ impl<'a> Drawn<'a> {
         }
         match self.graph.node(node) {
             Node::All => {
-                let mut edges: Vec<Edge> = self.graph.operands(node).iter().map(|&operand| self.known(operand)).collect();
+                let mut edges: Vec<Edge> =
+                    self.graph.operands(node).iter().map(|&operand| self.known(operand)).collect();
                 // From the last levels up, so that each step meets only the top of what is there.
                 edges.sort_by_key(|&edge| std::cmp::Reverse(self.diagrams.level(edge)));
                 let all = edges.into_iter().try_fold(Edge::YES, |all, edge| self.diagrams.all(all, edge))?;
@@ -113,6 +114,12 @@ impl<'a> Drawn<'a> {
     pub(super) fn follows(&mut self, is_problem: bool, signal: Signal) {
         let lits = [self.miter.lit(signal), !self.miter.side(is_problem)];
         self.diagrams.result(&lits);
+    }
+
+    /// A diagram holds on one side of the difference, by propagation.
+    pub(super) fn holds(&mut self, is_problem: bool, edge: Edge) {
+        let side = self.miter.side(is_problem);
+        self.diagrams.conclude(&[!side], &[edge]);
     }
 
     fn tie(&mut self, lit: Lit, edge: Edge) {

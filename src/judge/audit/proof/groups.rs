@@ -15,8 +15,6 @@ use super::prover::Prover;
 
 /// The most inputs of a group.
 const MAX_INPUTS: usize = 512;
-/// The most conjuncts of a group.
-const MAX_CONJUNCTS: usize = 1 << 13;
 
 /// A conjunct and the inputs it depends on, in order.
 struct Conjunct {
@@ -49,7 +47,8 @@ pub(super) fn follow(
             return;
         }
         let group = Group { sides: [circuit, problem].map(|side| side.within(inputs)), facts: facts.within(inputs) };
-        let is_open = |is_problem: usize| group.sides[is_problem].iter().any(|s| !done.contains(&(is_problem == 1, *s)));
+        let is_open =
+            |is_problem: usize| group.sides[is_problem].iter().any(|s| !done.contains(&(is_problem == 1, *s)));
         if group.sides.iter().any(Vec::is_empty) || !(is_open(0) || is_open(1)) {
             continue;
         }
@@ -136,15 +135,11 @@ struct Group {
 
 impl Group {
     /// Shows what follows from the other side; gives the steps that are left.
-    fn show(
-        &self,
-        prover: &mut Prover,
-        done: &mut FxHashSet<(bool, Signal)>,
-        steps: usize,
-    ) -> Result<usize, TooLarge> {
+    fn show(&self, prover: &mut Prover, done: &mut FxHashSet<(bool, Signal)>, steps: usize) -> Result<usize, TooLarge> {
         let roots: Vec<Signal> = self.sides.iter().chain([&self.facts]).flatten().copied().collect();
         let mut drawn = prover.drawn(&order_of(prover.graph(), &roots), steps)?;
-        let mut draw = |signals: &[Signal]| signals.iter().map(|&signal| drawn.edge(signal)).collect::<Result<Vec<_>, _>>();
+        let mut draw =
+            |signals: &[Signal]| signals.iter().map(|&signal| drawn.edge(signal)).collect::<Result<Vec<_>, _>>();
         let sides = [draw(&self.sides[0])?, draw(&self.sides[1])?];
         let facts = draw(&self.facts)?;
         let facts = conjoin(&mut drawn, &facts)?;

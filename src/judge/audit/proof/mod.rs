@@ -21,6 +21,7 @@ mod drawn;
 mod graph;
 mod groups;
 mod miter;
+mod parities;
 mod prover;
 mod simulate;
 mod spec;

@@ -91,12 +91,7 @@ impl<'a> Prover<'a> {
     /// Appends a proof that stands on the miter and the proof so far.
     pub(super) fn absorb(&mut self, part: &Proof, next_var: usize) {
         self.next_var = next_var;
-        for step in part.steps() {
-            match step {
-                Step::Add(clause) => self.proof.add(clause.iter().copied()),
-                Step::Delete(clause) => self.proof.delete(clause.iter().copied()),
-            }
-        }
+        self.proof.append(part);
     }
 
     /// The graph.
