@@ -11,6 +11,8 @@ use crate::problem::Bits;
 pub enum Method {
     /// Every bit string tried, many at a time.
     Sweep,
+    /// Every assignment of the inputs tried, many at a time, and all else computed from them.
+    Inputs,
     /// Search that splits into components and remembers their counts.
     Components,
     /// A certificate of the search, checked apart from it.
@@ -25,8 +27,9 @@ pub enum Method {
 
 impl Method {
     /// Every way.
-    pub const ALL: [Method; 6] = [
+    pub const ALL: [Method; 7] = [
         Method::Sweep,
+        Method::Inputs,
         Method::Components,
         Method::Certificate,
         Method::Listing,
@@ -39,6 +42,7 @@ impl std::fmt::Display for Method {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         f.write_str(match self {
             Method::Sweep => "sweep",
+            Method::Inputs => "inputs",
             Method::Components => "components",
             Method::Certificate => "certificate",
             Method::Listing => "listing",
