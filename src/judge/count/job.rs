@@ -12,8 +12,8 @@ use super::list::Limits;
 use super::listed::Again;
 use super::sweep::Sweep;
 use super::{
-    CONFIRMED, CONFIRMED_WORK, Fault, LONG_INPUTS, LONG_WORK, Method, Options, Over, QUICK_INPUTS, QUICK_WORK, Run,
-    SHORT_LISTED_WORK, Tally, Wanted, components, counted_over, inputs, sweep,
+    CONFIRMED, CONFIRMED_WORK, Fault, LONG_INPUTS, LONG_STATES, LONG_WORK, Method, Options, Over, QUICK_INPUTS,
+    QUICK_STATES, QUICK_WORK, Run, SHORT_LISTED_WORK, Tally, Wanted, components, counted_over, frontier, inputs, sweep,
 };
 use crate::budget::Budget;
 use crate::judge::clauses::{self, Cnf};
@@ -61,6 +61,7 @@ impl<'a> Job<'a> {
         match method {
             Method::Sweep => Ok(self.swept(budget)?.unwrap_or_else(nothing)),
             Method::Inputs => Ok(self.inputs(u64::MAX, budget)?.unwrap_or_else(nothing)),
+            Method::Frontier => Ok(self.frontier(u64::MAX, budget)?.unwrap_or_else(nothing)),
             Method::Components | Method::Certificate => self.components(LONG_WORK, budget),
             Method::Listing | Method::SecondListing => self.listing(self.options.keep, budget),
             Method::Hashing => {
@@ -92,15 +93,15 @@ impl<'a> Job<'a> {
     }
 
     fn search_first(&self, budget: &Budget) -> Result<Tally, Fault> {
-        if let Some(swept) = self.inputs(QUICK_INPUTS, &half(budget))? {
-            return self.confirmed(swept, budget);
+        if let Some(counted) = self.first_tries(QUICK_INPUTS, QUICK_STATES, &half(budget))? {
+            return self.confirmed(counted, budget);
         }
         let quick = self.components(QUICK_WORK, &half(budget))?;
         if quick.exact().is_some() {
             return self.confirmed(quick, budget);
         }
-        if let Some(swept) = self.inputs(LONG_INPUTS, &half(budget))? {
-            return self.confirmed(swept, budget);
+        if let Some(counted) = self.first_tries(LONG_INPUTS, LONG_STATES, &half(budget))? {
+            return self.confirmed(counted, budget);
         }
         let limits = Limits { solutions: CONFIRMED, work: SHORT_LISTED_WORK };
         let mut short = self.listing_within(limits, self.options.keep, &half(budget), Again::Yes)?;
@@ -131,6 +132,24 @@ impl<'a> Job<'a> {
 
     fn components(&self, work: u64, budget: &Budget) -> Result<Tally, Fault> {
         self.timed(|| Ok(components::count(&self.cnf, &self.counted, work, budget)))
+    }
+
+    /// The two ways whose work can be told beforehand, or is soon spent.
+    fn first_tries(&self, row_operations: u64, states: u64, budget: &Budget) -> Result<Option<Tally>, Fault> {
+        match self.inputs(row_operations, budget)? {
+            Some(tally) => Ok(Some(tally)),
+            None => self.frontier(states, budget),
+        }
+    }
+
+    /// Along a line of variables, with at most so many states looked at.
+    fn frontier(&self, states: u64, budget: &Budget) -> Result<Option<Tally>, Fault> {
+        let start = Instant::now();
+        let prepared = prepare(&self.cnf.clauses, self.cnf.var_count, self.shown(), Effort::Count, budget);
+        let Some(count) = frontier::count(&prepared, states, budget) else { return Ok(None) };
+        let tally = Tally::between(count.clone(), count, Method::Frontier);
+        self.runs.borrow_mut().push(Run::of(&tally, start.elapsed()));
+        Ok(Some(tally))
     }
 
     /// The sweep of the inputs, where there are few and it takes no more than so much work.

@@ -11,6 +11,7 @@ use std::f64::consts::FRAC_1_SQRT_2;
 
 use crate::circuit::{Circuit, Control, Gate, Op, QubitId};
 use crate::id::Id;
+use crate::judge::rows::lanes::COLUMNS;
 use crate::problem::Bits;
 
 /// The state is not of this form after the gate.
