@@ -204,6 +204,10 @@ impl<'a> Job<'a> {
         agree(&mut tally, &listed)?;
         tally.solutions = listed.solutions;
         tally.complete = listed.complete;
+        let by_line = matches!(tally.method, Method::Frontier | Method::Inputs);
+        if tally.checked_by.is_empty() && confirm && by_line {
+            agree(&mut tally, &self.components(QUICK_WORK, budget)?)?;
+        }
         if tally.checked_by.is_empty() && confirm && sweep::is_affordable(self.problem) {
             tally = self.swept_too(tally, budget)?;
         }
