@@ -63,7 +63,7 @@ struct How {
     /// With --for-plan: the iterations with the least expected work, not those with the highest success
     #[arg(long, requires = "for_plan")]
     least_work: bool,
-    /// Count by this way only: sweep, components, listing or hashing
+    /// Count by this way only: sweep, inputs, frontier, components, listing or hashing
     #[arg(long, value_name = "WAY", value_parser = way)]
     by: Option<Method>,
     /// Let no second way confirm the first
@@ -106,9 +106,9 @@ fn margin(text: &str) -> Result<f64, String> {
 }
 
 fn way(text: &str) -> Result<Method, String> {
-    let ways = [Method::Sweep, Method::Components, Method::Listing, Method::Hashing];
+    let ways = [Method::Sweep, Method::Inputs, Method::Frontier, Method::Components, Method::Listing, Method::Hashing];
     let named = ways.into_iter().find(|method| method.to_string() == text);
-    named.ok_or_else(|| "expected sweep, components, listing or hashing".to_owned())
+    named.ok_or_else(|| "expected sweep, inputs, frontier, components, listing or hashing".to_owned())
 }
 
 fn size(text: &str) -> Result<u64, String> {

@@ -30,7 +30,7 @@ from pysat.solvers import Cadical153
 from counting_families import all_families
 
 OFFSET = 0.010
-WAYS = ("enumeration", "exact", "approximate")
+WAYS = ("exact", "approximate", "enumeration")
 
 
 def read(path):
@@ -83,15 +83,17 @@ def measured(way, formula, seed, limit):
     reader, writer = os.pipe()
     child = os.fork()
     if child == 0:
-        os.close(reader)
-        used = sum(resource.getrusage(resource.RUSAGE_SELF)[:2])
-        bound = math.ceil(used + limit) + 1
-        resource.setrlimit(resource.RLIMIT_CPU, (bound, bound))
-        start = time.process_time()
-        count = count_by(way, formula, seed)
-        seconds = time.process_time() - start
-        os.write(writer, json.dumps([str(count), seconds]).encode())
-        os._exit(0)
+        try:
+            used = sum(resource.getrusage(resource.RUSAGE_SELF)[:2])
+            bound = math.ceil(used + limit) + 1
+            resource.setrlimit(resource.RLIMIT_CPU, (bound, bound))
+            start = time.process_time()
+            count = count_by(way, formula, seed)
+            seconds = time.process_time() - start
+            os.write(writer, json.dumps([str(count), seconds]).encode())
+        finally:
+            # Whatever went wrong: this process must not go on as its parent would.
+            os._exit(0)
     os.close(writer)
     with os.fdopen(reader, "rb") as result:
         text = result.read()

@@ -3,6 +3,7 @@ mod auditing;
 mod certificate;
 mod command;
 mod command_audit;
+mod command_count;
 mod counting;
 mod dimacs;
 mod engine;

@@ -6,13 +6,14 @@ use std::time::Instant;
 use num_bigint::BigUint;
 
 use super::combine::{agree, within};
+use super::engine::{Effort, prepare};
 use super::hashing::{self, Accuracy};
 use super::list::Limits;
 use super::listed::Again;
 use super::sweep::Sweep;
 use super::{
-    CONFIRMED, CONFIRMED_WORK, Fault, LONG_WORK, Method, Options, Over, QUICK_WORK, Run, SHORT_LISTED_WORK, Tally,
-    Wanted, components, counted_over, sweep,
+    CONFIRMED, CONFIRMED_WORK, Fault, LONG_INPUTS, LONG_STATES, LONG_WORK, Method, Options, Over, QUICK_INPUTS,
+    QUICK_STATES, QUICK_WORK, Run, SHORT_LISTED_WORK, Tally, Wanted, components, counted_over, frontier, inputs, sweep,
 };
 use crate::budget::Budget;
 use crate::judge::clauses::{self, Cnf};
@@ -59,6 +60,8 @@ impl<'a> Job<'a> {
         let nothing = || self.unknown(method);
         match method {
             Method::Sweep => Ok(self.swept(budget)?.unwrap_or_else(nothing)),
+            Method::Inputs => Ok(self.inputs(u64::MAX, budget)?.unwrap_or_else(nothing)),
+            Method::Frontier => Ok(self.frontier(u64::MAX, budget)?.unwrap_or_else(nothing)),
             Method::Components | Method::Certificate => self.components(LONG_WORK, budget),
             Method::Listing | Method::SecondListing => self.listing(self.options.keep, budget),
             Method::Hashing => {
@@ -90,9 +93,15 @@ impl<'a> Job<'a> {
     }
 
     fn search_first(&self, budget: &Budget) -> Result<Tally, Fault> {
+        if let Some(counted) = self.first_tries(QUICK_INPUTS, QUICK_STATES, &half(budget))? {
+            return self.confirmed(counted, budget);
+        }
         let quick = self.components(QUICK_WORK, &half(budget))?;
         if quick.exact().is_some() {
             return self.confirmed(quick, budget);
+        }
+        if let Some(counted) = self.first_tries(LONG_INPUTS, LONG_STATES, &half(budget))? {
+            return self.confirmed(counted, budget);
         }
         let limits = Limits { solutions: CONFIRMED, work: SHORT_LISTED_WORK };
         let mut short = self.listing_within(limits, self.options.keep, &half(budget), Again::Yes)?;
@@ -125,11 +134,44 @@ impl<'a> Job<'a> {
         self.timed(|| Ok(components::count(&self.cnf, &self.counted, work, budget)))
     }
 
+    /// The two ways whose work can be told beforehand, or is soon spent.
+    fn first_tries(&self, row_operations: u64, states: u64, budget: &Budget) -> Result<Option<Tally>, Fault> {
+        match self.inputs(row_operations, budget)? {
+            Some(tally) => Ok(Some(tally)),
+            None => self.frontier(states, budget),
+        }
+    }
+
+    /// Along a line of variables, with at most so many states looked at.
+    fn frontier(&self, states: u64, budget: &Budget) -> Result<Option<Tally>, Fault> {
+        let start = Instant::now();
+        let prepared = prepare(&self.cnf.clauses, self.cnf.var_count, self.shown(), Effort::Count, budget);
+        let Some(count) = frontier::count(&prepared, states, budget) else { return Ok(None) };
+        let tally = Tally::between(count.clone(), count, Method::Frontier);
+        self.runs.borrow_mut().push(Run::of(&tally, start.elapsed()));
+        Ok(Some(tally))
+    }
+
+    /// The sweep of the inputs, where there are few and it takes no more than so much work.
+    fn inputs(&self, work: u64, budget: &Budget) -> Result<Option<Tally>, Fault> {
+        let start = Instant::now();
+        // Hidden variables must be defined too; so far as shown ones define them, they count for nothing.
+        let prepared = prepare(&self.cnf.clauses, self.cnf.var_count, self.shown(), Effort::Models, budget);
+        let Some(count) = inputs::count(&prepared, work, self.options.threads, budget) else { return Ok(None) };
+        let tally = Tally::between(count.clone(), count, Method::Inputs);
+        self.runs.borrow_mut().push(Run::of(&tally, start.elapsed()));
+        Ok(Some(tally))
+    }
+
+    /// The variables of the clauses that are counted over, where these are not all.
+    fn shown(&self) -> Option<&[BitId]> {
+        (self.counted.len() < self.cnf.var_count).then_some(&self.counted[..])
+    }
+
     fn hashed(&self, accuracy: Accuracy, budget: &Budget) -> Result<Option<Tally>, Fault> {
-        let shown = (self.counted.len() < self.cnf.var_count).then_some(&self.counted[..]);
         let options = hashing::Options { accuracy, seed: self.options.seed, threads: self.options.threads };
         let start = Instant::now();
-        let hashed = hashing::count(&self.cnf.clauses, self.cnf.var_count, shown, &options, budget)
+        let hashed = hashing::count(&self.cnf.clauses, self.cnf.var_count, self.shown(), &options, budget)
             .map_err(|_| Fault::WrongModel { method: Method::Hashing })?;
         let Some(hashed) = hashed else { return Ok(None) };
         let confidence = if hashed.exact { 1.0 } else { accuracy.confidence() };
@@ -162,6 +204,10 @@ impl<'a> Job<'a> {
         agree(&mut tally, &listed)?;
         tally.solutions = listed.solutions;
         tally.complete = listed.complete;
+        let by_line = matches!(tally.method, Method::Frontier | Method::Inputs);
+        if tally.checked_by.is_empty() && confirm && by_line {
+            agree(&mut tally, &self.components(QUICK_WORK, budget)?)?;
+        }
         if tally.checked_by.is_empty() && confirm && sweep::is_affordable(self.problem) {
             tally = self.swept_too(tally, budget)?;
         }

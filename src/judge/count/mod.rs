@@ -9,10 +9,12 @@
 //!
 //! 1. the sweep tries every bit string: first where that costs next to nothing;
 //! 2. the `engine` splits the clauses into components and remembers their counts: next, with little work at first;
-//! 3. the listing goes through the solutions one by one: next, in short, for what the engine found hard may have few solutions;
-//! 4. `hashing` gives an interval with a confidence: here, if an interval is wanted;
-//! 5. the engine again with all the work that is allowed; then hashing, if an interval will do where all else fails;
-//! 6. the listing again, and the sweep again, if it is possible at all.
+//! 3. the `inputs` alone are swept where the clauses define all else: first if that is cheap, here if it is not;
+//! 4. the `frontier` goes along a line of variables: with little work first, in the same places;
+//! 5. the listing goes through the solutions one by one: next, in short, for what the engine found hard may have few solutions;
+//! 6. `hashing` gives an interval with a confidence: here, if an interval is wanted;
+//! 7. the engine again with all the work that is allowed; then hashing, if an interval will do where all else fails;
+//! 8. the listing again, and the sweep again, if it is possible at all.
 //!
 //! Whoever led is confirmed by another way that costs no more than a share: the listing up to [`CONFIRMED`] solutions,
 //! the sweep up to a bound on its work, the engine with little work, or a [`certificate`] of the search that is checked
@@ -25,7 +27,9 @@ mod components;
 mod confirm;
 pub mod counted;
 pub mod engine;
+mod frontier;
 pub mod hashing;
+mod inputs;
 mod job;
 mod list;
 mod listed;
@@ -61,6 +65,14 @@ pub const CONFIRMED_WORK: u64 = 1 << 28;
 pub const SHORT_LISTED_WORK: u64 = 1 << 25;
 /// Work of the engine's first try, in its own units: some tenths of a second.
 pub const QUICK_WORK: u64 = 1 << 24;
+/// Row operations of a first sweep of the inputs: some hundredths of a second.
+pub const QUICK_INPUTS: u64 = 1 << 22;
+/// Row operations of a sweep of the inputs at most: some tens of seconds.
+pub const LONG_INPUTS: u64 = 1 << 31;
+/// States that a first try along a line looks at: some hundredths of a second.
+pub const QUICK_STATES: u64 = 1 << 18;
+/// States that counting along a line looks at, at most: some seconds.
+pub const LONG_STATES: u64 = 1 << 26;
 /// Work of the engine at most where no deadline is set: some minutes.
 pub const LONG_WORK: u64 = 1 << 32;
 /// Size of the kept solutions (times the size of the problem) up to which the evaluator checks them all.

@@ -11,6 +11,10 @@ use crate::problem::Bits;
 pub enum Method {
     /// Every bit string tried, many at a time.
     Sweep,
+    /// Every assignment of the inputs tried, many at a time, and all else computed from them.
+    Inputs,
+    /// Variables in a line, all that is kept of the past being which clauses wait.
+    Frontier,
     /// Search that splits into components and remembers their counts.
     Components,
     /// A certificate of the search, checked apart from it.
@@ -25,8 +29,10 @@ pub enum Method {
 
 impl Method {
     /// Every way.
-    pub const ALL: [Method; 6] = [
+    pub const ALL: [Method; 8] = [
         Method::Sweep,
+        Method::Inputs,
+        Method::Frontier,
         Method::Components,
         Method::Certificate,
         Method::Listing,
@@ -39,6 +45,8 @@ impl std::fmt::Display for Method {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         f.write_str(match self {
             Method::Sweep => "sweep",
+            Method::Inputs => "inputs",
+            Method::Frontier => "frontier",
             Method::Components => "components",
             Method::Certificate => "certificate",
             Method::Listing => "listing",

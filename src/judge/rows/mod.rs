@@ -65,6 +65,11 @@ pub fn count(problem: &Problem, threads: usize, keep: usize, budget: &Budget) ->
         return None;
     }
     let tape = tape(problem, &problem.bits().collect::<Vec<_>>());
+    count_tape(&tape, bits, threads, keep, budget)
+}
+
+/// Counts the inputs of so many bits, at most [`MAX_BITS`], that meet the requirements of a tape.
+pub(crate) fn count_tape(tape: &Tape, bits: usize, threads: usize, keep: usize, budget: &Budget) -> Option<SweepCount> {
     let blocks = 1u64 << bits.saturating_sub(LANE_BITS);
     let runs = RUNS.min(blocks);
     let lanes = Row::first_lanes(LANES.min(1 << bits));
@@ -82,7 +87,7 @@ pub fn count(problem: &Problem, threads: usize, keep: usize, budget: &Budget) ->
         budget.report("sweep", run + 1, Some(runs));
         Then::GoOn
     };
-    let merged = in_order(threads, runs, || Sweep::new(&tape), work, merge);
+    let merged = in_order(threads, runs, || Sweep::new(tape), work, merge);
     (merged == runs).then(|| SweepCount {
         count,
         complete: numbers.len() as u64 == count,

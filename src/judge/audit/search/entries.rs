@@ -11,6 +11,7 @@ use std::f64::consts::FRAC_1_SQRT_2;
 
 use crate::circuit::{Circuit, Control, Gate, Op, QubitId};
 use crate::id::Id;
+use crate::judge::rows::lanes::COLUMNS;
 use crate::problem::Bits;
 
 /// The state is not of this form after the gate.
@@ -282,15 +283,7 @@ pub(super) struct Residue {
 
 /// Bit `index` of the numbers of the 64 entries of a word.
 fn input_word(index: usize, word: usize) -> u64 {
-    const LOW: [u64; 6] = [
-        0xaaaa_aaaa_aaaa_aaaa,
-        0xcccc_cccc_cccc_cccc,
-        0xf0f0_f0f0_f0f0_f0f0,
-        0xff00_ff00_ff00_ff00,
-        0xffff_0000_ffff_0000,
-        0xffff_ffff_0000_0000,
-    ];
-    match LOW.get(index) {
+    match COLUMNS.get(index) {
         Some(&low) => low,
         None if word >> (index - 6) & 1 == 1 => u64::MAX,
         None => 0,

@@ -141,8 +141,8 @@ pub enum Refusal {
         /// What the graph has.
         found: BigUint,
     },
-    /// A step of a refutation that does not follow by propagation.
-    #[error("step {step} of the refutation does not follow by unit propagation")]
+    /// A step of a refutation that does not follow.
+    #[error("step {step} of the refutation does not follow")]
     Step {
         /// The step, deletions not counted.
         step: usize,

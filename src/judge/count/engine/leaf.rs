@@ -11,21 +11,12 @@
 use super::lit::Lit;
 use super::prepare::Class;
 use super::propagate::Propagator;
+use crate::judge::rows::lanes::COLUMNS;
 
 /// The most variables of a leaf.
 pub(crate) const MAX_LEAF: usize = 12;
-const INNER: usize = 6;
+const INNER: usize = COLUMNS.len();
 const WORDS: usize = 1 << (MAX_LEAF - INNER);
-
-/// Columns of the inner variables within a word.
-pub(crate) const COLUMNS: [u64; INNER] = [
-    0xaaaa_aaaa_aaaa_aaaa,
-    0xcccc_cccc_cccc_cccc,
-    0xf0f0_f0f0_f0f0_f0f0,
-    0xff00_ff00_ff00_ff00,
-    0xffff_0000_ffff_0000,
-    0xffff_ffff_0000_0000,
-];
 
 /// A table with room for the widest leaf; the first 2^(variables - 6) words are in use.
 type Table = [u64; WORDS];

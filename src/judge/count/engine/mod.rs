@@ -43,6 +43,8 @@ use num_traits::{One, Zero};
 
 use crate::budget::Budget;
 use crate::problem::{BitId, Clauses};
+pub(super) use lit::Lit;
+pub(super) use number::Number;
 pub use order::OrderKind;
 pub use prepare::Effort;
 pub(super) use prepare::{Class, Prepared, prepare};

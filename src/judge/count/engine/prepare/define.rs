@@ -11,8 +11,8 @@
 
 use super::Class;
 use super::form::{Form, State};
-use crate::judge::count::engine::leaf::COLUMNS;
 use crate::judge::count::engine::lit::Lit;
+use crate::judge::rows::lanes::COLUMNS;
 
 /// The most variables of a table.
 const MAX_WIDTH: usize = 10;

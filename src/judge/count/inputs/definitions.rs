@@ -1,0 +1,176 @@
+//! Which variables define which: an order in which every variable is an input or follows from those before it.
+//!
+//! Input:  prepared clauses. Output: [`Definitions`]: inputs, and the other variables in an order in which each is
+//!         defined by clauses over itself and earlier ones; or nothing, where there are too many inputs, or a variable
+//!         that does not count is defined by none.
+//!
+//! Variables become inputs in the order of the formula, each only if nothing before it defines it; whatever follows
+//! from a new variable is found before the next one becomes an input. Encodings number inputs before gates and gates
+//! before their users, so the inputs found are mostly those that the encoding was made from.
+
+use crate::judge::count::engine::{Class, Lit, Prepared};
+use crate::judge::rows::lanes::COLUMNS;
+
+/// Variables besides the defined one that the defining clauses may speak of: the table of its values has a word or so.
+const MAX_WIDTH: usize = 8;
+const WORDS: usize = 1 << (MAX_WIDTH - 6);
+/// Clauses over known variables that are looked at for a definition.
+const MAX_CLAUSES: usize = 64;
+
+/// A table of one bit for each assignment of up to eight variables; rows beyond their number repeat.
+pub(super) type Table = [u64; WORDS];
+
+/// How a variable follows from earlier ones.
+#[derive(Clone, Debug)]
+pub(super) enum Rule {
+    /// Its value for each assignment of these variables; and whether its clauses also forbid some of these assignments.
+    Table { vars: Vec<u32>, values: Table, forbids: bool },
+    /// The literal (of the variable) holds exactly if all these do.
+    All { lit: Lit, of: Vec<Lit> },
+}
+
+/// A variable that follows from earlier ones, and the clauses that say so.
+#[derive(Clone, Debug)]
+pub(super) struct Definition {
+    pub(super) var: u32,
+    pub(super) rule: Rule,
+    pub(super) clauses: Vec<u32>,
+}
+
+/// Inputs and what follows from them.
+#[derive(Clone, Debug, Default)]
+pub(super) struct Definitions {
+    pub(super) inputs: Vec<u32>,
+    pub(super) defined: Vec<Definition>,
+}
+
+/// Finds inputs, at most so many, and the definitions of all other variables.
+pub(super) fn definitions(formula: &Prepared, most: usize) -> Option<Definitions> {
+    let vars = formula.class.len();
+    let mut finder = Finder {
+        formula,
+        lists: vec![Vec::new(); vars],
+        open: formula.clauses.iter().map(|clause| clause.len() as u32).collect(),
+        known: vec![false; vars],
+        found: Definitions::default(),
+    };
+    for (at, clause) in formula.clauses.iter().enumerate() {
+        clause.iter().for_each(|lit| finder.lists[lit.var()].push(at as u32));
+    }
+    for var in (0..vars).filter(|&var| formula.class[var] == Class::Counted) {
+        if !finder.known[var] {
+            if finder.found.inputs.len() == most {
+                return None;
+            }
+            finder.found.inputs.push(var as u32);
+            finder.close(var);
+        }
+    }
+    finder.known.iter().all(|&known| known).then_some(finder.found)
+}
+
+struct Finder<'a> {
+    formula: &'a Prepared,
+    /// For a variable, its clauses.
+    lists: Vec<Vec<u32>>,
+    /// For a clause, how many of its variables are not known.
+    open: Vec<u32>,
+    known: Vec<bool>,
+    found: Definitions,
+}
+
+impl Finder<'_> {
+    /// Makes a variable known, and all that follows.
+    fn close(&mut self, var: usize) {
+        let mut queue = vec![var];
+        self.known[var] = true;
+        while let Some(var) = queue.pop() {
+            for at in 0..self.lists[var].len() {
+                let clause = self.lists[var][at] as usize;
+                self.open[clause] -= 1;
+                if self.open[clause] != 1 {
+                    continue;
+                }
+                let last = self.formula.clauses[clause].iter().map(|lit| lit.var()).find(|&var| !self.known[var]);
+                // A variable that became known but was not worked on yet still counts as open in the clause.
+                if let Some(last) = last
+                    && let Some(definition) = self.definition(last)
+                {
+                    self.known[last] = true;
+                    self.found.defined.push(definition);
+                    queue.push(last);
+                }
+            }
+        }
+    }
+
+    /// How known variables define this one, if they do.
+    fn definition(&self, var: usize) -> Option<Definition> {
+        let of_known = |clause: &&u32| {
+            let clause = &self.formula.clauses[**clause as usize];
+            clause.iter().all(|lit| lit.var() == var || self.known[lit.var()])
+        };
+        let clauses: Vec<u32> = self.lists[var].iter().filter(of_known).take(MAX_CLAUSES).copied().collect();
+        let by_table = table(self.formula, var, &clauses).map(|rule| (rule, clauses.clone()));
+        let (rule, clauses) = by_table.or_else(|| conjunction(self.formula, var, &clauses))?;
+        Some(Definition { var: var as u32, rule, clauses })
+    }
+}
+
+/// The values of a variable that its clauses leave no choice for, where they speak of few others.
+fn table(formula: &Prepared, var: usize, clauses: &[u32]) -> Option<Rule> {
+    let literals = clauses.iter().flat_map(|&clause| &formula.clauses[clause as usize]);
+    let mut vars: Vec<u32> = literals.map(|lit| lit.var() as u32).filter(|&other| other as usize != var).collect();
+    vars.sort_unstable();
+    vars.dedup();
+    if vars.len() > MAX_WIDTH {
+        return None;
+    }
+    // Rows in which a clause forces the variable to be true, and false.
+    let mut forced = [[0u64; WORDS]; 2];
+    for &clause in clauses {
+        let clause = &formula.clauses[clause as usize];
+        let own = clause.iter().find(|lit| lit.var() == var)?;
+        let mut rows = [u64::MAX; WORDS];
+        for lit in clause.iter().filter(|lit| lit.var() != var) {
+            let at = vars.binary_search(&(lit.var() as u32)).ok()?;
+            let column = column(at);
+            for word in 0..WORDS {
+                rows[word] &= if lit.is_negated() { column[word] } else { !column[word] };
+            }
+        }
+        let side = &mut forced[usize::from(own.is_negated())];
+        side.iter_mut().zip(rows).for_each(|(word, row)| *word |= row);
+    }
+    let decided = (0..WORDS).all(|word| forced[0][word] | forced[1][word] == u64::MAX);
+    let forbids = (0..WORDS).any(|word| forced[0][word] & forced[1][word] != 0);
+    decided.then_some(Rule::Table { vars, values: forced[0], forbids })
+}
+
+/// The rows in which the variable at this place is true.
+pub(super) fn column(at: usize) -> Table {
+    match COLUMNS.get(at) {
+        Some(&column) => [column; WORDS],
+        None => std::array::from_fn(|word| if word >> (at - 6) & 1 == 1 { u64::MAX } else { 0 }),
+    }
+}
+
+/// A conjunction (or, by negation, a disjunction) of any width: one long clause, and clauses of two that exclude its
+/// literal with each of the others.
+fn conjunction(formula: &Prepared, var: usize, clauses: &[u32]) -> Option<(Rule, Vec<u32>)> {
+    clauses.iter().find_map(|&long| {
+        let literals = &formula.clauses[long as usize];
+        let lit = *literals.iter().find(|lit| lit.var() == var)?;
+        let mut used = vec![long];
+        let mut of = Vec::new();
+        for &other in literals.iter().filter(|other| other.var() != var) {
+            let pair = clauses.iter().find(|&&pair| {
+                let pair = &formula.clauses[pair as usize];
+                pair.len() == 2 && pair.contains(&!lit) && pair.contains(&!other)
+            })?;
+            used.push(*pair);
+            of.push(!other);
+        }
+        Some((Rule::All { lit, of }, used))
+    })
+}
