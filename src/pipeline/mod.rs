@@ -31,7 +31,7 @@ use crate::source::Loaded;
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
-pub use oracle::{gates_of_iteration, oracle, whole_search};
+pub use oracle::{CheckedPass, check_passes, gates_of_iteration, oracle, whole_search};
 pub use planning::{advice_on, plan_for};
 
 use files::write_and_read;

@@ -1,23 +1,65 @@
 //! The stages that make circuits: the oracle at one level or at all, and the search around it.
 
+use std::convert::Infallible;
+
 use num_bigint::BigUint;
 
 use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::circuit::{Level, Mark, Product};
 use crate::make::lower::{self, LowerError};
-use crate::make::network;
+use crate::make::network::pass::{self, check};
+use crate::make::network::{self, Network};
 use crate::places::Places;
 use crate::problem::Problem;
 use crate::search::{Advice, whole};
 
 /// Compiles the oracle.
 pub fn oracle(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Product, Error> {
-    let network = network::build(problem, places);
+    lowered(&network(problem, places, budget), settings, budget)
+}
+
+/// The network after all passes.
+fn network(problem: &Problem, places: &Places, budget: &Budget) -> Network {
+    let Ok(network) = pass::simplify(network::build(problem, places), budget, |_| Ok::<(), Infallible>(()));
+    network
+}
+
+fn lowered(network: &Network, settings: Settings, budget: &Budget) -> Result<Product, Error> {
     let options = lower::Options { level: settings.level, mark: settings.mark };
-    let circuit = lower::lower(&network, &options, budget)?;
-    let and_count = lower::and_count(&network, settings.mark, budget)?;
+    let circuit = lower::lower(network, &options, budget)?;
+    let and_count = lower::and_count(network, settings.mark, budget)?;
     Ok(Product::new(circuit, settings.level, settings.mark, and_count))
+}
+
+/// A pass that was checked.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct CheckedPass {
+    /// Its name.
+    pub name: &'static str,
+    /// ANDs of the network before it.
+    pub before: usize,
+    /// ANDs of the network after it.
+    pub after: usize,
+    /// How the two were found to be equal.
+    pub shown: check::Shown,
+}
+
+/// Runs the passes and compares the network before each of them with the one after it; a difference is a fault.
+pub fn check_passes(
+    problem: &Problem,
+    places: &Places,
+    seed: u64,
+    budget: &Budget,
+) -> Result<Vec<CheckedPass>, Error> {
+    let mut list = Vec::new();
+    pass::simplify(network::build(problem, places), budget, |pass::Step { name, before, passed }| {
+        let shown = check::check(before, passed, seed, budget)
+            .map_err(|difference| Error::Fault(format!("pass {name}: {difference}")))?;
+        list.push(CheckedPass { name, before: before.and_count(), after: passed.network.and_count(), shown });
+        Ok(())
+    })
+    .map(|_| list)
 }
 
 /// Puts a phase oracle into the whole search circuit.
@@ -45,7 +87,8 @@ pub(super) fn every_level(
     settings: Settings,
     budget: &Budget,
 ) -> Result<Vec<Product>, Error> {
-    Level::ALL.iter().map(|&level| oracle(problem, places, Settings { level, ..settings }, budget)).collect()
+    let network = network(problem, places, budget);
+    Level::ALL.iter().map(|&level| lowered(&network, Settings { level, ..settings }, budget)).collect()
 }
 
 /// A problem without an oracle is an answer with advice; a budget that ran out is not.

@@ -13,7 +13,6 @@ mod judging;
 mod known_counts;
 mod language;
 mod making;
-mod network;
 mod planning;
 mod proofs;
 mod random_problem;
