@@ -46,12 +46,7 @@ pub struct CheckedPass {
 }
 
 /// Runs the passes and compares the network before each of them with the one after it; a difference is a fault.
-pub fn check_passes(
-    problem: &Problem,
-    places: &Places,
-    seed: u64,
-    budget: &Budget,
-) -> Result<Vec<CheckedPass>, Error> {
+pub fn check_passes(problem: &Problem, places: &Places, seed: u64, budget: &Budget) -> Result<Vec<CheckedPass>, Error> {
     let mut list = Vec::new();
     pass::simplify(network::build(problem, places), budget, |pass::Step { name, before, passed }| {
         let shown = check::check(before, passed, seed, budget)

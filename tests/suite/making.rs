@@ -3,7 +3,7 @@
 
 mod costs;
 mod golden;
-mod problems;
+pub(super) mod problems;
 mod puzzles;
 mod simulate;
 mod whole;

@@ -13,6 +13,7 @@ mod judging;
 mod known_counts;
 mod language;
 mod making;
+mod network;
 mod planning;
 mod proofs;
 mod random_problem;

@@ -103,17 +103,19 @@ fn draw(random: &mut SplitMix64, round: usize) -> u64 {
 fn compare(before: &Network, passed: &Passed, input: &dyn Fn(usize) -> u64) -> Result<(), Difference> {
     let (old, new) = (values(before, input), values(&passed.network, input));
     let of = |values: &IdVec<NodeId, u64>, lit: Lit| values[lit.node()] ^ if lit.is_complemented() { !0 } else { 0 };
-    let differ = |what: String, old: u64, new: u64| {
-        let row = (old ^ new).trailing_zeros();
+    let difference = |what: String, bits: u64| {
+        let row = bits.trailing_zeros();
         let input = (0..before.searched().len()).map(|at| input(at) >> row & 1 == 1).collect();
-        if old == new { Ok(()) } else { Err(Difference { what, input }) }
+        Err(Difference { what, input })
     };
-    differ("the root".to_owned(), of(&old, before.root()), of(&new, passed.network.root()))?;
+    let bits = of(&old, before.root()) ^ of(&new, passed.network.root());
+    if bits != 0 {
+        return difference("the root".to_owned(), bits);
+    }
     for (id, lit) in passed.map.iter() {
-        if let Some(lit) = *lit
-            && old[id] != of(&new, lit)
-        {
-            differ(format!("node {id}"), old[id], of(&new, lit))?;
+        let bits = lit.map_or(0, |lit| old[id] ^ of(&new, lit));
+        if bits != 0 {
+            return difference(format!("node {id}"), bits);
         }
     }
     Ok(())

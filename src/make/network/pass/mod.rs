@@ -13,6 +13,7 @@ mod parities;
 mod pivots;
 mod share;
 mod subsume;
+mod symmetric;
 mod view;
 mod weights;
 mod windows;
@@ -44,6 +45,7 @@ const PASSES: &[Pass] = &[
     ("parities", 1, parities::parities),
     ("weights", 1, weights::weights),
     ("windows", 1, windows::windows),
+    ("symmetric", 1, symmetric::symmetric),
     ("pivots", 1, pivots::pivots),
     ("cuts", 3, cuts::cuts),
     ("share", 2, share::share),

@@ -7,8 +7,8 @@
 //! ANDs: the saving grows faster than a group, so clauses gather on few pivots, and clauses whose rests share literals
 //! on the same one. The search stops after [`MOVES`] tries.
 
-use std::collections::BinaryHeap;
 use std::cmp::Reverse;
+use std::collections::BinaryHeap;
 
 use crate::make::network::{Lit, NodeId};
 
@@ -68,7 +68,8 @@ impl<'a> Groups<'a> {
         let mut nodes: Vec<NodeId> = clauses.iter().flatten().map(|lit| lit.node()).collect();
         nodes.sort_unstable();
         nodes.dedup();
-        let mut found = Self { clauses, groups: vec![Vec::new(); nodes.len()], owner: vec![None; clauses.len()], nodes };
+        let mut found =
+            Self { clauses, groups: vec![Vec::new(); nodes.len()], owner: vec![None; clauses.len()], nodes };
         let mut uses = vec![Vec::new(); found.nodes.len()];
         // Occurrences of each node that are still free: plain and complemented.
         let mut free = vec![[0usize; 2]; found.nodes.len()];
@@ -123,8 +124,9 @@ impl<'a> Groups<'a> {
     /// Moves clauses while that saves ANDs.
     fn improve(&mut self) {
         let mut scratch = Vec::new();
-        let mut costs: Vec<usize> =
-            (0..self.nodes.len()).map(|node| self.cost(&mut scratch, node, self.groups[node].iter().copied())).collect();
+        let mut costs: Vec<usize> = (0..self.nodes.len())
+            .map(|node| self.cost(&mut scratch, node, self.groups[node].iter().copied()))
+            .collect();
         let mut tries = 0;
         for round in 0..ROUNDS {
             let mut moved = false;
@@ -164,7 +166,12 @@ impl<'a> Groups<'a> {
     }
 
     /// ANDs of a group, with the one that joins it to the others.
-    fn cost(&self, scratch: &mut Vec<(usize, NodeId)>, node: usize, group: impl Iterator<Item = usize> + Clone) -> usize {
+    fn cost(
+        &self,
+        scratch: &mut Vec<(usize, NodeId)>,
+        node: usize,
+        group: impl Iterator<Item = usize> + Clone,
+    ) -> usize {
         scratch.clear();
         let mut members = [0; 2];
         let mut ands = 0;
