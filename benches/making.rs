@@ -8,6 +8,7 @@ use tallymark::circuit::{Level, Mark, qasm};
 use tallymark::id::Id;
 use tallymark::make::lower::{Options, lower};
 use tallymark::make::network::build;
+use tallymark::make::network::pass::simplify;
 use tallymark::places::Places;
 use tallymark::problem::{BitId, BitLit, Problem};
 use tallymark::random::SplitMix64;
@@ -42,6 +43,17 @@ fn network_of_3sat(bencher: Bencher) {
     let problem = random_3sat(VARIABLES, CLAUSES);
     let places = Places::as_given(&problem);
     bencher.counter(ItemsCount::new(CLAUSES)).bench(|| build(black_box(&problem), &places));
+}
+
+/// All passes on the network of 10^5 clauses.
+#[divan::bench(sample_count = 1, sample_size = 1)]
+fn passes_of_3sat(bencher: Bencher) {
+    let problem = random_3sat(25_000, 100_000);
+    let places = Places::as_given(&problem);
+    let network = || build(&problem, &places);
+    bencher.counter(ItemsCount::new(100_000usize)).with_inputs(network).bench_values(|network| {
+        simplify(network, &Budget::unlimited(), |_| Ok::<(), ()>(())).expect("nothing objects")
+    });
 }
 
 #[divan::bench(args = [Level::Wide, Level::Toffoli, Level::CliffordT, Level::Feedback], sample_count = 5, sample_size = 1)]

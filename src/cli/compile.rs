@@ -13,7 +13,7 @@ use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, input, limits, plan, progress, texts, turns};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
-use crate::pipeline::{self, Settings};
+use crate::pipeline::{self, CheckedPass, Settings};
 use crate::places::Places;
 use crate::report::header::header;
 use crate::report::places::places_json;
@@ -46,6 +46,9 @@ pub(super) struct Options {
     turns: turns::Options,
     #[command(flatten)]
     texts: texts::Options,
+    /// Compare the network before every pass with the one after it, by running inputs and by refutation
+    #[arg(long)]
+    check_passes: bool,
     /// Where the circuit goes; - is standard output. The places file is written beside it [default: -]
     #[arg(short, long, value_name = "FILE")]
     output: Option<String>,
@@ -73,6 +76,10 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         None => pipeline::oracle_within(&loaded.problem, &places, settings, &limits, &budget),
     }
     .map_err(stage)?;
+    let passes = match options.check_passes {
+        true => pipeline::check_passes(&loaded.problem, &places, global.seed, &budget).map_err(stage)?,
+        false => Vec::new(),
+    };
     let mut counted = None;
     if options.whole {
         let iterations;
@@ -81,8 +88,10 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     }
     drop(line);
     options.texts.check(&product)?;
-    let header = header(&loaded, &places, &product, counted.as_ref());
-    let figures = summary::circuit(&product);
+    let mut header = header(&loaded, &places, &product, counted.as_ref());
+    header.extend(passes.iter().map(checked));
+    let lines: String = passes.iter().map(|pass| format!("\n{}", checked(pass))).collect();
+    let figures = summary::circuit(&product) + &lines;
     match options.output.as_deref() {
         None if global.json => {}
         None | Some("-") if global.json => return Err(Failure::usage(one_output())),
@@ -104,8 +113,24 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let mut object = json::envelope("compile", &loaded, &sources, false);
     object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem));
     object.insert("circuit".to_owned(), json::circuit_json(&product));
+    if options.check_passes {
+        let pass = |pass: &CheckedPass| {
+            serde_json::json!({
+                "name": pass.name,
+                "ands_before": pass.before,
+                "ands_after": pass.after,
+                "shown": pass.shown.to_string(),
+            })
+        };
+        object.insert("passes".to_owned(), passes.iter().map(pass).collect());
+    }
     object.insert("file".to_owned(), options.output.clone().into());
     Ok((Exit::Done, json::print(object)))
+}
+
+fn checked(pass: &CheckedPass) -> String {
+    let CheckedPass { name, before, after, shown } = pass;
+    format!("pass {name}: {before} to {after} ANDs, {shown}")
 }
 
 fn show_front(

@@ -33,7 +33,9 @@ use crate::source::Loaded;
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
-pub use oracle::{front, gates_of_iteration, oracle, oracle_within, turned, whole_search, whole_search_within};
+pub use oracle::{
+    CheckedPass, check_passes, front, gates_of_iteration, oracle, oracle_within, turned, whole_search, whole_search_within,
+};
 pub use planning::{advice_on, plan_for};
 pub use tally::{Margin, Tallied, tally, tally_for_plan};
 

@@ -1,12 +1,15 @@
 //! The stages that make circuits: the oracle at one level or at all, and the search around it.
 
+use std::convert::Infallible;
+
 use num_bigint::BigUint;
 
 use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::circuit::{Level, Mark, Product};
 use crate::make::lower::{self, Limits, LowerError, Lowered, Turn};
-use crate::make::network;
+use crate::make::network::pass::{self, check};
+use crate::make::network::{self, Network};
 use crate::places::Places;
 use crate::problem::Problem;
 use crate::search::{Advice, whole};
@@ -24,7 +27,7 @@ pub fn oracle_within(
     limits: &Limits,
     budget: &Budget,
 ) -> Result<Product, Error> {
-    let network = network::build(problem, places);
+    let network = network(problem, places, budget);
     let lowered = lower::lower_within(&network, &options(settings), limits, budget)?;
     Ok(product(lowered, settings))
 }
@@ -38,7 +41,7 @@ pub fn turned(
     limits: &Limits,
     budget: &Budget,
 ) -> Result<Product, Error> {
-    let network = network::build(problem, places);
+    let network = network(problem, places, budget);
     Ok(product(lower::lower_turn(&network, settings.level, turn, limits, budget)?, settings))
 }
 
@@ -49,7 +52,7 @@ pub fn front(
     settings: Settings,
     budget: &Budget,
 ) -> Result<Vec<Product>, Error> {
-    let network = network::build(problem, places);
+    let network = network(problem, places, budget);
     let front = lower::front_of(&network, &options(settings), budget)?;
     Ok(front.into_iter().map(|lowered| product(lowered, settings)).collect())
 }
@@ -61,6 +64,37 @@ fn options(settings: Settings) -> lower::Options {
 fn product(lowered: Lowered, settings: Settings) -> Product {
     let Lowered { circuit, and_count, figures } = lowered;
     Product { circuit, level: settings.level, mark: settings.mark, and_count, figures }
+}
+
+/// The network after all passes.
+fn network(problem: &Problem, places: &Places, budget: &Budget) -> Network {
+    let Ok(network) = pass::simplify(network::build(problem, places), budget, |_| Ok::<(), Infallible>(()));
+    network
+}
+
+/// A pass that was checked.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct CheckedPass {
+    /// Its name.
+    pub name: &'static str,
+    /// ANDs of the network before it.
+    pub before: usize,
+    /// ANDs of the network after it.
+    pub after: usize,
+    /// How the two were found to be equal.
+    pub shown: check::Shown,
+}
+
+/// Runs the passes and compares the network before each of them with the one after it; a difference is a fault.
+pub fn check_passes(problem: &Problem, places: &Places, seed: u64, budget: &Budget) -> Result<Vec<CheckedPass>, Error> {
+    let mut list = Vec::new();
+    pass::simplify(network::build(problem, places), budget, |pass::Step { name, before, passed }| {
+        let shown = check::check(before, passed, seed, budget)
+            .map_err(|difference| Error::Fault(format!("pass {name}: {difference}")))?;
+        list.push(CheckedPass { name, before: before.and_count(), after: passed.network.and_count(), shown });
+        Ok(())
+    })
+    .map(|_| list)
 }
 
 /// Puts a phase oracle into the whole search circuit.

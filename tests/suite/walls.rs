@@ -23,7 +23,8 @@ const MATRIX: &[(&str, &[&str])] = &[
     ("source", &["problem"]),
     ("places", &["problem"]),
     ("structure", &["problem"]),
-    ("make", &["problem", "places", "circuit", "structure"]),
+    // The maker asks engines bounded local questions only, and holds its own passes to their word with one.
+    ("make", &["problem", "places", "circuit", "structure", "sat"]),
     // The wall of the house: the judge never names the maker.
     ("judge", &["problem", "places", "circuit", "sat"]),
     ("search", &["problem", "places", "circuit", "make", "judge"]),

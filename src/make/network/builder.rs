@@ -86,6 +86,11 @@ impl Builder {
         Lit::new(id, false)
     }
 
+    /// How many ANDs there are.
+    pub(super) fn and_count(&self) -> usize {
+        self.ands
+    }
+
     /// What a node computes.
     pub(super) fn node_at(&self, node: NodeId) -> Node {
         self.nodes[node.index()]

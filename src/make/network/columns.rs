@@ -9,7 +9,9 @@
 //! - *Equal*: the digits up to 2^t are compared one by one, and each digit may assume that the lower ones agree. So the
 //!   last two bits of a column need no adder: their sum is known, and with it their carry.
 //!
-//! Both are also tried with all literals complemented, and the cheaper is built.
+//! Both are also tried with all literals complemented, and with the weights in signed digits, in which 15 is 16 - 1 and
+//! so two bits instead of four (G. W. Reitwiesner, "Binary arithmetic", Advances in Computers 1, 1960, from memory); the
+//! cheapest is built.
 
 use std::collections::VecDeque;
 
@@ -49,6 +51,12 @@ fn bit(number: u128, at: usize) -> bool {
     at < 128 && number >> at & 1 == 1
 }
 
+/// The non-adjacent form of a weight below 2^126: what is added and what is taken away.
+fn signed_digits(weight: u128) -> (u128, u128) {
+    let triple = 3 * weight;
+    ((triple & !weight) >> 1, (weight & !triple) >> 1)
+}
+
 /// A comparison with a constant: whether `sum >= least` or `sum = least`, for a sum of positive terms that is known to
 /// lie in `low..=high`; the signed numbers are relative to the sum's base.
 #[derive(Clone)]
@@ -75,6 +83,30 @@ impl Question {
             high: total - self.low,
             number: total - self.number,
         }
+    }
+
+    /// The question about the same sum with the weights in signed digits where these are fewer: `-w x = w (not x) - w`.
+    fn signed(&self) -> Self {
+        let mut shift = 0;
+        let mut terms = Vec::with_capacity(self.terms.len());
+        for &(lit, weight) in &self.terms {
+            let (plus, minus) = signed_digits(weight);
+            if plus.count_ones() + minus.count_ones() < weight.count_ones() {
+                terms.extend([(lit, plus), (!lit, minus)]);
+                shift += minus as i128;
+            } else {
+                terms.push((lit, weight));
+            }
+        }
+        Self { terms, low: self.low + shift, high: self.high + shift, number: self.number + shift }
+    }
+
+    /// The cheapest of the ways to ask it.
+    fn cheapest(ways: [Self; 2], cost: impl Fn(&Self) -> usize) -> (Self, bool) {
+        let [plain, mirrored] = ways;
+        let all = [(plain.signed(), false), (mirrored.signed(), true)];
+        let all = [(plain, false), (mirrored, true)].into_iter().chain(all);
+        all.min_by_key(|(question, _)| cost(question)).expect("four ways")
     }
 
     /// How many columns tell the number from every other value in reach.
@@ -143,11 +175,8 @@ impl Builder {
         // Not at least the number means: of the complements at least the number's complement plus one.
         let mut mirrored = question.mirrored();
         mirrored.number += 1;
-        if mirrored.at_least_cost() < question.at_least_cost() {
-            !self.at_least_of(&mirrored)
-        } else {
-            self.at_least_of(&question)
-        }
+        let (question, is_mirrored) = Question::cheapest([question, mirrored], Question::at_least_cost);
+        self.at_least_of(&question).complement_if(is_mirrored)
     }
 
     fn at_least_of(&mut self, question: &Question) -> Lit {
@@ -208,8 +237,7 @@ impl Builder {
         if question.low == question.high {
             return Lit::YES;
         }
-        let mirrored = question.mirrored();
-        let digit_wise = if mirrored.equal_cost() < question.equal_cost() { mirrored } else { question.clone() };
+        let (digit_wise, _) = Question::cheapest([question.clone(), question.mirrored()], Question::equal_cost);
         // At an end of the range, equality is a comparison with one side only.
         let (least, most) = (question.number == question.low, question.number == question.high);
         let compare = |b: &mut Builder| if most { b.at_least(form, number) } else { !b.at_least(form, number + 1) };
@@ -217,9 +245,18 @@ impl Builder {
         if least || most { self.cheapest(&[&equal, &compare]) } else { equal(self) }
     }
 
+    /// Whether `form` and `number` have the same remainder modulo 2^columns.
+    pub(super) fn equal_modulo(&mut self, form: &Linear, number: i128, columns: usize) -> Lit {
+        self.equal_digits(&Question::new(form, number), columns)
+    }
+
     fn equal_of(&mut self, question: &Question) -> Lit {
+        self.equal_digits(question, question.equal_columns())
+    }
+
+    fn equal_digits(&mut self, question: &Question, count: usize) -> Lit {
         let number = question.number as u128;
-        let mut columns = Columns::new(&question.terms, question.equal_columns());
+        let mut columns = Columns::new(&question.terms, count);
         let mut parts = Vec::new();
         for at in 0..columns.0.len() {
             let wanted = bit(number, at);

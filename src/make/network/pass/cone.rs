@@ -112,7 +112,9 @@ pub(super) fn functions(network: &Network) -> IdVec<NodeId, Option<Function>> {
         let of = |lit: Lit| functions[lit.node()].as_ref();
         let function = match *node {
             Node::Const | Node::Input(_) => Some(Function::of_node(id)),
-            Node::And(a, b) => of(a).zip(of(b)).and_then(|(p, q)| p.join(q, |p, q| complement_if(p, a) & complement_if(q, b))),
+            Node::And(a, b) => {
+                of(a).zip(of(b)).and_then(|(p, q)| p.join(q, |p, q| complement_if(p, a) & complement_if(q, b)))
+            }
             Node::Xor(a, b) => of(a).zip(of(b)).and_then(|(p, q)| p.join(q, |p, q| p ^ q)),
         };
         functions.push(function);

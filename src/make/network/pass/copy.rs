@@ -27,7 +27,13 @@ impl<'a> Copy<'a> {
         for id in 0..=old.searched().len() {
             map[NodeId::new(id)] = Some(Lit::new(NodeId::new(id), false));
         }
-        Self { old, builder: Builder::new(old.searched()), map, assumed: vec![false; old.nodes().len()].into(), open: Vec::new() }
+        Self {
+            old,
+            builder: Builder::new(old.searched()),
+            map,
+            assumed: vec![false; old.nodes().len()].into(),
+            open: Vec::new(),
+        }
     }
 
     /// What an old node shall become from here on, wherever it is used: a literal that computes the same.
@@ -52,7 +58,8 @@ impl<'a> Copy<'a> {
         while let Some(&node) = self.open.last() {
             if self.map[node].is_none() {
                 let (a, b) = self.operands(node);
-                let missing: Vec<NodeId> = [a, b].map(Lit::node).into_iter().filter(|&n| self.map[n].is_none()).collect();
+                let missing: Vec<NodeId> =
+                    [a, b].map(Lit::node).into_iter().filter(|&n| self.map[n].is_none()).collect();
                 if !missing.is_empty() {
                     self.open.extend(missing);
                     continue;
@@ -104,11 +111,7 @@ impl<'a> Copy<'a> {
     }
 
     /// The same with another tree over the conjuncts.
-    pub(super) fn finish_by(
-        mut self,
-        conjuncts: Conjuncts,
-        all: impl FnOnce(&mut Builder, Vec<Lit>) -> Lit,
-    ) -> Passed {
+    pub(super) fn finish_by(mut self, conjuncts: Conjuncts, all: impl FnOnce(&mut Builder, Vec<Lit>) -> Lit) -> Passed {
         for node in self.assumed.ids().filter(|&node| self.assumed[node]) {
             self.map[node] = None;
         }

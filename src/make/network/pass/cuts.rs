@@ -84,9 +84,7 @@ fn enumerate(network: &Network, uses: &Uses<'_>) -> IdVec<NodeId, Vec<Function>>
         let found = match *node {
             Node::Const | Node::Input(_) => Vec::new(),
             _ if uses.of(id) == 0 => Vec::new(),
-            Node::And(a, b) => {
-                joined(&cuts, [a, b], |p, q| complement_if(p, a) & complement_if(q, b))
-            }
+            Node::And(a, b) => joined(&cuts, [a, b], |p, q| complement_if(p, a) & complement_if(q, b)),
             Node::Xor(a, b) => joined(&cuts, [a, b], |p, q| p ^ q),
         };
         cuts.push(found);

@@ -4,6 +4,7 @@
 //! after it, and returns, for every node of the old network, the literal of the new one that computes the same, or none
 //! where nothing does any more. [`simplify`] runs them all and keeps a result only where the ANDs do not become more.
 
+pub mod check;
 mod cone;
 mod copy;
 mod cuts;
@@ -12,11 +13,13 @@ mod parities;
 mod pivots;
 mod share;
 mod subsume;
+mod symmetric;
 mod view;
 mod weights;
 mod windows;
 
 use super::{Lit, Network, NodeId};
+use crate::budget::Budget;
 use crate::id::IdVec;
 
 /// For every old node what computes the same in the new network; none where nothing does.
@@ -31,34 +34,57 @@ pub struct Passed {
     pub map: NodeMap,
 }
 
-/// A pass by name.
-type Pass = (&'static str, fn(&Network) -> Passed);
+/// A pass by name, and how often it may run while it removes ANDs.
+type Pass = (&'static str, usize, fn(&Network) -> Passed);
 
-/// The passes in the order they run.
+/// The passes in the order they run. Clauses become the gates and counters they spell before what is left of them is
+/// grouped on pivots; the last two work on the graph.
 const PASSES: &[Pass] = &[
-    ("known", known::known),
-    ("subsume", subsume::subsume),
-    ("known again", known::known),
-    ("parities", parities::parities),
-    ("weights", weights::weights),
-    ("windows", windows::windows),
-    ("pivots", pivots::pivots),
-    ("cuts", cuts::cuts),
-    ("share", share::share),
+    ("known", 4, known::known),
+    ("subsume", 2, subsume::subsume),
+    ("parities", 1, parities::parities),
+    ("weights", 1, weights::weights),
+    ("windows", 1, windows::windows),
+    ("symmetric", 1, symmetric::symmetric),
+    ("pivots", 1, pivots::pivots),
+    ("cuts", 3, cuts::cuts),
+    ("share", 2, share::share),
 ];
 
-/// Runs the passes. `each` sees every step that was kept: the name of the pass, the network before and what it made.
-pub fn simplify(network: Network, mut each: impl FnMut(&'static str, &Network, &Passed)) -> Network {
-    let mut network = network;
-    for (name, pass) in PASSES {
-        if view::is_settled(&network) {
-            break;
-        }
-        let passed = pass(&network);
-        if passed.network.and_count() <= network.and_count() {
-            each(name, &network, &passed);
+/// A step of [`simplify`] that was kept.
+#[derive(Clone, Copy, Debug)]
+pub struct Step<'a> {
+    /// The name of the pass.
+    pub name: &'static str,
+    /// The network it was given.
+    pub before: &'a Network,
+    /// What it made.
+    pub passed: &'a Passed,
+}
+
+/// Runs the passes until the budget is spent: what was reached until then is the predicate too. `each` sees every step
+/// that is kept; its first error ends the work.
+pub fn simplify<E>(
+    mut network: Network,
+    budget: &Budget,
+    mut each: impl FnMut(Step<'_>) -> Result<(), E>,
+) -> Result<Network, E> {
+    for &(name, rounds, pass) in PASSES {
+        for _ in 0..rounds {
+            if view::is_settled(&network) || budget.spent() {
+                return Ok(network);
+            }
+            let passed = pass(&network);
+            let (before, after) = (network.and_count(), passed.network.and_count());
+            if after > before {
+                break;
+            }
+            each(Step { name, before: &network, passed: &passed })?;
             network = passed.network;
+            if after == before {
+                break;
+            }
         }
     }
-    network
+    Ok(network)
 }

@@ -38,7 +38,8 @@ pub(super) fn share(network: &Network) -> Passed {
     let tree_of: FxHashMap<NodeId, usize> = trees.iter().enumerate().map(|(at, tree)| (tree.0, at)).collect();
     for (id, _) in network.nodes().iter() {
         let Some(&at) = tree_of.get(&id) else { continue };
-        let lits: Vec<Lit> = trees[at].1.iter().map(|&lit| divisor_or_node(&mut copy, &mut depths, &divisors, lit)).collect();
+        let lits: Vec<Lit> =
+            trees[at].1.iter().map(|&lit| divisor_or_node(&mut copy, &mut depths, &divisors, lit)).collect();
         let lit = depths.join(&mut copy.builder, lits);
         copy.replace(id, lit);
     }

@@ -6,11 +6,10 @@
 //!
 //! Holds after: no clause contains another, as far as literals with at most [`MAX_CLAUSES`] clauses show it.
 
-use rustc_hash::FxHashMap;
-
 use super::Passed;
 use super::copy::Copy;
 use super::view::{self, Clause};
+use crate::id::Id;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::{Lit, Network};
 
@@ -43,39 +42,48 @@ pub(super) fn subsume(network: &Network) -> Passed {
 
 struct Store<'a> {
     clauses: &'a mut Vec<Clause>,
-    at_lit: FxHashMap<Lit, Vec<usize>>,
+    /// The clauses of each literal, by its number.
+    at_lit: Vec<Vec<usize>>,
+    /// For each clause the set of its nodes, hashed into 64 bits: a cheap look before the comparison.
+    nodes: Vec<u64>,
     gone: Vec<bool>,
 }
 
 impl<'a> Store<'a> {
     fn new(clauses: &'a mut Vec<Clause>) -> Self {
-        let mut at_lit: FxHashMap<Lit, Vec<usize>> = FxHashMap::default();
+        let last = clauses.iter().flat_map(|clause| &clause.lits).map(|lit| lit.0 | 1).max().unwrap_or(0);
+        let mut at_lit = vec![Vec::new(); last as usize + 1];
         for (at, clause) in clauses.iter().enumerate() {
-            clause.lits.iter().for_each(|&lit| at_lit.entry(lit).or_default().push(at));
+            clause.lits.iter().for_each(|&lit| at_lit[lit.0 as usize].push(at));
         }
-        Self { gone: vec![false; clauses.len()], clauses, at_lit }
+        let nodes = clauses.iter().map(|clause| node_set(&clause.lits)).collect();
+        Self { gone: vec![false; clauses.len()], clauses, at_lit, nodes }
     }
 
     /// Removes what the clause subsumes, and the literals that it resolves away.
     fn use_clause(&mut self, at: usize, open: &mut Vec<usize>) {
         let lits = self.clauses[at].lits.clone();
         // Every clause that is touched holds the rarest literal, or its complement, or another one complemented.
-        let count = |lit: &Lit| self.at_lit.get(lit).map_or(0, Vec::len);
-        let Some(&rare) = lits.iter().min_by_key(|&lit| (count(lit), *lit)) else { return };
+        let count = |lit: Lit| self.at_lit[lit.0 as usize].len();
+        let set = node_set(&lits);
+        let Some(&rare) = lits.iter().min_by_key(|&&lit| (count(lit), lit)) else { return };
         for &pivot in &lits {
             for (in_clause, flipped) in [(rare, None), (!pivot, Some(pivot))] {
                 // Without a flipped literal once is enough; with one, the rarest of the others would do as well.
-                if flipped.is_none() && pivot != rare || count(&in_clause) > MAX_CLAUSES {
+                if flipped.is_none() && pivot != rare || self.at_lit[in_clause.0 as usize].len() > MAX_CLAUSES {
                     continue;
                 }
-                for other in self.at_lit.get(&in_clause).cloned().unwrap_or_default() {
-                    if other == at || self.gone[other] || !self.contains(other, &lits, flipped) {
+                for place in 0..self.at_lit[in_clause.0 as usize].len() {
+                    let other = self.at_lit[in_clause.0 as usize][place];
+                    let may = set & !self.nodes[other] == 0 && other != at && !self.gone[other];
+                    if !may || !self.contains(other, &lits, flipped) {
                         continue;
                     }
                     match flipped {
                         None => self.gone[other] = true,
                         Some(pivot) => {
                             self.clauses[other].lits.retain(|&lit| lit != !pivot);
+                            self.nodes[other] = node_set(&self.clauses[other].lits);
                             open.push(other);
                         }
                     }
@@ -90,4 +98,8 @@ impl<'a> Store<'a> {
         let want = |lit: Lit| if flipped == Some(lit) { !lit } else { lit };
         clause.len() >= lits.len() && lits.iter().all(|&lit| clause.binary_search(&want(lit)).is_ok())
     }
+}
+
+fn node_set(lits: &[Lit]) -> u64 {
+    lits.iter().fold(0, |set, lit| set | 1 << (lit.node().index() % 64))
 }

@@ -75,7 +75,9 @@ fn leaves(network: &Network, uses: &IdVec<NodeId, u32>, lit: Lit) -> Vec<Lit> {
     let mut open = vec![lit];
     while let Some(lit) = open.pop() {
         match network.nodes()[lit.node()] {
-            Node::And(a, b) if lit.is_complemented() && (uses[lit.node()] <= 1 || lits.len() + open.len() < MAX_SHARED) => {
+            Node::And(a, b)
+                if lit.is_complemented() && (uses[lit.node()] <= 1 || lits.len() + open.len() < MAX_SHARED) =>
+            {
                 open.extend([!b, !a]);
             }
             _ => lits.push(lit),
@@ -84,9 +86,9 @@ fn leaves(network: &Network, uses: &IdVec<NodeId, u32>, lit: Lit) -> Vec<Lit> {
     lits
 }
 
-/// Whether folding has already shown that the conjunction never holds.
+/// Whether there is nothing to do: the root is a constant or a bit, or is not said to be a conjunction.
 pub(super) fn is_settled(network: &Network) -> bool {
-    network.root().is_constant() || network.root().node().index() <= network.searched().len()
+    network.root().node().index() <= network.searched().len() || network.conjuncts().is_empty()
 }
 
 /// The clause as a conjunct of the new network, an OR.

@@ -50,7 +50,11 @@ pub(super) fn weights(network: &Network) -> Passed {
             if let Some(&at) = search.by_lits.get(clause.as_slice())
                 && !std::mem::replace(&mut search.taken[at], true)
             {
-                if is_least { bounds.least = bounds.least.max(1) } else { bounds.most = bounds.most.min(clause.len() - 1) }
+                if is_least {
+                    bounds.least = bounds.least.max(1)
+                } else {
+                    bounds.most = bounds.most.min(clause.len() - 1)
+                }
             }
         }
     }
@@ -143,7 +147,8 @@ impl<'a> Search<'a> {
         let mut found: Vec<Lit> = Vec::new();
         for &at in &self.at_lit[&lits[0]] {
             let other = &self.clauses[at].lits;
-            if other.len() == lits.len() && !self.taken[at] && fixed.iter().all(|lit| other.binary_search(lit).is_ok()) {
+            if other.len() == lits.len() && !self.taken[at] && fixed.iter().all(|lit| other.binary_search(lit).is_ok())
+            {
                 found.extend(other.iter().filter(|lit| !fixed.contains(lit)));
             }
         }

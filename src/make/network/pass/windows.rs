@@ -13,7 +13,7 @@ use super::Passed;
 use super::cone::{self, Function, Uses};
 use super::copy::Copy;
 use super::view::{self, Clause};
-use crate::id::{Id, IdVec};
+use crate::id::IdVec;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::small::{INPUTS, Small};
 use crate::make::network::{Lit, Network, NodeId};

@@ -7,14 +7,13 @@
 //! ANDs: the saving grows faster than a group, so clauses gather on few pivots, and clauses whose rests share literals
 //! on the same one. The search stops after [`MOVES`] tries.
 
-use std::collections::BinaryHeap;
 use std::cmp::Reverse;
+use std::collections::BinaryHeap;
 
-use crate::id::Id;
 use crate::make::network::{Lit, NodeId};
 
 /// Tries of moving a clause, over all rounds.
-const MOVES: usize = 400_000;
+const MOVES: usize = 1_000_000;
 
 /// Rounds over all clauses.
 const ROUNDS: usize = 40;
@@ -69,7 +68,8 @@ impl<'a> Groups<'a> {
         let mut nodes: Vec<NodeId> = clauses.iter().flatten().map(|lit| lit.node()).collect();
         nodes.sort_unstable();
         nodes.dedup();
-        let mut found = Self { clauses, groups: vec![Vec::new(); nodes.len()], owner: vec![None; clauses.len()], nodes };
+        let mut found =
+            Self { clauses, groups: vec![Vec::new(); nodes.len()], owner: vec![None; clauses.len()], nodes };
         let mut uses = vec![Vec::new(); found.nodes.len()];
         // Occurrences of each node that are still free: plain and complemented.
         let mut free = vec![[0usize; 2]; found.nodes.len()];
@@ -123,51 +123,79 @@ impl<'a> Groups<'a> {
 
     /// Moves clauses while that saves ANDs.
     fn improve(&mut self) {
-        let mut costs: Vec<usize> = (0..self.nodes.len()).map(|node| self.cost(node, &self.groups[node])).collect();
+        let mut scratch = Vec::new();
+        let mut costs: Vec<usize> = (0..self.nodes.len())
+            .map(|node| self.cost(&mut scratch, node, self.groups[node].iter().copied()))
+            .collect();
         let mut tries = 0;
         for round in 0..ROUNDS {
             let mut moved = false;
             for at in 0..self.clauses.len() {
                 let Some(from) = self.owner[at] else { continue };
-                let left: Vec<usize> = self.groups[from].iter().copied().filter(|&other| other != at).collect();
-                let left_cost = self.cost(from, &left);
-                let mut best: Option<(usize, usize, Vec<usize>, usize)> = None;
+                let left = self.groups[from].iter().copied().filter(|&other| other != at);
+                let left_cost = self.cost(&mut scratch, from, left);
+                let mut best: Option<(usize, usize, usize)> = None;
                 for lit in &self.clauses[at] {
                     let to = self.place(*lit);
                     tries += 1;
                     if to == from || self.groups[to].is_empty() {
                         continue;
                     }
-                    let mut joined = self.groups[to].clone();
-                    joined.insert(joined.partition_point(|&other| other < at), at);
-                    let cost = self.cost(to, &joined);
+                    let cost = self.cost(&mut scratch, to, self.groups[to].iter().copied().chain([at]));
                     // What the change would make the two groups cost; at the same cost the larger group wins.
                     let (before, after) = (costs[from] + costs[to], left_cost + cost);
-                    let gains = after < before || after == before && joined.len() > self.groups[from].len() && round % 2 == 1;
-                    if gains && best.as_ref().is_none_or(|best| before - after > best.3) {
-                        best = Some((to, cost, joined, before - after));
+                    let larger = self.groups[to].len() + 1 > self.groups[from].len();
+                    let gains = after < before || after == before && larger && round % 2 == 1;
+                    if gains && best.is_none_or(|best| before - after > best.2) {
+                        best = Some((to, cost, before - after));
                     }
                 }
-                if let Some((to, cost, joined, _)) = best {
+                if let Some((to, cost, _)) = best {
                     moved = true;
                     (costs[from], costs[to]) = (left_cost, cost);
-                    self.groups[from].clone_from(&left);
-                    self.groups[to] = joined;
+                    self.groups[from].retain(|&other| other != at);
+                    let place = self.groups[to].partition_point(|&other| other < at);
+                    self.groups[to].insert(place, at);
                     self.owner[at] = Some(to);
                 }
-                if tries > MOVES {
-                    return;
-                }
             }
-            if !moved && round % 2 == 1 {
+            if tries > MOVES || !moved && round % 2 == 1 {
                 return;
             }
         }
     }
 
     /// ANDs of a group, with the one that joins it to the others.
-    fn cost(&self, node: usize, group: &[usize]) -> usize {
-        if group.is_empty() { 0 } else { self.term(node, group).ands() + 1 }
+    fn cost(
+        &self,
+        scratch: &mut Vec<(usize, NodeId)>,
+        node: usize,
+        group: impl Iterator<Item = usize> + Clone,
+    ) -> usize {
+        scratch.clear();
+        let mut members = [0; 2];
+        let mut ands = 0;
+        for at in group.clone() {
+            let lits = &self.clauses[at];
+            let pivot = lits.iter().find(|lit| lit.node() == self.nodes[node]).expect("the pivot of the group");
+            let side = usize::from(pivot.is_complemented());
+            members[side] += 1;
+            ands += lits.len() - 2;
+            scratch.extend(lits.iter().filter(|&lit| lit != pivot).map(|lit| (side, lit.node())));
+        }
+        match members {
+            [0, 0] => return 0,
+            // A clause of k literals, and the AND that joins it.
+            [1, 0] | [0, 1] => return ands + 2,
+            _ => {}
+        }
+        scratch.sort_unstable();
+        if scratch.windows(2).all(|pair| pair[0] != pair[1]) {
+            // Nothing to group in the rests: a chain on each side, the choice, and the AND that joins it.
+            return ands + members.map(|count: usize| count.saturating_sub(1)).iter().sum::<usize>() + 2;
+        }
+        let group: Vec<usize> = group.collect();
+        self.term(node, &group).ands() + 1
     }
 
     fn term(&self, node: usize, group: &[usize]) -> Term {
