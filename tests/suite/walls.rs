@@ -22,7 +22,8 @@ const MATRIX: &[(&str, &[&str])] = &[
     ("sat", &[]),
     ("source", &["problem"]),
     ("places", &["problem"]),
-    ("make", &["problem", "places", "circuit"]),
+    // The maker asks an engine about the order of moves of a schedule, never about the formula.
+    ("make", &["problem", "places", "circuit", "sat"]),
     // The wall of the house: the judge never names the maker.
     ("judge", &["problem", "places", "circuit", "sat"]),
     ("search", &["problem", "places", "circuit", "make", "judge"]),
