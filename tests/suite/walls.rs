@@ -23,7 +23,8 @@ const MATRIX: &[(&str, &[&str])] = &[
     ("source", &["problem"]),
     ("places", &["problem"]),
     ("structure", &["problem"]),
-    // The maker asks engines bounded local questions only, and holds its own passes to their word with one.
+    // The maker asks engines bounded local questions (a window, the order of moves of a schedule, one of its own passes),
+    // never about the whole formula.
     ("make", &["problem", "places", "circuit", "structure", "sat"]),
     // The wall of the house: the judge never names the maker.
     ("judge", &["problem", "places", "circuit", "sat"]),

@@ -5,22 +5,29 @@ use super::plan::Plan;
 use super::steps::{Step, Steps};
 use super::{LowerError, Options};
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Level, MARK, MeasuredId, Op, Part, SEARCH, WORK};
+use crate::circuit::{Circuit, Level, MARK, MeasuredId, Op, Part, QubitId, SEARCH, WORK};
 
 /// The name of the register of measured bits that corrections depend on.
 pub(super) const OUTCOME: &str = "outcome";
 /// How many runs are written between two looks at the clock.
 const RUNS_BETWEEN_LOOKS: usize = 1024;
 
-/// Writes the oracle.
-pub(super) fn emit(plan: &Plan<'_>, steps: &Steps, options: &Options, budget: &Budget) -> Result<Circuit, LowerError> {
+/// Writes the oracle. Before all else `spread` copies the first of each pair into the second, an ancilla beyond those of
+/// the plan.
+pub(super) fn emit(
+    plan: &Plan<'_>,
+    steps: &Steps,
+    spread: &[(QubitId, QubitId)],
+    options: &Options,
+    budget: &Budget,
+) -> Result<Circuit, LowerError> {
     let mut circuit = Circuit::new();
     circuit.add_qubits(SEARCH, plan.search);
     if plan.mark.is_some() {
         circuit.add_qubits(MARK, 1);
     }
-    if plan.work > 0 {
-        let work = circuit.add_qubits(WORK, plan.work);
+    if plan.work + spread.len() > 0 {
+        let work = circuit.add_qubits(WORK, plan.work + spread.len());
         work.into_iter().for_each(|qubit| circuit.push(Op::Reset, &[], qubit));
         circuit.note(0, Part::Prepare, None);
     }
@@ -28,6 +35,9 @@ pub(super) fn emit(plan: &Plan<'_>, steps: &Steps, options: &Options, budget: &B
     let outcomes =
         if options.level == Level::Feedback && erased > 0 { circuit.add_measured(OUTCOME, erased) } else { Vec::new() };
     let mut writer = Writer { circuit, level: options.level, outcomes: outcomes.into_iter() };
+    let from = writer.circuit.gates().len();
+    spread.iter().for_each(|&(source, copy)| Pen::new(&mut writer.circuit, options.level).cx(source, copy));
+    writer.circuit.note(from, Part::Compute, None);
     let ends = steps.runs.iter().skip(1).map(|run| run.start).chain([steps.compute.len()]);
     let runs: Vec<(std::ops::Range<usize>, _)> =
         steps.runs.iter().zip(ends).map(|(run, end)| (run.start..end, run.constraint)).collect();
@@ -47,6 +57,9 @@ pub(super) fn emit(plan: &Plan<'_>, steps: &Steps, options: &Options, budget: &B
         steps.compute[range.clone()].iter().rev().for_each(|step| writer.undo(steps, step));
         writer.circuit.note(from, Part::Undo, *constraint);
     }
+    let from = writer.circuit.gates().len();
+    spread.iter().rev().for_each(|&(source, copy)| Pen::new(&mut writer.circuit, options.level).cx(source, copy));
+    writer.circuit.note(from, Part::Undo, None);
     Ok(writer.circuit)
 }
 

@@ -11,6 +11,7 @@ use std::f64::consts::PI;
 
 use super::replay::{self, Marking};
 use super::schedule::cells::cells;
+use super::schedule::counter;
 use super::schedule::front::{keep_all, front};
 use super::schedule::program::Pay;
 use super::{Limits, LowerError, Options};
@@ -52,7 +53,8 @@ pub fn lower_turn(
     budget: &Budget,
 ) -> Result<Lowered, LowerError> {
     super::refuse_trivial(network)?;
-    let cells = cells(network, false);
+    let mut cells = cells(network, false);
+    counter::group(&mut cells);
     let marking = Marking::Turn(turn);
     let own = marking.qubits();
     let fixed = network.searched().len() + usize::from(turn.controlled);

@@ -15,6 +15,7 @@
 
 mod conjugation;
 mod emit;
+mod fan_out;
 mod forms;
 mod gates;
 mod multi;
@@ -117,7 +118,15 @@ pub fn lower(network: &Network, options: &Options, budget: &Budget) -> Result<Ci
     refuse_trivial(network)?;
     let plan = plan::plan(network, options);
     let steps = steps::steps(&plan, options, budget)?;
-    Ok(tidied(emit::emit(&plan, &steps, options, budget)?, options.level))
+    Ok(tidied(emit::emit(&plan, &steps, &[], options, budget)?, options.level))
+}
+
+/// The oracle of a network with copies of searched qubits, each of which serves so many constraints.
+fn lower_spread(network: &Network, options: &Options, share: usize, budget: &Budget) -> Result<Circuit, LowerError> {
+    let plan = plan::plan(network, options);
+    let mut steps = steps::steps(&plan, options, budget)?;
+    let spread = fan_out::fan_out(&mut steps, plan.search, plan.first_work + plan.work, share);
+    Ok(tidied(emit::emit(&plan, &steps, &spread, options, budget)?, options.level))
 }
 
 /// The circuit without gates that undo each other, and at `clifford-t` with rotations merged.

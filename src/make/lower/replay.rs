@@ -1,4 +1,4 @@
-//! From a program to a circuit.
+//! From a program to a circuit: [`marking`] and [`counting`] have their own files.
 //!
 //! Input:  cells, and a program over them. Output: the oracle.
 //! After:  the ancillas are clean; the gates of a move are those of its level, and no others cost a T gate.
@@ -8,6 +8,11 @@
 //! is written once, each gate under the condition that the outcome was 1; as an outcome can only be 1 where the repair
 //! that measured it was made, one bit is enough for each condition.
 
+mod counting;
+mod marking;
+
+pub(super) use marking::Marking;
+
 use std::cmp::Reverse;
 use std::collections::BinaryHeap;
 
@@ -15,50 +20,16 @@ use super::conjugation::{Conjugation, Operand, conjugate};
 use super::emit::OUTCOME;
 use super::gates::Pen;
 use super::plan::keep_odd;
-use super::schedule::cells::{CellId, Cells, Form, Term};
+use super::schedule::cells::{CellId, Cells, Form};
+use super::schedule::counter::Groups;
 use super::schedule::program::Move;
-use super::{LowerError, Options, Turn};
-use std::f64::consts::PI;
+use super::{LowerError, Options};
 use crate::budget::Budget;
-use crate::circuit::{Circuit, Condition, Control, Level, MARK, Mark, MeasuredId, Op, Part, QubitId, SEARCH, WORK};
+use crate::circuit::{Circuit, Condition, Control, Level, MeasuredId, Op, Part, QubitId, SEARCH, WORK};
 use crate::id::{ConstraintId, IdVec};
 
 /// How many moves are written between two looks at the clock.
 const MOVES_BETWEEN_LOOKS: usize = 1024;
-
-/// What is done where the root holds.
-#[derive(Clone, Copy, PartialEq, Debug)]
-pub(super) enum Marking {
-    /// The sign is flipped.
-    Sign,
-    /// The mark is flipped.
-    Toggle,
-    /// The phase is turned; the root is held.
-    Turn(Turn),
-}
-
-/// The name of the register of the control.
-const CONTROL: &str = "control";
-
-impl Marking {
-    pub(super) fn of(mark: Mark) -> Self {
-        if mark == Mark::Bit { Self::Toggle } else { Self::Sign }
-    }
-
-    fn register(self) -> Option<&'static str> {
-        match self {
-            Self::Toggle => Some(MARK),
-            Self::Turn(Turn { controlled: true, .. }) => Some(CONTROL),
-            _ => None,
-        }
-    }
-
-    /// How many ancillas it needs besides those of the program: a turn under a control, unless it is a sign, is a turn
-    /// where the AND of root and control holds.
-    pub(super) fn qubits(self) -> usize {
-        usize::from(matches!(self, Self::Turn(turn) if turn.controlled && turn.angle != PI))
-    }
-}
 
 /// Writes the oracle of a program over so many searched qubits, with so many ancillas for the program and the marking.
 pub(super) fn replay(
@@ -87,6 +58,7 @@ pub(super) fn replay(
         mark,
         places: vec![None; cells.list.len()].into(),
         free: work.into_iter().map(Reverse).collect(),
+        counter: Vec::new(),
         outcomes: outcomes.into_iter(),
         region: None,
         region_start: ancillas,
@@ -102,9 +74,12 @@ fn measured(moves: &[Move]) -> usize {
     let of = |step: &Move| match step {
         Move::Erase(_) => 1,
         Move::Forget(_, repair) => 1 + measured(repair),
+        Move::Count { group, .. } => Groups::bits(group + 1) - 1,
         _ => 0,
     };
-    moves.iter().map(of).sum()
+    // A counter is marked by the AND of its bits.
+    let counters = moves.iter().map(|step| if let Move::Open(bits) = step { bits - 1 } else { 0 });
+    moves.iter().map(of).chain(counters).sum()
 }
 
 struct Writer<'a> {
@@ -119,6 +94,8 @@ struct Writer<'a> {
     /// Where each held cell is.
     places: IdVec<CellId, Option<QubitId>>,
     free: BinaryHeap<Reverse<QubitId>>,
+    /// The bits of the counter, lowest first.
+    counter: Vec<QubitId>,
     outcomes: std::vec::IntoIter<MeasuredId>,
     /// What the gates from `region_start` on are for.
     region: Option<(Part, Option<ConstraintId>)>,
@@ -148,6 +125,19 @@ impl Writer<'_> {
                     self.enter(Part::Mark, None);
                     self.mark()?;
                 }
+                Move::Open(bits) => self.counter = (0..*bits).map(|_| self.take()).collect(),
+                Move::Close => self.free.extend(self.counter.drain(..).map(Reverse)),
+                Move::Count { size, group, up } => {
+                    let cells = self.cells;
+                    let form = &cells.groups[*size].list[*group].form;
+                    let owner = form.cells.iter().rev().find_map(|&cell| cells.list[cell].owner);
+                    self.enter(if *up { Part::Compute } else { Part::Undo }, owner);
+                    self.count(form, Groups::bits(group + 1), *up);
+                }
+                Move::MarkCount(size) => {
+                    self.enter(Part::Mark, None);
+                    self.mark_count(self.cells.groups[*size].list.len());
+                }
             }
         }
         Ok(())
@@ -174,7 +164,7 @@ impl Writer<'_> {
 
     fn compute(&mut self, cell: CellId) {
         self.enter(Part::Compute, self.cells.list[cell].owner);
-        let Reverse(target) = self.free.pop().expect("the program keeps to its ancillas");
+        let target = self.take();
         self.places[cell] = Some(target);
         self.on_operands(cell, |pen, controls| match controls {
             &[one] => copy(pen, one, target),
@@ -202,6 +192,10 @@ impl Writer<'_> {
         self.moves(repair, budget)?;
         self.condition = outer;
         Ok(())
+    }
+
+    fn take(&mut self) -> QubitId {
+        self.free.pop().expect("the program keeps to its ancillas").0
     }
 
     fn leave(&mut self, cell: CellId) -> QubitId {
@@ -243,95 +237,6 @@ impl Writer<'_> {
         qubits.extend(form.cells.iter().map(|&cell| self.places[cell].expect("what is needed is held")));
         keep_odd(&mut qubits);
         qubits
-    }
-
-    /// Marks: the sign or the mark is flipped once for each term of the root that holds, and once more if the root is
-    /// complemented.
-    fn mark(&mut self) -> Result<(), LowerError> {
-        let cells = self.cells;
-        if let Marking::Turn(turn) = self.marking {
-            self.turn(turn);
-            return Ok(());
-        }
-        let mut complemented = cells.root_complemented;
-        for term in &cells.terms {
-            match (term, self.mark) {
-                (Term::Direct(cell), None) => self.sign(*cell),
-                (Term::Direct(cell), Some(mark)) => self.on_operands(*cell, |pen, controls| match controls {
-                    &[one] => copy(pen, one, mark),
-                    controls => pen.toggle(controls, mark),
-                }),
-                (Term::Held(form), mark) => {
-                    complemented ^= form.complemented;
-                    for qubit in self.qubits(form) {
-                        match mark {
-                            Some(mark) => self.pen().cx(qubit, mark),
-                            None => self.pen().sign(&[Control::on(qubit)]),
-                        }
-                    }
-                }
-            }
-        }
-        match (complemented, self.mark) {
-            (false, _) => {}
-            (true, Some(mark)) => self.pen().push(Op::X, &[], mark),
-            (true, None) => {
-                // Z X Z X = -1, on any qubit.
-                let qubit = self.search[0];
-                for op in [Op::Z, Op::X, Op::Z, Op::X] {
-                    self.pen().push(op, &[], qubit);
-                }
-            }
-        }
-        Ok(())
-    }
-}
-
-/// The turn of a root that is held.
-impl Writer<'_> {
-    fn turn(&mut self, turn: Turn) {
-        let terms: Vec<&Form> = self.cells.terms.iter().filter_map(Term::held).collect();
-        let mut qubits: Vec<QubitId> = terms.iter().flat_map(|form| self.qubits(form)).collect();
-        keep_odd(&mut qubits);
-        let complemented = terms.iter().fold(self.cells.root_complemented, |sum, form| sum ^ form.complemented);
-        let Some((&root, others)) = qubits.split_last() else {
-            return self.turn_everywhere(turn, complemented);
-        };
-        others.iter().for_each(|&other| self.pen().cx(other, root));
-        (0..usize::from(complemented)).for_each(|_| self.pen().push(Op::X, &[], root));
-        self.turn_on(turn, root);
-        (0..usize::from(complemented)).for_each(|_| self.pen().push(Op::X, &[], root));
-        others.iter().rev().for_each(|&other| self.pen().cx(other, root));
-    }
-
-    /// The phase where `root` is 1.
-    fn turn_on(&mut self, turn: Turn, root: QubitId) {
-        match self.mark {
-            None if turn.angle == PI => self.pen().push(Op::Z, &[], root),
-            None => self.circuit.push_angle(None, Op::P, turn.angle, &[], root),
-            Some(control) if turn.angle == PI => self.pen().push(Op::Z, &[Control::on(control)], root),
-            Some(control) => {
-                let Reverse(both) = self.free.pop().expect("counted by the marking");
-                let controls = [Control::on(control), Control::on(root)];
-                let outcome = self.outcomes.next();
-                self.pen().and(&controls, both);
-                self.circuit.push_angle(None, Op::P, turn.angle, &[], both);
-                self.pen().erase(&controls, both, outcome);
-                self.free.push(Reverse(both));
-            }
-        }
-    }
-
-    /// A root whose parts cancel is constant: the phase is turned everywhere, or nowhere.
-    fn turn_everywhere(&mut self, turn: Turn, holds: bool) {
-        if holds {
-            let qubit = self.mark.unwrap_or(self.search[0]);
-            let times = if self.mark.is_some() { 1 } else { 2 };
-            for _ in 0..times {
-                self.circuit.push_angle(None, Op::P, turn.angle, &[], qubit);
-                (0..times - 1).for_each(|_| self.circuit.push(Op::X, &[], qubit));
-            }
-        }
     }
 }
 

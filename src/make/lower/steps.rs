@@ -56,6 +56,29 @@ pub(super) struct Steps {
 }
 
 impl Steps {
+    /// Puts the compute steps of a range on other qubits. No two steps share controls in the pool.
+    pub(super) fn move_qubits(&mut self, range: std::ops::Range<usize>, moved: impl Fn(QubitId) -> QubitId) {
+        for step in &mut self.compute[range] {
+            let controls = match step {
+                Step::Flip(qubit) => {
+                    *qubit = moved(*qubit);
+                    continue;
+                }
+                Step::Cnot(source, target) => {
+                    (*source, *target) = (moved(*source), moved(*target));
+                    continue;
+                }
+                Step::And(controls, target) | Step::Toggle(controls, target) => {
+                    *target = moved(*target);
+                    *controls
+                }
+                Step::Sign(controls) => *controls,
+            };
+            let pool = controls.start as usize..(controls.start + controls.len) as usize;
+            self.controls[pool].iter_mut().for_each(|c| *c = Control::new(moved(c.qubit()), !c.is_negated()));
+        }
+    }
+
     /// The controls of a step.
     pub(super) fn controls(&self, range: ControlRange) -> &[Control] {
         &self.controls[range.start as usize..(range.start + range.len) as usize]

@@ -4,19 +4,24 @@
 //! Output: one circuit, or every circuit of which none is better than another in qubits, T gates and depth.
 //! After:  with a larger number of qubits the cost that the level pays for never rises.
 //!
-//! The candidates are the circuit that keeps everything ([`lower`]) and one for each point of the front of schedules
+//! The candidates are the circuit that keeps everything ([`lower`]), the same with copies of searched qubits
+//! ([`fan_out`](super::fan_out)), and one for each point of the front of schedules
 //! ([`schedule`](super::schedule)). Where only qubits are limited, the schedules' own counts decide, which are counts of
 //! moves; otherwise all candidates are written and their gates counted.
 
 use super::replay::Marking;
 use super::schedule::cells::{Cells, cells};
+use super::schedule::counter;
 use super::schedule::front::{Point, front};
 use super::schedule::program::Pay;
-use super::{LowerError, Options, and_count, lower, replay, tidied};
+use super::{LowerError, Options, and_count, lower, lower_spread, replay, tidied};
 use crate::budget::Budget;
 use crate::circuit::figures::{Figures, figures};
 use crate::circuit::{Circuit, Level, Mark};
 use crate::make::network::Network;
+
+/// How many constraints may share a copy of a searched qubit, in one candidate each.
+const SHARED_COPIES: [usize; 5] = [1, 2, 4, 8, 16];
 
 /// What a circuit should be good at.
 #[derive(Clone, Copy, PartialEq, Eq, Debug, Default)]
@@ -135,7 +140,8 @@ fn points(
     budget: &Budget,
 ) -> Result<(Cells, Vec<Point>), LowerError> {
     let direct = options.mark == Mark::Phase || options.level != Level::Feedback;
-    let cells = cells(network, direct);
+    let mut cells = cells(network, direct);
+    counter::group(&mut cells);
     let points = front(&cells, pay, budget)?;
     Ok((cells, points))
 }
@@ -143,6 +149,11 @@ fn points(
 /// Everything that was found, written.
 fn candidates(network: &Network, options: &Options, budget: &Budget) -> Result<Vec<Lowered>, LowerError> {
     let mut all = vec![keep_everything(network, lower(network, options, budget)?, options, budget)?];
+    for share in SHARED_COPIES {
+        let circuit = lower_spread(network, options, share, budget)?;
+        let figures = figures(&circuit);
+        all.push(Lowered { circuit, and_count: all[0].and_count, figures });
+    }
     let pays: &[Pay] = if options.level == Level::Feedback { &[Pay::Expected, Pay::Worst] } else { &[Pay::Unitary] };
     for &pay in pays {
         let (cells, points) = points(network, options, pay, budget)?;

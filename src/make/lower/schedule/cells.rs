@@ -11,6 +11,7 @@
 
 use crate::define_id;
 use crate::id::{ConstraintId, Id, IdVec};
+use super::counter::Groups;
 use crate::make::lower::plan::{keep_odd, owners};
 use crate::make::network::{Lit, Network, Node, NodeId};
 
@@ -83,9 +84,19 @@ pub(in crate::make::lower) struct Cells {
     /// The links that gather the conjuncts of the root, in order; link *i* is the AND of items 0 to *i* + 1. Empty where
     /// the root is not an AND.
     pub(in crate::make::lower) chain: Vec<CellId>,
+    /// The conjuncts of the root, in the order of the chain.
+    pub(in crate::make::lower) items: Vec<Form>,
+    /// The conjuncts in groups of several sizes.
+    pub(in crate::make::lower) groups: Vec<Groups>,
 }
 
 impl Cells {
+    /// Appends the AND of two forms.
+    pub(in crate::make::lower) fn push_and(&mut self, operands: [Form; 2]) -> Form {
+        let owner = operands[1].cells.iter().rev().find_map(|&cell| self.list[cell].owner);
+        Form::cell(self.list.push(Cell::new(operands, owner)))
+    }
+
     /// The cells that are marked without being held.
     pub(in crate::make::lower) fn direct(&self) -> impl Iterator<Item = CellId> + '_ {
         self.terms.iter().filter_map(|term| match term {
@@ -132,7 +143,14 @@ pub(in crate::make::lower) fn cells(network: &Network, direct: bool) -> Cells {
     let items = reader.items(root);
     reader.read(&items);
     let items: Vec<Form> = items.into_iter().map(|lit| reader.form(lit)).collect();
-    let mut cells = Cells { list: reader.list, terms: Vec::new(), root_complemented, chain: Vec::new() };
+    let mut cells = Cells {
+        list: reader.list,
+        terms: Vec::new(),
+        root_complemented,
+        chain: Vec::new(),
+        items: Vec::new(),
+        groups: Vec::new(),
+    };
     match <[Form; 1]>::try_from(items) {
         Ok([form]) => {
             cells.root_complemented ^= form.complemented;
@@ -156,12 +174,11 @@ impl Cells {
         order.sort_by_key(|(size, _)| std::cmp::Reverse(*size));
         let first = order.len() - 2;
         order.rotate_left(first);
-        let mut gathered = order[0].1.clone();
-        for (_, item) in &order[1..] {
-            let owner = item.cells.iter().rev().find_map(|&cell| self.list[cell].owner);
-            let link = self.list.push(Cell::new([gathered, (*item).clone()], owner));
-            self.chain.push(link);
-            gathered = Form::cell(link);
+        self.items = order.into_iter().map(|(_, form)| form.clone()).collect();
+        let mut gathered = self.items[0].clone();
+        for at in 1..self.items.len() {
+            gathered = self.push_and([gathered, self.items[at].clone()]);
+            self.chain.extend(&gathered.cells);
         }
         *self.chain.last().expect("at least two items")
     }

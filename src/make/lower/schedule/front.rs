@@ -5,12 +5,16 @@
 
 use super::cells::{CellId, Cells};
 use super::chunks::Conjunction;
+use super::counter;
+use super::exact;
 use super::line::Line;
 use super::program::{Cost, Move, Pay, backwards, cost};
 use super::table::{Game, Table};
 use crate::budget::Budget;
 use crate::make::lower::LowerError;
 
+/// A counter is tried with at most so many ancillas: it is for the lowest budgets.
+const COUNTED: usize = 64;
 /// Every number of ancillas up to this one is tried.
 const DENSE: usize = 128;
 /// At most so many places of a line have a table of their own.
@@ -27,14 +31,25 @@ pub(in crate::make::lower) struct Point {
 /// The front, from few ancillas to many; each point costs less than those before it.
 pub(in crate::make::lower) fn front(cells: &Cells, pay: Pay, budget: &Budget) -> Result<Vec<Point>, LowerError> {
     let mut found = Front { cells, pay, points: Vec::new() };
-    let rooms = rooms(cells.list.len());
     let order = order(cells);
+    let rooms = rooms(order.len() + 1);
     let wanted = cells.marked_from();
     let line = Line::new(cells, &order, &wanted);
     let plan = line.plan(LINE_ROOM);
     for &room in rooms.iter().filter(|&&room| room <= LINE_ROOM.min(order.len())) {
         found.time(budget)?;
-        found.offer(plan.visit(room).map(there_and_back));
+        let moves = plan.visit(room);
+        if order.len() <= exact::MOST_CELLS && room < order.len() {
+            let enough = moves.as_ref().map_or(4 * order.len(), Vec::len);
+            found.offer(exact::visit(cells, &order, &wanted, room, enough).map(there_and_back));
+        }
+        found.offer(moves.map(there_and_back));
+    }
+    for size in 0..cells.groups.len() {
+        for &room in rooms.iter().filter(|&&room| room <= COUNTED) {
+            found.time(budget)?;
+            found.offer(counter::schedule(cells, size, room));
+        }
     }
     if cells.chain.len() > 1 {
         for shared_by in SHARED_BY {

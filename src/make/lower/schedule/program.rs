@@ -6,6 +6,7 @@
 //! is applied by computing what it needs once more.
 
 use super::cells::{CellId, Cells};
+use super::counter::Groups;
 use crate::circuit::Level;
 use crate::id::IdVec;
 
@@ -22,6 +23,18 @@ pub(in crate::make::lower) enum Move {
     Sign(CellId),
     /// Marks the root.
     Mark,
+    /// Takes so many clean ancillas for a counter.
+    Open(usize),
+    /// Adds 1 to the counter, or takes it off, where the group of this size index and place holds.
+    Count {
+        size: usize,
+        group: usize,
+        up: bool,
+    },
+    /// Marks where the counter has counted all groups of this size index.
+    MarkCount(usize),
+    /// Gives the counter's ancillas back, which are clean.
+    Close,
 }
 
 /// What a program costs, counted move by move.
@@ -76,7 +89,7 @@ pub(in crate::make::lower) fn backwards(moves: &[Move]) -> impl Iterator<Item = 
 
 /// Counts the moves, and checks that each is allowed where it stands and that nothing is held in the end.
 pub(in crate::make::lower) fn cost(cells: &Cells, moves: &[Move]) -> Result<Cost, String> {
-    let mut player = Player { cells, held: vec![false; cells.list.len()].into(), now: 0, cost: Cost::default() };
+    let mut player = Player { cells, held: vec![false; cells.list.len()].into(), now: 0, counter: 0, cost: Cost::default() };
     player.play(moves, 1.0)?;
     match player.now {
         0 => Ok(player.cost),
@@ -88,6 +101,8 @@ struct Player<'a> {
     cells: &'a Cells,
     held: IdVec<CellId, bool>,
     now: usize,
+    /// The bits of the counter.
+    counter: usize,
     cost: Cost,
 }
 
@@ -100,8 +115,7 @@ impl Player<'_> {
                     if std::mem::replace(&mut self.held[*cell], true) {
                         return Err(format!("{cell} is computed twice"));
                     }
-                    self.now += 1;
-                    self.cost.ancillas = self.cost.ancillas.max(self.now);
+                    self.hold(1);
                     self.cost.worst += 1;
                     self.cost.expected += chance;
                 }
@@ -119,6 +133,21 @@ impl Player<'_> {
                     }
                 }
                 Move::Sign(cell) => self.needs_held(*cell)?,
+                Move::Open(bits) => {
+                    self.counter = *bits;
+                    self.hold(*bits);
+                }
+                Move::Close => self.now -= std::mem::take(&mut self.counter),
+                Move::Count { size, group, .. } => {
+                    let form = &self.cells.groups[*size].list[*group].form;
+                    let missing = form.cells.iter().find(|&&cell| !self.held[cell]);
+                    missing.map_or(Ok(()), |cell| Err(format!("{cell} is counted and not held")))?;
+                    self.gather(Groups::bits(group + 1) - 1, chance);
+                }
+                Move::MarkCount(_) => {
+                    let direct = self.cells.direct().count();
+                    self.gather(self.counter - 1 - direct, chance);
+                }
                 Move::Mark => {
                     let missing = self.cells.marked_from().into_iter().find(|&cell| !self.held[cell]);
                     missing.map_or(Ok(()), |cell| Err(format!("{cell} is not held for marking")))?;
@@ -126,6 +155,20 @@ impl Player<'_> {
             }
         }
         Ok(())
+    }
+
+    fn hold(&mut self, more: usize) {
+        self.now += more;
+        self.cost.ancillas = self.cost.ancillas.max(self.now);
+    }
+
+    /// So many ANDs in a row, erased again.
+    fn gather(&mut self, ands: usize, chance: f64) {
+        self.hold(ands);
+        self.now -= ands;
+        self.cost.worst += ands as u64;
+        self.cost.expected += chance * ands as f64;
+        self.cost.erased += ands as u64;
     }
 
     fn needs_held(&self, cell: CellId) -> Result<(), String> {

@@ -1,5 +1,7 @@
 //! Schedules against published tables, and what they say they cost against the gates.
 
+use super::counter;
+use super::exact;
 use super::cells::{Cell, CellId, Cells, Form, Term, cells};
 use super::front::front;
 use super::line::Line;
@@ -46,7 +48,7 @@ fn line(n: usize) -> Cells {
         list.push(Cell { operands: [before, input(at)], needs, owner: None });
     }
     let last = Form { cells: vec![CellId::new(n - 1)], ..Form::default() };
-    Cells { list, terms: vec![Term::Held(last)], root_complemented: false, chain: Vec::new() }
+    Cells { list, terms: vec![Term::Held(last)], root_complemented: false, chain: vec![], items: vec![], groups: vec![] }
 }
 
 /// The moves of the two games on a line: end with only the last node held, and merely reach it.
@@ -121,8 +123,42 @@ fn lines_take_the_fewest_pebbles_in_both_games() {
     }
 }
 
+/// On lines of up to seven nodes the exact search finds what breadth-first search does, and nothing shorter; on a network
+/// in which two nodes share a third, no other schedule takes fewer moves.
+#[test]
+fn the_exact_search_finds_the_fewest_moves() {
+    for n in 2..=exact::MOST_CELLS {
+        let cells = line(n);
+        let order: Vec<CellId> = cells.list.ids().collect();
+        for pebbles in 1..n {
+            let known = moves(n, pebbles).1;
+            let found = exact::visit(&cells, &order, &order[n - 1..], pebbles, known.unwrap_or(4 * n) + 1);
+            assert_eq!(found.map(|moves| moves.len()), known, "{n} nodes, {pebbles} pebbles");
+            if let Some(known) = known {
+                assert_eq!(exact::visit(&cells, &order, &order[n - 1..], pebbles, known), None);
+            }
+        }
+    }
+    let shared = "search b0 b1 b2 b3\nn5 = and n1 n2\nn6 = and n3 !n5\nn7 = and n4 !n5\nn8 = and !n6 !n7\nn9 = and n1 !n8\n";
+    let network: Network = format!("{shared}n10 = and n2 !n8\nn11 = xor n9 n10\nroot n11\n").parse().unwrap();
+    let cells = cells(&network, true);
+    let wanted = cells.marked_from();
+    let order = cells.cone(&wanted, |_| false);
+    let line = Line::new(&cells, &order, &wanted);
+    for room in 1..order.len() {
+        let other = line.visit(room).map(|moves| moves.len());
+        let found = exact::visit(&cells, &order, &wanted, room, other.unwrap_or(16) + 1);
+        match (other, found) {
+            (Some(other), Some(found)) => assert!(found.len() <= other, "{room}"),
+            (Some(_), None) => panic!("{room}: a schedule is known"),
+            (None, _) => {}
+        }
+    }
+}
+
 fn points(m: usize, pay: Pay) -> Vec<Cost> {
-    let cells = cells(&conjunction(m), true);
+    let mut cells = cells(&conjunction(m), true);
+    counter::group(&mut cells);
     front(&cells, pay, &Budget::unlimited()).unwrap().into_iter().map(|point| point.cost).collect()
 }
 
@@ -142,6 +178,8 @@ fn conjunctions_cost_what_a_dynamic_programme_gives() {
     check(100, Pay::Worst, &[(199, 398.0), (101, 594.0), (28, 568.0), (16, 948.0), (15, 980.0), (10, 2007.0)]);
     check(100, Pay::Unitary, &[(199, 796.0), (101, 1398.0), (28, 1136.0), (16, 1904.0), (15, 1980.0), (10, 5072.0)]);
     check(1000, Pay::Expected, &[(1999, 3498.0), (1001, 4496.0), (88, 4474.0), (30, 6548.0), (21, 8700.0), (14, 15363.0)]);
+    check(1000, Pay::Worst, &[(90, 5908.0), (29, 9255.0), (23, 11006.0), (21, 15007.0)]);
+    check(1000, Pay::Unitary, &[(90, 11816.0), (29, 18510.0), (23, 22012.0), (21, 30014.0)]);
 }
 
 /// What a program is said to cost is what its gates cost.
@@ -149,7 +187,8 @@ fn conjunctions_cost_what_a_dynamic_programme_gives() {
 fn costs_of_programs_are_those_of_the_gates() {
     let network = conjunction(9);
     for (level, pay) in [(Level::Feedback, Pay::Expected), (Level::Feedback, Pay::Worst), (Level::Toffoli, Pay::Unitary)] {
-        let cells = cells(&network, true);
+        let mut cells = cells(&network, true);
+        counter::group(&mut cells);
         let points = front(&cells, pay, &Budget::unlimited()).unwrap();
         assert!(points.len() > 8);
         for point in points {
