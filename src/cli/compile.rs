@@ -50,8 +50,8 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     }
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
-    let places = Places::as_given(&loaded.problem);
     let stage = |error| Failure::stage(&error, &sources);
+    let places = input::choose(global, &loaded, settings, &budget).map_err(stage)?;
     let mut product = pipeline::oracle(&loaded.problem, &places, settings, &budget).map_err(stage)?;
     let mut counted = None;
     if options.whole {
@@ -77,7 +77,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         return Ok((Exit::Done, figures));
     }
     let mut object = json::envelope("compile", &loaded, &sources, false);
-    object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem));
+    object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem, &places));
     object.insert("circuit".to_owned(), json::circuit_json(&product));
     object.insert("file".to_owned(), options.output.clone().into());
     Ok((Exit::Done, json::print(object)))

@@ -12,7 +12,6 @@ use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, input, progress};
 use crate::judge::count::Tally;
 use crate::pipeline::{self, Certified, Error};
-use crate::places::Places;
 use crate::problem::Bits;
 use crate::report::values::{CheckedFile, certificate_json, certificate_line, values_json, values_table};
 use crate::report::{json, summary};
@@ -50,7 +49,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         return Ok(show_check(global, &loaded, &sources, &checked));
     }
     let settings = input::settings(global, Level::Toffoli, Mark::Phase);
-    let places = Places::as_given(&loaded.problem);
+    let places = input::choose(global, &loaded, settings, &budget).map_err(|error| Failure::stage(&error, &sources))?;
     let counted = pipeline::count(&loaded.problem, &places, settings, &budget)
         .map_err(|error| Failure::stage(&error, &sources))?;
     let more = More::of(global, options, &loaded, &counted.tally, &budget)

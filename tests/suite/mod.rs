@@ -13,6 +13,7 @@ mod judging;
 mod known_counts;
 mod language;
 mod making;
+mod narrowing;
 mod planning;
 mod proofs;
 mod random_problem;
