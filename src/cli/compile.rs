@@ -63,8 +63,8 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let limits = options.limits.limits(options.level)?;
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
-    let places = Places::as_given(&loaded.problem);
     let stage = |error| Failure::stage(&error, &sources);
+    let places = input::choose(global, &loaded, settings, &budget).map_err(stage)?;
     if options.front {
         let front = pipeline::front(&loaded.problem, &places, settings, &budget).map_err(stage)?;
         drop(line);
@@ -111,7 +111,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         return Ok((Exit::Done, figures));
     }
     let mut object = json::envelope("compile", &loaded, &sources, false);
-    object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem));
+    object.insert("narrowing".to_owned(), json::narrowing_json(&loaded.problem, &places));
     object.insert("circuit".to_owned(), json::circuit_json(&product));
     if options.check_passes {
         let pass = |pass: &CheckedPass| {

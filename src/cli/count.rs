@@ -14,7 +14,6 @@ use crate::diag::{Code, Diagnostic};
 use crate::judge::count::hashing::{Accuracy, NotPossible};
 use crate::judge::count::{self, Method, Tally, Wanted};
 use crate::pipeline::{self, Certified, Error, Margin, Settings, Tallied};
-use crate::places::Places;
 use crate::problem::Bits;
 use crate::report::values::{CheckedFile, certificate_json, certificate_line, values_json, values_table};
 use crate::report::{json, summary, ways};
@@ -135,7 +134,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let budget = options.how.memory.map_or(budget.clone(), |bytes| budget.with_memory(bytes));
     let keep = if options.list > 0 { pipeline::KEPT_SOLUTIONS.max(options.list) } else { 0 };
     let how = options.how.options(settings, keep, options.certified())?;
-    let places = Places::as_given(&loaded.problem);
+    let places = input::choose(global, &loaded, settings, &budget).map_err(|error| Failure::stage(&error, &sources))?;
     let tallied = match options.how.margin() {
         Some(margin) => pipeline::tally_for_plan(&loaded.problem, &places, &how, margin, &budget),
         None => pipeline::tally(&loaded.problem, &places, &how, &budget),

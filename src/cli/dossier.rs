@@ -39,13 +39,13 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let limits = options.limits.limits(options.level)?;
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
-    let places = Places::as_given(&loaded.problem);
+    let places = input::choose(global, &loaded, settings, &budget).map_err(|error| Failure::stage(&error, &sources))?;
     let dossier = pipeline::dossier(&loaded, &places, &folder, settings, &limits, &budget)
         .map_err(|error| Failure::stage(&error, &sources))?;
     drop(line);
     let exit = exit_of(&dossier);
-    let report = report(&loaded, &sources, &dossier, exit);
-    let text = summary::dossier(&loaded, &dossier, &folder);
+    let report = report(&loaded, &sources, &places, &dossier, exit);
+    let text = summary::dossier(&loaded, &places, &dossier, &folder);
     write(&folder, &report, &text).map_err(|error| Failure::stage(&error.into(), &sources))?;
     Ok((exit, if global.json { format!("{report:#}\n") } else { text }))
 }
@@ -75,12 +75,12 @@ fn exit_of(dossier: &Dossier) -> Exit {
     }
 }
 
-fn report(loaded: &Loaded, sources: &Sources, dossier: &Dossier, exit: Exit) -> serde_json::Value {
+fn report(loaded: &Loaded, sources: &Sources, places: &Places, dossier: &Dossier, exit: Exit) -> serde_json::Value {
     let mut object = json::envelope("dossier", loaded, sources, exit == Exit::Unfinished);
     let mut put = |key: &str, value: serde_json::Value| object.insert(key.to_owned(), value);
     let oracle = dossier.oracle.as_ref().ok();
     put("tally", json::tally_json(&dossier.counted));
-    put("narrowing", json::narrowing_json(&loaded.problem));
+    put("narrowing", json::narrowing_json(&loaded.problem, places));
     put("circuit", oracle.map(|judged| json::circuit_json(&judged.product)).into());
     put("audit", oracle.map(|judged| json::audit_json(&loaded.problem, &judged.verdict)).into());
     put("levels", dossier.levels.iter().map(json::circuit_json).collect());

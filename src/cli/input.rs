@@ -2,11 +2,12 @@
 
 use std::path::Path;
 
+use crate::budget::Budget;
 use crate::circuit::{Level, Mark};
 use crate::cli::Global;
 use crate::cli::render::{Failure, show};
 use crate::diag::{Code, Diagnostic};
-use crate::pipeline::Settings;
+use crate::pipeline::{self, Narrowing, Settings};
 use crate::places::Places;
 use crate::source::{self, Loaded};
 use crate::span::Sources;
@@ -58,6 +59,25 @@ pub(super) fn refuse_empty(loaded: &Loaded, sources: &Sources) -> Result<(), Box
         .expected("a problem with something to choose")
         .help("`tallymark count` and `tallymark plan` answer for it");
     Err(Failure::input(vec![diagnostic], sources))
+}
+
+/// Decides what is searched, as the options want it.
+pub(super) fn choose(
+    global: &Global,
+    loaded: &Loaded,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<Places, pipeline::Error> {
+    Ok(pipeline::choose(&loaded.problem, narrowing(global), settings, budget)?.0.places)
+}
+
+/// Which narrowing the options want.
+pub(super) fn narrowing(global: &Global) -> Narrowing {
+    match (global.no_narrowing, global.any) {
+        (true, _) => Narrowing::Off,
+        (false, true) => Narrowing::OneForMany,
+        (false, false) => Narrowing::OneForOne,
+    }
 }
 
 /// The places in this file, which must fit the problem; without a file, bit i is search[i].

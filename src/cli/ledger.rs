@@ -12,7 +12,6 @@ use crate::cli::{Global, Outcome, input, progress};
 use crate::diag::{Code, Diagnostic, plural};
 use crate::ledger::{Entry, FILE_NAME, Finding, Ledger, compare, junit};
 use crate::pipeline;
-use crate::places::Places;
 use crate::report::{files, json as contract, summary};
 use crate::source::Format;
 use crate::span::Sources;
@@ -113,7 +112,8 @@ fn read_folder(global: &Global, folder: &Folder, kept: &Ledger) -> Result<Ledger
             None => {
                 let (budget, line) = progress::budget(global);
                 let settings = input::settings(global, Level::Toffoli, Mark::Phase);
-                let places = Places::as_given(&loaded.problem);
+                let places = input::choose(global, &loaded, settings, &budget)
+                    .map_err(|error| Failure::stage(&error, &sources))?;
                 let entry = pipeline::ledger_entry(&loaded, &places, settings, &budget)
                     .map_err(|error| Failure::stage(&error, &sources))?;
                 drop(line);

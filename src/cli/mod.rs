@@ -70,6 +70,9 @@ struct Global {
     /// Search every bit as given, computing none from the others
     #[arg(long, global = true)]
     no_narrowing: bool,
+    /// One solution is enough: let a searched state stand for several, where that searches less
+    #[arg(long, global = true, conflicts_with = "no_narrowing")]
+    any: bool,
 }
 
 #[derive(Subcommand)]

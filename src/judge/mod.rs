@@ -7,4 +7,5 @@ pub mod audit;
 pub mod clauses;
 pub mod count;
 mod reading;
+pub mod restate;
 pub mod rows;

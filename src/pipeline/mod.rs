@@ -1,11 +1,13 @@
 //! The whole compiler on one screen: each stage by name, each result of its own type.
 //!
 //! ```text
-//! Problem ─► Places ─► Network ─► Circuit ─► oracle file ─► Verdict
+//! Problem ─► Candidates ─► Places ─► Network ─► Circuit ─► oracle file ─► Verdict
 //!     └────► Counted ─► Plan ─► whole search ─► search file ─► SearchVerdict
 //! ```
 
 mod certificate;
+mod choice;
+mod counting;
 mod error;
 mod files;
 mod oracle;
@@ -20,7 +22,7 @@ use num_traits::Zero;
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Figures, Level, Mark, Product};
 use crate::judge::audit::{self, Outcome, Verdict};
-use crate::judge::count::{self, Counted, Over};
+use crate::judge::count::Counted;
 use crate::ledger::{Cost, Entry};
 use crate::make::lower::Limits;
 use crate::places::Places;
@@ -30,6 +32,8 @@ use crate::report::files::WriteError;
 use crate::report::places::places_json;
 use crate::source::Loaded;
 
+pub use choice::{Candidate, Narrowing, choose};
+pub use counting::count;
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
@@ -57,17 +61,6 @@ pub struct Settings {
 
 /// Solutions that a tally keeps, to be shown and to be tried by an audit that cannot try everything.
 pub const KEPT_SOLUTIONS: usize = 1 << 12;
-
-/// Counts the solutions, and the marked states where these are not the same.
-pub fn count(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Counted, Error> {
-    let options = count::Options { threads: settings.threads, keep: KEPT_SOLUTIONS, ..count::Options::default() };
-    let tally = count::count(problem, Over::Shown, &options, budget)?;
-    let states = match Counted::needs_states(places) {
-        true => Some(count::count(problem, Over::AllBits, &options, budget)?),
-        false => None,
-    };
-    Ok(Counted { tally, states, space: Counted::space(places) })
-}
 
 /// Judges a circuit that was read from a file.
 pub fn audit(
@@ -103,7 +96,7 @@ pub fn dossier(
         Err(Error::Lower(error)) => (Err(why_no_oracle(error)?), Vec::new()),
         Err(error) => return Err(error),
     };
-    let (plan, mut advice) = plan_for(problem, &counted);
+    let (plan, mut advice) = plan_for(problem, places, &counted);
     let search = match (&plan, &oracle) {
         (Some(plan), Ok(_)) if plan.success > 0.0 && plan.success < 1.0 || !plan.iterations.is_zero() => {
             let phase = oracle_within(problem, places, Settings { mark: Mark::Phase, ..settings }, limits, budget)?;

@@ -6,9 +6,10 @@ use num_bigint::BigUint;
 use num_traits::{One, Zero};
 
 use super::Error;
+use super::counting::counted;
 use crate::budget::Budget;
 use crate::judge::count::hashing::Accuracy;
-use crate::judge::count::{self, Counted, Options, Over, Run, Wanted};
+use crate::judge::count::{Counted, Options, Run, Wanted};
 use crate::places::Places;
 use crate::problem::Problem;
 use crate::search::number::Wide;
@@ -51,16 +52,8 @@ const TRIES: usize = 4;
 
 /// Counts.
 pub fn tally(problem: &Problem, places: &Places, options: &Options, budget: &Budget) -> Result<Tallied, Error> {
-    let (tally, mut runs) = count::count_logged(problem, Over::Shown, options, budget)?;
-    let states = match Counted::needs_states(places) {
-        true => {
-            let (states, more) = count::count_logged(problem, Over::AllBits, options, budget)?;
-            runs.extend(more);
-            Some(states)
-        }
-        false => None,
-    };
-    Ok(Tallied { counted: Counted { tally, states, space: Counted::space(places) }, runs, plan: None })
+    let (counted, runs) = counted(problem, places, options, budget)?;
+    Ok(Tallied { counted, runs, plan: None })
 }
 
 /// Counts as near as a plan needs.

@@ -9,6 +9,8 @@ use crate::diag::plural;
 use crate::id::{Id, IdVec};
 use crate::problem::check::{Interval, ranges};
 use crate::problem::{Compare, ConstraintId, Expr, ExprId, Origin, Problem, Type};
+use crate::places::Places;
+use crate::report::json::bit_name;
 use crate::report::places::domain;
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -201,6 +203,42 @@ pub fn text(loaded: &Loaded, reading: &Reading) -> String {
     }
     _ = writeln!(text, "{}", constraints.trim_fmt());
     text
+}
+
+/// What the clauses say, which bits are computed from which, at most `most` of them, and what was decided against.
+pub fn narrowing(problem: &Problem, structure: &str, taken: &Priced, other: Option<&Priced>, most: usize) -> String {
+    let mut text = String::new();
+    if !structure.is_empty() {
+        _ = writeln!(text, "\nThe clauses spell {structure}");
+    }
+    let places = taken.places;
+    if let Some(other) = other {
+        let words = |priced: &Priced| format!("{} bits searched, {}", priced.places.search_len(), in_ands(priced.ands));
+        _ = writeln!(text, "\nTaken: {}; the other way: {}", words(taken), words(other));
+    }
+    if places.computed.is_empty() {
+        return text;
+    }
+    _ = writeln!(text, "\n{}", count_line(places.computed.len(), most.min(places.computed.len()), "computed bit", "computed bits"));
+    let mut computed = table(["bit", "name", "is"]);
+    for of in places.computed.iter().take(most) {
+        computed.add_row([&format!("b{}", of.bit), &bit_name(problem, of.bit), &shorten(&of.formula.to_string())]);
+    }
+    _ = writeln!(text, "{}", computed.trim_fmt());
+    text
+}
+
+/// Places with the ANDs of oracle and reflection together, where they were counted.
+#[derive(Clone, Copy, Debug)]
+pub struct Priced<'a> {
+    /// The places.
+    pub places: &'a Places,
+    /// The ANDs of one iteration.
+    pub ands: Option<u64>,
+}
+
+fn in_ands(ands: Option<u64>) -> String {
+    ands.map_or_else(|| "no oracle".to_owned(), |ands| format!("{} an iteration", plural(ands as usize, "AND", "ANDs")))
 }
 
 /// The beginning of a long text.

@@ -42,6 +42,9 @@ pub fn header(loaded: &Loaded, places: &Places, product: &Product, counted: Opti
     if places.searched.len() > MAX_LISTED {
         lines.push(format!("  ... {} more, see the places file", places.searched.len() - MAX_LISTED));
     }
+    if !places.computed.is_empty() {
+        lines.push(format!("  {} more bits are computed from these, see the places file", places.computed.len()));
+    }
     lines.push(CAUTION.to_owned());
     // A comment must stay one: names and titles may hold anything.
     lines.iter().map(|line| line.replace(['\n', '\r'], " ")).collect()

@@ -8,7 +8,9 @@ use crate::circuit::{self, Circuit, Level, Mark, Product};
 use crate::diag::Diagnostic;
 use crate::judge::audit::{SearchVerdict, Verdict, Witness};
 use crate::judge::count::Counted;
-use crate::problem::{Bits, Problem};
+use crate::id::Id;
+use crate::places::{Computed, Places};
+use crate::problem::{BitId, Bits, Problem};
 use crate::search::Plan;
 use crate::search::number::in_words;
 use crate::source::Loaded;
@@ -94,10 +96,22 @@ pub fn tally_json(counted: &Counted) -> Value {
     })
 }
 
-/// `narrowing`.
-pub fn narrowing_json(problem: &Problem) -> Value {
-    let bits = problem.bit_count();
-    json!({ "bits_before": bits, "bits_after": bits, "computed": [] })
+/// `narrowing`. `computed` names each computed bit with what it is of the others.
+pub fn narrowing_json(problem: &Problem, places: &Places) -> Value {
+    let one = |of: &Computed| json!({ "bit": of.bit, "name": bit_name(problem, of.bit), "is": of.formula.to_string() });
+    json!({
+        "bits_before": problem.bit_count(),
+        "bits_after": places.search_len(),
+        "claim": places.claim,
+        "computed": places.computed.iter().map(one).collect::<Vec<Value>>(),
+    })
+}
+
+/// A bit by the variable it belongs to: `lamp`, or `load.2` for bit 2 of an integer.
+pub fn bit_name(problem: &Problem, bit: u32) -> String {
+    let (var, at) = problem.var_of(BitId::new(bit as usize));
+    let name = problem.var_name(var);
+    if problem.vars()[var].width > 1 { format!("{name}.{at}") } else { name }
 }
 
 /// `circuit`.

@@ -9,6 +9,7 @@ use crate::circuit::{Level, Product};
 use crate::judge::audit::{How, Outcome, Phases, SearchVerdict, Verdict};
 use crate::judge::count::Counted;
 use crate::ledger::Finding;
+use crate::places::Places;
 use crate::problem::{Bits, Problem};
 use crate::report::dossier::Dossier;
 use crate::report::header::CAUTION;
@@ -63,6 +64,14 @@ fn tally_lines(counted: &Counted) -> String {
         text += &line("marked", states.in_words("marked state", "marked states"));
     }
     text + &line("space", format!("{} states", counted.space))
+}
+
+/// How many bits are searched, where others are computed.
+pub fn narrowing_line(places: &Places) -> String {
+    match places.computed.len() {
+        0 => String::new(),
+        computed => line("narrowing", format!("{} bits searched, {computed} computed from them", places.search_len())),
+    }
 }
 
 /// A solution in the problem's own terms.
@@ -196,8 +205,8 @@ pub fn findings(findings: &[Finding]) -> String {
 }
 
 /// The summary of the main job.
-pub fn dossier(loaded: &Loaded, dossier: &Dossier, folder: &Path) -> String {
-    let mut text = head(loaded) + &tally_lines(&dossier.counted);
+pub fn dossier(loaded: &Loaded, places: &Places, dossier: &Dossier, folder: &Path) -> String {
+    let mut text = head(loaded) + &tally_lines(&dossier.counted) + &narrowing_line(places);
     match &dossier.oracle {
         Ok(judged) => {
             let figures = &judged.product.figures;

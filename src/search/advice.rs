@@ -43,6 +43,15 @@ impl Advice {
         )
     }
 
+    /// A marked state may stand for several solutions.
+    pub fn one_stands_for_many() -> Self {
+        Self::new(
+            "one-for-many",
+            "One marked state may stand for several solutions, of which the search finds one: the plan counts marked states."
+                .to_owned(),
+        )
+    }
+
     /// Hidden bits are searched with the shown ones.
     pub fn hidden_bits_searched(hidden: usize) -> Self {
         Self::new(

@@ -15,6 +15,7 @@ mod known_counts;
 mod language;
 mod lower;
 mod making;
+mod narrowing;
 mod network;
 mod paths;
 mod planning;

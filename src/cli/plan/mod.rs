@@ -58,11 +58,11 @@ fn for_numbers(global: &Global, options: &Options) -> Outcome {
 
 fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     let (loaded, sources) = input::load(global, file)?;
-    let places = Places::as_given(&loaded.problem);
     let mut object = json::envelope("plan", &loaded, &sources, false);
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, Mark::Phase);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
+    let places = input::choose(global, &loaded, settings, &budget).map_err(stage)?;
     let mut ground = ground(&loaded, &places, options.error);
     if let Some(each) = options.gate_error {
         let gates = pipeline::gates_of_iteration(&loaded.problem, &places, settings, &budget).map_err(stage)?;
@@ -73,7 +73,7 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     if known.is_none() && needs_tally(options) {
         let counted = pipeline::count(&loaded.problem, &places, settings, &budget).map_err(stage)?;
         object.insert("tally".to_owned(), json::tally_json(&counted));
-        advice = pipeline::advice_on(&loaded.problem, &counted);
+        advice = pipeline::advice_on(&loaded.problem, &places, &counted);
         partial = counted.marked().is_none();
         known = told_by(&counted, options);
     } else if loaded.problem.bit_count() == 0 {

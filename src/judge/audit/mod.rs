@@ -11,6 +11,8 @@
 //!   ([`superposition`]).
 //! - One circuit is held against another ([`compare`]), or looked at alone ([`alone`]).
 //! - The audit is put to the test with circuits that have a fault ([`faults`]).
+//! - Where bits are computed, the circuit is held against the problem over the searched ones, and what the places claim is
+//!   proven ([`narrowing`]).
 //! - A whole search is followed from its start to its measurement ([`search`]).
 
 pub mod alone;
@@ -19,6 +21,7 @@ pub mod compare;
 mod eighths;
 pub mod faults;
 mod forms;
+pub mod narrowing;
 mod oracle;
 mod paths;
 mod proof;
@@ -36,6 +39,7 @@ use thiserror::Error;
 use crate::budget::Budget;
 use crate::circuit::Circuit;
 use crate::diag::{Code, Diagnostic};
+use crate::judge::restate::restate;
 use crate::places::{Places, PlacesError};
 use crate::problem::{Bits, Problem};
 
@@ -176,6 +180,11 @@ impl AuditError {
 /// How many distinct nodes the function has that a circuit marks, where the circuit can be read symbolically: bits and
 /// constants are not counted, and a conjunction of any width is one node.
 pub fn distinct_nodes(problem: &Problem, places: &Places, circuit: &Circuit) -> Result<Option<usize>, AuditError> {
+    if !places.computed.is_empty() {
+        places.check(problem)?;
+        let restated = restate(problem, places);
+        return distinct_nodes(&restated.problem, &restated.places, circuit);
+    }
     let roles = oracle::roles(problem, places, circuit)?;
     oracle::check_gates(circuit)?;
     Ok(oracle::keeps_basis_states(circuit).then(|| basis::distinct_nodes(places, circuit, &roles)).flatten())
@@ -191,7 +200,33 @@ pub fn distinct_nodes(problem: &Problem, places: &Places, circuit: &Circuit) -> 
 /// A verdict `equal` rests on every input. Where the structure does not decide, above [`Options::exhaustive_bits`] and
 /// [`Options::exhaustive_work`], or when the budget runs out, a sample is tried, then a proof; where that does not end
 /// within the budget, the verdict is `undecided`.
+///
+/// Where the places compute bits, a string of the search register must be marked where the bits that it stands for are a
+/// solution; and what the places claim of these strings must be so.
 pub fn audit(
+    problem: &Problem,
+    places: &Places,
+    circuit: &Circuit,
+    options: &Options,
+    budget: &Budget,
+) -> Result<Verdict, AuditError> {
+    places.check(problem)?;
+    if !narrowing::are_needed(problem, places) {
+        return audit_circuit(problem, places, circuit, options, budget);
+    }
+    let restated = restate(problem, places);
+    let mut own = options.clone();
+    own.known.iter_mut().for_each(|bits| *bits = restated.restrict(places, bits));
+    let mut verdict = audit_circuit(&restated.problem, &restated.places, circuit, &own, budget)?;
+    if let Some(witness) = &mut verdict.witness {
+        witness.bits = restated.assignment(places, &witness.bits);
+    }
+    narrowing::add(problem, places, &mut verdict, budget);
+    Ok(verdict)
+}
+
+/// The same where every bit is searched.
+fn audit_circuit(
     problem: &Problem,
     places: &Places,
     circuit: &Circuit,

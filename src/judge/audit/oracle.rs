@@ -145,9 +145,7 @@ fn step(circuit: &Circuit, gate: &Gate, trace: &mut Trace) {
 
 /// The problem's bits for a value of the search register.
 pub(crate) fn problem_bits(places: &Places, x: &Bits) -> Bits {
-    let mut bits = Bits::zeros(x.len());
-    places.searched.iter().zip(x.iter()).for_each(|(&bit, value)| bits.set(bit, value));
-    bits
+    places.assignment(x)
 }
 
 /// The value of the search register for bits of the problem.

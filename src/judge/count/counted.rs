@@ -27,7 +27,7 @@ impl Counted {
 
     /// Whether the states have to be counted apart from the solutions.
     pub fn needs_states(places: &Places) -> bool {
-        places.claim == Claim::ManyForOne
+        places.claim != Claim::OneForOne
     }
 
     /// The tally of the marked states.

@@ -45,6 +45,7 @@ pub(super) enum Pace {
 }
 
 /// A run.
+#[derive(Clone)]
 pub(super) struct Closure<'a> {
     ground: &'a Ground,
     pace: Pace,
@@ -109,16 +110,6 @@ impl<'a> Closure<'a> {
     /// Searches a bit, and takes what follows.
     pub(super) fn guess(&mut self, bit: u32) {
         self.learn(Step { bit, how: How::Searched, is_sure: true });
-        self.propagate();
-    }
-
-    /// Searches bits before anything follows.
-    pub(super) fn guess_all(&mut self, bits: &[u32]) {
-        for &bit in bits {
-            if !self.known[bit as usize] {
-                self.learn(Step { bit, how: How::Searched, is_sure: true });
-            }
-        }
         self.propagate();
     }
 

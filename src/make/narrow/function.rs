@@ -55,14 +55,8 @@ impl Ranks {
     }
 }
 
-/// A formula, and the side of the clauses that it is, if it is one: `true` for the conjunction.
-pub(super) struct Made {
-    pub(super) formula: Formula,
-    pub(super) side: Option<bool>,
-}
-
 /// The formulas of the computed bits, in the order in which they became known.
-pub(super) fn formulas(ground: &Ground, steps: &[Step], ranks: &Ranks) -> Vec<Made> {
+pub(super) fn formulas(ground: &Ground, steps: &[Step], ranks: &Ranks) -> Vec<Formula> {
     let mut shapes = Shapes::default();
     let mut made = Vec::new();
     for step in steps {
@@ -71,12 +65,11 @@ pub(super) fn formulas(ground: &Ground, steps: &[Step], ranks: &Ranks) -> Vec<Ma
             How::Row(row) => {
                 let row = &ground.rows[row as usize];
                 let others = row.bits.iter().filter(|&&other| other != bit(step.bit)).map(|&other| Formula::Bit(other));
-                Made { formula: negated_if(row.odd, simple(others.collect(), Formula::Xor)), side: None }
+                negated_if(row.odd, simple(others.collect(), Formula::Xor))
             }
             How::Forced => forced(ground, &ranks.rests_of(ground, step), &mut shapes),
             How::OneSided(is_conjunction) => {
-                let formula = cheapest(ground, &ranks.rests_of(ground, step), is_conjunction, &mut shapes).1;
-                Made { formula, side: Some(is_conjunction) }
+                cheapest(ground, &ranks.rests_of(ground, step), is_conjunction, &mut shapes).1
             }
         });
     }
@@ -84,15 +77,14 @@ pub(super) fn formulas(ground: &Ground, steps: &[Step], ranks: &Ranks) -> Vec<Ma
 }
 
 /// A bit whose clauses leave no choice: either side gives it.
-fn forced(ground: &Ground, rests: &Rests, shapes: &mut Shapes) -> Made {
+fn forced(ground: &Ground, rests: &Rests, shapes: &mut Shapes) -> Formula {
     let is_unit = |clauses: &[u32]| clauses.iter().any(|&at| ground.tidy.get(at as usize).len() == 1);
     if is_unit(&rests.with) || is_unit(&rests.without) {
-        return Made { formula: Formula::Constant(is_unit(&rests.with)), side: None };
+        return Formula::Constant(is_unit(&rests.with));
     }
     let conjunction = cheapest(ground, rests, true, shapes);
     let disjunction = cheapest(ground, rests, false, shapes);
-    let is_conjunction = conjunction.0 <= disjunction.0;
-    Made { formula: if is_conjunction { conjunction.1 } else { disjunction.1 }, side: Some(is_conjunction) }
+    if conjunction.0 <= disjunction.0 { conjunction.1 } else { disjunction.1 }
 }
 
 /// One side of a bit's clauses as a formula, with its number of ANDs.

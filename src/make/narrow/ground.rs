@@ -11,8 +11,6 @@ pub(super) struct Ground {
     pub(super) tidy: Tidy,
     /// Parities that follow from the clauses: those that were read, then those that elimination adds.
     pub(super) rows: Vec<Row>,
-    /// The parities that were read, with the places of their clauses in the problem.
-    pub(super) read: Vec<(Row, Vec<u32>)>,
     /// The rows of each bit.
     rows_of: Vec<Vec<u32>>,
     /// Bits of which any value will do that keeps a solution a solution.
@@ -31,15 +29,9 @@ impl Ground {
         let in_expressions = in_expressions(problem);
         let may_witness = (0..bits).map(|bit| (one_for_many || !shown[bit]) && !in_expressions[bit]).collect();
         let tidy = Tidy::new(&problem.clauses, bits);
-        let read: Vec<(Row, Vec<u32>)> = parities(&tidy)
-            .into_iter()
-            .filter_map(|finding| match finding.fact {
-                Fact::Parity { bits, odd } => Some((Row { bits, odd }, finding.clauses)),
-                _ => None,
-            })
-            .collect();
+        let rows = read_parities(&tidy).into_iter().map(|(row, _)| row).collect();
         let mut ground =
-            Self { tidy, rows: read.iter().map(|(row, _)| row.clone()).collect(), read, rows_of: Vec::new(), may_witness, shown, in_expressions };
+            Self { tidy, rows, rows_of: Vec::new(), may_witness, shown, in_expressions };
         let order = ground.index_order();
         let mut rank = vec![0; bits];
         order.iter().enumerate().for_each(|(at, &bit)| rank[bit as usize] = at as u32);
@@ -90,6 +82,15 @@ impl Ground {
             (false, false) => 2,
         }
     }
+}
+
+/// The parities that clauses spell, with the places of these clauses in the problem.
+pub(super) fn read_parities(tidy: &Tidy) -> Vec<(Row, Vec<u32>)> {
+    let as_row = |finding: crate::structure::Finding| match finding.fact {
+        Fact::Parity { bits, odd } => Some((Row { bits, odd }, finding.clauses)),
+        _ => None,
+    };
+    parities(tidy).into_iter().filter_map(as_row).collect()
 }
 
 /// The bits of variables that stand in a constraint that is an expression, or whose codes do not fill their bits.

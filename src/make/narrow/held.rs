@@ -1,84 +1,104 @@
 //! Which clauses hold by construction once bits are computed.
 //!
-//! A clause is looked at with the formula of that one of its bits that became known last. In a window of few bits the
-//! truth table decides; else a clause of the side that the formula is made of holds, and one of the other side where the
-//! negation of its rest meets every clause of that side. Clauses of parities hold where the parity is a sum of rows that
-//! computed a bit.
+//! Input: a problem and its places. Output: for each clause, whether it holds whatever is searched, so that the oracle need
+//! not check it. Only the places are looked at, not how they were found.
+//!
+//! A clause is looked at with the formula of that one of its bits that is computed last. In a window of few bits the truth
+//! table decides. A wider formula is a conjunction or a disjunction of rests of clauses, and a clause holds where the
+//! formula has its rest among them, or where the negation of its rest decides the formula part by part. Clauses of
+//! parities hold where the parity is a sum of parities that computed a bit.
 
-use super::closure::{How, Step};
-use super::function::{Made, Ranks, Rests};
-use super::ground::Ground;
+use super::ground::{bit, read_parities};
 use super::table::{Rows, Window, is_empty};
 use crate::id::Id;
-use crate::places::Formula;
-use crate::problem::{BitId, BitLit};
+use crate::places::{Formula, Places};
+use crate::problem::{BitId, BitLit, Problem};
+use crate::structure::Tidy;
 use crate::structure::linear::{Row, are_sums};
 
-/// For each clause of the problem, whether it holds whatever is searched. Clauses that always hold are among them.
-pub(super) fn held(ground: &Ground, steps: &[Step], ranks: &Ranks, made: &[Made], clause_count: usize) -> Vec<bool> {
-    let mut held = vec![true; clause_count];
-    (0..ground.tidy.len()).for_each(|at| held[ground.tidy.origin(at) as usize] = false);
-    for (step, made) in steps.iter().filter(|step| step.how != How::Searched).zip(made) {
-        let clauses = ranks.rests(ground, step.bit, false);
-        let made_of = ranks.rests_of(ground, step);
-        for &at in clauses.with.iter().chain(&clauses.without) {
-            if holds(ground, &made_of, made, at) {
-                held[ground.tidy.origin(at as usize) as usize] = true;
-            }
+/// For each clause of the problem, whether it holds by construction.
+pub fn held(problem: &Problem, places: &Places) -> Vec<bool> {
+    let mut held = vec![false; problem.clauses.len()];
+    if places.computed.is_empty() {
+        return held;
+    }
+    let tidy = Tidy::new(&problem.clauses, problem.bit_count());
+    let mut rank = vec![0; problem.bit_count()];
+    for (at, computed) in places.computed.iter().enumerate() {
+        rank[computed.bit as usize] = at + 1;
+    }
+    for at in 0..tidy.len() {
+        let clause = tidy.get(at);
+        let Some(&last) = clause.iter().max_by_key(|lit| rank[lit.bit().index()]) else { continue };
+        if let Some(computed) = rank[last.bit().index()].checked_sub(1).map(|at| &places.computed[at]) {
+            held[tidy.origin(at) as usize] = holds(clause, last, &computed.formula);
         }
     }
-    by_rows(ground, steps, &mut held);
+    let used: Vec<Row> = places.computed.iter().filter_map(|of| parity(of.bit, &of.formula)).collect();
+    if !used.is_empty() {
+        let read = read_parities(&tidy);
+        let asked: Vec<Row> = read.iter().map(|(row, _)| row.clone()).collect();
+        for ((_, clauses), is_sum) in read.iter().zip(are_sums(&used, &asked, problem.bit_count())) {
+            clauses.iter().filter(|_| is_sum).for_each(|&at| held[at as usize] = true);
+        }
+    }
     held
 }
 
-fn by_rows(ground: &Ground, steps: &[Step], held: &mut [bool]) {
-    let used: Vec<Row> = steps
-        .iter()
-        .filter_map(|step| match step.how {
-            How::Row(row) => Some(ground.rows[row as usize].clone()),
-            _ => None,
-        })
-        .collect();
-    if used.is_empty() {
-        return;
+/// The parity that a formula makes of a bit, where it is one of single bits.
+fn parity(own: u32, formula: &Formula) -> Option<Row> {
+    let (inner, odd) = match formula {
+        Formula::Not(inner) => (&**inner, true),
+        plain => (plain, false),
+    };
+    let parts = match inner {
+        Formula::Xor(parts) => parts.as_slice(),
+        Formula::Bit(_) => std::slice::from_ref(inner),
+        _ => return None,
+    };
+    let mut bits = vec![bit(own)];
+    for part in parts {
+        let Formula::Bit(of) = part else { return None };
+        bits.push(*of);
     }
-    let asked: Vec<Row> = ground.read.iter().map(|(row, _)| row.clone()).collect();
-    for ((_, clauses), is_sum) in ground.read.iter().zip(are_sums(&used, &asked, ground.bit_count())) {
-        if is_sum {
-            clauses.iter().for_each(|&at| held[at as usize] = true);
-        }
-    }
+    bits.sort_unstable();
+    let is_plain = bits.windows(2).all(|pair| pair[0] != pair[1]);
+    is_plain.then_some(Row { bits, odd })
 }
 
-/// Whether a clause holds where its bit is the formula.
-fn holds(ground: &Ground, rests: &Rests, made: &Made, at: u32) -> bool {
-    let clause = ground.tidy.get(at as usize);
-    let own = *clause.iter().find(|lit| lit.bit() == rests.own).expect("a clause of the bit");
+/// Whether a clause holds where the bit of its literal `own` is the formula.
+fn holds(clause: &[BitLit], own: BitLit, formula: &Formula) -> bool {
+    let rest = || clause.iter().copied().filter(|&lit| lit != own);
     let mut bits: Vec<BitId> = Vec::new();
-    made.formula.for_each_bit(&mut |of| bits.push(of));
-    let others = clause.iter().map(|lit| lit.bit()).filter(|&other| other != rests.own);
-    if let Some(window) = Window::of(bits.into_iter().chain(others)) {
-        let mut fails = rows(&made.formula, &window);
-        if !own.is_negated() {
-            flip(&mut fails, &window);
-        }
-        let rest = window.clause(clause.iter().copied().filter(|lit| lit.bit() != rests.own));
-        fails.iter_mut().zip(rest).for_each(|(word, rest)| *word &= !rest);
-        return is_empty(&fails);
+    formula.for_each_bit(&mut |of| bits.push(of));
+    let Some(window) = Window::of(bits.into_iter().chain(rest().map(|lit| lit.bit()))) else {
+        return is_value(formula, !own.is_negated(), clause, own);
+    };
+    let mut fails = rows(formula, &window);
+    if !own.is_negated() {
+        flip(&mut fails, &window);
     }
-    match (made.side, &made.formula) {
-        (Some(is_conjunction), _) => {
-            let side = if is_conjunction { &rests.without } else { &rests.with };
-            side.contains(&at) || side.iter().all(|&other| meets(ground.tidy.get(other as usize), clause, rests.own))
-        }
-        (None, Formula::Constant(value)) => *value != own.is_negated(),
-        (None, _) => false,
-    }
+    fails.iter_mut().zip(window.clause(rest())).for_each(|(word, rest)| *word &= !rest);
+    is_empty(&fails)
 }
 
-/// Whether the negation of one clause's rest makes the other clause hold.
-fn meets(clause: &[BitLit], negated: &[BitLit], own: BitId) -> bool {
-    clause.iter().any(|&lit| lit.bit() != own && negated.binary_search(&!lit).is_ok())
+/// Whether a formula too wide for a table shows part by part that it has this value where all other literals of the clause
+/// fail: then their negations hold.
+fn is_value(part: &Formula, value: bool, clause: &[BitLit], own: BitLit) -> bool {
+    let is_literal = |of: BitId, value: bool| {
+        let lit = BitLit::new(of, !value);
+        lit != own && clause.binary_search(&lit).is_ok()
+    };
+    match part {
+        Formula::Constant(constant) => *constant == value,
+        Formula::Bit(of) => is_literal(*of, value),
+        Formula::Not(inner) => is_value(inner, !value, clause, own),
+        Formula::And(list) if value => list.iter().all(|part| is_value(part, true, clause, own)),
+        Formula::And(list) => list.iter().any(|part| is_value(part, false, clause, own)),
+        Formula::Or(list) if value => list.iter().any(|part| is_value(part, true, clause, own)),
+        Formula::Or(list) => list.iter().all(|part| is_value(part, false, clause, own)),
+        Formula::Xor(_) => false,
+    }
 }
 
 /// The table of a formula.

@@ -1,7 +1,7 @@
 //! Narrowing: which bits are searched, and what the others are of them.
 //!
-//! Input: a [`Problem`]. Output: [`Narrowed`]: places with a formula for each computed bit, and the clauses that then hold by
-//! construction, so that the oracle need not check them. After: each computed bit follows those that its formula mentions;
+//! Input: a [`Problem`]. Output: [`Narrowed`]: places with a formula for each computed bit; [`held`] then names the clauses that
+//! hold by construction, so that the oracle need not check them. After: each computed bit follows those that its formula mentions;
 //! setting it to its formula in a solution that agrees with the bits before it gives a solution; and unless the claim
 //! says otherwise it is what every solution has. The judge proves that again (`judge/audit/narrowing`); it trusts nothing
 //! said here.
@@ -32,6 +32,7 @@ use closure::{How, Step};
 use function::Ranks;
 use ground::Ground;
 
+pub use held::held;
 pub use orders::Order;
 
 /// How to narrow.
@@ -61,8 +62,6 @@ impl Default for Options {
 pub struct Narrowed {
     /// What is searched, and what is computed from it.
     pub places: Places,
-    /// Which clauses of the problem hold whatever is searched.
-    pub held: Vec<bool>,
     /// The order in which bits were guessed that led here.
     pub order: Order,
 }
@@ -73,14 +72,13 @@ pub fn narrow(problem: &Problem, options: &Options, budget: &Budget) -> Narrowed
     let (steps, order) = orders::best(&ground, options, budget);
     let ranks = Ranks::new(&steps);
     let made = function::formulas(&ground, &steps, &ranks);
-    let held = held::held(&ground, &steps, &ranks, &made, problem.clauses.len());
     let bits = steps.iter().filter(|step| step.how != How::Searched).map(|step| step.bit);
-    let computed = bits.zip(made).map(|(bit, made)| Computed { bit, formula: made.formula }).collect();
+    let computed = bits.zip(made).map(|(bit, formula)| Computed { bit, formula }).collect();
     let mut searched: Vec<BitId> =
         steps.iter().filter(|step| step.how == How::Searched).map(|step| BitId::new(step.bit as usize)).collect();
     searched.sort_unstable();
     let claim = claim(&ground, &steps);
-    Narrowed { places: Places { start: Start::AllStrings, searched, computed, claim }, held, order }
+    Narrowed { places: Places { start: Start::AllStrings, searched, computed, claim }, order }
 }
 
 /// What a marked state stands for after these steps.

@@ -13,6 +13,10 @@ use crate::id::Id;
 use crate::problem::BitLit;
 use crate::random::SplitMix64;
 
+/// Tries in vain after which the search begins anew, and after which it ends.
+const ANEW: u32 = 1 << 11;
+const MAX_IDLE: u32 = 1 << 14;
+
 /// An order of guesses.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub enum Order {
@@ -67,18 +71,20 @@ fn keep_better(ground: &Ground, best: &mut (Vec<Step>, Order), steps: Vec<Step>,
 
 /// Guesses found by greed and made fewer; `None` where the effort is not enough for one round.
 fn greedy(ground: &Ground, options: &Options, budget: &Budget, start: &[Step]) -> Option<Vec<u32>> {
-    let mut search = Search { ground, random: SplitMix64::new(options.seed), work: 0, effort: options.effort };
+    let unguessed = Closure::new(ground, Pace::Fast);
+    let mut search = Search { unguessed, ground, random: SplitMix64::new(options.seed), work: 0, effort: options.effort };
     let guesses = |steps: &[Step]| steps.iter().filter(|step| step.how == super::How::Searched).map(|step| step.bit).collect::<Vec<u32>>();
     // One round looks at every literal for each guess.
     let round = ground.tidy.lit_count() as u64 * 4 + 1;
-    if round > options.effort / 16 {
+    let determines_nothing = !ground.has_witnesses() && guesses(start).len() == start.len();
+    if round > options.effort / 16 || determines_nothing {
         return None;
     }
     let first = search.complete(&[]);
     let mut best = if first.len() < guesses(start).len() { first } else { guesses(start) };
     let mut current = best.clone();
     let mut idle = 0u32;
-    while search.work < search.effort && !best.is_empty() && !budget.spent() {
+    while search.work < search.effort && idle < MAX_IDLE && !best.is_empty() && !budget.spent() {
         let most = MAX_DROPPED.min(current.len() as u64);
         let dropped = 1 + search.random.below(most) as usize;
         let mut kept = current.clone();
@@ -95,7 +101,7 @@ fn greedy(ground: &Ground, options: &Options, budget: &Budget, start: &[Step]) -
         if current.len() < best.len() {
             best.clone_from(&current);
         }
-        if idle > 0 && idle.is_multiple_of(1 << 11) {
+        if idle > 0 && idle.is_multiple_of(ANEW) {
             current = search.complete(&[]);
         }
     }
@@ -105,6 +111,8 @@ fn greedy(ground: &Ground, options: &Options, budget: &Budget, start: &[Step]) -
 }
 
 struct Search<'a> {
+    /// What is known without a guess.
+    unguessed: Closure<'a>,
     ground: &'a Ground,
     random: SplitMix64,
     work: u64,
@@ -115,7 +123,7 @@ impl Search<'_> {
     /// Guesses these bits, then by greed until everything is known. Gives all guesses that were needed.
     fn complete(&mut self, kept: &[u32]) -> Vec<u32> {
         let ground = self.ground;
-        let mut closure = Closure::new(ground, Pace::Fast);
+        let mut closure = self.unguessed.clone();
         let mut guesses: Vec<u32> = Vec::with_capacity(kept.len() + 16);
         for &bit in kept {
             if !closure.is_known(bit) {

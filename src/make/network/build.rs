@@ -5,15 +5,21 @@ use super::expr::Values;
 use super::linear::{Linear, Range};
 use super::{Conjunct, Lit, Network, NodeId, Places};
 use crate::id::{ConstraintId, Id, IdVec};
+use crate::make::narrow::held;
+use crate::places::Formula;
 use crate::problem::{BitId, Problem};
 
-/// The network of a problem over its searched bits. The problem passed [`check`](crate::problem::check::check), and the
+/// The network of a problem over its searched bits; computed bits are nodes, and clauses that hold by construction are left
+/// out. The problem passed [`check`](crate::problem::check::check), and the
 /// places are about it ([`Places::check`]).
 pub fn build(problem: &Problem, places: &Places) -> Network {
     let mut builder = Builder::new(&places.searched);
     let mut bits = vec![Lit::NO; problem.bit_count()];
     for (at, bit) in places.searched.iter().enumerate() {
         bits[bit.index()] = Lit::new(NodeId::new(at + 1), false);
+    }
+    for computed in &places.computed {
+        bits[computed.bit as usize] = formula(&mut builder, &computed.formula, &bits);
     }
     let mut conjuncts = Conjuncts::default();
     domains(&mut builder, problem, &bits, &mut conjuncts);
@@ -23,7 +29,7 @@ pub fn build(problem: &Problem, places: &Places) -> Network {
             conjuncts.add(lit, Some(ConstraintId::new(at)));
         }
     }
-    clauses(&mut builder, problem, &bits, &mut conjuncts);
+    clauses(&mut builder, problem, &bits, &held(problem, places), &mut conjuncts);
     conjuncts.finish(builder, places.searched.clone())
 }
 
@@ -78,9 +84,12 @@ fn domains(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &m
 }
 
 /// A clause of k literals is k - 1 ANDs: it fails where all of them fail.
-fn clauses(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &mut Conjuncts) {
+fn clauses(builder: &mut Builder, problem: &Problem, bits: &[Lit], held: &[bool], conjuncts: &mut Conjuncts) {
     let mut failing: Vec<Lit> = Vec::new();
     for (at, clause) in problem.clauses.iter().enumerate() {
+        if held[at] {
+            continue;
+        }
         failing.clear();
         failing.extend(clause.iter().map(|lit| !bits[lit.bit().index()].complement_if(lit.is_negated())));
         failing.sort_unstable();
@@ -91,5 +100,32 @@ fn clauses(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &m
         }
         let fails = builder.all(&failing);
         conjuncts.add(!fails, Some(ConstraintId::new(problem.constraints.len() + at)));
+    }
+}
+
+/// A computed bit as a node.
+fn formula(builder: &mut Builder, of: &Formula, bits: &[Lit]) -> Lit {
+    let parts = |list: &[Formula], builder: &mut Builder| -> Vec<Lit> {
+        let mut lits: Vec<Lit> = list.iter().map(|part| formula(builder, part, bits)).collect();
+        // Equal conjunctions of many parts become one node where they are built in one order.
+        lits.sort_unstable();
+        lits
+    };
+    match of {
+        Formula::Constant(value) => Lit::constant(*value),
+        Formula::Bit(bit) => bits[bit.index()],
+        Formula::Not(inner) => !formula(builder, inner, bits),
+        Formula::And(list) => {
+            let lits = parts(list, builder);
+            builder.all(&lits)
+        }
+        Formula::Or(list) => {
+            let lits: Vec<Lit> = parts(list, builder).into_iter().map(|lit| !lit).collect();
+            !builder.all(&lits)
+        }
+        Formula::Xor(list) => {
+            let lits = parts(list, builder);
+            builder.odd(&lits)
+        }
     }
 }

@@ -31,21 +31,12 @@ pub struct Checked {
     pub solutions: u64,
 }
 
-/// The problem's bits that a string of the search register stands for.
-pub fn problem_bits(places: &Places, measured: &Bits) -> Bits {
-    let mut bits = Bits::zeros(places.search_len());
-    for (qubit, &bit) in places.searched.iter().enumerate() {
-        bits.set(bit, measured.at(qubit));
-    }
-    bits
-}
-
 /// Checks every measured string against the problem. The shots must have been read for this width of search register.
 pub fn check(problem: &Problem, places: &Places, shots: &Shots) -> Result<Checked, PlacesError> {
     places.check(problem)?;
     assert_eq!(shots.width, places.search_len(), "shots of this search register");
     let answer = |(measured, count): &(Bits, u64)| {
-        let bits = problem_bits(places, measured);
+        let bits = places.assignment(measured);
         Answer { measured: measured.clone(), holds: problem.holds(&bits), bits, count: *count }
     };
     let mut answers: Vec<Answer> = shots.counts.iter().map(answer).collect();

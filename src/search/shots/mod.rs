@@ -12,7 +12,7 @@ mod fault;
 mod map;
 pub mod read;
 
-pub use check::{Answer, Checked, check, problem_bits};
+pub use check::{Answer, Checked, check};
 pub use compare::{Comparison, Predicted, compare};
 pub use read::{Format, Options, Order, read};
 

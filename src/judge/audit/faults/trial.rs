@@ -5,6 +5,7 @@ use crate::circuit::{Circuit, FOUND};
 use crate::judge::audit::faults::proof::{self, Proof};
 use crate::judge::audit::faults::{Drawer, Fault, Kind, apply, local};
 use crate::judge::audit::{AuditError, Options, Outcome, audit, audit_search};
+use crate::judge::restate::restate;
 use crate::places::Places;
 use crate::problem::Problem;
 
@@ -55,7 +56,8 @@ impl SelfTest {
     }
 }
 
-/// Makes `count` faults in a circuit that the audit found equal, drawn with the seed of the options.
+/// Makes `count` faults in a circuit that the audit found equal, drawn with the seed of the options. Where bits are computed,
+/// faults of the problem are those of the problem over the searched bits.
 pub fn self_test(
     problem: &Problem,
     places: &Places,
@@ -64,6 +66,11 @@ pub fn self_test(
     options: &Options,
     budget: &Budget,
 ) -> Result<SelfTest, AuditError> {
+    if !places.computed.is_empty() {
+        places.check(problem)?;
+        let restated = restate(problem, places);
+        return self_test(&restated.problem, &restated.places, circuit, count, options, budget);
+    }
     let tester = Tester::new(problem, places, circuit, options, budget)?;
     let mut drawer = Drawer::new(problem, places, circuit, options.seed);
     let mut test = SelfTest::default();

@@ -28,6 +28,7 @@ use crate::budget::Budget;
 use crate::circuit::{Circuit, FOUND, Gate, Op, QubitId, SEARCH};
 use crate::id::Id;
 use crate::judge::rows;
+use crate::judge::restate::restate;
 use crate::places::Places;
 use crate::problem::Problem;
 
@@ -75,7 +76,9 @@ pub fn audit_search(
     if let Some(verdict) = too_large(circuit, &search, budget) {
         return Ok(verdict);
     }
-    audit_search_against(&rows::truth(problem, &places.searched), places, circuit, work_limit, budget)
+    let restated = restate(problem, places);
+    let truth = rows::truth(&restated.problem, &restated.places.searched);
+    audit_search_against(&truth, places, circuit, work_limit, budget)
 }
 
 /// The same, with the truth table at hand: bit `v` says whether the string `v` is marked.

@@ -1,0 +1,81 @@
+//! The stage that decides what is searched: each candidate is priced as a whole search, and the cheapest is taken.
+//!
+//! The price is iterations times (oracle + reflection), counted in ANDs. The iterations go with the root of N / M. What M is
+//! need not be known here: narrowing one for one leaves it as it is, and where one state stands for several solutions N
+//! shrinks at least as far as M does, because a state of k searched bits stands for at most 2^(n - k) solutions. So a
+//! candidate that costs no more for each iteration is never worse, and of one that costs more the price for a single
+//! solution is taken, which is the case that a search is for.
+
+use super::{Error, Settings};
+use crate::budget::Budget;
+use crate::make::lower;
+use crate::make::narrow::{self, Options};
+use crate::make::network;
+use crate::places::{Claim, Places};
+use crate::problem::Problem;
+
+/// Whether bits may be computed instead of searched.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum Narrowing {
+    /// Every bit is searched as given.
+    Off,
+    /// Bits that solutions determine are computed, and hidden bits for which some value will do.
+    OneForOne,
+    /// One solution may stand for many: any bit for which some value will do.
+    OneForMany,
+}
+
+/// A way to search, and what it would cost.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Candidate {
+    /// What is searched and what is computed.
+    pub places: Places,
+    /// ANDs of the oracle and of the reflection together; `None` where there is no oracle.
+    pub ands: Option<u64>,
+}
+
+impl Candidate {
+    fn new(problem: &Problem, places: Places, settings: Settings, budget: &Budget) -> Self {
+        let network = network::build(problem, &places);
+        let oracle = lower::and_count(&network, settings.mark, budget).ok();
+        let ands = oracle.map(|ands| ands + places.search_len().saturating_sub(1) as u64);
+        Self { places, ands }
+    }
+
+    /// The logarithm to base 2 of iterations times ANDs, for a single marked state and up to what all candidates share.
+    pub fn price(&self) -> f64 {
+        let each = self.ands.map_or(1.0, |ands| ands.max(1) as f64);
+        self.places.search_len() as f64 / 2.0 + each.log2()
+    }
+}
+
+/// Decides what is searched. Gives the winner first, then what it was held against.
+pub fn choose(
+    problem: &Problem,
+    narrowing: Narrowing,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<(Candidate, Option<Candidate>), Error> {
+    let as_given = Places::as_given(problem);
+    if narrowing == Narrowing::Off {
+        return Ok((Candidate { places: as_given, ands: None }, None));
+    }
+    let one_for_many = narrowing == Narrowing::OneForMany;
+    let options = Options { one_for_many, seed: settings.seed, ..Options::default() };
+    let narrowed = narrow::narrow(problem, &options, budget).places;
+    // A register of no qubits is no search: then every bit is searched as given.
+    if narrowed.computed.is_empty() || narrowed.search_len() == 0 || !is_wanted(&narrowed, narrowing) {
+        return Ok((Candidate { places: as_given, ands: None }, None));
+    }
+    let plain = Candidate::new(problem, as_given, settings, budget);
+    let narrowed = Candidate::new(problem, narrowed, settings, budget);
+    if narrowed.ands <= plain.ands || narrowed.price() <= plain.price() {
+        return Ok((narrowed, Some(plain)));
+    }
+    Ok((plain, Some(narrowed)))
+}
+
+/// Whether the claim is one that was asked for.
+fn is_wanted(places: &Places, narrowing: Narrowing) -> bool {
+    narrowing == Narrowing::OneForMany || places.claim != Claim::OneForMany
+}
