@@ -2,3 +2,4 @@
 
 pub mod lower;
 pub mod network;
+pub mod start;

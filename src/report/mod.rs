@@ -10,6 +10,7 @@ pub mod places;
 pub mod plan;
 pub mod self_test;
 pub mod shots;
+pub mod simulation;
 pub mod story;
 pub mod summary;
 pub mod values;

@@ -16,6 +16,7 @@ mod making;
 mod planning;
 mod proofs;
 mod random_problem;
+mod simulating;
 mod states;
 mod symbolic;
 mod walls;

@@ -10,7 +10,7 @@
 use std::f64::consts::PI;
 use std::io::{self, Write};
 
-use crate::circuit::{Circuit, Control, Gate, Op, Part, Region, Register};
+use crate::circuit::{Circuit, Control, GIVEN, Gate, ITERATIONS, Op, Part, Region, Register};
 use crate::id::Id;
 
 /// Writes the circuit; `header` lines become comments below the version line.
@@ -21,6 +21,9 @@ pub fn write(circuit: &Circuit, header: &[String], out: &mut impl Write) -> io::
         writeln!(out, "{}", format!("// {line}").trim_end())?;
     }
     writeln!(out, "include \"stdgates.inc\";")?;
+    if circuit.blocks().iter().any(|block| block.repeat == GIVEN) {
+        writeln!(out, "input int {ITERATIONS};")?;
+    }
     for register in &circuit.qubits {
         writeln!(out, "qubit[{}] {};", register.len, register.name)?;
     }
@@ -41,7 +44,10 @@ pub fn write(circuit: &Circuit, header: &[String], out: &mut impl Write) -> io::
             0 => writer.skip(gates),
             1 => writer.gates(&mut out, gates)?,
             repeat => {
-                writeln!(out, "for int i in [1:{repeat}] {{")?;
+                match repeat {
+                    GIVEN => writeln!(out, "for int i in [1:{ITERATIONS}] {{")?,
+                    repeat => writeln!(out, "for int i in [1:{repeat}] {{")?,
+                }
                 writer.indent = "  ";
                 writer.gates(&mut out, gates)?;
                 writer.indent = "";

@@ -13,9 +13,11 @@
 //!    `feedback` the inverse is a measurement and a correction and costs none (C. Gidney, "Halving the cost of quantum
 //!    addition", Quantum 2:74, 2018).
 
+mod about;
 mod conjugation;
 mod emit;
 mod plan;
+mod prepare;
 mod reflection;
 mod steps;
 
@@ -26,6 +28,8 @@ use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part};
 use crate::diag::{Code, Diagnostic};
 use crate::make::network::{Lit, Network};
 
+pub use about::{Form, about_work, append_reflection_about};
+pub use prepare::{Turn, append_preparation, append_unpreparation, preparation};
 pub use reflection::{append_reflection, reflection_work};
 
 /// What kind of oracle is wanted.

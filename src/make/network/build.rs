@@ -5,6 +5,7 @@ use super::expr::Values;
 use super::linear::{Linear, Range};
 use super::{Conjunct, Lit, Network, NodeId, Places};
 use crate::id::{ConstraintId, Id};
+use crate::make::start::Guaranteed;
 use crate::problem::Problem;
 
 /// The network of a problem over its searched bits. The problem passed [`check`](crate::problem::check::check), and the
@@ -16,14 +17,18 @@ pub fn build(problem: &Problem, places: &Places) -> Network {
         bits[bit.index()] = Lit::new(NodeId::new(at + 1), false);
     }
     let mut conjuncts = Conjuncts::default();
-    domains(&mut builder, problem, &bits, &mut conjuncts);
+    let guaranteed = Guaranteed::of(problem, places);
+    domains(&mut builder, problem, &bits, &guaranteed, &mut conjuncts);
     let mut values = Values::new(problem, &bits);
     for (at, constraint) in problem.constraints.iter().enumerate() {
+        if guaranteed.constraint(constraint.expr) {
+            continue;
+        }
         for lit in values.conjuncts(&mut builder, constraint.expr) {
             conjuncts.add(lit, Some(ConstraintId::new(at)));
         }
     }
-    clauses(&mut builder, problem, &bits, &mut conjuncts);
+    clauses(&mut builder, problem, &bits, &guaranteed, &mut conjuncts);
     let root = if conjuncts.contradictory { Lit::NO } else { builder.all(&conjuncts.lits()) };
     builder.finish(places.searched.clone(), conjuncts.list, root)
 }
@@ -51,8 +56,14 @@ impl Conjuncts {
 }
 
 /// "The code lies in the domain", for domains whose size is not a power of two.
-fn domains(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &mut Conjuncts) {
-    for var in problem.vars().values() {
+fn domains(
+    builder: &mut Builder,
+    problem: &Problem,
+    bits: &[Lit],
+    guaranteed: &Guaranteed<'_>,
+    conjuncts: &mut Conjuncts,
+) {
+    for (_, var) in problem.vars().iter().filter(|&(id, _)| !guaranteed.domain(id)) {
         let last = i128::from(problem.size(var.domain));
         let largest = (1i128 << var.width) - 1;
         if last < largest {
@@ -65,9 +76,15 @@ fn domains(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &m
 }
 
 /// A clause of k literals is k - 1 ANDs: it fails where all of them fail.
-fn clauses(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &mut Conjuncts) {
+fn clauses(
+    builder: &mut Builder,
+    problem: &Problem,
+    bits: &[Lit],
+    guaranteed: &Guaranteed<'_>,
+    conjuncts: &mut Conjuncts,
+) {
     let mut failing: Vec<Lit> = Vec::new();
-    for (at, clause) in problem.clauses.iter().enumerate() {
+    for (at, clause) in problem.clauses.iter().enumerate().filter(|(_, clause)| !guaranteed.clause(clause)) {
         failing.clear();
         failing.extend(clause.iter().map(|lit| !bits[lit.bit().index()].complement_if(lit.is_negated())));
         failing.sort_unstable();
