@@ -8,8 +8,10 @@
 mod certificate;
 mod error;
 mod files;
+mod objective;
 mod oracle;
 mod planning;
+mod start;
 
 use std::path::Path;
 
@@ -31,8 +33,10 @@ use crate::source::Loaded;
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
-pub use oracle::{gates_of_iteration, oracle, whole_search};
+pub use objective::{Ladder, Optimal, Rung, ladder};
+pub use oracle::{course, gates_of_iteration, oracle, whole_search};
 pub use planning::{advice_on, plan_for};
+pub use start::{PRECISION, Priced, places_from, priced};
 
 use files::write_and_read;
 use oracle::{every_level, why_no_oracle};

@@ -7,9 +7,10 @@ use crate::budget::Budget;
 use crate::circuit::{Level, Mark, Product};
 use crate::make::lower::{self, LowerError};
 use crate::make::network;
-use crate::places::Places;
+use crate::places::{Places, Start};
 use crate::problem::Problem;
-use crate::search::{Advice, whole};
+use crate::search::course::Course;
+use crate::search::{self, Advice, whole};
 
 /// Compiles the oracle.
 pub fn oracle(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Product, Error> {
@@ -24,6 +25,12 @@ pub fn oracle(problem: &Problem, places: &Places, settings: Settings, budget: &B
 pub fn whole_search(oracle: &Product, iterations: &BigUint) -> Result<Product, Error> {
     let iterations = u64::try_from(iterations).map_err(|_| Error::TooManyIterations(iterations.clone()))?;
     let circuit = whole::whole_search(&oracle.circuit, iterations, oracle.level);
+    Ok(Product::new(circuit, oracle.level, oracle.mark, oracle.and_count))
+}
+
+/// Puts an oracle into the circuit of a course from a start state.
+pub fn course(oracle: &Product, start: &Start, course: &Course) -> Result<Product, Error> {
+    let circuit = search::course::circuit(&oracle.circuit, start, course, oracle.level);
     Ok(Product::new(circuit, oracle.level, oracle.mark, oracle.and_count))
 }
 

@@ -19,15 +19,22 @@
 
 use std::f64::consts::PI;
 
+use num_bigint::BigUint;
+use num_traits::ToPrimitive;
+
 use crate::circuit::{Circuit, Control, FOUND, GIVEN, Level, MARK, Op, Part, QubitId, SEARCH, WORK};
 use crate::make::lower::{Form, about_work, append_preparation, append_reflection_about};
 use crate::places::Start;
+use crate::search::plan::Details;
 use crate::search::whole::append_oracle;
 
 /// The register that controls counted iterations, digit 0 first.
 pub const COUNT: &str = "count";
 /// The measured register of a counting.
 pub const COUNTED: &str = "counted";
+
+/// The most digits that are counted: beyond, the loop of the last one is never run.
+const MOST_DIGITS: u64 = 60;
 
 /// What is run.
 #[derive(Clone, PartialEq, Debug)]
@@ -51,6 +58,26 @@ pub enum Course {
 }
 
 impl Course {
+    /// The course that carries out a plan; `None` where it is longer than a circuit can be, or nothing is marked.
+    pub fn of(details: &Details) -> Option<Self> {
+        let number = |number: &BigUint| number.to_u64().filter(|&number| number < 1 << 62);
+        match details {
+            Details::Plain(plan) => number(&plan.iterations).map(Self::Plain),
+            Details::Interval(interval) => number(&interval.iterations).map(Self::Plain),
+            Details::Certainty(tuned) => {
+                let iterations = number(&tuned.iterations)?;
+                Some(if tuned.phase == PI { Self::Plain(iterations) } else { Self::Matched { iterations, phase: tuned.phase } })
+            }
+            Details::FixedPoint(sequence) => sequence.phases().map(Self::Sequence),
+            Details::Schedule(..) => Some(Self::Given),
+            Details::Estimation(estimation) => {
+                let digits = (&estimation.points - 1u32).bits().max(1);
+                (digits <= MOST_DIGITS).then_some(Self::Counting(digits as u32))
+            }
+            Details::NothingMarked => None,
+        }
+    }
+
     /// Whether the oracle must have a `mark`.
     pub fn needs_bit_oracle(&self) -> bool {
         matches!(self, Self::Matched { .. } | Self::Sequence(_) | Self::Counting(_))
