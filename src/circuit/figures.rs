@@ -2,7 +2,7 @@
 
 use serde::Serialize;
 
-use crate::circuit::{Circuit, Gate, Op, PerQubit};
+use crate::circuit::{Circuit, GIVEN, Gate, Op, PerQubit};
 use crate::id::Id;
 
 /// Counts over a circuit, every block as often as it is applied.
@@ -50,8 +50,10 @@ pub fn figures(circuit: &Circuit) -> Figures {
             chances.follow(gate);
             layers.place(circuit, gate);
         }
+        // A block whose number is given when it is run counts once.
+        let turns = if block.repeat == GIVEN { 1 } else { block.repeat };
         // A file may repeat a block up to 2^63 times: the count then stays at the largest number.
-        let add = |total: &mut u64, one: u64| *total = total.saturating_add(one.saturating_mul(block.repeat));
+        let add = |total: &mut u64, one: u64| *total = total.saturating_add(one.saturating_mul(turns));
         add(&mut total.gates, one.gates);
         add(&mut total.t_count, one.t_count);
         total.t_count_expected += one.t_count_expected * block.repeat as f64;

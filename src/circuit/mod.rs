@@ -225,6 +225,11 @@ pub struct Block {
     pub repeat: u64,
 }
 
+/// The `repeat` of a block that is applied as often as the input [`ITERATIONS`] of the file says when it is run.
+pub const GIVEN: u64 = u64::MAX;
+/// The name of that input.
+pub const ITERATIONS: &str = "iterations";
+
 /// A circuit.
 #[derive(Clone, PartialEq, Debug, Default)]
 pub struct Circuit {

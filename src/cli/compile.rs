@@ -83,7 +83,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let mut counted = None;
     if options.whole {
         let iterations;
-        (iterations, counted) = iterations_for(&loaded, &places, settings, options, &budget, &sources)?;
+        (iterations, counted) = planned(&loaded, &places, settings, options.count.as_ref(), &budget, &sources)?;
         product = pipeline::whole_search_within(&product, &iterations, &limits).map_err(stage)?;
     }
     drop(line);
@@ -160,16 +160,17 @@ pub(super) fn places_path(circuit: &Path) -> PathBuf {
     circuit.with_extension("places.json")
 }
 
-fn iterations_for(
+/// The planned iterations, for a number of marked states that is known from elsewhere or for the tally.
+pub(super) fn planned(
     loaded: &Loaded,
     places: &Places,
     settings: Settings,
-    options: &Options,
+    count: Option<&BigUint>,
     budget: &Budget,
     sources: &Sources,
 ) -> Result<(BigUint, Option<Counted>), Box<Failure>> {
     let space = Counted::space(places);
-    let (marked, counted) = if let Some(marked) = &options.count {
+    let (marked, counted) = if let Some(marked) = count {
         (Some(marked.clone()), None)
     } else {
         let counted = pipeline::count(&loaded.problem, places, settings, budget)

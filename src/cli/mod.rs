@@ -16,6 +16,7 @@ mod plan;
 mod progress;
 mod render;
 mod shots;
+mod simulate;
 mod texts;
 mod turns;
 
@@ -89,6 +90,8 @@ enum Command {
     Ledger(ledger::Options),
     /// Iterations and success probability, for a problem or for numbers alone
     Plan(Box<plan::Options>),
+    /// Run a search on this machine: success by iteration, drawn results
+    Simulate(simulate::Options),
     /// Measured bit strings back to answers, checked, and compared with the plan
     Shots(shots::Options),
     /// How the problem was read: variables, bits, constraints, ranges
@@ -125,6 +128,7 @@ fn dispatch(cli: &Cli) -> Outcome {
         Command::Audit(options) => audit::run(&cli.global, options),
         Command::Plan(options) => plan::run(&cli.global, options),
         Command::Ledger(options) => ledger::run(&cli.global, options),
+        Command::Simulate(options) => simulate::run(&cli.global, options),
         Command::Shots(options) => shots::run(&cli.global, options),
         Command::Explain(options) => explain::run(&cli.global, options),
     }

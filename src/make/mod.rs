@@ -3,3 +3,4 @@
 pub mod lower;
 pub mod narrow;
 pub mod network;
+pub mod start;

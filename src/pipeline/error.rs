@@ -45,6 +45,12 @@ pub enum Error {
     /// The loop of a search file counts in 64 bits.
     #[error("{0} iterations are more than a search circuit can loop")]
     TooManyIterations(BigUint),
+    /// The problem says nothing of what is best.
+    #[error("the problem has no objective")]
+    NoObjective,
+    /// The budget ran out before a threshold was counted.
+    #[error("the time ran out before every threshold was counted")]
+    NotCounted,
     /// What the program did contradicts itself.
     #[error("a fault of tallymark: {0}")]
     Fault(String),
@@ -69,6 +75,10 @@ impl Error {
                 .expected("a file that `tallymark count --certificate` wrote, or a decision-DNNF in nnf text"),
             Error::TooManyIterations(_) => Diagnostic::error(Code("C090"), self.to_string())
                 .help("plan still gives the count; a search of this length will not be run"),
+            Error::NoObjective => {
+                Diagnostic::error(Code("C093"), self.to_string()).expected("a problem that ends in `least` or `most`")
+            }
+            Error::NotCounted => Diagnostic::error(Code("C094"), self.to_string()).help("give more --time"),
             Error::Count(_) | Error::Fault(_) | Error::Certificate(_) => {
                 Diagnostic::error(Code("A090"), self.to_string())
                     .help("please report it with the input file and the command line")
@@ -80,6 +90,7 @@ impl Error {
     pub fn is_unfinished(&self) -> bool {
         match self {
             Error::Lower(error) => error.is_unfinished(),
+            Error::NotCounted => true,
             Error::Certificate(refusal) => refusal.is_undecided(),
             _ => false,
         }

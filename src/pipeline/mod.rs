@@ -10,8 +10,10 @@ mod choice;
 mod counting;
 mod error;
 mod files;
+mod objective;
 mod oracle;
 mod planning;
+mod start;
 mod tally;
 
 use std::path::Path;
@@ -37,10 +39,13 @@ pub use counting::count;
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
+pub use objective::{Ladder, Optimal, Rung, ladder};
 pub use oracle::{
-    CheckedPass, check_passes, front, gates_of_iteration, oracle, oracle_within, turned, whole_search, whole_search_within,
+    CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, turned, whole_search,
+    whole_search_within,
 };
 pub use planning::{advice_on, plan_for};
+pub use start::{PRECISION, Priced, places_from, priced};
 pub use tally::{Margin, Tallied, tally, tally_for_plan};
 
 use files::write_and_read;

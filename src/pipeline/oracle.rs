@@ -10,9 +10,10 @@ use crate::circuit::{Level, Mark, Product};
 use crate::make::lower::{self, Limits, LowerError, Lowered, Turn};
 use crate::make::network::pass::{self, check};
 use crate::make::network::{self, Network};
-use crate::places::Places;
+use crate::places::{Places, Start};
 use crate::problem::Problem;
-use crate::search::{Advice, whole};
+use crate::search::course::Course;
+use crate::search::{self, Advice, whole};
 
 /// Compiles the oracle.
 pub fn oracle(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Product, Error> {
@@ -111,6 +112,12 @@ pub fn whole_search_within(oracle: &Product, iterations: &BigUint, limits: &Limi
     if least > most {
         return Err(LowerError::TooFewQubits { asked: most, least }.into());
     }
+    Ok(Product::new(circuit, oracle.level, oracle.mark, oracle.and_count))
+}
+
+/// Puts an oracle into the circuit of a course from a start state.
+pub fn course(oracle: &Product, start: &Start, course: &Course) -> Result<Product, Error> {
+    let circuit = search::course::circuit(&oracle.circuit, start, course, oracle.level);
     Ok(Product::new(circuit, oracle.level, oracle.mark, oracle.and_count))
 }
 

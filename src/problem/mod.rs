@@ -14,6 +14,7 @@ pub mod clauses;
 pub mod code;
 pub mod eval;
 pub mod expr;
+pub mod restrict;
 pub mod text;
 
 pub use bits::Bits;

@@ -12,6 +12,7 @@ pub mod plan;
 pub mod self_test;
 pub mod readable;
 pub mod shots;
+pub mod simulation;
 pub mod story;
 pub mod summary;
 pub mod values;

@@ -3,9 +3,11 @@
 
 pub mod advice;
 pub mod binomial;
+pub mod course;
 pub mod number;
 pub mod plan;
 pub mod shots;
+pub mod simulate;
 pub mod whole;
 
 pub use advice::Advice;

@@ -57,7 +57,7 @@ fn prepare(circuit: &mut Circuit, search: &[QubitId], mark: &[QubitId], work: &[
 }
 
 /// Appends the oracle's gates without its opening resets; its qubits keep their places in their registers.
-fn append_oracle(circuit: &mut Circuit, oracle: &Circuit) {
+pub(super) fn append_oracle(circuit: &mut Circuit, oracle: &Circuit) {
     let moved = moved_qubits(circuit, oracle);
     let opening = oracle.gates().iter().take_while(|gate| gate.op() == Op::Reset).count();
     let start = circuit.gates().len();

@@ -11,7 +11,7 @@ use std::f64::consts::PI;
 use std::io::{self, Write};
 
 use super::gadget::Gadget;
-use crate::circuit::{Circuit, Control, Gate, Op, Part, Region, Register};
+use crate::circuit::{Circuit, Control, GIVEN, Gate, ITERATIONS, Op, Part, Region, Register};
 use crate::id::{ConstraintId, Id};
 
 /// What makes a text readable.
@@ -45,6 +45,9 @@ pub fn write_readable(
         (0..circuit.gates().len()).any(|at| gadget.found_in(circuit, &circuit.gates()[at..]).is_some())
     };
     readable.gadgets.iter().filter(occurs).try_for_each(|gadget| gadget.define(keyword, &mut out))?;
+    if circuit.blocks().iter().any(|block| block.repeat == GIVEN) {
+        writeln!(out, "input int {ITERATIONS};")?;
+    }
     for register in &circuit.qubits {
         writeln!(out, "qubit[{}] {};", register.len, register.name)?;
     }
@@ -66,7 +69,10 @@ pub fn write_readable(
             0 => writer.skip(gates),
             1 => writer.gates(&mut out, gates)?,
             repeat => {
-                writeln!(out, "for int i in [1:{repeat}] {{")?;
+                match repeat {
+                    GIVEN => writeln!(out, "for int i in [1:{ITERATIONS}] {{")?,
+                    repeat => writeln!(out, "for int i in [1:{repeat}] {{")?,
+                }
                 writer.indent = "  ";
                 writer.gates(&mut out, gates)?;
                 writer.indent = "";

@@ -28,6 +28,7 @@ mod proof;
 pub mod search;
 mod state;
 pub mod superposition;
+mod support;
 pub mod verdict;
 
 pub use forms::controlled;
@@ -195,7 +196,8 @@ pub fn distinct_nodes(problem: &Problem, places: &Places, circuit: &Circuit) -> 
 /// The circuit has a register `search`, of the size that the places say; a register `mark` of one qubit if it is a bit
 /// oracle; and may have a register `work`, whose qubits begin and must end as 0. For every input tried, a phase oracle
 /// must multiply the solutions by -1 and nothing else, a bit oracle must flip `mark` on the solutions and give no phase;
-/// a global phase is free unless the options are strict.
+/// a global phase is free unless the options are strict. Where the start state is not all strings, only the strings it
+/// holds are inputs, and it must hold every solution.
 ///
 /// A verdict `equal` rests on every input. Where the structure does not decide, above [`Options::exhaustive_bits`] and
 /// [`Options::exhaustive_work`], or when the budget runs out, a sample is tried, then a proof; where that does not end
@@ -235,11 +237,33 @@ fn audit_circuit(
 ) -> Result<Verdict, AuditError> {
     let roles = oracle::roles(problem, places, circuit)?;
     oracle::check_gates(circuit)?;
+    let lost = support::lost(problem, places, budget);
+    if let support::Lost::Solution(bits) = lost {
+        return Ok(support::verdict(bits));
+    }
+    let mut verdict = judge(problem, places, circuit, &roles, options, budget)?;
+    if lost == support::Lost::Unknown && verdict.outcome == Outcome::Equal {
+        verdict.outcome = Outcome::Undecided;
+        verdict.notes.push("whether the start state holds every solution was not decided within the budget".to_owned());
+    } else if !places.start.parts().is_empty() {
+        verdict.notes.push("relative to the start state: what it does not hold is not judged".to_owned());
+    }
+    Ok(verdict)
+}
+
+fn judge(
+    problem: &Problem,
+    places: &Places,
+    circuit: &Circuit,
+    roles: &oracle::Roles,
+    options: &Options,
+    budget: &Budget,
+) -> Result<Verdict, AuditError> {
     let exact = eighths::with_eighths(circuit, options.strict_phase);
     if oracle::keeps_basis_states(&exact) && (options.angle.is_none() || roles.mark.is_some()) {
-        return Ok(basis::audit_basis(problem, places, &exact, &roles, options, budget));
+        return Ok(basis::audit_basis(problem, places, &exact, roles, options, budget));
     }
-    match paths::audit_paths(problem, places, circuit, &roles, options, budget)? {
+    match paths::audit_paths(problem, places, circuit, roles, options, budget)? {
         Ok(verdict) => Ok(verdict),
         Err(open) => {
             let mut verdict = superposition::audit_superposition(problem, places, circuit, options, budget)?;

@@ -13,6 +13,7 @@
 //!    `feedback` the inverse is a measurement and a correction and costs none (C. Gidney, "Halving the cost of quantum
 //!    addition", Quantum 2:74, 2018).
 
+mod about;
 mod conjugation;
 mod emit;
 mod fan_out;
@@ -20,6 +21,7 @@ mod forms;
 mod gates;
 mod multi;
 mod plan;
+mod prepare;
 mod reflection;
 mod replay;
 mod schedule;
@@ -36,8 +38,10 @@ use crate::make::network::{Lit, Network};
 pub use forms::{Turn, lower_turn};
 pub use gates::gadgets;
 pub use multi::{Idle, Way, append_controlled, ways};
+pub use prepare::{Turn as Rotation, append_preparation, append_unpreparation, preparation};
 pub use reflection::{append_reflection, least_reflection_work, reflection_work};
 pub use within::{Favour, Limits, Lowered, front_of, lower_within};
+pub use about::{Form, about_work, append_reflection_about};
 
 /// What kind of oracle is wanted.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]

@@ -6,6 +6,7 @@ use super::linear::{Linear, Range};
 use super::{Conjunct, Lit, Network, NodeId, Places};
 use crate::id::{ConstraintId, Id, IdVec};
 use crate::make::narrow::held;
+use crate::make::start::Guaranteed;
 use crate::places::Formula;
 use crate::problem::{BitId, Problem};
 
@@ -22,14 +23,18 @@ pub fn build(problem: &Problem, places: &Places) -> Network {
         bits[computed.bit as usize] = formula(&mut builder, &computed.formula, &bits);
     }
     let mut conjuncts = Conjuncts::default();
-    domains(&mut builder, problem, &bits, &mut conjuncts);
+    let guaranteed = Guaranteed::of(problem, places);
+    domains(&mut builder, problem, &bits, &guaranteed, &mut conjuncts);
     let mut values = Values::new(problem, &bits);
     for (at, constraint) in problem.constraints.iter().enumerate() {
+        if guaranteed.constraint(constraint.expr) {
+            continue;
+        }
         for lit in values.conjuncts(&mut builder, constraint.expr) {
             conjuncts.add(lit, Some(ConstraintId::new(at)));
         }
     }
-    clauses(&mut builder, problem, &bits, &held(problem, places), &mut conjuncts);
+    clauses(&mut builder, problem, &bits, &held(problem, places), &guaranteed, &mut conjuncts);
     conjuncts.finish(builder, places.searched.clone())
 }
 
@@ -70,8 +75,14 @@ impl Conjuncts {
 }
 
 /// "The code lies in the domain", for domains whose size is not a power of two.
-fn domains(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &mut Conjuncts) {
-    for var in problem.vars().values() {
+fn domains(
+    builder: &mut Builder,
+    problem: &Problem,
+    bits: &[Lit],
+    guaranteed: &Guaranteed<'_>,
+    conjuncts: &mut Conjuncts,
+) {
+    for (_, var) in problem.vars().iter().filter(|&(id, _)| !guaranteed.domain(id)) {
         let last = i128::from(problem.size(var.domain));
         let largest = (1i128 << var.width) - 1;
         if last < largest {
@@ -84,10 +95,17 @@ fn domains(builder: &mut Builder, problem: &Problem, bits: &[Lit], conjuncts: &m
 }
 
 /// A clause of k literals is k - 1 ANDs: it fails where all of them fail.
-fn clauses(builder: &mut Builder, problem: &Problem, bits: &[Lit], held: &[bool], conjuncts: &mut Conjuncts) {
+fn clauses(
+    builder: &mut Builder,
+    problem: &Problem,
+    bits: &[Lit],
+    held: &[bool],
+    guaranteed: &Guaranteed<'_>,
+    conjuncts: &mut Conjuncts,
+) {
     let mut failing: Vec<Lit> = Vec::new();
     for (at, clause) in problem.clauses.iter().enumerate() {
-        if held[at] {
+        if held[at] || guaranteed.clause(clause) {
             continue;
         }
         failing.clear();

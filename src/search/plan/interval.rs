@@ -29,6 +29,8 @@ pub struct Interval {
     pub success_at_high: f64,
     /// The least success over the interval.
     pub worst: f64,
+    /// The largest success over the interval.
+    pub best: f64,
     /// Oracle calls until a run succeeds, on average, in the worst case; `None` where that may never be.
     pub expected_oracle_calls: Option<Wide>,
 }
@@ -61,7 +63,13 @@ fn figures(space: &BigUint, low: &BigUint, high: &BigUint, iterations: BigUint) 
     let turn = Wide::new(std::f64::consts::PI * (1.0 + 1e-14));
     let zero_inside = low != high && odd * super::success::theta_wide(space, high) > turn;
     let worst = if zero_inside { Wide::ZERO } else { at_low.min(at_high) };
+    // The success is 1 somewhere inside where a quarter turn, or an odd number of them, lies between the two angles.
+    let quarters = |theta: Wide| (odd * theta * Wide::new(std::f64::consts::FRAC_2_PI)).to_f64();
+    let (from, to) = (quarters(super::success::theta_wide(space, low)), quarters(super::success::theta_wide(space, high)));
+    let peak_inside = ((from + 1.0) / 2.0).ceil() * 2.0 - 1.0 <= to;
+    let best = if peak_inside { Wide::ONE } else if at_low > at_high { at_low } else { at_high };
     let figures = Interval {
+        best: best.to_f64(),
         success_at_low: at_low.to_f64(),
         success_at_high: at_high.to_f64(),
         worst: worst.to_f64(),

@@ -80,7 +80,7 @@ impl Interval {
             aim: Aim::BestWorstCase,
             iterations: self.iterations.clone(),
             success_low: self.worst,
-            success_high: 1.0,
+            success_high: self.best,
             expected_oracle_calls: self.expected_oracle_calls,
             advice: if low.bits() == 0 { vec![Advice::if_there_is_any()] } else { Vec::new() },
         }

@@ -259,11 +259,7 @@ fn of_aim(question: &Question, low: &BigUint, high: &BigUint) -> Result<(Outline
         }
         Aim::BestWorstCase => {
             let found = interval(space, low, high);
-            let mut outline = found.outline(low);
-            if low == high {
-                outline.success_high = found.success_at_low;
-            }
-            (outline, Details::Interval(found))
+            (found.outline(low), Details::Interval(found))
         }
         Aim::AtLeastSoMany => {
             let sequence = fixed_point(space, low, question.failure)?;

@@ -72,7 +72,7 @@ fn random_3sat_shrinks_where_one_solution_is_enough() {
 
 /// The logarithm to base 2 of a number of solutions, where it is found in some seconds.
 fn log2_count(problem: &Problem) -> Option<f64> {
-    let options = count::Options { threads: 2, keep: 0 };
+    let options = count::Options { threads: 2, keep: 0, ..count::Options::default() };
     let budget = Budget::unlimited().within(Duration::from_secs(10));
     let tally = count::count(problem, Over::AllBits, &options, &budget).expect("the ways of counting agree");
     let exact = tally.exact()?;

@@ -37,6 +37,19 @@ use crate::span::Sources;
 /// At most so many mistakes of one file are reported.
 const MAX_MISTAKES: usize = 100;
 
+/// The text with a value for its input `name`, which then is a constant: `None` where it has no such input on a line of
+/// its own.
+pub fn give(text: &str, name: &str, value: u64) -> Option<String> {
+    let is_input = |line: &&str| {
+        let line = line.trim();
+        let declared = line.strip_prefix("input ").and_then(|rest| rest.strip_suffix(';'));
+        declared.is_some_and(|rest| rest.rsplit(char::is_whitespace).next() == Some(name))
+    };
+    let line = text.lines().find(is_input)?;
+    let declared = line.trim().strip_prefix("input ")?.strip_suffix(';')?;
+    Some(text.replacen(line, &format!("const {declared} = {value};"), 1))
+}
+
 /// Reads an OpenQASM text, version 3 or 2.0; `name` is what messages call the file.
 pub fn read(text: &str, name: &str, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
     if text.len() > u32::MAX as usize {

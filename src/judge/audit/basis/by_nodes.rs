@@ -8,6 +8,7 @@ use crate::budget::Budget;
 use crate::judge::audit::basis::findings::{Case, Findings};
 use crate::judge::audit::basis::normal;
 use crate::judge::audit::basis::symbols::Function;
+use crate::judge::audit::support;
 use crate::judge::rows;
 use crate::judge::rows::in_order::{Then, in_order};
 use crate::judge::rows::lanes::{LANE_BITS, LANES, Row};
@@ -76,6 +77,10 @@ impl Compared {
                 (None, None) => Row::ZEROS,
                 (Some(one), None) | (None, Some(one)) => *one & within,
                 (Some(one), Some(other)) => (*one ^ *other) & within,
+            };
+            let wrong = match wrong.is_zero() {
+                true => wrong,
+                false => wrong & support::row(&case.places.start, |qubit| Row::of_bit(qubit, block)),
             };
             if wrong.is_zero() {
                 block = circuit.dead_until(block).min(problem.dead_until(block)).clamp(block + 1, blocks.end);

@@ -7,6 +7,7 @@
 use crate::budget::Budget;
 use crate::judge::audit::basis::findings::{Batch, Case, Findings};
 use crate::judge::audit::basis::kernel::{Machine, Program};
+use crate::judge::audit::support;
 use crate::judge::rows;
 use crate::judge::rows::in_order::{Then, in_order};
 use crate::judge::rows::lanes::{LANE_BITS, LANES, Row};
@@ -34,7 +35,9 @@ pub(crate) fn exhaust(case: &Case, program: &Program, budget: &Budget) -> (Findi
                 *row = Row::of_bit(at, block);
             }
             let solutions = sweep.block(block).copied().unwrap_or(Row::ZEROS);
-            findings.run(machine, case.roles, &Batch { search, solutions, lanes, first: block * LANES });
+            let support = support::row(&case.places.start, |qubit| search[qubit]);
+            let batch = Batch { search, solutions, support, lanes, first: block * LANES };
+            findings.run(machine, case.roles, &batch);
         }
         Some(findings)
     };

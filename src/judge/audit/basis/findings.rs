@@ -36,6 +36,8 @@ pub(crate) struct Batch<'a> {
     pub(crate) search: &'a [Row],
     /// The lanes that must be marked.
     pub(crate) solutions: Row,
+    /// The lanes that the start state holds; the others are not judged.
+    pub(crate) support: Row,
     /// How many lanes, from lane 0, are inputs.
     pub(crate) lanes: u64,
     /// The number of the input in lane 0.
@@ -45,7 +47,7 @@ pub(crate) struct Batch<'a> {
 impl Findings {
     /// Runs a batch: once for a phase oracle, once for each value of `mark` for a bit oracle.
     pub(crate) fn run(&mut self, machine: &mut Machine, roles: &Roles, batch: &Batch) {
-        let lanes = Row::first_lanes(batch.lanes);
+        let lanes = Row::first_lanes(batch.lanes) & batch.support;
         for y in [false, true] {
             if y && roles.mark.is_none() {
                 break;
@@ -108,8 +110,8 @@ impl Findings {
         let first = batch.first;
         let bits = [*machine.phase(0), *machine.phase(1), *machine.phase(2) ^ *owed];
         // The usual case first, because counting lanes is slow.
-        if bits.iter().all(Row::is_zero) {
-            self.fitting[0] += batch.lanes;
+        if bits.iter().all(|bits| (*bits & *lanes).is_zero()) {
+            self.fitting[0] += lanes.count();
             (1..8).for_each(|global| note(&mut self.misfit[global], lanes, first));
             return;
         }

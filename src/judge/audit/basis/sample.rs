@@ -9,6 +9,7 @@ use crate::budget::Budget;
 use crate::id::Id;
 use crate::judge::audit::basis::findings::{Batch, Case, Findings};
 use crate::judge::audit::basis::kernel::{Machine, Program};
+use crate::judge::audit::support;
 use crate::judge::audit::oracle::{problem_bits, register_value};
 use crate::judge::rows::lanes::{LANES, Row};
 use crate::problem::{BitId, Bits};
@@ -91,7 +92,9 @@ pub(crate) fn try_sample(case: &Case, program: &Program, sample: &Sample, budget
                 solutions.set_lane(lane);
             }
         }
-        let batch = Batch { search: &search, solutions, lanes: inputs.len() as u64, first: findings.inputs };
+        let support = support::row(&case.places.start, |qubit| search[qubit]);
+        let (lanes, first) = (inputs.len() as u64, findings.inputs);
+        let batch = Batch { search: &search, solutions, support, lanes, first };
         findings.run(&mut machine, case.roles, &batch);
         budget.report("audit a sample", findings.inputs, Some(sample.inputs.len() as u64));
         if findings.differ(case.options) || budget.spent() {

@@ -98,7 +98,7 @@ pub(super) fn prove(case: &Case, budget: &Budget) -> Proved {
     if end.has_other_phases {
         return Proved::Open("phases other than signs do not cancel in the symbolic reading".to_owned());
     }
-    let ours = spec::conjuncts(&mut graph, case.problem, case.places);
+    let mut ours = spec::conjuncts(&mut graph, case.problem, case.places);
     if graph.is_too_large() {
         return Proved::Open("the symbolic reading is too large".to_owned());
     }
@@ -123,7 +123,14 @@ pub(super) fn prove(case: &Case, budget: &Budget) -> Proved {
     if case.options.strict_phase && global != 0 {
         return Proved::Open("the circuit has a global phase".to_owned());
     }
-    let theirs = graph.conjuncts(marked);
+    let mut theirs = graph.conjuncts(marked);
+    // On strings that the start state does not hold the two need not agree.
+    let held = spec::support(&mut graph, &case.places.start);
+    for side in [&mut ours, &mut theirs] {
+        side.extend(&held);
+        side.sort_unstable();
+        side.dedup();
+    }
     let sides = Sides::new(zeros, &ours, &theirs);
     let miter = Miter::new(&graph, &sides, inputs);
     let prover = Prover::new(&graph, &miter, base(case, inputs), budget);

@@ -2,7 +2,7 @@
 //!
 //! Input: a problem, its places, a circuit that prepares, iterates and measures. Output: a [`SearchVerdict`]. The circuit
 //! is followed gate by gate from |0...0> (`machine`); the solutions come from the problem alone. It must
-//! prepare the uniform superposition of all strings; after j iterations each amplitude must be the one that theory says
+//! prepare the even superposition of the strings of the start state; after j iterations each amplitude must be the one that theory says
 //! (`profile`) up to one global phase, with every other qubit clean; and it must end by measuring
 //! `search[i]` into `found[i]`.
 //!
@@ -93,7 +93,7 @@ pub fn audit_search_against(
     if let Some(verdict) = too_large(circuit, &search, budget) {
         return Ok(verdict);
     }
-    let profile = Profile::new(truth, search.len());
+    let profile = Profile::new(truth, search.len(), &places.start);
     let machine = Machine::new(circuit, &search);
     let mut follower = Follower {
         circuit,

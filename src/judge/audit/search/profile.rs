@@ -8,10 +8,14 @@
 //!   1998, section 3.
 
 use crate::judge::audit::state::amplitude::Complex;
+use crate::places::Start;
 
 /// The search, as the problem says it.
 pub(super) struct Profile<'t> {
     truth: &'t [u64],
+    start: &'t Start,
+    /// All strings of the register.
+    strings: usize,
     /// Start strings.
     all: f64,
     /// Marked ones.
@@ -38,13 +42,22 @@ pub(super) struct Sums {
 }
 
 impl<'t> Profile<'t> {
-    /// The profile of a search over 2^`bits` strings; bit `v` of `truth` says whether string `v` is marked.
-    pub(super) fn new(truth: &'t [u64], bits: usize) -> Self {
-        let all = (1u64 << bits) as f64;
-        let len = 1usize << bits;
-        let marked = (0..len.div_ceil(64)).map(|word| (truth[word] & low(len - word * 64)).count_ones()).sum::<u32>();
-        let marked = f64::from(marked);
-        Self { truth, all, marked, theta: (marked / all).sqrt().asin() }
+    /// The profile of a search over the strings of the start state; bit `v` of `truth` says whether string `v` is marked.
+    pub(super) fn new(truth: &'t [u64], bits: usize, start: &'t Start) -> Self {
+        let strings = 1usize << bits;
+        let mut profile = Self { truth, start, strings, all: 0.0, marked: 0.0, theta: 0.0 };
+        let held = (0..strings).filter(|&value| profile.is_held(value));
+        let (all, marked) = held.fold((0u64, 0u64), |(all, marked), value| {
+            (all + 1, marked + u64::from(profile.is_marked(value)))
+        });
+        (profile.all, profile.marked) = (all as f64, marked as f64);
+        profile.theta = (profile.marked / profile.all).sqrt().asin();
+        profile
+    }
+
+    /// Whether the start state holds a string.
+    fn is_held(&self, value: usize) -> bool {
+        self.start.allows(|qubit| value >> qubit & 1 == 1)
     }
 
     pub(super) fn is_marked(&self, value: usize) -> bool {
@@ -83,7 +96,7 @@ impl<'t> Profile<'t> {
     pub(super) fn sums(&self, amplitude: impl Fn(usize) -> Complex) -> Sums {
         let nothing = Complex { re: 0.0, im: 0.0 };
         let mut sums = Sums { marked: nothing, other: nothing, success: 0.0 };
-        for value in 0..self.all as usize {
+        for value in 0..self.strings {
             let a = amplitude(value);
             let sum = if self.is_marked(value) {
                 sums.success += a.norm();
@@ -107,8 +120,13 @@ impl<'t> Profile<'t> {
         let size = overlap.norm().sqrt();
         let phase = if size > 0.5 { overlap.scaled(1.0 / size) } else { Complex { re: 1.0, im: 0.0 } };
         let mut deviation: f64 = 0.0;
-        for value in 0..self.all as usize {
-            let wanted = phase.scaled(if self.is_marked(value) { marked } else { other });
+        for value in 0..self.strings {
+            let size = match (self.is_held(value), self.is_marked(value)) {
+                (false, _) => 0.0,
+                (true, true) => marked,
+                (true, false) => other,
+            };
+            let wanted = phase.scaled(size);
             let a = amplitude(value);
             let apart = Complex { re: a.re - wanted.re, im: a.im - wanted.im };
             deviation = deviation.max(apart.norm());
@@ -120,11 +138,6 @@ impl<'t> Profile<'t> {
     pub(super) fn is_excluded(&self, turns: u64, sums: &Sums, tolerance: f64) -> bool {
         (self.success(turns) - sums.success).abs() > tolerance
     }
-}
-
-/// The lowest `count` bits, all for 64 and more.
-fn low(count: usize) -> u64 {
-    if count >= 64 { u64::MAX } else { (1 << count) - 1 }
 }
 
 #[cfg(test)]
@@ -139,7 +152,7 @@ mod tests {
         let table = table.into_iter().chain([(6, 1, 6), (6, 5, 2), (6, 32, 0), (6, 64, 0), (6, 0, 0)]);
         for (bits, marked, planned) in table {
             let truth = [if marked == 64 { u64::MAX } else { (1u64 << marked) - 1 }];
-            assert_eq!(Profile::new(&truth, bits).planned(), planned, "{marked} of 2^{bits}");
+            assert_eq!(Profile::new(&truth, bits, &Start::AllStrings).planned(), planned, "{marked} of 2^{bits}");
         }
     }
 
@@ -161,7 +174,7 @@ mod tests {
         ];
         for (bits, marked, turns, expected) in table {
             let truth = [(1u64 << marked) - 1];
-            let profile = Profile::new(&truth, bits);
+            let profile = Profile::new(&truth, bits, &Start::AllStrings);
             assert!((profile.success(turns) - expected).abs() < 1e-12, "{bits} {marked} {turns}");
         }
     }

@@ -5,6 +5,7 @@ use rustc_hash::FxHashSet;
 use crate::id::Id;
 use crate::judge::audit::Options;
 use crate::judge::audit::oracle::Roles;
+use crate::judge::audit::support;
 use crate::places::Places;
 use crate::problem::{Bits, Problem};
 use crate::random::SplitMix64;
@@ -57,7 +58,8 @@ impl Inputs {
     ) -> Self {
         let len = places.search_len();
         let are_all = len <= all_bits;
-        let values = if are_all { all(places) } else { sample(places, options, most) };
+        let mut values = if are_all { all(places) } else { sample(places, options, most) };
+        values.retain(|bits| support::holds(places, bits));
         Self { are_all, ..Self::listed(problem, has_mark, &values) }
     }
 
