@@ -14,6 +14,9 @@ use super::space::Space;
 use crate::judge::audit::basis::form::Form;
 use crate::judge::reading::graph::Signal;
 
+/// So often rules are applied to what is added at one time: they might go in circles.
+const MAX_STEPS: usize = 1 << 10;
+
 /// A form without its sign.
 pub(super) type Key = Box<[Signal]>;
 
@@ -31,6 +34,7 @@ impl Polynomial {
     /// Adds `coefficient * form`.
     pub(super) fn add(&mut self, space: &Space, form: &Form, coefficient: u8) {
         let mut open = vec![(form.clone(), coefficient % 8)];
+        let mut steps = 0;
         while let Some((form, mut coefficient)) = open.pop() {
             if form.flip {
                 // c (1 - f) = c - c f
@@ -50,7 +54,8 @@ impl Polynomial {
                 (&[term], _) => space.rules.of_term(term, coefficient),
                 (terms, _) => space.rules.of_sum(terms, coefficient),
             };
-            match apart {
+            steps += 1;
+            match apart.filter(|_| steps < MAX_STEPS) {
                 Some(Combination { constant, parts }) => {
                     self.constant = (self.constant + constant) % 8;
                     open.extend(parts);
@@ -310,7 +315,8 @@ fn cube(group: &[(u64, u8)], atoms: &[Form]) -> Option<(Vec<Form>, bool)> {
         return None;
     }
     let places: Vec<usize> = (0..64).filter(|at| all >> at & 1 == 1).collect();
-    let spread = |value: u32| places.iter().enumerate().fold(0u64, |sum, (at, p)| sum | u64::from(value >> at & 1) << p);
+    let spread =
+        |value: u32| places.iter().enumerate().fold(0u64, |sum, (at, p)| sum | u64::from(value >> at & 1) << p);
     let sign = |value: u32| group.iter().filter(|(mask, _)| mask & spread(value) == *mask).count() % 2 == 1;
     let values = 1u32 << places.len();
     let holding: Vec<u32> = (0..values).filter(|&value| sign(value)).collect();
