@@ -19,6 +19,7 @@ mod plain;
 mod polynomial;
 mod reader;
 mod rules;
+mod sign;
 mod space;
 
 pub(super) use self::end::Read;

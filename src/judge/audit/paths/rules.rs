@@ -127,8 +127,9 @@ impl Rules {
 
     /// What `coefficient` times a single term is by other products, the coefficient being no multiple of 4.
     pub(super) fn of_term(&self, term: Signal, coefficient: u8) -> Option<Combination> {
-        let halved =
-            || self.twice.get(&term).filter(|_| coefficient % 2 == 0).map(|twice| twice.times(coefficient / 2));
+        let halved = || {
+            self.twice.get(&term).filter(|_| coefficient.is_multiple_of(2)).map(|twice| twice.times(coefficient / 2))
+        };
         self.others.get(&term).map(|other| other.times(coefficient)).or_else(halved)
     }
 }
