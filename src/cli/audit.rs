@@ -138,7 +138,11 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         let mut value = json::audit_json(&loaded.problem, &verdict);
         value["form"] = form::json(options, &circuit);
         let of_problem = |witness: &&audit::Witness| form::acts_on(options, &loaded.problem, witness);
-        let reason = verdict.witness.as_ref().filter(of_problem).map(|witness| story::reason(&loaded.problem, &sources, witness));
+        let reason = verdict
+            .witness
+            .as_ref()
+            .filter(of_problem)
+            .map(|witness| story::reason(&loaded.problem, &sources, witness));
         let parted = match (&good, &verdict.witness) {
             (Some(good), Some(witness)) => {
                 let search = places.searched.iter().map(|&bit| witness.bits.get(bit)).collect();

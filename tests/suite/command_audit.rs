@@ -145,3 +145,51 @@ fn a_search_is_compared_with_the_plan() {
     assert_eq!((exit, &audit["iterations"], &audit["planned"]), (0, &"2".into(), &"3".into()), "{object:#}");
     assert!(audit["notes"].to_string().contains("have the highest success"), "{object:#}");
 }
+
+#[test]
+fn every_form_of_an_oracle_is_asked_for() {
+    let desk = Desk::new();
+    desk.file("p.cnf", "p cnf 2 2\n1 0\n2 0\n");
+    let head = "OPENQASM 3.0;\ninclude \"stdgates.inc\";\nqubit[2] search;\n";
+    desk.file("quarter.qasm", &format!("{head}cp(pi/2) search[0], search[1];\n"));
+    for (arguments, exit) in [
+        (&["--angle", "pi/2"][..], 0),
+        (&["--angle", "-pi/2", "--inverse"], 0),
+        (&["--angle", "1.5707963267948966"], 0),
+        (&["--angle", "-pi/2"], 1),
+        (&["--inverse"], 1),
+        (&["--angle", "4pi"], 2),
+        (&["--angle", "quarter"], 2),
+    ] {
+        assert_eq!(desk.exit(&[&["audit", "p.cnf", "quarter.qasm"], arguments].concat()), exit, "{arguments:?}");
+    }
+    let (_, object) = desk.json(&["audit", "p.cnf", "quarter.qasm", "--angle", "pi/2"]);
+    assert_eq!(
+        (&object["audit"]["form"]["mark"], &object["audit"]["form"]["inverse"]),
+        (&"angle".into(), &false.into())
+    );
+    desk.file("with.qasm", &format!("{head}qubit[1] go;\nctrl(2) @ z go[0], search[0], search[1];\n"));
+    let (exit, object) = desk.json(&["audit", "p.cnf", "with.qasm", "--control", "go"]);
+    assert_eq!((exit, &object["audit"]["form"]["control"]), (0, &"go".into()), "{object:#}");
+    // The complement is no longer the same up to a global phase.
+    desk.file("without.qasm", &format!("{head}qubit[1] go;\nctrl(2) @ z go[0], search[0], search[1];\nz go[0];\n"));
+    let (exit, object) = desk.json(&["audit", "p.cnf", "without.qasm", "--control", "go"]);
+    assert_eq!((exit, &object["audit"]["verdict"]), (1, &"differs".into()), "{object:#}");
+    desk.file("bit.qasm", &format!("{head}qubit[1] mark;\nccx search[0], search[1], mark[0];\n"));
+    assert_eq!(desk.exit(&["audit", "p.cnf", "bit.qasm"]), 0);
+    let (exit, object) = desk.json(&["audit", "p.cnf", "bit.qasm", "--angle", "pi/2"]);
+    assert_eq!((exit, &object["error"]["code"]), (2, &"U011".into()));
+}
+
+#[test]
+fn a_search_is_held_against_a_good_one() {
+    let desk = Desk::new();
+    desk.file("p.tally", RARE);
+    assert_eq!(desk.exit(&["compile", "p.tally", "--whole", "-o", "s.qasm"]), 0);
+    let (exit, object) = desk.json(&["audit", "p.tally", "s.qasm", "--against", "s.qasm"]);
+    assert_eq!((exit, &object["audit"]["against"]["verdict"]), (0, &"equal".into()), "{object:#}");
+    let text = read_to_string(desk.path("s.qasm")).unwrap();
+    desk.file("t.qasm", &text.replace("[1:3]", "[1:2]"));
+    let (_, object) = desk.json(&["audit", "p.tally", "t.qasm", "--places", "s.places.json", "--against", "s.qasm"]);
+    assert_eq!(object["audit"]["against"]["verdict"], "differs", "{object:#}");
+}

@@ -9,9 +9,9 @@ use tallymark::budget::Budget;
 use tallymark::circuit::figures::figures;
 use tallymark::circuit::qasm::read::read;
 use tallymark::circuit::{Circuit, Op};
-use tallymark::judge::audit::Outcome;
 use tallymark::judge::audit::compare::{CompareOptions, compare};
 use tallymark::judge::audit::faults::{Fault, apply};
+use tallymark::judge::audit::{Outcome, Verdict};
 use tallymark::span::Sources;
 
 fn parse(name: &str, text: &str) -> Circuit {
@@ -23,8 +23,17 @@ fn said<'t>(text: &'t str, word: &'t str) -> impl Iterator<Item = &'t str> {
     text.lines().filter_map(move |line| line.strip_prefix("//! ")?.strip_prefix(word)?.strip_prefix(' '))
 }
 
+fn verdict(good: &Circuit, circuit: &Circuit) -> Verdict {
+    compare(good, circuit, &CompareOptions::default(), &Budget::unlimited()).expect("the same registers")
+}
+
 fn outcome(good: &Circuit, circuit: &Circuit) -> Outcome {
-    compare(good, circuit, &CompareOptions::default(), &Budget::unlimited()).expect("the same registers").outcome
+    verdict(good, circuit).outcome
+}
+
+/// Whether the sums over paths decided.
+fn is_by_paths(verdict: &Verdict) -> bool {
+    verdict.notes.iter().any(|note| note.contains("read as sums over paths"))
 }
 
 /// Single changes of a gate, each of which spoils an identity.
@@ -56,7 +65,10 @@ fn textbook_identities_hold_and_no_changed_one_does() {
         let circuit = parse(&name, &text);
         let same = said(&text, "same").collect::<Vec<_>>().join("\n");
         let good = parse(&name, &format!("OPENQASM 3.0;\ninclude \"stdgates.inc\";\n{same}\n"));
-        assert_eq!(outcome(&good, &circuit), Outcome::Equal, "{name}");
+        let found = verdict(&good, &circuit);
+        assert_eq!(found.outcome, Outcome::Equal, "{name}");
+        let has_hadamards = circuit.gates().iter().any(|gate| gate.op() == Op::H);
+        assert_eq!(is_by_paths(&found), has_hadamards, "{name}: {found:#?}");
         let figures = figures(&circuit);
         let counts: Vec<&str> = said(&text, "count").collect();
         assert!(!counts.is_empty(), "{name} says no counts");

@@ -5,7 +5,7 @@ use tallymark::budget::Budget;
 use tallymark::circuit::qasm::read::read;
 use tallymark::circuit::{Circuit, Gate, Level, Mark, Op};
 use tallymark::judge::audit::compare::{CompareOptions, compare};
-use tallymark::judge::audit::faults::{Fault, apply};
+use tallymark::judge::audit::faults::{Fault, Found, apply, self_test};
 use tallymark::judge::audit::superposition::audit_superposition;
 use tallymark::judge::audit::{How, Options, Outcome, Verdict, audit, controlled};
 use tallymark::make::{lower, network};
@@ -53,10 +53,10 @@ fn abc() -> Problem {
 }
 
 /// C. Gidney, "Halving the cost of quantum addition", Quantum 2:74, 2018, arXiv:1709.06648: four T into a clean qubit.
-const AND: &str = "h $w; t $w; cx $a,$w; cx $b,$w; cx $w,$a; cx $w,$b; tdg $a; tdg $b; t $w; cx $w,$a; cx $w,$b; h $w; s $w; ";
+const AND: &str =
+    "h $w; t $w; cx $a,$w; cx $b,$w; cx $w,$a; cx $w,$b; tdg $a; tdg $b; t $w; cx $w,$a; cx $w,$b; h $w; s $w; ";
 /// The same phases in another order, with other flips between them.
-const AND_COMMUTED: &str =
-    "h $w; cx $b,$w; cx $a,$w; t $w; cx $w,$b; tdg $b; cx $w,$a; tdg $a; cx $w,$b; cx $w,$a; cx $b,$w; cx $a,$w; t $w; \
+const AND_COMMUTED: &str = "h $w; cx $b,$w; cx $a,$w; t $w; cx $w,$b; tdg $b; cx $w,$a; tdg $a; cx $w,$b; cx $w,$a; cx $b,$w; cx $a,$w; t $w; \
      cx $a,$w; cx $b,$w; h $w; s $w; ";
 /// The textbook Toffoli from seven T (M. Nielsen and I. Chuang, figure 4.9, from memory).
 const SEVEN: &str = "h $w; cx $b,$w; tdg $w; cx $a,$w; t $w; cx $b,$w; tdg $w; cx $a,$w; t $b; t $w; h $w; cx $a,$b; t $a; \
@@ -81,7 +81,9 @@ fn ands_in_any_order_are_read() {
         format!("{AND}{MARK}{SEVEN}"),
         format!("{RELATIVE}{MARK}{RELATIVE_UNDONE}"),
         // The controlled sign as S gates around a flip.
-        format!("{AND}{MARK}h $w; m[1] = measure $w; if (m[1]) {{ s $a; s $b; cx $a,$b; sdg $b; cx $a,$b; }} reset $w;"),
+        format!(
+            "{AND}{MARK}h $w; m[1] = measure $w; if (m[1]) {{ s $a; s $b; cx $a,$b; sdg $b; cx $a,$b; }} reset $w;"
+        ),
         // The outcome put right on the qubit itself.
         format!("{AND}{MARK}h $w; m[0] = measure $w; if (m[0]) {{ cz $b,$a; x $w; }}"),
         // The correction for the other outcome, on negated controls, up to a sign that the outcome decides.
@@ -96,17 +98,21 @@ fn ands_in_any_order_are_read() {
         // The copied value: two ANDs with the same factors, one undone on the other's account.
         format!("{AND}cx $w,$v; cz $v,$c; cx $w,$v; {ERASE}"),
         // No work qubit: seven phases.
-        "cx $b,$c; tdg $c; cx $a,$c; t $c; cx $b,$c; tdg $c; cx $a,$c; t $b; t $c; cx $a,$b; t $a; tdg $b; cx $a,$b;".to_owned(),
+        "cx $b,$c; tdg $c; cx $a,$c; t $c; cx $b,$c; tdg $c; cx $a,$c; t $b; t $c; cx $a,$b; t $a; tdg $b; cx $a,$b;"
+            .to_owned(),
         // The value measured in the basis of Y, which has a phase for a correction.
-        format!("{AND}{MARK}s $w; h $w; m[0] = measure $w; if (m[0]) {{ cz $a,$b; cz $a,$b; }} reset $w; \
+        format!(
+            "{AND}{MARK}s $w; h $w; m[0] = measure $w; if (m[0]) {{ cz $a,$b; cz $a,$b; }} reset $w; \
                  if (!m[0]) {{ {cs_dagger} }} if (m[0]) {{ {cs} }}",
             cs_dagger = "tdg $a; tdg $b; cx $a,$b; t $b; cx $a,$b;",
-            cs = "t $a; t $b; cx $a,$b; tdg $b; cx $a,$b;"),
+            cs = "t $a; t $b; cx $a,$b; tdg $b; cx $a,$b;"
+        ),
     ];
     for (at, body) in right.iter().enumerate() {
         let circuit = circuit(3, body);
         let verdict = judge(&abc(), &circuit);
-        let slow = audit_superposition(&abc(), &Places::as_given(&abc()), &circuit, &Options::default(), &Budget::unlimited());
+        let slow =
+            audit_superposition(&abc(), &Places::as_given(&abc()), &circuit, &Options::default(), &Budget::unlimited());
         assert_eq!(slow.expect("an oracle").outcome, Outcome::Equal, "case {at} in superposition: {body}");
         assert_eq!(verdict.outcome, Outcome::Equal, "case {at}: {body}\n{verdict:#?}");
         let is_plain = !body.contains('h') && !body.contains("ry");
@@ -136,7 +142,7 @@ fn wrong_erases_are_found() {
         format!("{AND}{MARK}{ERASE}").replacen("s $w;", "", 1),
         format!("{RELATIVE}{MARK}{ERASE}"),
         format!("{RELATIVE}{MARK}{AND_UNDONE}"),
-        format!("{AND}{MARK}h $w; m[0] = measure $w; if (m[1]) {{ cz $a,$b; }} reset $w;"),
+        format!("{AND}{MARK}m[1] = measure $v; h $w; m[0] = measure $w; if (m[1]) {{ cz $a,$b; }} reset $w;"),
         // The mark between erase and reset, and none.
         format!("{AND}{ERASE}{MARK}"),
         format!("{AND}{ERASE}"),
@@ -157,7 +163,7 @@ fn oracle(problem: &Problem, level: Level, mark: Mark) -> Option<Circuit> {
 fn oracles_of_random_problems_are_read_and_spoilt_ones_are_judged_as_in_superposition() {
     let (mut right, mut spoilt, mut harmful) = (0, 0, 0);
     let mut random = SplitMix64::new(5);
-    for seed in 0..40 {
+    for seed in 0..100 {
         let problem = random_problem(seed);
         let level = [Level::CliffordT, Level::Feedback][seed as usize % 2];
         let mark = [Mark::Phase, Mark::Bit][seed as usize / 2 % 2];
@@ -212,7 +218,8 @@ fn large_oracles_are_decided_for_every_input_and_outcome() {
         assert_eq!(verdict.inputs, 1 << 60);
         // Against the good circuit: a flip three times for once is the same, a T for its inverse is not.
         let options = CompareOptions { sample: 32, ..CompareOptions::default() };
-        let outcome = |circuit: &Circuit| compare(&good, circuit, &options, &Budget::unlimited()).expect("the same").outcome;
+        let outcome =
+            |circuit: &Circuit| compare(&good, circuit, &options, &Budget::unlimited()).expect("the same").outcome;
         let first = |wanted: &dyn Fn(&Gate) -> bool| {
             let from = good.gates().len() / 3;
             (from + good.gates()[from..].iter().position(wanted).expect("such a gate")) as u32
@@ -227,11 +234,33 @@ fn large_oracles_are_decided_for_every_input_and_outcome() {
 }
 
 #[test]
+fn faults_in_a_large_circuit_are_caught_or_proven_harmless() {
+    let problem = three_sat(40, 24, 4);
+    let good = oracle(&problem, Level::Feedback, Mark::Phase).expect("an oracle");
+    let places = Places::as_given(&problem);
+    let options = Options { threads: 1, sample: 64, seed: 3, ..Options::default() };
+    let test = self_test(&problem, &places, &good, 60, &options, &Budget::unlimited()).expect("an oracle");
+    assert!(test.is_complete && test.passed(), "{test:#?}");
+    let harmless = test.count(|found| *found == Found::Harmless);
+    assert!(harmless >= 3 && test.count(|found| *found == Found::Caught) >= 40, "{test:#?}");
+    // A test that runs out of time is not finished, and has not failed.
+    let spent = Budget::unlimited().within(std::time::Duration::ZERO);
+    let test = self_test(&problem, &places, &good, 60, &options, &spent).expect("an oracle");
+    assert!(!test.is_complete && test.passed());
+}
+
+#[test]
 fn oracles_of_every_form_are_judged() {
     let ab = clauses(2, &[&[1], &[2]]);
     let with = |angle: f64| Options { angle: Some(angle), threads: 1, ..Options::default() };
     let quarter = std::f64::consts::FRAC_PI_4;
-    let angles = [("t", quarter), ("s", 2.0 * quarter), ("sdg", -2.0 * quarter), ("p(0.3)", 0.3), ("p(-3*pi/4)", -3.0 * quarter)];
+    let angles = [
+        ("t", quarter),
+        ("s", 2.0 * quarter),
+        ("sdg", -2.0 * quarter),
+        ("p(0.3)", 0.3),
+        ("p(-3*pi/4)", -3.0 * quarter),
+    ];
     for (gate, angle) in angles {
         for erase in [ERASE, AND_UNDONE] {
             let good = circuit(2, &format!("{AND}{gate} $w; {erase}"));

@@ -39,8 +39,9 @@ pub(super) fn add_json(audit: &mut Value, compared: &Compared) {
 /// The same for people.
 pub(super) fn text(compared: &Compared) -> String {
     let why = compared.why.as_ref().map_or_else(String::new, |why| format!(": {why}"));
-    let parting = compared.parting.as_ref().map_or_else(String::new, |parting| {
-        format!("parts       from the good one {}\n", parting.in_words())
-    });
+    let parting = compared
+        .parting
+        .as_ref()
+        .map_or_else(String::new, |parting| format!("parts       from the good one {}\n", parting.in_words()));
     format!("{:<12}{}{why}\n{parting}", "against", compared.verdict)
 }

@@ -49,8 +49,9 @@ pub(super) fn check(options: &Options, circuit: &Circuit) -> Result<(), Box<Diag
     if options.angle.is_none() || circuit.register(MARK).is_empty() {
         return Ok(());
     }
-    let diagnostic = Diagnostic::error(Code("U011"), "a circuit with a register `mark` marks by flipping it, not by an angle")
-        .expected("--angle with a circuit without `mark`");
+    let diagnostic =
+        Diagnostic::error(Code("U011"), "a circuit with a register `mark` marks by flipping it, not by an angle")
+            .expected("--angle with a circuit without `mark`");
     Err(Box::new(diagnostic))
 }
 

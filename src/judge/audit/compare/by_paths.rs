@@ -53,7 +53,9 @@ pub(in crate::judge::audit) fn compare_by_paths(
     if let (Outcome::Equal, Some(eighths @ 1..)) = (verdict.outcome, read.global()) {
         verdict.notes.push(format!("the global phases differ by e^({eighths} i pi/4)"));
     }
-    verdict.notes.push("both circuits were read as sums over paths, for all strings of measurement outcomes".to_owned());
+    verdict
+        .notes
+        .push("both circuits were read as sums over paths, for all strings of measurement outcomes".to_owned());
     Ok(Ok(verdict))
 }
 

@@ -11,8 +11,8 @@
 //! to such a form by taking exclusive ors apart, where the paper matches polynomials; and what is put for a variable is a
 //! node of the graph, however large the function.
 
-use super::polynomial::{Sign, sign_of_sum};
 use super::reader::Reader;
+use super::sign::{Sign, sign_of_sum};
 use crate::judge::audit::basis::form::Form;
 use crate::judge::reading::graph::Signal;
 

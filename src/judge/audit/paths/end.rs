@@ -6,8 +6,9 @@
 
 use std::f64::consts::{FRAC_PI_4, TAU};
 
-use super::polynomial::{Polynomial, sign_of};
+use super::polynomial::Polynomial;
 use super::reader::{Open, Reader};
+use super::sign::sign_of;
 use super::space::Space;
 use crate::circuit::QubitId;
 use crate::id::Id;
@@ -268,7 +269,7 @@ impl<'r, 'a> Phases<'r, 'a> {
             }
         }
         let pairs = self.pairs(&pieces)?;
-        if wanted % 2 == 0 {
+        if wanted.is_multiple_of(2) {
             // 2 (f xor g) = 2 f + 2 g + 4 f g
             for pair in pairs {
                 self.sign.add(&pair);

@@ -19,6 +19,7 @@ mod plain;
 mod polynomial;
 mod reader;
 mod rules;
+mod sign;
 mod space;
 
 pub(super) use self::end::Read;
@@ -92,7 +93,9 @@ pub(super) fn audit_paths(
         1 => ", for both outcomes of its measurement".to_owned(),
         count => format!(", for all strings of its {count} free measurement outcomes"),
     };
-    verdict.notes.push(format!("the circuit was read as a sum over paths, {} variables summed over{outcomes}", read.paths));
+    verdict
+        .notes
+        .push(format!("the circuit was read as a sum over paths, {} variables summed over{outcomes}", read.paths));
     Ok(Ok(verdict))
 }
 
@@ -124,7 +127,9 @@ impl Open {
         match *self {
             Self::Gate(at) => format!("gate {at} `{}` is not read as a sum over paths", gate(at)),
             Self::Outcome(at) => format!("the outcome of {} at gate {at} is not one free bit", name(at)),
-            Self::Qubit(qubit) => format!("the sums over paths do not show that {} is right", circuit.qubit_name(qubit)),
+            Self::Qubit(qubit) => {
+                format!("the sums over paths do not show that {} is right", circuit.qubit_name(qubit))
+            }
             Self::Sums(left) => format!("{left} sums over paths are left"),
             Self::Phase => "the sums over paths do not show that the phase is one of a marked input".to_owned(),
             Self::Limit => "the sums over paths ran into their limit or the budget".to_owned(),

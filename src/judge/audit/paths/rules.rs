@@ -26,6 +26,8 @@ struct Pair {
 /// What is known of products of two.
 #[derive(Debug, Default)]
 pub(super) struct Rules {
+    /// What forms are by smaller ones.
+    sums: FxHashMap<Box<[Signal]>, Combination>,
     pairs: FxHashMap<Box<[Signal]>, Pair>,
     /// Nodes that are the product of the same two with other signs.
     others: FxHashMap<Signal, Combination>,
@@ -35,42 +37,82 @@ pub(super) struct Rules {
     fresh: Vec<Box<[Signal]>>,
 }
 
+fn size(form: &Form) -> (usize, &[Signal]) {
+    (form.terms.len(), &form.terms)
+}
+
 impl Rules {
-    /// Notes that a node is the conjunction of two forms, which are no constants and not the same up to sign.
-    pub(super) fn note(&mut self, a: &Form, b: &Form, node: Signal) {
+    /// Notes the conjunction of two forms, which are no constants.
+    pub(super) fn note(&mut self, a: &Form, b: &Form, product: &Form) {
         let mut odd = a.clone();
         odd.add(b);
-        if node.is_negated() || [&a.terms, &b.terms, &odd.terms].iter().any(|terms| terms[..] == [node]) {
+        if odd.terms.is_empty() || a.terms.is_empty() || b.terms.is_empty() {
             return;
         }
-        let size = |form: &Form| (form.terms.len(), form.terms.clone());
+        match product {
+            _ if product.as_constant() == Some(false) => self.note_linear(odd, (a, 1), (b, 1)),
+            // One implies the other.
+            _ if product == a => self.note_linear(odd, (a, 7), (b, 1)),
+            _ if product == b => self.note_linear(odd, (a, 1), (b, 7)),
+            Form { terms, flip: false } if terms.len() == 1 => self.note_node(odd, a, b, terms[0]),
+            _ => {}
+        }
+    }
+
+    /// Notes that as a number `odd` is the sum of two forms with these signs, 1 or 7 for minus 1.
+    fn note_linear(&mut self, odd: Form, (a, of_a): (&Form, u8), (b, of_b): (&Form, u8)) {
+        let largest = size(a).max(size(b)).max(size(&odd));
+        let (form, parts) = match largest {
+            _ if largest == size(&odd) => (odd.clone(), vec![(a.clone(), of_a), (b.clone(), of_b)]),
+            // a = s (odd - t b), for the signs s and t
+            _ if largest == size(a) => (a.clone(), vec![(odd.clone(), of_a), (b.clone(), 8 - of_a * of_b % 8)]),
+            _ => (b.clone(), vec![(odd.clone(), of_b), (a.clone(), 8 - of_a * of_b % 8)]),
+        };
+        self.insert(form, parts);
+    }
+
+    fn note_node(&mut self, odd: Form, a: &Form, b: &Form, node: Signal) {
         // With `c = a xor b`: `a b = b (not c) = a (not c)`.
-        let literals = if size(&odd) > size(a).max(size(b)) {
+        let mut literals = if size(&odd) > size(a).max(size(b)) {
             [a.clone(), b.clone()]
         } else {
             let smaller = if size(a) < size(b) { a } else { b };
-            [smaller.clone(), odd.clone().negated_if(true)]
+            [smaller.clone(), odd.negated_if(true)]
         };
+        literals.sort_by(|one, other| size(one).cmp(&size(other)));
         let mut largest = literals[0].clone();
         largest.add(&literals[1]);
-        let mut literals = literals;
-        literals.sort_by_key(size);
+        let [first, second] = &literals;
         match self.pairs.get(&largest.terms[..]) {
-            None => {
-                self.fresh.push(largest.terms.clone().into());
-                self.pairs.insert(largest.terms.into(), Pair { literals, node });
+            None if !self.sums.contains_key(&largest.terms[..]) => {
+                let parts = vec![(first.clone(), 1), (second.clone(), 1), (Form::term(node), 6)];
+                self.pairs.insert(largest.terms.clone().into(), Pair { literals, node });
+                self.insert(largest, parts);
             }
             Some(pair) if pair.node == node => {}
-            Some(pair) if (0..2).all(|at| pair.literals[at].terms == literals[at].terms) => {
+            Some(pair) if pair.literals.iter().zip(&literals).all(|(one, other)| one.terms == other.terms) => {
                 let combination = pair.with_signs_of(&literals);
                 self.others.entry(node).or_insert(combination);
             }
-            Some(_) => {
-                let [a, b] = literals;
-                let parts = vec![(a, 1), (b, 1), (largest, 7)];
+            _ => {
+                let parts = vec![(first.clone(), 1), (second.clone(), 1), (largest, 7)];
                 self.twice.entry(node).or_insert(Combination { constant: 0, parts });
             }
         }
+    }
+
+    /// Notes what a form is, unless something is known of it.
+    fn insert(&mut self, form: Form, mut parts: Vec<(Form, u8)>) {
+        let key: Box<[Signal]> = form.terms.into();
+        if self.sums.contains_key(&key) {
+            return;
+        }
+        if form.flip {
+            // The form without its sign is one minus this.
+            parts.iter_mut().for_each(|(_, times)| *times = (8 - *times) % 8);
+        }
+        self.fresh.push(key.clone());
+        self.sums.insert(key, Combination { constant: u8::from(form.flip), parts });
     }
 
     /// The forms for which rules are new since this was last asked.
@@ -80,16 +122,14 @@ impl Rules {
 
     /// What `coefficient` times an exclusive or of several terms is by smaller ones.
     pub(super) fn of_sum(&self, terms: &[Signal], coefficient: u8) -> Option<Combination> {
-        let Pair { literals: [a, b], node } = self.pairs.get(terms)?;
-        // a + b - 2 ab is the form or its negation, which is one minus the form.
-        let (sign, constant) = if a.flip == b.flip { (1, 0) } else { (7, 1) };
-        let parts = vec![(a.clone(), sign), (b.clone(), sign), (Form::term(*node), 6 * sign % 8)];
-        Some(Combination { constant, parts }.times(coefficient))
+        self.sums.get(terms).map(|sum| sum.times(coefficient))
     }
 
     /// What `coefficient` times a single term is by other products, the coefficient being no multiple of 4.
     pub(super) fn of_term(&self, term: Signal, coefficient: u8) -> Option<Combination> {
-        let halved = || self.twice.get(&term).filter(|_| coefficient % 2 == 0).map(|twice| twice.times(coefficient / 2));
+        let halved = || {
+            self.twice.get(&term).filter(|_| coefficient.is_multiple_of(2)).map(|twice| twice.times(coefficient / 2))
+        };
         self.others.get(&term).map(|other| other.times(coefficient)).or_else(halved)
     }
 }

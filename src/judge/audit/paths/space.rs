@@ -196,7 +196,17 @@ impl Space {
             return rows.swap_remove(0);
         }
         let pair = if let [a, b] = &rows[..] { Some((a.clone(), b.clone())) } else { None };
-        if !self.absorb(&mut rows) {
+        let product = self.pure_of(rows);
+        if let Some((a, b)) = pair {
+            self.rules.note(&a, &b, &product);
+        }
+        product
+    }
+
+    /// The same for several forms: each is a linear equation, and what these say is found before and after conjunctions
+    /// among them are taken apart.
+    fn pure_of(&mut self, mut rows: Vec<Form>) -> Form {
+        if !reduce(&mut rows) || !self.absorb(&mut rows) {
             return Form::constant(false);
         }
         self.flatten(&mut rows);
@@ -207,11 +217,7 @@ impl Space {
             return row.clone();
         }
         let signals: Vec<Signal> = rows.iter().map(|row| row.signal(&mut self.graph)).collect();
-        let node = self.graph.all(signals);
-        if let (Some((a, b)), None) = (pair, node.as_constant()) {
-            self.rules.note(&a, &b, node);
-        }
-        Form::term(node)
+        Form::term(self.graph.all(signals))
     }
 
     /// Leaves out what another factor implies; `false` where it implies the opposite.

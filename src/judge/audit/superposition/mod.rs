@@ -30,7 +30,7 @@ use crate::places::Places;
 use crate::problem::{Bits, Problem};
 
 /// All inputs are tried up to so many searched bits.
-const ALL_BITS: usize = 16;
+pub(super) const ALL_BITS: usize = 16;
 /// Gates times labels times strings of outcomes: beyond this inputs are sampled.
 const MOST_STEPS: u64 = 1 << 34;
 /// As many strings of outcomes are tried, or all if there are not more.
