@@ -13,7 +13,8 @@ use super::listed::Again;
 use super::sweep::Sweep;
 use super::{
     CONFIRMED, CONFIRMED_WORK, Fault, LONG_INPUTS, LONG_STATES, LONG_WORK, Method, Options, Over, QUICK_INPUTS,
-    QUICK_STATES, QUICK_WORK, Run, SHORT_LISTED_WORK, Tally, Wanted, components, counted_over, frontier, inputs, sweep,
+    QUICK_STATES, QUICK_WORK, Run, SHORT_LISTED_WORK, TINY_WORK, Tally, Wanted, components, counted_over, frontier,
+    inputs, sweep,
 };
 use crate::budget::Budget;
 use crate::judge::clauses::{self, Cnf};
@@ -93,15 +94,19 @@ impl<'a> Job<'a> {
     }
 
     fn search_first(&self, budget: &Budget) -> Result<Tally, Fault> {
-        if let Some(counted) = self.first_tries(QUICK_INPUTS, QUICK_STATES, &half(budget))? {
+        if let Some(counted) = self.inputs(QUICK_INPUTS, &half(budget))? {
+            return self.confirmed(counted, budget);
+        }
+        let tiny = self.components(TINY_WORK, &half(budget))?;
+        if tiny.exact().is_some() {
+            return self.confirmed(tiny, budget);
+        }
+        if let Some(counted) = self.frontier(QUICK_STATES, &half(budget))? {
             return self.confirmed(counted, budget);
         }
         let quick = self.components(QUICK_WORK, &half(budget))?;
         if quick.exact().is_some() {
             return self.confirmed(quick, budget);
-        }
-        if let Some(counted) = self.first_tries(LONG_INPUTS, LONG_STATES, &half(budget))? {
-            return self.confirmed(counted, budget);
         }
         let limits = Limits { solutions: CONFIRMED, work: SHORT_LISTED_WORK };
         let mut short = self.listing_within(limits, self.options.keep, &half(budget), Again::Yes)?;
@@ -113,6 +118,14 @@ impl<'a> Job<'a> {
             && let Some(hashed) = self.hashed_beside(accuracy, &short, &half(budget))?
         {
             return Ok(hashed);
+        }
+        let by_line = match self.inputs(LONG_INPUTS, &half(budget))? {
+            None => self.frontier(LONG_STATES, &half(budget))?,
+            swept => swept,
+        };
+        if let Some(mut counted) = by_line {
+            agree(&mut counted, &short)?;
+            return self.confirmed(counted, budget);
         }
         let mut long = self.components(LONG_WORK, &half(budget))?;
         within(&mut long, &short)?;
@@ -132,14 +145,6 @@ impl<'a> Job<'a> {
 
     fn components(&self, work: u64, budget: &Budget) -> Result<Tally, Fault> {
         self.timed(|| Ok(components::count(&self.cnf, &self.counted, work, budget)))
-    }
-
-    /// The two ways whose work can be told beforehand, or is soon spent.
-    fn first_tries(&self, row_operations: u64, states: u64, budget: &Budget) -> Result<Option<Tally>, Fault> {
-        match self.inputs(row_operations, budget)? {
-            Some(tally) => Ok(Some(tally)),
-            None => self.frontier(states, budget),
-        }
     }
 
     /// Along a line of variables, with at most so many states looked at.

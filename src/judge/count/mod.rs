@@ -8,12 +8,13 @@
 //! The ways, by what they cost:
 //!
 //! 1. the sweep tries every bit string: first where that costs next to nothing;
-//! 2. the `engine` splits the clauses into components and remembers their counts: next, with little work at first;
-//! 3. the `inputs` alone are swept where the clauses define all else: first if that is cheap, here if it is not;
-//! 4. the `frontier` goes along a line of variables: with little work first, in the same places;
-//! 5. the listing goes through the solutions one by one: next, in short, for what the engine found hard may have few solutions;
+//! 2. the `inputs` alone are swept where the clauses define all else and that costs next to nothing;
+//! 3. the `engine` splits the clauses into components and remembers their counts: next, with little work at first;
+//! 4. the `frontier` goes along a line of variables, where that does not seem to take many states; then the engine again;
+//! 5. the listing goes through the solutions one by one, in short, for what was hard so far may have few solutions;
 //! 6. `hashing` gives an interval with a confidence: here, if an interval is wanted;
-//! 7. the engine again with all the work that is allowed; then hashing, if an interval will do where all else fails;
+//! 7. the inputs, the line, and the engine again with all the work that is allowed; then hashing, if an interval will do
+//!    where all else fails;
 //! 8. the listing again, and the sweep again, if it is possible at all.
 //!
 //! Whoever led is confirmed by another way that costs no more than a share: the listing up to [`CONFIRMED`] solutions,
@@ -62,15 +63,17 @@ pub const CONFIRMED: u64 = 100_000;
 /// Work that the second engine does at most where no deadline is set, in the same units.
 pub const CONFIRMED_WORK: u64 = 1 << 28;
 /// Work of a first listing, in case that there are few solutions.
-pub const SHORT_LISTED_WORK: u64 = 1 << 25;
-/// Work of the engine's first try, in its own units: some tenths of a second.
+pub const SHORT_LISTED_WORK: u64 = 1 << 24;
+/// Work of the engine's first try, in its own units: some hundredths of a second.
+pub const TINY_WORK: u64 = 1 << 20;
+/// Work of the engine's second try, and where it confirms: some tenths of a second.
 pub const QUICK_WORK: u64 = 1 << 24;
 /// Row operations of a first sweep of the inputs: some hundredths of a second.
 pub const QUICK_INPUTS: u64 = 1 << 22;
 /// Row operations of a sweep of the inputs at most: some tens of seconds.
 pub const LONG_INPUTS: u64 = 1 << 31;
-/// States that a first try along a line looks at: some hundredths of a second.
-pub const QUICK_STATES: u64 = 1 << 18;
+/// States that a first try along a line looks at: some tenths of a second; it is not begun if it seems to take more.
+pub const QUICK_STATES: u64 = 1 << 22;
 /// States that counting along a line looks at, at most: some seconds.
 pub const LONG_STATES: u64 = 1 << 26;
 /// Work of the engine at most where no deadline is set: some minutes.

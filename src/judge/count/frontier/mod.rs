@@ -31,7 +31,7 @@ pub(super) fn count(formula: &Prepared, work: u64, budget: &Budget) -> Option<Bi
     if formula.class.contains(&Class::Hidden) {
         return None;
     }
-    let line = line(formula)?;
+    let line = line(formula, work / 2)?;
     // A table of counts must fit into memory long before it would not fit the work.
     let states = budget.memory().map_or(MOST_STATES, |bytes| (bytes / STATE_BYTES).min(MOST_STATES));
     let stepper = Stepper::new(formula, &line);
