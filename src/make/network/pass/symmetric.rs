@@ -15,7 +15,6 @@ use super::Passed;
 use super::cone::Uses;
 use super::copy::Copy;
 use super::view;
-use crate::id::Id;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::builder::Builder;
 use crate::make::network::linear::Linear;
