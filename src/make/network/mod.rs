@@ -7,6 +7,8 @@
 //!         opposite operands; N4 two nodes with the same operands are one node; N5 the operands of a XOR are not
 //!         complemented; N6 every AND and XOR is used by the root or by a conjunct.
 //!
+//! [`build`] makes it from the problem; the passes of [`pass`] make the ANDs fewer.
+//!
 //! A [`Lit`] is a node or its complement, so negation is free. What counts is the number of ANDs: a XOR costs no T gate
 //! and no ancilla (see [`lower`](super::lower)).
 //!

@@ -100,7 +100,7 @@ fn all_digits(head: &str, digits: usize) -> usize {
 /// bits needs n - H(n) ANDs; n ANDs for the sum of two n-bit numbers by degree, n - 1 modulo 2^n (derived).
 #[test]
 fn weights_and_sums_cost_what_is_proven() {
-    for n in (13usize..=64).step_by(17).chain([16, 31, 32, 63]) {
+    for n in (13..=64usize).step_by(17).chain([16, 31, 32, 63]) {
         let head = format!("pick x[i in 1 to {n}]\nlet w = number of [x[i] for i in 1 to {n}]");
         let digits = (usize::BITS - n.leading_zeros()) as usize;
         assert_eq!(all_digits(&head, digits), n - n.count_ones() as usize, "the weight of {n} bits");

@@ -64,7 +64,7 @@ impl<'a> Copy<'a> {
                     self.open.extend(missing);
                     continue;
                 }
-                self.map[node] = Some(self.from_operands(node));
+                self.map[node] = Some(self.of_operands(node));
                 self.assumed[node] = self.assumed[a.node()] || self.assumed[b.node()];
             }
             self.open.pop();
@@ -80,7 +80,7 @@ impl<'a> Copy<'a> {
         let (a, b) = self.operands(node);
         self.lit(a);
         self.lit(b);
-        self.from_operands(node)
+        self.of_operands(node)
     }
 
     fn operands(&self, node: NodeId) -> (Lit, Lit) {
@@ -90,7 +90,7 @@ impl<'a> Copy<'a> {
         }
     }
 
-    fn from_operands(&mut self, node: NodeId) -> Lit {
+    fn of_operands(&mut self, node: NodeId) -> Lit {
         let new = |lit: Lit| self.map[lit.node()].expect("copied before").complement_if(lit.is_complemented());
         match self.old.nodes()[node] {
             Node::And(a, b) => {

@@ -38,8 +38,7 @@ pub(super) fn share(network: &Network) -> Passed {
     let tree_of: FxHashMap<NodeId, usize> = trees.iter().enumerate().map(|(at, tree)| (tree.0, at)).collect();
     for (id, _) in network.nodes().iter() {
         let Some(&at) = tree_of.get(&id) else { continue };
-        let lits: Vec<Lit> =
-            trees[at].1.iter().map(|&lit| divisor_or_node(&mut copy, &mut depths, &divisors, lit)).collect();
+        let lits: Vec<Lit> = trees[at].1.iter().map(|&lit| divisor_or_node(&mut copy, &divisors, lit)).collect();
         let lit = depths.join(&mut copy.builder, lits);
         copy.replace(id, lit);
     }
@@ -81,7 +80,7 @@ fn operands(network: &Network, inner: &IdVec<NodeId, bool>, root: NodeId) -> Vec
     operands
 }
 
-/// The first literal of a divisor: those of the old network lie below.
+/// The first literal of a divisor: those of the old network lie below, since 2^30 nodes do not fit into memory here.
 const FIRST_DIVISOR: u32 = 1 << 31;
 
 /// Takes out pairs, the most frequent first. A divisor stands in the trees as a literal of a number beyond all nodes.
@@ -131,13 +130,13 @@ fn divide(trees: &mut [(NodeId, Vec<Lit>)]) -> Vec<(Lit, Lit)> {
 }
 
 /// The new literal of an operand.
-fn divisor_or_node(copy: &mut Copy<'_>, depths: &mut Depths, divisors: &[(Lit, Lit)], lit: Lit) -> Lit {
+fn divisor_or_node(copy: &mut Copy<'_>, divisors: &[(Lit, Lit)], lit: Lit) -> Lit {
     if lit.0 < FIRST_DIVISOR {
         return copy.lit(lit);
     }
     let (a, b) = divisors[(lit.0 - FIRST_DIVISOR) as usize];
-    let a = divisor_or_node(copy, depths, divisors, a);
-    let b = divisor_or_node(copy, depths, divisors, b);
+    let a = divisor_or_node(copy, divisors, a);
+    let b = divisor_or_node(copy, divisors, b);
     copy.builder.and(a, b)
 }
 

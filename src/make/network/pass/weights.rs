@@ -33,9 +33,9 @@ pub(super) fn weights(network: &Network) -> Passed {
     let clauses = view::clauses(network);
     let mut search = Search::new(&clauses);
     let mut groups: BTreeMap<Vec<Lit>, Bounds> = BTreeMap::new();
-    for at in 0..clauses.len() {
+    for (at, clause) in clauses.iter().enumerate() {
         if let Some((set, members)) = search.group(at) {
-            let least = set.len() + 1 - clauses[at].lits.len();
+            let least = set.len() + 1 - clause.lits.len();
             members.iter().for_each(|&member| search.taken[member] = true);
             // Both directions of a set meet under the one whose first literal is not complemented.
             let flip = set[0].is_complemented();

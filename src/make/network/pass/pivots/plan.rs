@@ -107,9 +107,9 @@ impl<'a> Groups<'a> {
             }
         }
         // Clauses that share nothing with others.
-        for at in 0..clauses.len() {
-            if found.owner[at].is_none() && clauses[at].len() > 1 {
-                let node = found.place(clauses[at][0]);
+        for (at, clause) in clauses.iter().enumerate() {
+            if found.owner[at].is_none() && clause.len() > 1 {
+                let node = found.place(clause[0]);
                 found.owner[at] = Some(node);
                 found.groups[node].push(at);
             }
