@@ -14,7 +14,7 @@ use super::schedule::cells::{Cells, cells};
 use super::schedule::counter;
 use super::schedule::front::{Point, front};
 use super::schedule::program::Pay;
-use super::{LowerError, Options, and_count, lower, lower_spread, replay, tidied};
+use super::{LowerError, Options, and_count, ands_of, lower, lower_spread, replay, tidied};
 use crate::budget::Budget;
 use crate::circuit::figures::{Figures, figures};
 use crate::circuit::{Circuit, Level, Mark};
@@ -133,12 +133,7 @@ pub fn front_of(network: &Network, options: &Options, budget: &Budget) -> Result
     Ok(front)
 }
 
-fn points(
-    network: &Network,
-    options: &Options,
-    pay: Pay,
-    budget: &Budget,
-) -> Result<(Cells, Vec<Point>), LowerError> {
+fn points(network: &Network, options: &Options, pay: Pay, budget: &Budget) -> Result<(Cells, Vec<Point>), LowerError> {
     let direct = options.mark == Mark::Phase || options.level != Level::Feedback;
     let mut cells = cells(network, direct);
     counter::group(&mut cells);
@@ -171,7 +166,11 @@ fn keep_everything(
     budget: &Budget,
 ) -> Result<Lowered, LowerError> {
     let figures = figures(&circuit);
-    Ok(Lowered { circuit, and_count: and_count(network, options.mark, budget)?, figures })
+    let and_count = match options.level {
+        Level::Toffoli => ands_of(&circuit),
+        _ => and_count(network, options.mark, budget)?,
+    };
+    Ok(Lowered { circuit, and_count, figures })
 }
 
 fn write(

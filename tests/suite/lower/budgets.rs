@@ -2,8 +2,8 @@
 
 use tallymark::budget::Budget;
 use tallymark::circuit::Level;
-use tallymark::make::lower::{Favour, Limits, LowerError, Lowered, front_of, lower, lower_within};
 use tallymark::id::Id;
+use tallymark::make::lower::{Favour, Limits, LowerError, Lowered, front_of, lower, lower_within};
 use tallymark::make::network::Network;
 use tallymark::problem::{BitId, BitLit, Problem};
 
