@@ -35,7 +35,8 @@ struct Textbook {
 fn textbook(problem: &Problem) -> Textbook {
     let clauses = encode(problem).clauses;
     let inner: u64 = clauses.iter().map(|clause| clause.len().saturating_sub(1) as u64).sum();
-    let (held, m) = (clauses.iter().map(|clause| clause.len().max(1).max(2) as u64 - 1).sum::<u64>(), clauses.len() as u64);
+    let (held, m) =
+        (clauses.iter().map(|clause| clause.len().max(1).max(2) as u64 - 1).sum::<u64>(), clauses.len() as u64);
     let chain = m.saturating_sub(1);
     let ands = inner + chain;
     // The last Toffoli marks and has no mirror image.
@@ -47,7 +48,10 @@ fn main() {
     if let Some(folder) = std::env::var_os("TALLYMARK_INSTANCES") {
         files.extend(files_of(PathBuf::from(folder)));
     }
-    println!("{:44} {:>5} {:>8} {:>8} {:>7} {:>7} {:>7} {:>7} {:>8}", "file", "bits", "textbook", "feedback", "ratio", "cliff-t", "half", "quarter", "ancillas");
+    println!(
+        "{:44} {:>5} {:>8} {:>8} {:>7} {:>7} {:>7} {:>7} {:>8}",
+        "file", "bits", "textbook", "feedback", "ratio", "cliff-t", "half", "quarter", "ancillas"
+    );
     let mut ratios: BTreeMap<&str, Vec<(f64, String)>> = BTreeMap::new();
     for path in files {
         let name = path.file_name().unwrap_or_default().to_string_lossy().into_owned();
@@ -80,7 +84,8 @@ fn main() {
         if let Some(quarter) = &quarter {
             note("a quarter / own best", ratio(quarter, feedback.figures.t_count));
         }
-        let show = |found: &Option<Lowered>| found.as_ref().map_or("-".to_owned(), |one| one.figures.t_count.to_string());
+        let show =
+            |found: &Option<Lowered>| found.as_ref().map_or("-".to_owned(), |one| one.figures.t_count.to_string());
         println!(
             "{name:44} {bits:>5} {:>8} {:>8} {:>7.3} {:>7.3} {:>7} {:>7} {:>8}",
             plain.t_count,
@@ -112,6 +117,7 @@ fn files(folder: PathBuf) -> Vec<PathBuf> {
 fn files_of(folder: PathBuf) -> Vec<PathBuf> {
     let index = std::fs::read_to_string(folder.join("index.json")).unwrap_or_default();
     let index: serde_json::Value = serde_json::from_str(&index).unwrap_or_default();
-    let good = |entry: &serde_json::Value| (entry["expect"] == "ok").then(|| Some(folder.join(entry["file"].as_str()?)))?;
+    let good =
+        |entry: &serde_json::Value| (entry["expect"] == "ok").then(|| Some(folder.join(entry["file"].as_str()?)))?;
     index.as_array().map_or_else(Vec::new, |list| list.iter().filter_map(good).collect())
 }

@@ -96,9 +96,15 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         None if global.json => {}
         None | Some("-") if global.json => return Err(Failure::usage(one_output())),
         None | Some("-") => {
-            let mut text = Vec::new();
-            options.texts.write(&product, &header, (&loaded, &sources), &mut text).expect("memory takes everything");
-            return Ok((Exit::Done, String::from_utf8(text).expect("OpenQASM is text")));
+            // Straight to where it goes: a large circuit is a larger text.
+            let mut out = std::io::stdout().lock();
+            let written = options.texts.write(&product, &header, (&loaded, &sources), &mut out);
+            let exit = match written {
+                // A reader that went away is a quiet success.
+                Err(error) if error.kind() != std::io::ErrorKind::BrokenPipe => Exit::Input,
+                _ => Exit::Done,
+            };
+            return Ok((exit, String::new()));
         }
         Some(path) => {
             let path = Path::new(path);
@@ -133,13 +139,7 @@ fn checked(pass: &CheckedPass) -> String {
     format!("pass {name}: {before} to {after} ANDs, {shown}")
 }
 
-fn show_front(
-    global: &Global,
-    options: &Options,
-    loaded: &Loaded,
-    sources: &Sources,
-    front: &[Product],
-) -> Outcome {
+fn show_front(global: &Global, options: &Options, loaded: &Loaded, sources: &Sources, front: &[Product]) -> Outcome {
     let figures: Vec<Figures> = front.iter().map(|product| product.figures).collect();
     if let Some(path) = options.output.as_deref().filter(|path| *path != "-") {
         let picture = report::front::picture(options.level, &figures);

@@ -8,6 +8,7 @@ use crate::diag::{Code, Diagnostic};
 use crate::make::lower::{Favour, Limits};
 
 #[derive(Args)]
+#[group(skip)]
 pub(super) struct Options {
     /// At most so many qubits; nodes are computed again where they do not fit
     #[arg(long, value_name = "NUMBER")]

@@ -10,6 +10,7 @@ use crate::diag::{Code, Diagnostic};
 use crate::make::lower::Turn;
 
 #[derive(Args)]
+#[group(skip)]
 pub(super) struct Options {
     /// Multiply by e^(i ANGLE) in place of the sign: radians, or such as pi/4 or -3*pi/8
     #[arg(long, value_name = "ANGLE", allow_hyphen_values = true, value_parser = angle)]
@@ -38,9 +39,9 @@ impl Options {
 
 /// `0.25`, `pi`, `-pi/4`, `3*pi/8`.
 pub(super) fn angle(text: &str) -> Result<f64, String> {
-    read(text.trim()).filter(|angle| angle.is_finite()).ok_or_else(|| {
-        "expected an angle in radians, such as 0.25, pi/4 or -3*pi/8".to_owned()
-    })
+    read(text.trim())
+        .filter(|angle| angle.is_finite())
+        .ok_or_else(|| "expected an angle in radians, such as 0.25, pi/4 or -3*pi/8".to_owned())
 }
 
 fn read(text: &str) -> Option<f64> {
@@ -66,9 +67,14 @@ mod tests {
 
     #[test]
     fn angles_are_numbers_or_parts_of_pi() {
-        for (text, expected) in
-            [("0.25", 0.25), ("pi", PI), ("-pi/4", -PI / 4.0), ("3*pi/8", 3.0 * PI / 8.0), ("1/2", 0.5), ("- 2*pi", -2.0 * PI)]
-        {
+        for (text, expected) in [
+            ("0.25", 0.25),
+            ("pi", PI),
+            ("-pi/4", -PI / 4.0),
+            ("3*pi/8", 3.0 * PI / 8.0),
+            ("1/2", 0.5),
+            ("- 2*pi", -2.0 * PI),
+        ] {
             assert_eq!(angle(text), Ok(expected), "{text}");
         }
         for text in ["", "pie", "pi/0", "2pi", "1e400"] {

@@ -47,12 +47,7 @@ pub fn turned(
 }
 
 /// The circuits of which none is better than another in qubits, T gates and depth at once.
-pub fn front(
-    problem: &Problem,
-    places: &Places,
-    settings: Settings,
-    budget: &Budget,
-) -> Result<Vec<Product>, Error> {
+pub fn front(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Vec<Product>, Error> {
     let network = network(problem, places, budget);
     let front = lower::front_of(&network, &options(settings), budget)?;
     Ok(front.into_iter().map(|lowered| product(lowered, settings)).collect())

@@ -2,6 +2,7 @@
 //! gates.
 
 mod budgets;
+mod command;
 mod conjunction;
 mod forms;
 mod multi;

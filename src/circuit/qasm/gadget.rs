@@ -24,7 +24,9 @@ impl Gadget {
         writeln!(out, "gate {} {} {{", self.name, self.qubits.join(", "))?;
         for &(op, control, target) in &self.gates {
             match control {
-                Some(control) => writeln!(out, "  c{} {}, {};", keyword(op), self.qubits[control], self.qubits[target])?,
+                Some(control) => {
+                    writeln!(out, "  c{} {}, {};", keyword(op), self.qubits[control], self.qubits[target])?
+                }
                 None => writeln!(out, "  {} {};", keyword(op), self.qubits[target])?,
             }
         }

@@ -98,16 +98,7 @@ fn eighths(op: Op) -> Option<u8> {
 }
 
 /// The gates that turn by so many eighths.
-const TURNS: [&[Op]; 8] = [
-    &[],
-    &[Op::T],
-    &[Op::S],
-    &[Op::S, Op::T],
-    &[Op::Z],
-    &[Op::Z, Op::T],
-    &[Op::Sdg],
-    &[Op::Tdg],
-];
+const TURNS: [&[Op]; 8] = [&[], &[Op::T], &[Op::S], &[Op::S, Op::T], &[Op::Z], &[Op::Z, Op::T], &[Op::Sdg], &[Op::Tdg]];
 
 /// A turn t of the complement of p is a turn of everything by t and of p by -t.
 fn merge(group: &Group, constant: bool, fates: &mut [Fate]) {

@@ -12,7 +12,7 @@ use std::f64::consts::PI;
 use super::replay::{self, Marking};
 use super::schedule::cells::cells;
 use super::schedule::counter;
-use super::schedule::front::{keep_all, front};
+use super::schedule::front::{front, keep_all};
 use super::schedule::program::Pay;
 use super::{Limits, LowerError, Options};
 use crate::budget::Budget;

@@ -133,10 +133,14 @@ fn lower_spread(network: &Network, options: &Options, share: usize, budget: &Bud
     Ok(tidied(emit::emit(&plan, &steps, &spread, options, budget)?, options.level))
 }
 
+/// Circuits of more gates are left as they are: tidying holds a second copy.
+const MOST_TIDIED: usize = 20_000_000;
+
 /// The circuit without gates that undo each other, and at `clifford-t` with rotations merged.
 fn tidied(circuit: Circuit, level: Level) -> Circuit {
     match level {
         Level::Wide => circuit,
+        _ if circuit.gates().len() > MOST_TIDIED => circuit,
         Level::Toffoli | Level::Feedback => tidy::cancel(&circuit),
         Level::CliffordT => tidy::cancel(&tidy::fold(&tidy::cancel(&circuit))),
     }
@@ -158,11 +162,15 @@ fn refuse_trivial(network: &Network) -> Result<(), LowerError> {
 ///
 /// The gates of `clifford-t` and `feedback` no longer show which of them make up an AND, so all levels are measured here.
 pub fn and_count(network: &Network, mark: Mark, budget: &Budget) -> Result<u64, LowerError> {
-    let oracle = lower(network, &Options { level: Level::Toffoli, mark }, budget)?;
+    Ok(ands_of(&lower(network, &Options { level: Level::Toffoli, mark }, budget)?))
+}
+
+/// The ANDs of an oracle at the `toffoli` level.
+fn ands_of(oracle: &Circuit) -> u64 {
     let ands = |gate: &Gate| match gate.op() {
         Op::X | Op::Z => gate.control_count().saturating_sub(1) as u64,
         _ => 0,
     };
     let counted = oracle.regions.iter().filter(|region| matches!(region.part, Part::Compute | Part::Mark));
-    Ok(counted.flat_map(|r| &oracle.gates()[r.gates.start as usize..r.gates.end as usize]).map(ands).sum())
+    counted.flat_map(|r| &oracle.gates()[r.gates.start as usize..r.gates.end as usize]).map(ands).sum()
 }

@@ -138,13 +138,7 @@ impl Writer<'_> {
     /// Two neighbours of the list are gathered in a qubit that is clean where all before them are 1; they are then 1
     /// where those and their AND are. On the way out one such qubit is left for each place, and on the way back it
     /// gathers the last two of the list.
-    fn conditional(
-        &mut self,
-        gate: QubitId,
-        rest: Vec<QubitId>,
-        ones: Vec<QubitId>,
-        most: usize,
-    ) -> Vec<QubitId> {
+    fn conditional(&mut self, gate: QubitId, rest: Vec<QubitId>, ones: Vec<QubitId>, most: usize) -> Vec<QubitId> {
         let mut list = vec![gate];
         let mut spare = vec![ones];
         let mut rest = std::collections::VecDeque::from(rest);

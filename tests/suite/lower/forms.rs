@@ -26,7 +26,13 @@ fn after(mut first: Circuit, second: &Circuit) -> Circuit {
     first
 }
 
-fn turned(network: &Network, level: Level, angle: f64, controlled: bool, limits: &Limits) -> Result<Lowered, LowerError> {
+fn turned(
+    network: &Network,
+    level: Level,
+    angle: f64,
+    controlled: bool,
+    limits: &Limits,
+) -> Result<Lowered, LowerError> {
     lower_turn(network, level, Turn { angle, controlled }, limits, &Budget::unlimited())
 }
 
@@ -46,7 +52,7 @@ fn with_control(problem: &Problem) -> Problem {
     let mut problem = problem.clone();
     let bit = problem.bit_count();
     problem.add_var("control", tallymark::problem::Domain::YesNo, None);
-    problem.clauses.push(&[BitLit::new(BitId::new(bit), false)]);
+    problem.clauses.push(&[BitLit::new(BitId::new(bit), true)]);
     problem
 }
 
@@ -113,6 +119,7 @@ fn forms_keep_to_their_qubits() {
 fn the_phase_gate_has_the_angle_asked_for() {
     let (_, network) = problems(25).next().unwrap();
     let circuit = turned(&network, Level::Feedback, 0.3, true, &Limits::default()).unwrap().circuit;
-    let angles: Vec<f64> = circuit.gates().iter().filter(|gate| gate.op() == Op::P).map(|g| circuit.angle(g).unwrap()).collect();
+    let angles: Vec<f64> =
+        circuit.gates().iter().filter(|gate| gate.op() == Op::P).map(|g| circuit.angle(g).unwrap()).collect();
     assert_eq!(angles, [0.3]);
 }

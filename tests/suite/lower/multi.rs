@@ -19,7 +19,7 @@ fn case(level: Level, op: Op, c: usize, (clean, dirty): (usize, usize), way: Way
     let controlled = if op == Op::Z { c + 1 } else { c };
     let mut problem = Problem::new();
     problem.add_numbered_vars(controlled + dirty);
-    (0..controlled).for_each(|at| problem.clauses.push(&[BitLit::new(BitId::new(at), false)]));
+    (0..controlled).for_each(|at| problem.clauses.push(&[BitLit::new(BitId::new(at), true)]));
     let mut circuit = Circuit::new();
     let search = circuit.add_qubits("search", controlled + dirty);
     let target = if op == Op::Z { search[c] } else { circuit.add_qubits("mark", 1)[0] };
@@ -128,7 +128,7 @@ fn the_reflection_with_few_ancillas() {
                 search.iter().for_each(|&qubit| circuit.push(Op::H, &[], qubit));
                 let mut problem = Problem::new();
                 problem.add_numbered_vars(n);
-                (0..n).for_each(|at| problem.clauses.push(&[BitLit::new(BitId::new(at), true)]));
+                (0..n).for_each(|at| problem.clauses.push(&[BitLit::new(BitId::new(at), false)]));
                 check(&problem, &circuit, &format!("{n} qubits, {clean} ancillas at {level}"));
                 let t = figures(&circuit).t_count;
                 if clean == most && level == Level::Feedback {

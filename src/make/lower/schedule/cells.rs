@@ -9,9 +9,9 @@
 
 #![allow(unreachable_pub, reason = "the macro of ids makes them public")]
 
+use super::counter::Groups;
 use crate::define_id;
 use crate::id::{ConstraintId, Id, IdVec};
-use super::counter::Groups;
 use crate::make::lower::plan::{keep_odd, owners};
 use crate::make::network::{Lit, Network, Node, NodeId};
 

@@ -7,7 +7,7 @@
 
 use super::cells::{CellId, Cells};
 use super::line::Line;
-use super::program::{Move, backwards};
+use super::program::{Move, backwards, shared};
 use super::table::{Choice, Game, Hold, Table, Unit};
 use crate::id::IdVec;
 
@@ -64,7 +64,7 @@ impl<'a> Conjunction<'a> {
         writer.moves.extend(self.kept.iter().map(|&cell| Move::Compute(cell)));
         writer.whole(room)?;
         writer.moves.extend(self.kept.iter().rev().map(|&cell| Move::Erase(cell)));
-        Some(writer.moves)
+        Some(shared(writer.moves))
     }
 }
 

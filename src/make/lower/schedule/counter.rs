@@ -14,6 +14,9 @@ use super::program::{Move, backwards};
 /// How many conjuncts may form a group.
 const SIZES: [usize; 10] = [1, 2, 3, 4, 5, 6, 8, 10, 12, 16];
 
+/// Groups of more cells are not tried with fewer ancillas than cells: smaller groups do better.
+const RECOMPUTED: usize = 12;
+
 /// Conjuncts that are counted as one.
 pub(in crate::make::lower) struct Group {
     /// What must hold.
@@ -69,8 +72,10 @@ pub(in crate::make::lower) fn schedule(cells: &Cells, size: usize, room: usize) 
         let order: Vec<CellId> = cells.cone(needed, |_| false);
         let there = if order.len() <= left {
             order.iter().map(|&cell| Move::Compute(cell)).collect()
-        } else {
+        } else if order.len() <= RECOMPUTED {
             Line::new(cells, &order, needed).visit(left)?
+        } else {
+            return None;
         };
         let away: Vec<Move> = backwards(&there).collect();
         let whole = |up| {

@@ -1,7 +1,7 @@
 //! The front: for each number of ancillas the cheapest program found.
 //!
-//! Programs are made for every number of ancillas up to [`DENSE`] and then for numbers that grow by a thirty-second, and
-//! counted move by move. The list does not depend on what was asked for, so a larger budget never costs more.
+//! Programs are made for every number of ancillas up to [`DENSE`] and then for numbers that grow by a thirty-second (fewer for
+//! large networks), and counted move by move. The list does not depend on what was asked for, so a larger budget never costs more.
 
 use super::cells::{CellId, Cells};
 use super::chunks::Conjunction;
@@ -17,6 +17,8 @@ use crate::make::lower::LowerError;
 const COUNTED: usize = 64;
 /// Every number of ancillas up to this one is tried.
 const DENSE: usize = 128;
+/// With more cells than this has room for, fewer numbers of ancillas are tried.
+const MOVES: usize = 2_000_000;
 /// At most so many places of a line have a table of their own.
 const LINE_ROOM: usize = 512;
 /// Cells that so many conjuncts share are kept all the time, in one of the trials each.
@@ -90,11 +92,17 @@ impl Front<'_> {
 
     fn offer(&mut self, moves: Option<Vec<Move>>) {
         let Some(moves) = moves else { return };
-        let cost = cost(self.cells, &moves).unwrap_or_else(|fault| unreachable!("a schedule is wrong: {fault}"));
-        let better = |point: &Point| {
-            point.cost.ancillas <= cost.ancillas && point.cost.paid(self.pay) <= cost.paid(self.pay)
+        let cost = match cost(self.cells, &moves) {
+            Ok(cost) => cost,
+            // A program that breaks a rule is not offered.
+            Err(fault) => return debug_assert!(false, "a schedule is wrong: {fault}"),
         };
+        let better =
+            |point: &Point| point.cost.ancillas <= cost.ancillas && point.cost.paid(self.pay) <= cost.paid(self.pay);
         if !self.points.iter().any(better) {
+            let pay = self.pay;
+            let worse = |point: &Point| point.cost.ancillas >= cost.ancillas && point.cost.paid(pay) >= cost.paid(pay);
+            self.points.retain(|point| !worse(point));
             self.points.push(Point { cost, moves });
         }
     }
@@ -129,13 +137,16 @@ fn there_and_back(mut moves: Vec<Move>) -> Vec<Move> {
 
 /// The numbers of ancillas to try for so many cells.
 fn rooms(cells: usize) -> Vec<usize> {
-    let mut rooms: Vec<usize> = (0..=cells.min(DENSE)).collect();
-    let mut room = DENSE + DENSE / 32;
+    // Programs of large networks are long: fewer of them are tried.
+    let dense = (MOVES / cells.max(1)).clamp(DENSE / 8, DENSE);
+    let growth = (MOVES / 4 / cells.max(1)).clamp(4, 32);
+    let mut rooms: Vec<usize> = (0..=cells.min(dense)).collect();
+    let mut room = dense + dense / growth;
     while room < cells {
         rooms.push(room);
-        room += room / 32;
+        room += room / growth;
     }
-    rooms.extend((cells > DENSE).then_some(cells));
+    rooms.extend((cells > dense).then_some(cells));
     rooms
 }
 

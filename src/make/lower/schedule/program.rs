@@ -9,6 +9,7 @@ use super::cells::{CellId, Cells};
 use super::counter::Groups;
 use crate::circuit::Level;
 use crate::id::IdVec;
+use rustc_hash::FxHashMap;
 
 /// A move.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -26,11 +27,7 @@ pub(in crate::make::lower) enum Move {
     /// Takes so many clean ancillas for a counter.
     Open(usize),
     /// Adds 1 to the counter, or takes it off, where the group of this size index and place holds.
-    Count {
-        size: usize,
-        group: usize,
-        up: bool,
-    },
+    Count { size: usize, group: usize, up: bool },
     /// Marks where the counter has counted all groups of this size index.
     MarkCount(usize),
     /// Gives the counter's ancillas back, which are clean.
@@ -87,9 +84,42 @@ pub(in crate::make::lower) fn backwards(moves: &[Move]) -> impl Iterator<Item = 
     })
 }
 
+/// The program for cells that several parts of it compute: what is held already is not computed once more, and it is
+/// erased when the last part that asked for it lets it go. It holds all that the given one would hold, and no more.
+pub(in crate::make::lower) fn shared(moves: Vec<Move>) -> Vec<Move> {
+    let mut asked: FxHashMap<CellId, usize> = FxHashMap::default();
+    share(moves, &mut asked)
+}
+
+fn share(moves: Vec<Move>, asked: &mut FxHashMap<CellId, usize>) -> Vec<Move> {
+    let mut kept = Vec::with_capacity(moves.len());
+    for step in moves {
+        match step {
+            Move::Compute(cell) => {
+                let count = asked.entry(cell).or_insert(0);
+                *count += 1;
+                kept.extend((*count == 1).then_some(Move::Compute(cell)));
+            }
+            Move::Erase(cell) | Move::Forget(cell, _) => {
+                let count = asked.entry(cell).or_insert(1);
+                *count -= 1;
+                if *count == 0 {
+                    kept.push(match step {
+                        Move::Forget(_, repair) => Move::Forget(cell, share(repair.into_vec(), asked).into()),
+                        other => other,
+                    });
+                }
+            }
+            other => kept.push(other),
+        }
+    }
+    kept
+}
+
 /// Counts the moves, and checks that each is allowed where it stands and that nothing is held in the end.
 pub(in crate::make::lower) fn cost(cells: &Cells, moves: &[Move]) -> Result<Cost, String> {
-    let mut player = Player { cells, held: vec![false; cells.list.len()].into(), now: 0, counter: 0, cost: Cost::default() };
+    let mut player =
+        Player { cells, held: vec![false; cells.list.len()].into(), now: 0, counter: 0, cost: Cost::default() };
     player.play(moves, 1.0)?;
     match player.now {
         0 => Ok(player.cost),
