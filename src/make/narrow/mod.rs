@@ -90,4 +90,3 @@ fn claim(ground: &Ground, steps: &[Step]) -> Claim {
     let is_extra = |step: &Step| step.how == How::Searched && !ground.is_shown(step.bit);
     if steps.iter().any(is_extra) { Claim::ManyForOne } else { Claim::OneForOne }
 }
-

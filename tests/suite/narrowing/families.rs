@@ -316,7 +316,11 @@ pub(super) fn weighted(n: usize, bits: u32, equal: bool, seed: u64) -> Encoder {
     let half = terms.iter().map(|(_, weight)| weight).sum::<u64>() / 2;
     let chosen: u64 = terms.iter().filter(|_| random.coin()).map(|(_, weight)| weight).sum();
     let sum = encoder.sum(&terms);
-    if equal { encoder.equals(&sum, chosen) } else { encoder.at_most_value(&sum, half) }
+    if equal {
+        encoder.equals(&sum, chosen)
+    } else {
+        encoder.at_most_value(&sum, half)
+    }
     encoder
 }
 
