@@ -126,9 +126,9 @@ fn connected(tidy: &Tidy, clauses: &[usize]) -> Vec<Vec<usize>> {
         }
     }
     let mut classes: Vec<Vec<usize>> = vec![Vec::new(); clauses.len()];
-    for at in 0..clauses.len() {
+    for (at, &clause) in clauses.iter().enumerate() {
         let root = root(&mut parent, at);
-        classes[root].push(clauses[at]);
+        classes[root].push(clause);
     }
     classes.retain(|class| !class.is_empty());
     classes

@@ -177,10 +177,11 @@ impl<'a> Closure<'a> {
             }
             unsure_row = unsure_row.or(Some(row));
         }
-        if may_witness && self.pace == Pace::Fast {
-            if let Some(one_sided) = self.one_sided(own) {
-                return Some((one_sided, false));
-            }
+        if may_witness
+            && self.pace == Pace::Fast
+            && let Some(one_sided) = self.one_sided(own)
+        {
+            return Some((one_sided, false));
         }
         if self.is_forced(own, true) {
             return Some((How::Forced, true));

@@ -47,8 +47,8 @@ pub struct Options {
 }
 
 impl Options {
-    /// Steps that take about a second of a core.
-    pub const EFFORT: u64 = 1 << 28;
+    /// Steps that take some tenths of a second of a core.
+    pub const EFFORT: u64 = 1 << 26;
 }
 
 impl Default for Options {

@@ -47,7 +47,7 @@ fn a_wrong_formula_or_claim_in_a_places_file_is_found() {
     assert_eq!(desk.exit(&["audit", "gates.cnf", "g.qasm"]), 0);
     let text = std::fs::read_to_string(desk.path("g.places.json")).unwrap();
     let mut places: Value = serde_json::from_str(&text).unwrap();
-    places["computed"][0]["formula"] = serde_json::json!(true);
+    places["computed"][0]["formula"] = serde_json::json!({ "constant": true });
     desk.file("g.places.json", &places.to_string());
     let (exit, object) = desk.json(&["audit", "gates.cnf", "g.qasm"]);
     assert_eq!((exit, of(&object, "/audit/verdict")), (1, &"differs".into()));

@@ -276,7 +276,10 @@ pub(super) enum Counting {
     Sorting,
     Totalizer,
     ExactlySequential,
+    /// Two totalizers: at most k hold, and at most n - k do not.
     ExactlyTotalizer,
+    /// One totalizer whose outputs are defined both ways.
+    ExactlyBothWays,
 }
 
 /// Random 3-SAT of this ratio on n inputs of which at most, or exactly, k hold.
@@ -300,6 +303,12 @@ pub(super) fn sat_with_count(n: usize, ratio: f64, k: usize, counting: Counting,
             encoder.at_most_sequential(&negated, n - k);
         }
         Counting::ExactlyTotalizer => {
+            let (ones, zeros) =
+                (encoder.totalizer(&inputs, k + 1, false), encoder.totalizer(&negated, n - k + 1, false));
+            encoder.clause(&[-ones[k]]);
+            encoder.clause(&[-zeros[n - k]]);
+        }
+        Counting::ExactlyBothWays => {
             let out = encoder.totalizer(&inputs, n, true);
             encoder.clause(&[out[k - 1]]);
             encoder.clause(&[-out[k]]);

@@ -35,13 +35,15 @@ fn encodings_shrink_to_their_inputs() {
         Counting::Totalizer,
         Counting::ExactlySequential,
         Counting::ExactlyTotalizer,
+        Counting::ExactlyBothWays,
     ] {
         let encoder = || families::sat_with_count(32, 2.5, 14, counting, 1);
         shrunk(&encoder().finish_shown(), false, 32, &format!("{counting:?}, shown"));
         let most = match counting {
             Counting::Sequential => 21,
             Counting::Sorting | Counting::Totalizer => 25,
-            _ => 31,
+            Counting::ExactlySequential | Counting::ExactlyTotalizer => 31,
+            Counting::ExactlyBothWays => 32,
         };
         shrunk(&encoder().finish(), true, most, &format!("{counting:?}, any"));
     }
@@ -113,6 +115,7 @@ fn table_of_gains() {
         Counting::Totalizer,
         Counting::ExactlySequential,
         Counting::ExactlyTotalizer,
+        Counting::ExactlyBothWays,
     ] {
         let encoder = || families::sat_with_count(32, 2.5, 14, counting, 1);
         row(&format!("3-SAT, {counting:?}, shown"), &encoder().finish_shown(), false);
