@@ -1,4 +1,5 @@
 //! How much is searched on instances of known kinds.
+#![expect(clippy::print_stdout, reason = "tables of what was reached, for whoever runs a test with --nocapture")]
 
 use std::time::Duration;
 
