@@ -34,9 +34,9 @@ use crate::report::files::WriteError;
 use crate::report::places::places_json;
 use crate::source::Loaded;
 
+pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use choice::{Candidate, Narrowing, choose};
 pub use counting::count;
-pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
 pub use files::{read_circuit, write_certificate, write_json};
 pub use objective::{Ladder, Optimal, Rung, ladder};

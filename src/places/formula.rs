@@ -7,7 +7,7 @@ use serde::{Deserialize, Serialize};
 use crate::id::Id;
 use crate::problem::{BitId, Bits};
 
-/// A formula over the bits of a problem. JSON: `true`, `{"bit": 3}`, `{"not": …}`, `{"and": […]}`, `{"or": […]}`, `{"xor": […]}`.
+/// A formula over the bits of a problem. JSON: `{"constant": true}`, `{"bit": 3}`, `{"not": …}`, `{"and": […]}`, `{"or": […]}`, `{"xor": […]}`.
 #[derive(Clone, PartialEq, Eq, Hash, Debug, Serialize, Deserialize)]
 #[serde(rename_all = "kebab-case")]
 pub enum Formula {

@@ -7,9 +7,9 @@ use serde_json::{Value, json};
 
 use crate::diag::plural;
 use crate::id::{Id, IdVec};
+use crate::places::Places;
 use crate::problem::check::{Interval, ranges};
 use crate::problem::{Compare, ConstraintId, Expr, ExprId, Origin, Problem, Type};
-use crate::places::Places;
 use crate::report::json::bit_name;
 use crate::report::places::domain;
 use crate::source::Loaded;
@@ -219,7 +219,11 @@ pub fn narrowing(problem: &Problem, structure: &str, taken: &Priced, other: Opti
     if places.computed.is_empty() {
         return text;
     }
-    _ = writeln!(text, "\n{}", count_line(places.computed.len(), most.min(places.computed.len()), "computed bit", "computed bits"));
+    _ = writeln!(
+        text,
+        "\n{}",
+        count_line(places.computed.len(), most.min(places.computed.len()), "computed bit", "computed bits")
+    );
     let mut computed = table(["bit", "name", "is"]);
     for of in places.computed.iter().take(most) {
         computed.add_row([&format!("b{}", of.bit), &bit_name(problem, of.bit), &shorten(&of.formula.to_string())]);

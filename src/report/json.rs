@@ -6,9 +6,9 @@ use serde_json::{Map, Value, json};
 
 use crate::circuit::{self, Circuit, Level, Mark, Product};
 use crate::diag::Diagnostic;
+use crate::id::Id;
 use crate::judge::audit::{SearchVerdict, Verdict, Witness};
 use crate::judge::count::Counted;
-use crate::id::Id;
 use crate::places::{Computed, Places};
 use crate::problem::{BitId, Bits, Problem};
 use crate::search::Plan;

@@ -41,7 +41,8 @@ fn conjunctions(tidy: &Tidy, table: &Table, at: usize, findings: &mut Vec<Findin
 
 /// If-then-else and majority with this output.
 fn three_inputs(tidy: &Tidy, table: &Table, output: BitLit, findings: &mut Vec<Finding>) {
-    let rests: Vec<[BitLit; 2]> = tidy.with(!output).iter().filter_map(|&at| rest(tidy.get(at as usize), !output)).collect();
+    let rests: Vec<[BitLit; 2]> =
+        tidy.with(!output).iter().filter_map(|&at| rest(tidy.get(at as usize), !output)).collect();
     if rests.len() * rests.len() > MAX_PAIRS {
         return;
     }
@@ -88,7 +89,8 @@ fn choice(tidy: &Tidy, table: &Table, output: BitLit, one: [BitLit; 2], other: [
                 ],
             )?;
             // The condition that is not negated names the gate.
-            let (condition, yes, no) = if condition.is_negated() { (!condition, no, yes) } else { (condition, yes, no) };
+            let (condition, yes, no) =
+                if condition.is_negated() { (!condition, no, yes) } else { (condition, yes, no) };
             return Some(Finding::new(Fact::Choose { output, condition, yes, no }, clauses));
         }
     }

@@ -62,7 +62,8 @@ fn at_most_one(tidy: &Tidy, table: &Table, covered: &mut FxHashSet<u32>) -> Vec<
             if steps > MAX_STEPS || lits.len() == MAX_GROUP {
                 break;
             }
-            if !lits.contains(&candidate) && lits.iter().all(|&lit| table.pair(!lit, !candidate).is_some()) {
+            let is_new = |lit: BitLit| table.pair(!lit, !candidate).is_some_and(|at| !covered.contains(&at));
+            if !lits.contains(&candidate) && lits.iter().all(|&lit| is_new(lit)) {
                 lits.push(candidate);
             }
         }
@@ -125,9 +126,9 @@ fn connected(tidy: &Tidy, clauses: &[usize]) -> Vec<Vec<usize>> {
         }
     }
     let mut classes: Vec<Vec<usize>> = vec![Vec::new(); clauses.len()];
-    for at in 0..clauses.len() {
+    for (at, &clause) in clauses.iter().enumerate() {
         let root = root(&mut parent, at);
-        classes[root].push(clauses[at]);
+        classes[root].push(clause);
     }
     classes.retain(|class| !class.is_empty());
     classes

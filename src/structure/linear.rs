@@ -25,7 +25,11 @@ const MAX_ROWS: usize = 1 << 10;
 /// The reduced rows of every connected part that is not too large; a contradiction is left out, since it determines
 /// nothing. `rank` gives the place of each bit in the order.
 pub fn reduce(rows: &[Row], rank: &[u32]) -> Vec<Row> {
-    parts(rows, rank.len()).into_iter().filter(|part| part.len() <= MAX_ROWS).flat_map(|part| reduce_part(&part, rank)).collect()
+    parts(rows, rank.len())
+        .into_iter()
+        .filter(|part| part.len() <= MAX_ROWS)
+        .flat_map(|part| reduce_part(&part, rank))
+        .collect()
 }
 
 /// Which of `asked` are sums of some of `rows`.

@@ -89,7 +89,9 @@ impl Fact {
             Self::Holds(lit) => value(*lit),
             Self::Equal(a, b) => value(*a) == value(*b),
             Self::And { output, inputs } => value(*output) == inputs.iter().all(|&input| value(input)),
-            Self::Parity { bits: list, odd } => list.iter().filter(|&&bit| bits.get(bit)).count() % 2 == usize::from(*odd),
+            Self::Parity { bits: list, odd } => {
+                list.iter().filter(|&&bit| bits.get(bit)).count() % 2 == usize::from(*odd)
+            }
             Self::Choose { output, condition, yes, no } => {
                 value(*output) == value(if value(*condition) { *yes } else { *no })
             }

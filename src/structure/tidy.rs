@@ -1,7 +1,7 @@
 //! Clauses in order: each literal once, sorted, no tautologies, with the clauses of each literal.
 
-use crate::problem::{BitId, BitLit, Clauses};
 use crate::id::Id;
+use crate::problem::{BitId, BitLit, Clauses};
 
 /// Clauses without repeated literals and without those that always hold.
 #[derive(Clone, Debug)]
@@ -17,7 +17,8 @@ pub struct Tidy {
 impl Tidy {
     /// Clauses over so many bits.
     pub fn new(clauses: &Clauses, bit_count: usize) -> Self {
-        let mut tidy = Self { lits: Vec::new(), ends: Vec::new(), origins: Vec::new(), used: Vec::new(), starts: Vec::new() };
+        let mut tidy =
+            Self { lits: Vec::new(), ends: Vec::new(), origins: Vec::new(), used: Vec::new(), starts: Vec::new() };
         let mut sorted: Vec<BitLit> = Vec::new();
         for (at, clause) in clauses.iter().enumerate() {
             sorted.clear();

@@ -32,7 +32,22 @@ const MATRIX: &[(&str, &[&str])] = &[
     ("ledger", &[]),
     ("report", &["source", "problem", "places", "circuit", "judge", "search", "ledger"]),
     ("pipeline", &["source", "problem", "places", "circuit", "make", "judge", "search", "ledger", "report"]),
-    ("cli", &["structure", "ledger", "source", "problem", "places", "circuit", "make", "judge", "search", "report", "pipeline"]),
+    (
+        "cli",
+        &[
+            "structure",
+            "ledger",
+            "source",
+            "problem",
+            "places",
+            "circuit",
+            "make",
+            "judge",
+            "search",
+            "report",
+            "pipeline",
+        ],
+    ),
 ];
 
 /// What stands at the root of the crate without being a room: macros.

@@ -75,10 +75,16 @@ impl<'a> Closure<'a> {
             known: vec![false; bits],
             sure: vec![false; bits],
             open: (0..tidy.len()).map(|at| tidy.get(at).len() as u32).collect(),
-            left: (0..tidy.len()).map(|at| tidy.get(at).iter().fold(0, |sum, lit| sum ^ lit.bit().index() as u32)).collect(),
+            left: (0..tidy.len())
+                .map(|at| tidy.get(at).iter().fold(0, |sum, lit| sum ^ lit.bit().index() as u32))
+                .collect(),
             blocked: vec![0; 2 * bits],
             row_open: ground.rows.iter().map(|row| row.bits.len() as u32).collect(),
-            row_left: ground.rows.iter().map(|row| row.bits.iter().fold(0, |sum, bit| sum ^ bit.index() as u32)).collect(),
+            row_left: ground
+                .rows
+                .iter()
+                .map(|row| row.bits.iter().fold(0, |sum, bit| sum ^ bit.index() as u32))
+                .collect(),
             queue: (0..bits as u32).collect(),
             steps: Vec::with_capacity(bits),
             work: tidy.lit_count() as u64 + bits as u64,
@@ -171,10 +177,11 @@ impl<'a> Closure<'a> {
             }
             unsure_row = unsure_row.or(Some(row));
         }
-        if may_witness && self.pace == Pace::Fast {
-            if let Some(one_sided) = self.one_sided(own) {
-                return Some((one_sided, false));
-            }
+        if may_witness
+            && self.pace == Pace::Fast
+            && let Some(one_sided) = self.one_sided(own)
+        {
+            return Some((one_sided, false));
         }
         if self.is_forced(own, true) {
             return Some((How::Forced, true));
@@ -204,7 +211,10 @@ impl<'a> Closure<'a> {
         let is_rest = |&clause: &u32| {
             self.open[clause as usize] == 1
                 && (!sure_only
-                    || tidy.get(clause as usize).iter().all(|lit| lit.bit() == bit(own) || self.sure[lit.bit().index()]))
+                    || tidy
+                        .get(clause as usize)
+                        .iter()
+                        .all(|lit| lit.bit() == bit(own) || self.sure[lit.bit().index()]))
         };
         let side = |lit: BitLit| tidy.with(lit).iter().copied().filter(is_rest).collect::<Vec<u32>>();
         let (with, without) = (side(lit), side(!lit));

@@ -45,8 +45,7 @@ impl Ranks {
         let is_rest = |&at: &u32| {
             ground.tidy.get(at as usize).iter().all(|lit| {
                 let other = lit.bit().index();
-                other == own as usize
-                    || self.rank[other] < self.rank[own as usize] && (!sure_only || self.sure[other])
+                other == own as usize || self.rank[other] < self.rank[own as usize] && (!sure_only || self.sure[other])
             })
         };
         let lit = BitLit::new(bit(own), true);

@@ -30,8 +30,7 @@ impl Ground {
         let may_witness = (0..bits).map(|bit| (one_for_many || !shown[bit]) && !in_expressions[bit]).collect();
         let tidy = Tidy::new(&problem.clauses, bits);
         let rows = read_parities(&tidy).into_iter().map(|(row, _)| row).collect();
-        let mut ground =
-            Self { tidy, rows, rows_of: Vec::new(), may_witness, shown, in_expressions };
+        let mut ground = Self { tidy, rows, rows_of: Vec::new(), may_witness, shown, in_expressions };
         let order = ground.index_order();
         let mut rank = vec![0; bits];
         order.iter().enumerate().for_each(|(at, &bit)| rank[bit as usize] = at as u32);

@@ -110,7 +110,13 @@ fn rows(formula: &Formula, window: &Window) -> Rows {
         })
     };
     match formula {
-        Formula::Constant(value) => if *value { window.all() } else { window.none() },
+        Formula::Constant(value) => {
+            if *value {
+                window.all()
+            } else {
+                window.none()
+            }
+        }
         Formula::Bit(of) => window.lit(BitLit::new(*of, true)),
         Formula::Not(inner) => {
             let mut rows = rows(inner, window);

@@ -47,8 +47,8 @@ pub struct Options {
 }
 
 impl Options {
-    /// Steps that take about a second of a core.
-    pub const EFFORT: u64 = 1 << 28;
+    /// Steps that take some tenths of a second of a core.
+    pub const EFFORT: u64 = 1 << 26;
 }
 
 impl Default for Options {
@@ -90,4 +90,3 @@ fn claim(ground: &Ground, steps: &[Step]) -> Claim {
     let is_extra = |step: &Step| step.how == How::Searched && !ground.is_shown(step.bit);
     if steps.iter().any(is_extra) { Claim::ManyForOne } else { Claim::OneForOne }
 }
-

@@ -72,8 +72,11 @@ fn keep_better(ground: &Ground, best: &mut (Vec<Step>, Order), steps: Vec<Step>,
 /// Guesses found by greed and made fewer; `None` where the effort is not enough for one round.
 fn greedy(ground: &Ground, options: &Options, budget: &Budget, start: &[Step]) -> Option<Vec<u32>> {
     let unguessed = Closure::new(ground, Pace::Fast);
-    let mut search = Search { unguessed, ground, random: SplitMix64::new(options.seed), work: 0, effort: options.effort };
-    let guesses = |steps: &[Step]| steps.iter().filter(|step| step.how == super::How::Searched).map(|step| step.bit).collect::<Vec<u32>>();
+    let mut search =
+        Search { unguessed, ground, random: SplitMix64::new(options.seed), work: 0, effort: options.effort };
+    let guesses = |steps: &[Step]| {
+        steps.iter().filter(|step| step.how == super::How::Searched).map(|step| step.bit).collect::<Vec<u32>>()
+    };
     // One round looks at every literal for each guess.
     let round = ground.tidy.lit_count() as u64 * 4 + 1;
     let determines_nothing = !ground.has_witnesses() && guesses(start).len() == start.len();

@@ -35,8 +35,12 @@ impl Shape {
     /// As a formula over these bits.
     pub(super) fn formula(self, bits: &[BitId]) -> Formula {
         let parity = |mask: u32| {
-            let list: Vec<Formula> =
-                bits.iter().enumerate().filter(|(at, _)| mask >> at & 1 == 1).map(|(_, &bit)| Formula::Bit(bit)).collect();
+            let list: Vec<Formula> = bits
+                .iter()
+                .enumerate()
+                .filter(|(at, _)| mask >> at & 1 == 1)
+                .map(|(_, &bit)| Formula::Bit(bit))
+                .collect();
             list
         };
         let of = |mut list: Vec<Formula>| if list.len() == 1 { list.remove(0) } else { Formula::Xor(list) };

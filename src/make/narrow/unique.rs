@@ -22,7 +22,7 @@ pub(super) enum Depth {
 /// The most literals of the rests that are followed.
 const MAX_LITS: usize = 1 << 12;
 /// Passes over the rests in which single literals are followed.
-const MAX_PASSES: usize = 4;
+const MAX_PASSES: usize = 64;
 
 /// Whether the rests of these clauses, with the bit and with its negation, cannot all hold.
 pub(super) fn is_forced(tidy: &Tidy, own: BitId, with: &[u32], without: &[u32], depth: Depth, work: &mut u64) -> bool {
@@ -44,7 +44,9 @@ pub(super) fn is_forced(tidy: &Tidy, own: BitId, with: &[u32], without: &[u32], 
     if excluded >= 1.0 && follows(rests, own, work) {
         return true;
     }
-    let Some(window) = Window::of(rests().flatten().map(|lit| lit.bit()).filter(|&bit| bit != own)) else { return false };
+    let Some(window) = Window::of(rests().flatten().map(|lit| lit.bit()).filter(|&bit| bit != own)) else {
+        return false;
+    };
     let mut left = window.all();
     for clause in rests() {
         and(&mut left, &window.clause(clause.iter().copied().filter(|lit| lit.bit() != own)));

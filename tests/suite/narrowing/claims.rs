@@ -26,7 +26,8 @@ fn narrowed(problem: &Problem, one_for_many: bool) -> Places {
 fn settle(problem: &Problem, places: &Places) -> Obligations {
     let [tried, solved] = [Way::Best, Way::Solver].map(|way| obligations(problem, places, way, &Budget::unlimited()));
     match (&tried, &solved) {
-        (Obligations::Hold(_), Obligations::Broken(bits, why)) | (Obligations::Broken(bits, why), Obligations::Hold(_)) => {
+        (Obligations::Hold(_), Obligations::Broken(bits, why))
+        | (Obligations::Broken(bits, why), Obligations::Hold(_)) => {
             panic!("the ways disagree at {bits}: {why}\n{places:?}\n{:?}", problem.clauses)
         }
         _ => tried,

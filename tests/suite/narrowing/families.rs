@@ -276,7 +276,10 @@ pub(super) enum Counting {
     Sorting,
     Totalizer,
     ExactlySequential,
+    /// Two totalizers: at most k hold, and at most n - k do not.
     ExactlyTotalizer,
+    /// One totalizer whose outputs are defined both ways.
+    ExactlyBothWays,
 }
 
 /// Random 3-SAT of this ratio on n inputs of which at most, or exactly, k hold.
@@ -300,6 +303,12 @@ pub(super) fn sat_with_count(n: usize, ratio: f64, k: usize, counting: Counting,
             encoder.at_most_sequential(&negated, n - k);
         }
         Counting::ExactlyTotalizer => {
+            let (ones, zeros) =
+                (encoder.totalizer(&inputs, k + 1, false), encoder.totalizer(&negated, n - k + 1, false));
+            encoder.clause(&[-ones[k]]);
+            encoder.clause(&[-zeros[n - k]]);
+        }
+        Counting::ExactlyBothWays => {
             let out = encoder.totalizer(&inputs, n, true);
             encoder.clause(&[out[k - 1]]);
             encoder.clause(&[-out[k]]);
@@ -316,7 +325,11 @@ pub(super) fn weighted(n: usize, bits: u32, equal: bool, seed: u64) -> Encoder {
     let half = terms.iter().map(|(_, weight)| weight).sum::<u64>() / 2;
     let chosen: u64 = terms.iter().filter(|_| random.coin()).map(|(_, weight)| weight).sum();
     let sum = encoder.sum(&terms);
-    if equal { encoder.equals(&sum, chosen) } else { encoder.at_most_value(&sum, half) }
+    if equal {
+        encoder.equals(&sum, chosen)
+    } else {
+        encoder.at_most_value(&sum, half)
+    }
     encoder
 }
 

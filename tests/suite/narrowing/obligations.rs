@@ -102,7 +102,7 @@ fn random_problems_keep_every_obligation() {
 #[test]
 fn encodings_keep_every_obligation() {
     for seed in 0..4 {
-        for counting in [Counting::Sequential, Counting::Totalizer, Counting::ExactlyTotalizer] {
+        for counting in [Counting::Sequential, Counting::Totalizer, Counting::ExactlyBothWays] {
             let encoder = families::sat_with_count(5, 1.0, 2, counting, seed);
             if encoder.inputs().len() + 5 <= 20 {
                 let problem = encoder.finish_shown();

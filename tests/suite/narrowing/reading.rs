@@ -41,7 +41,9 @@ fn count(structure: &Structure, is: impl Fn(&Fact) -> bool) -> usize {
 fn adders_are_read_back() {
     let structure = check(&families::product(4, 143).finish());
     // 16 ANDs of the array, and the adders that 16 terms of a 4 by 4 array need: 8 full and 4 half ones.
-    let adders = |inputs: usize| count(&structure, |fact| matches!(fact, Fact::Adder { inputs: list, .. } if list.len() == inputs));
+    let adders = |inputs: usize| {
+        count(&structure, |fact| matches!(fact, Fact::Adder { inputs: list, .. } if list.len() == inputs))
+    };
     assert_eq!((adders(3), adders(2)), (8, 4), "{}", structure.in_words());
     assert_eq!(count(&structure, |fact| matches!(fact, Fact::And { .. })), 16 + 4);
     assert_eq!(count(&structure, |fact| matches!(fact, Fact::Holds(_))), 8);

@@ -19,7 +19,8 @@ pub(super) fn is_quick(problem: &Problem) -> bool {
 /// Settles the obligations; see the module above.
 pub(super) fn obligations(problem: &Problem, places: &Places) -> Obligations {
     let (bits, shown) = (problem.bit_count(), shown(problem));
-    let part = |all: &Bits| -> Vec<bool> { all.iter().zip(&shown).filter(|(_, shown)| **shown).map(|(bit, _)| bit).collect() };
+    let part =
+        |all: &Bits| -> Vec<bool> { all.iter().zip(&shown).filter(|(_, shown)| **shown).map(|(bit, _)| bit).collect() };
     // For the shown part of each solution, the marked string that was met for it.
     let mut state_of: BTreeMap<Vec<bool>, Bits> = BTreeMap::new();
     for value in 0..1u128 << bits {
@@ -42,5 +43,7 @@ pub(super) fn obligations(problem: &Problem, places: &Places) -> Obligations {
             return Obligations::Broken(solution, format!("the search string {other} shows the same bits"));
         }
     }
-    Obligations::Hold("every assignment was tried: what the places claim of computed and searched bits is so".to_owned())
+    Obligations::Hold(
+        "every assignment was tried: what the places claim of computed and searched bits is so".to_owned(),
+    )
 }

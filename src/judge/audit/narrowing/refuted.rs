@@ -45,7 +45,10 @@ pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -
             Answer::Sat => {
                 let solution = solver.model(problem.bit_count());
                 if must_be_sure {
-                    let got = format!("bit {own} is {} here, and its formula gives the other value", u8::from(solution.at(own)));
+                    let got = format!(
+                        "bit {own} is {} here, and its formula gives the other value",
+                        u8::from(solution.at(own))
+                    );
                     return Obligations::Broken(solution, got);
                 }
                 replaced += 1;
@@ -70,7 +73,9 @@ pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -
         }
     }
     let unique = places.computed.len() - replaced;
-    Obligations::Hold(format!("a solver refuted that {unique} computed bits could be otherwise, and that setting {replaced} others could break a solution"))
+    Obligations::Hold(format!(
+        "a solver refuted that {unique} computed bits could be otherwise, and that setting {replaced} others could break a solution"
+    ))
 }
 
 fn stopped(own: usize) -> Obligations {
@@ -187,7 +192,14 @@ impl Solver {
 
     /// Whether in no solution that `differs` setting the bit to the other value breaks a clause. `None` where the budget ran
     /// out.
-    fn is_replaceable(&mut self, problem: &Problem, uses: &Uses, computed: &Computed, differs: Lit, budget: &Budget) -> Option<bool> {
+    fn is_replaceable(
+        &mut self,
+        problem: &Problem,
+        uses: &Uses,
+        computed: &Computed,
+        differs: Lit,
+        budget: &Budget,
+    ) -> Option<bool> {
         if uses.has_expressions {
             return Some(false);
         }

@@ -27,8 +27,8 @@ use super::{AuditError, Outcome};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, FOUND, Gate, Op, QubitId, SEARCH};
 use crate::id::Id;
-use crate::judge::rows;
 use crate::judge::restate::restate;
+use crate::judge::rows;
 use crate::places::Places;
 use crate::problem::Problem;
 
