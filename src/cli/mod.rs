@@ -6,6 +6,7 @@
 mod audit;
 mod compile;
 mod count;
+mod course;
 mod dossier;
 mod exit;
 mod explain;
@@ -14,6 +15,7 @@ mod ledger;
 mod plan;
 mod progress;
 mod render;
+mod restrict;
 mod shots;
 mod simulate;
 
@@ -68,6 +70,8 @@ struct Global {
     /// Search every bit as given, computing none from the others
     #[arg(long, global = true)]
     no_narrowing: bool,
+    #[command(flatten)]
+    restrict: restrict::Options,
 }
 
 #[derive(Subcommand)]

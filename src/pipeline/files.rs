@@ -3,7 +3,7 @@
 use std::path::Path;
 
 use super::Error;
-use crate::circuit::{Circuit, Product, qasm};
+use crate::circuit::{Circuit, ITERATIONS, Product, qasm};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::audit;
 use crate::judge::count::Counted;
@@ -31,6 +31,15 @@ pub(super) fn write_and_read(
 
 /// Reads a circuit file.
 pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
+    read_circuit_given(path, None, sources)
+}
+
+/// Reads a circuit file; where its number of iterations is an input, it gets this value.
+pub fn read_circuit_given(
+    path: &Path,
+    iterations: Option<u64>,
+    sources: &mut Sources,
+) -> Result<Circuit, Vec<Diagnostic>> {
     let name = path.display().to_string();
     let text = std::fs::read_to_string(path).map_err(|error| {
         vec![
@@ -39,7 +48,8 @@ pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<D
                 .expected("an OpenQASM file"),
         ]
     })?;
-    qasm::read::read(&text, &name, sources)
+    let given = iterations.and_then(|value| qasm::read::give(&text, ITERATIONS, value));
+    qasm::read::read(given.as_ref().unwrap_or(&text), &name, sources)
 }
 
 /// Writes a JSON value, whole or not at all.

@@ -32,8 +32,8 @@ use crate::source::Loaded;
 
 pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use error::Error;
-pub use files::{read_circuit, write_certificate, write_json};
-pub use objective::{Ladder, Optimal, Rung, ladder};
+pub use files::{read_circuit, read_circuit_given, write_certificate, write_json};
+pub use objective::ladder;
 pub use oracle::{course, gates_of_iteration, oracle, whole_search};
 pub use planning::{advice_on, plan_for};
 pub use start::{PRECISION, Priced, places_from, priced};

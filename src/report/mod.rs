@@ -6,6 +6,7 @@ pub mod explain;
 pub mod files;
 pub mod header;
 pub mod json;
+pub mod objective;
 pub mod places;
 pub mod plan;
 pub mod self_test;

@@ -17,6 +17,7 @@ mod making;
 mod planning;
 mod proofs;
 mod random_problem;
+mod restricting;
 mod simulating;
 mod starting;
 mod states;

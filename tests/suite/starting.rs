@@ -271,14 +271,15 @@ fn the_judge_finds_a_start_that_loses_solutions_and_an_oracle_that_is_wrong_with
     assert_eq!(verdict.outcome, Outcome::Differs);
     let witness = verdict.witness.unwrap();
     assert!(problem.holds(&witness.bits), "{witness:?}");
-    let too_small = Places { start: below(2, 3), ..good.clone() };
+    let too_small = Places { start: below(1, 1), ..good.clone() };
     let verdict = judge(&too_small, &circuit);
     assert!(problem.holds(&verdict.witness.expect("a lost solution").bits));
     // One more sign, on a string within the start.
     let mut wrong = circuit.clone();
     let search = wrong.register("search");
     let inside = (0..1u64 << 7).find(|value| good.start.allows(|qubit| value >> qubit & 1 == 1)).unwrap();
-    let controls: Vec<_> = (0..6).map(|at| tallymark::circuit::Control::new(search[at], inside >> at & 1 == 1)).collect();
+    let controls: Vec<_> =
+        (0..6).map(|at| tallymark::circuit::Control::new(search[at], inside >> at & 1 == 1)).collect();
     wrong.push(Op::X, &[], search[6]);
     wrong.push(Op::Z, &controls, search[6]);
     wrong.push(Op::X, &[], search[6]);

@@ -15,14 +15,14 @@ use crate::judge::count::Counted;
 use crate::pipeline;
 use crate::places::Places;
 use crate::report::plan::answer_json;
-use crate::report::{json, summary};
+use crate::report::{json, objective, summary};
 use crate::search::Advice;
 use crate::search::plan::split::Machines;
 use crate::search::plan::{self, Aim, Answer, Erring, Known, Question, Unanswerable, noise};
 use crate::source::Loaded;
 use crate::span::Sources;
 
-pub(super) use options::{Options, inner_chance, number};
+pub(super) use options::{Options, aim, inner_chance, number};
 
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     match &options.file {
@@ -58,11 +58,20 @@ fn for_numbers(global: &Global, options: &Options) -> Outcome {
 
 fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     let (loaded, sources) = input::load(global, file)?;
-    let places = Places::as_given(&loaded.problem);
     let mut object = json::envelope("plan", &loaded, &sources, false);
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, Mark::Phase);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
+    let places = input::places_from(&loaded, options.start, settings, &budget).map_err(stage)?;
+    if options.objective {
+        let ladder = pipeline::ladder(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+        drop(line);
+        if !global.json {
+            return Ok((Exit::Done, objective::text(&loaded, &ladder)));
+        }
+        object.insert("objective".to_owned(), objective::json(&ladder));
+        return Ok((Exit::Done, json::print(object)));
+    }
     let mut ground = ground(&loaded, &places, options.error);
     if let Some(each) = options.gate_error {
         let gates = pipeline::gates_of_iteration(&loaded.problem, &places, settings, &budget).map_err(stage)?;

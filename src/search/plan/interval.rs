@@ -65,9 +65,16 @@ fn figures(space: &BigUint, low: &BigUint, high: &BigUint, iterations: BigUint) 
     let worst = if zero_inside { Wide::ZERO } else { at_low.min(at_high) };
     // The success is 1 somewhere inside where a quarter turn, or an odd number of them, lies between the two angles.
     let quarters = |theta: Wide| (odd * theta * Wide::new(std::f64::consts::FRAC_2_PI)).to_f64();
-    let (from, to) = (quarters(super::success::theta_wide(space, low)), quarters(super::success::theta_wide(space, high)));
+    let (from, to) =
+        (quarters(super::success::theta_wide(space, low)), quarters(super::success::theta_wide(space, high)));
     let peak_inside = ((from + 1.0) / 2.0).ceil() * 2.0 - 1.0 <= to;
-    let best = if peak_inside { Wide::ONE } else if at_low > at_high { at_low } else { at_high };
+    let best = if peak_inside {
+        Wide::ONE
+    } else if at_low > at_high {
+        at_low
+    } else {
+        at_high
+    };
     let figures = Interval {
         best: best.to_f64(),
         success_at_low: at_low.to_f64(),

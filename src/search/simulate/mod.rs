@@ -201,7 +201,12 @@ pub fn bytes_needed(circuit: &Circuit, search: &[QubitId], steps: bool) -> u128 
     strings * 8 * vectors + strings / 8 * 4
 }
 
-fn check_memory(circuit: &Circuit, search: &[QubitId], options: &Options, budget: &Budget) -> Result<(), SimulateError> {
+fn check_memory(
+    circuit: &Circuit,
+    search: &[QubitId],
+    options: &Options,
+    budget: &Budget,
+) -> Result<(), SimulateError> {
     if search.len() > MOST_BITS {
         let words = |bits: usize| format!("a search register of {bits} qubits");
         return Err(SimulateError::TooLarge { needed: words(search.len()), limit: format!("{MOST_BITS} qubits") });
@@ -256,6 +261,12 @@ fn by_classes(reading: &Reading, bits: usize, options: &Options, budget: &Budget
         notes: Vec::new(),
         partial: done < iterations,
     };
+    if iterations == 0 {
+        // Without an iteration there is no oracle that says what is marked.
+        (simulation.marked, simulation.success) = (None, None);
+        simulation.curve.clear();
+        simulation.notes.push("the file has no iteration, so it does not say what is marked".to_owned());
+    }
     if options.draw > 0 {
         simulation.drawn = draw(bits, options, |each| classes.chances(bits, each));
     }
@@ -266,7 +277,9 @@ fn by_steps(reading: &Reading, bits: usize, options: &Options, budget: &Budget) 
     let is_sign = |factor: Complex| factor.is_near(Complex::real(-1.0));
     let mut steps = reading.loops.iter().flat_map(|part| &part.steps);
     let first = steps.clone().next().map_or(&[][..], |step| &step.turns);
-    if !steps.all(|step| step.turns == first && is_sign(step.reflection) && step.turns.iter().all(|turn| is_sign(turn.1))) {
+    if !steps
+        .all(|step| step.turns == first && is_sign(step.reflection) && step.turns.iter().all(|turn| is_sign(turn.1)))
+    {
         let why = "its phases are not the same signs in every iteration".to_owned();
         return Err(SimulateError::NotFollowed { way: "step by step", why });
     }
@@ -287,7 +300,7 @@ fn by_steps(reading: &Reading, bits: usize, options: &Options, budget: &Budget) 
     let mut curve = vec![chance(&amplitudes)];
     let there = |word: usize| {
         let of = &amplitudes[word * 64..amplitudes.len().min(word * 64 + 64)];
-        of.iter().enumerate().fold(0u64, |set, (at, &a)| set | u64::from(a != 0.0) << at)
+        of.iter().enumerate().fold(0u64, |set, (at, &a)| set | u64::from(classes::is_there(a)) << at)
     };
     let counts = (0..marked.len()).map(|word| (there(word), there(word) & marked[word]));
     let (space, marked_count) = counts.fold((0, 0), |(space, all), (there, set)| {
