@@ -17,6 +17,7 @@ use crate::source::Loaded;
 use crate::span::Sources;
 
 #[derive(Args)]
+#[group(skip)]
 pub(super) struct Options {
     /// With --whole: the aim of the plan that the search carries out, as `plan` names them [default: highest-success]
     #[arg(long, value_name = "NAME", requires = "whole", value_parser = plan::aim)]

@@ -12,6 +12,7 @@ use crate::source::Loaded;
 use crate::span::Sources;
 
 #[derive(Args, Clone)]
+#[group(skip)]
 pub(super) struct Options {
     /// Give a variable a value, and search the others; may be repeated
     #[arg(long, global = true, value_name = "NAME=VALUE", value_parser = super::setting)]

@@ -38,7 +38,7 @@ pub use oracle::{course, gates_of_iteration, oracle, whole_search};
 pub use planning::{advice_on, plan_for};
 pub use start::{PRECISION, Priced, places_from, priced};
 
-use files::write_and_read;
+use files::{write_and_read, write_curve};
 use oracle::{every_level, why_no_oracle};
 
 /// What the user asked for.
@@ -108,6 +108,7 @@ pub fn dossier(
             let product = whole_search(&phase, &plan.iterations)?;
             let circuit = write_and_read(&folder.join("search.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit::audit_search(problem, places, &circuit, SEARCH_WORK, budget)?;
+            write_curve(&folder.join("search.svg"), loaded, &product, &circuit, settings, budget)?;
             if verdict.iterations_checked > 0 && BigUint::from(verdict.iterations) != plan.iterations {
                 let (wanted, found) = (&plan.iterations, verdict.iterations);
                 return Err(Error::Fault(format!("the search file has {found} iterations, planned were {wanted}")));

@@ -110,6 +110,15 @@ mod tests {
             let peak = u64::try_from(first_peak(&big(n), &big(low))).unwrap();
             let best = (0..=peak).map(worst_of).fold(0.0, f64::max);
             let own = worst_of(u64::try_from(found.iterations.clone()).unwrap());
+            let odd = 2.0 * u64::try_from(found.iterations.clone()).unwrap() as f64 + 1.0;
+            let (from, to) = (theta(&big(n), &big(low)), theta(&big(n), &big(high)));
+            let top = (0..=4000).map(|i| (odd * (from + (to - from) * f64::from(i) / 4000.0)).sin().powi(2));
+            let top = top.fold(0.0, f64::max);
+            assert!(
+                found.best + 1e-12 > top && found.best < top + 1e-4,
+                "{low} to {high} in {n}: {top}, {}",
+                found.best
+            );
             assert!((own - found.worst).abs() < 1e-4, "{low} to {high} in {n}: {own} and {}", found.worst);
             assert!(found.worst > best - 1e-4, "{low} to {high} in {n}: {} but {best} is possible", found.worst);
         }

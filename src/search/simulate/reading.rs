@@ -309,11 +309,16 @@ impl<'c> Reader<'c> {
         while centre < gates.len() {
             let begins = centre == at || matches!(gates[centre - 1].op(), Op::H | Op::Ry);
             let end = self.run_end(gates, centre);
+            let axis = self.axis.clone();
             if begins
                 && end > centre
                 && let Some(found) = self.reflect(gates, &before, centre..end)?
             {
-                return Ok(found);
+                // A part of the preparation may look like a reflection by itself: then no oracle comes after it.
+                if found.0 == gates.len() || self.diagonal(gates, found.0).is_ok() {
+                    return Ok(found);
+                }
+                self.axis = axis;
             }
             let Some(local) = self.local(&gates[centre]) else { break };
             before.push(local);
