@@ -3,23 +3,20 @@
 use std::path::{Path, PathBuf};
 
 use clap::Args;
-use num_bigint::BigUint;
-use num_traits::Zero;
 
-use crate::budget::Budget;
 use crate::circuit::{Figures, Level, Mark, Product};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
-use crate::cli::{Global, Outcome, input, limits, plan, progress, texts, turns};
+use crate::cli::{Global, Outcome, course, input, limits, progress, texts, turns};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
 use crate::pipeline::{self, CheckedPass, Settings};
-use crate::places::Places;
+use crate::places::{Part, Places};
 use crate::report::header::header;
 use crate::report::places::places_json;
 use crate::report::{self, files, json, summary};
+use crate::search::course::Course;
 use crate::source::Loaded;
-use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {
@@ -39,9 +36,12 @@ pub(super) struct Options {
     /// The whole search: prepare, iterate, measure
     #[arg(long)]
     whole: bool,
-    /// With --whole: plan for this many marked states instead of counting them
-    #[arg(long, value_name = "NUMBER", requires = "whole", value_parser = plan::number)]
-    count: Option<BigUint>,
+    /// The start state: strings (all of them), domains (of each variable its own values), groups (besides, exactly so many
+    /// of some), or cheapest (of these, by the T gates of the whole search)
+    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start)]
+    start: input::Wanted,
+    #[command(flatten)]
+    search: course::Options,
     #[command(flatten)]
     turns: turns::Options,
     #[command(flatten)]
@@ -64,12 +64,19 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
     let stage = |error| Failure::stage(&error, &sources);
-    let places = input::choose(global, &loaded, settings, &budget).map_err(stage)?;
+    let places = input::places_from(global, &loaded, options.start, settings, &budget).map_err(stage)?;
     if options.front {
         let front = pipeline::front(&loaded.problem, &places, settings, &budget).map_err(stage)?;
         drop(line);
         return show_front(global, options, &loaded, &sources, &front);
     }
+    let (mut counted, mut chosen) = (None, None);
+    if options.whole {
+        let (course, tally) = course::course(&loaded, &places, settings, &options.search, &budget, &sources)?;
+        (chosen, counted) = (Some(course), tally);
+    }
+    let mark = if chosen.as_ref().is_some_and(Course::needs_bit_oracle) { Mark::Bit } else { options.mark };
+    let settings = Settings { mark, ..settings };
     let turn = options.turns.turn(options.mark, options.whole)?;
     let mut product = match turn {
         Some(turn) => pipeline::turned(&loaded.problem, &places, settings, turn, &limits, &budget),
@@ -80,15 +87,18 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         true => pipeline::check_passes(&loaded.problem, &places, global.seed, &budget).map_err(stage)?,
         false => Vec::new(),
     };
-    let mut counted = None;
-    if options.whole {
-        let iterations;
-        (iterations, counted) = planned(&loaded, &places, settings, options.count.as_ref(), &budget, &sources)?;
-        product = pipeline::whole_search_within(&product, &iterations, &limits).map_err(stage)?;
+    if let Some(course) = &chosen {
+        product = match (course, places.start.parts()) {
+            (Course::Plain(iterations), []) => pipeline::whole_search_within(&product, &(*iterations).into(), &limits),
+            (course, _) => pipeline::course(&product, &places.start, course),
+        }
+        .map_err(stage)?;
     }
     drop(line);
     options.texts.check(&product)?;
     let mut header = header(&loaded, &places, &product, counted.as_ref());
+    let said = [global.restrict.in_words(), chosen.as_ref().map(course::in_words), start_in_words(&places)];
+    said.into_iter().flatten().for_each(|line| header.insert(3, line));
     header.extend(passes.iter().map(checked));
     let lines: String = passes.iter().map(|pass| format!("\n{}", checked(pass))).collect();
     let figures = summary::circuit(&product) + &lines;
@@ -130,6 +140,8 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         };
         object.insert("passes".to_owned(), passes.iter().map(pass).collect());
     }
+    object.insert("start".to_owned(), start_in_words(&places).into());
+    object.insert("course".to_owned(), chosen.as_ref().map(course::in_words).into());
     object.insert("file".to_owned(), options.output.clone().into());
     Ok((Exit::Done, json::print(object)))
 }
@@ -155,35 +167,20 @@ fn show_front(global: &Global, options: &Options, loaded: &Loaded, sources: &Sou
     Ok((Exit::Done, json::print(object)))
 }
 
+/// The start state, where it is not all strings.
+fn start_in_words(places: &Places) -> Option<String> {
+    let parts = places.start.parts();
+    let of = |part: &Part| match part {
+        Part::Below { qubits, size } => format!("{size} codes on {} qubits", qubits.len()),
+        Part::Weight { qubits, ones } => format!("{ones} of {} qubits", qubits.len()),
+    };
+    let list = || parts.iter().map(of).collect::<Vec<_>>().join(", ");
+    (!parts.is_empty()).then(|| format!("start state: {} states: {}", Counted::space(places), list()))
+}
+
 /// `S.places.json` beside `S.qasm`.
 pub(super) fn places_path(circuit: &Path) -> PathBuf {
     circuit.with_extension("places.json")
-}
-
-/// The planned iterations, for a number of marked states that is known from elsewhere or for the tally.
-pub(super) fn planned(
-    loaded: &Loaded,
-    places: &Places,
-    settings: Settings,
-    count: Option<&BigUint>,
-    budget: &Budget,
-    sources: &Sources,
-) -> Result<(BigUint, Option<Counted>), Box<Failure>> {
-    let space = Counted::space(places);
-    let (marked, counted) = if let Some(marked) = count {
-        (Some(marked.clone()), None)
-    } else {
-        let counted = pipeline::count(&loaded.problem, places, settings, budget)
-            .map_err(|error| Failure::stage(&error, sources))?;
-        (counted.marked().cloned(), Some(counted))
-    };
-    match marked {
-        Some(marked) if !marked.is_zero() && marked < space => {
-            Ok((crate::search::plan(&space, &marked).iterations, counted))
-        }
-        Some(_) => Err(Failure::usage(nothing_to_find())),
-        None => Err(Failure::unfinished(unknown_count(), sources)),
-    }
 }
 
 fn whole_needs_phase() -> Diagnostic {
@@ -196,15 +193,4 @@ fn one_output() -> Diagnostic {
     Diagnostic::error(Code("U004"), "the circuit and the JSON object cannot share standard output")
         .found("--json -o -")
         .expected("-o with the name of a file")
-}
-
-fn nothing_to_find() -> Diagnostic {
-    Diagnostic::error(Code("C091"), "no state or every state is marked, so a search finds nothing new")
-        .expected("at least one marked and one unmarked state")
-        .help("`tallymark plan` says more; compile without --whole gives the oracle")
-}
-
-fn unknown_count() -> Diagnostic {
-    Diagnostic::error(Code("C092"), "the number of marked states is not known, so no iteration count follows")
-        .help("allow more time with --time, or give the number with --count")
 }

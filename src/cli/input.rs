@@ -7,6 +7,7 @@ use crate::circuit::{Level, Mark};
 use crate::cli::Global;
 use crate::cli::render::{Failure, show};
 use crate::diag::{Code, Diagnostic};
+use crate::make::start::Choice;
 use crate::pipeline::{self, Narrowing, Settings};
 use crate::places::Places;
 use crate::source::{self, Loaded};
@@ -16,7 +17,8 @@ use crate::span::Sources;
 pub(super) fn load(global: &Global, file: &str) -> Result<(Loaded, Sources), Box<Failure>> {
     let mut sources = Sources::new();
     match source::load(file, &global.set, &mut sources) {
-        Ok(loaded) => {
+        Ok(mut loaded) => {
+            global.restrict.apply(&mut loaded, &mut sources)?;
             if !global.json {
                 show(&loaded.warnings, &sources);
             }
@@ -47,6 +49,42 @@ pub(super) fn mark(name: &str) -> Result<Mark, String> {
         "bit" => Ok(Mark::Bit),
         _ => Err("expected phase or bit".to_owned()),
     }
+}
+
+/// Which start state is wanted.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) enum Wanted {
+    /// This one.
+    Choice(Choice),
+    /// The one whose search is the cheapest.
+    Cheapest,
+}
+
+/// The start state of this name.
+pub(super) fn start(name: &str) -> Result<Wanted, String> {
+    let found = Choice::ALL.into_iter().find(|choice| choice.name() == name).map(Wanted::Choice);
+    let found = found.or_else(|| (name == "cheapest").then_some(Wanted::Cheapest));
+    found.ok_or_else(|| "expected strings, domains, groups or cheapest".to_owned())
+}
+
+/// The places of a search from the start state that is wanted. From all strings, bits that others determine are computed
+/// as the options want it; the other starts are made of the bits as given.
+pub(super) fn places_from(
+    global: &Global,
+    loaded: &Loaded,
+    wanted: Wanted,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<Places, pipeline::Error> {
+    let plain = Places::as_given(&loaded.problem);
+    Ok(match wanted {
+        Wanted::Choice(Choice::Strings) => choose(global, loaded, settings, budget)?,
+        Wanted::Choice(choice) => pipeline::places_from(&loaded.problem, &plain, choice),
+        Wanted::Cheapest => {
+            let priced = pipeline::priced(&loaded.problem, &plain, settings, pipeline::PRECISION, budget)?;
+            priced.into_iter().next().map_or(plain, |cheapest| cheapest.places)
+        }
+    })
 }
 
 /// A circuit over no bits is not written.

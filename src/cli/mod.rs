@@ -6,6 +6,7 @@
 mod audit;
 mod compile;
 mod count;
+mod course;
 mod dossier;
 mod exit;
 mod explain;
@@ -15,6 +16,7 @@ mod limits;
 mod plan;
 mod progress;
 mod render;
+mod restrict;
 mod shots;
 mod simulate;
 mod texts;
@@ -74,6 +76,8 @@ struct Global {
     /// One solution is enough: let a searched state stand for several, where that searches less
     #[arg(long, global = true, conflicts_with = "no_narrowing")]
     any: bool,
+    #[command(flatten)]
+    restrict: restrict::Options,
 }
 
 #[derive(Subcommand)]

@@ -9,12 +9,13 @@ use crate::budget::Budget;
 use crate::circuit::{Circuit, Level, Mark, qasm};
 use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
-use crate::cli::{Global, Outcome, compile, input, plan, progress};
+use crate::cli::{Global, Outcome, compile, course, input, plan, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::pipeline;
 use crate::places::Places;
 use crate::report::simulation::{self as report, Terms};
 use crate::report::{files, json};
+use crate::search::course::Course;
 use crate::search::simulate::{self, SimulateError, Simulation, Way};
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -29,7 +30,10 @@ pub(super) struct Options {
     /// The places file of the search [default: S.places.json beside S.qasm, else bit i is search[i]]
     #[arg(long, value_name = "FILE")]
     places: Option<PathBuf>,
-    /// With a problem: so many iterations instead of the planned number
+    /// With a problem: the start state, strings, domains, groups or cheapest
+    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start)]
+    start: input::Wanted,
+    /// So many iterations instead of the planned number; in a search file, the value of its input
     #[arg(long, value_name = "NUMBER", value_parser = plan::number)]
     iterations: Option<BigUint>,
     /// With a problem: the gate set, wide, toffoli, clifford-t or feedback
@@ -64,7 +68,8 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         if is_circuit { from_circuit(global, options)? } else { from_problem(global, options, &budget)? };
     let threads = input::settings(global, options.level, Mark::Phase).threads;
     let wanted = simulate::Options { way: options.way, draw: options.draw, seed: global.seed, threads };
-    let found = simulate::simulate(&circuit, &wanted, &budget).map_err(|error| refused(&error, &options.file, &sources))?;
+    let found =
+        simulate::simulate(&circuit, &wanted, &budget).map_err(|error| refused(&error, &options.file, &sources))?;
     drop(progress);
     let written = write(options, &found);
     written.map_err(|error| Failure::stage(&error.into(), &sources))?;
@@ -95,7 +100,8 @@ fn from_circuit(global: &Global, options: &Options) -> Result<Read, Box<Failure>
             (Some((loaded, places)), sources)
         }
     };
-    let circuit = pipeline::read_circuit(Path::new(&options.file), &mut sources);
+    let given = options.iterations.as_ref().and_then(|iterations| u64::try_from(iterations).ok());
+    let circuit = pipeline::read_circuit_given(Path::new(&options.file), given, &mut sources);
     Ok((circuit.map_err(|messages| Failure::input(messages, &sources))?, terms, sources))
 }
 
@@ -103,16 +109,20 @@ fn from_circuit(global: &Global, options: &Options) -> Result<Read, Box<Failure>
 fn from_problem(global: &Global, options: &Options, budget: &Budget) -> Result<Read, Box<Failure>> {
     let (loaded, mut sources) = input::load(global, &options.file)?;
     input::refuse_empty(&loaded, &sources)?;
-    let places = Places::as_given(&loaded.problem);
     let settings = input::settings(global, options.level, Mark::Phase);
-    let product = {
+    let (places, product) = {
         let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
+        let places = input::places_from(global, &loaded, options.start, settings, budget).map_err(stage)?;
         let oracle = pipeline::oracle(&loaded.problem, &places, settings, budget).map_err(stage)?;
         let iterations = match &options.iterations {
             Some(iterations) => iterations.clone(),
-            None => compile::planned(&loaded, &places, settings, None, budget, &sources)?.0,
+            None => course::planned(&loaded, &places, settings, None, budget, &sources)?.0,
         };
-        pipeline::whole_search(&oracle, &iterations).map_err(stage)?
+        let product = match (places.start.parts(), u64::try_from(&iterations)) {
+            ([], _) | (_, Err(_)) => pipeline::whole_search(&oracle, &iterations),
+            (_, Ok(iterations)) => pipeline::course(&oracle, &places.start, &Course::Plain(iterations)),
+        };
+        (places, product.map_err(stage)?)
     };
     let mut text = Vec::new();
     qasm::write::write(&product.circuit, &[], &mut text).expect("memory takes everything");

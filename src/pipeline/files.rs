@@ -2,16 +2,23 @@
 
 use std::path::Path;
 
-use super::Error;
-use crate::circuit::{Circuit, Product, qasm};
+use super::{Error, Settings};
+use crate::budget::Budget;
+use crate::circuit::{Circuit, ITERATIONS, Level, Product, SEARCH, qasm};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::audit;
 use crate::judge::count::Counted;
 use crate::places::Places;
 use crate::report::files::{WriteError, write_whole};
 use crate::report::header::header;
+use crate::report::simulation::svg;
+use crate::search::simulate;
 use crate::source::Loaded;
 use crate::span::Sources;
+
+/// The largest search whose curve a dossier shows: with gates that keep basis states, and with others.
+const CURVE_BITS: usize = 22;
+const CURVE_BITS_ONE_BY_ONE: usize = 12;
 
 /// Writes a circuit file and reads it back from the disk, so that what is judged is what the user gets.
 pub(super) fn write_and_read(
@@ -29,8 +36,41 @@ pub(super) fn write_and_read(
     })
 }
 
+/// Writes the success by iteration of a search file that was read, as a picture, where following it is a matter of moments.
+pub(super) fn write_curve(
+    path: &Path,
+    loaded: &Loaded,
+    product: &Product,
+    circuit: &Circuit,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<(), Error> {
+    let most = if product.level <= Level::Toffoli { CURVE_BITS } else { CURVE_BITS_ONE_BY_ONE };
+    if circuit.register(SEARCH).len() > most {
+        return Ok(());
+    }
+    let options = simulate::Options { seed: settings.seed, threads: settings.threads, ..simulate::Options::default() };
+    match simulate::simulate(circuit, &options, budget) {
+        Ok(found) if !found.curve.is_empty() && !found.partial => {
+            let title = loaded.problem.title.as_deref().unwrap_or(&loaded.file);
+            let picture = svg(&found, &format!("{title}: success by iteration"));
+            Ok(write_whole(path, |out| out.write_all(picture.as_bytes()))?)
+        }
+        _ => Ok(()),
+    }
+}
+
 /// Reads a circuit file.
 pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
+    read_circuit_given(path, None, sources)
+}
+
+/// Reads a circuit file; where its number of iterations is an input, it gets this value.
+pub fn read_circuit_given(
+    path: &Path,
+    iterations: Option<u64>,
+    sources: &mut Sources,
+) -> Result<Circuit, Vec<Diagnostic>> {
     let name = path.display().to_string();
     let text = std::fs::read_to_string(path).map_err(|error| {
         vec![
@@ -39,7 +79,8 @@ pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<D
                 .expected("an OpenQASM file"),
         ]
     })?;
-    qasm::read::read(&text, &name, sources)
+    let given = iterations.and_then(|value| qasm::read::give(&text, ITERATIONS, value));
+    qasm::read::read(given.as_ref().unwrap_or(&text), &name, sources)
 }
 
 /// Writes a JSON value, whole or not at all.

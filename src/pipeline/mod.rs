@@ -38,7 +38,7 @@ pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use choice::{Candidate, Narrowing, choose};
 pub use counting::count;
 pub use error::Error;
-pub use files::{read_circuit, write_certificate, write_json};
+pub use files::{read_circuit, read_circuit_given, write_certificate, write_json};
 pub use objective::{Ladder, Optimal, Rung, ladder};
 pub use oracle::{
     CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, turned, whole_search,
@@ -48,7 +48,7 @@ pub use planning::{advice_on, plan_for};
 pub use start::{PRECISION, Priced, places_from, priced};
 pub use tally::{Margin, Tallied, tally, tally_for_plan};
 
-use files::write_and_read;
+use files::{write_and_read, write_curve};
 use oracle::{every_level, why_no_oracle};
 
 /// What the user asked for.
@@ -108,6 +108,7 @@ pub fn dossier(
             let product = whole_search_within(&phase, &plan.iterations, limits)?;
             let circuit = write_and_read(&folder.join("search.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit::audit_search(problem, places, &circuit, SEARCH_WORK, budget)?;
+            write_curve(&folder.join("search.svg"), loaded, &product, &circuit, settings, budget)?;
             if verdict.iterations_checked > 0 && BigUint::from(verdict.iterations) != plan.iterations {
                 let (wanted, found) = (&plan.iterations, verdict.iterations);
                 return Err(Error::Fault(format!("the search file has {found} iterations, planned were {wanted}")));

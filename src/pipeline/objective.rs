@@ -9,48 +9,11 @@ use crate::judge::count::Counted;
 use crate::places::Places;
 use crate::problem::check::ranges;
 use crate::problem::{Problem, Sense};
-use crate::search::plan::minimum::{Minimum, minimum};
+use crate::search::plan::ladder::{Ladder, Optimal, Rung};
+use crate::search::plan::minimum::minimum;
 
 /// At most so many thresholds are counted one by one; what is worse than all of them counts as one class.
 const MOST_RUNGS: usize = 512;
-
-/// A threshold, and how many solutions are at least as good.
-#[derive(Clone, PartialEq, Eq, Debug)]
-pub struct Rung {
-    /// The value of the objective.
-    pub value: i64,
-    /// Solutions with this value or a better one.
-    pub as_good: BigUint,
-}
-
-/// Why nothing is better than the optimum.
-#[derive(Clone, Copy, PartialEq, Eq, Debug)]
-pub enum Optimal {
-    /// The objective never takes a better value: its range ends here.
-    Range,
-    /// A refutation of the next better threshold, written and checked step by step.
-    Refuted {
-        /// Steps of the refutation.
-        steps: usize,
-    },
-}
-
-/// What is known of an objective.
-#[derive(Clone, PartialEq, Debug)]
-pub struct Ladder {
-    /// The direction.
-    pub sense: Sense,
-    /// All solutions, whatever their value.
-    pub solutions: BigUint,
-    /// From the best value on, one for each value that some solution has.
-    pub rungs: Vec<Rung>,
-    /// Whether worse values were left out.
-    pub is_cut: bool,
-    /// The proof that the first rung is the best; `None` where there is no solution.
-    pub optimal: Option<Optimal>,
-    /// The search for the best value: expected iterations in all, and the bounds.
-    pub search: Option<Minimum>,
-}
 
 /// Counts threshold by threshold. The problem has an objective.
 pub fn ladder(problem: &Problem, places: &Places, settings: Settings, budget: &Budget) -> Result<Ladder, Error> {

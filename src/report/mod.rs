@@ -7,6 +7,7 @@ pub mod files;
 pub mod front;
 pub mod header;
 pub mod json;
+pub mod objective;
 pub mod places;
 pub mod plan;
 pub mod readable;

@@ -196,6 +196,10 @@ pub fn svg(simulation: &Simulation, title: &str) -> String {
         );
     }
     _ = writeln!(svg, "<text x=\"{}\" y=\"310\" text-anchor=\"middle\">iterations</text>", LEFT + WIDTH / 2.0);
-    _ = writeln!(svg, "<polyline points=\"{}\" fill=\"none\" stroke=\"#1f5fa8\" stroke-width=\"1.5\"/>", points.trim_end());
+    _ = writeln!(
+        svg,
+        "<polyline points=\"{}\" fill=\"none\" stroke=\"#1f5fa8\" stroke-width=\"1.5\"/>",
+        points.trim_end()
+    );
     svg + "</svg>\n"
 }

@@ -66,7 +66,11 @@ impl Course {
             Details::Interval(interval) => number(&interval.iterations).map(Self::Plain),
             Details::Certainty(tuned) => {
                 let iterations = number(&tuned.iterations)?;
-                Some(if tuned.phase == PI { Self::Plain(iterations) } else { Self::Matched { iterations, phase: tuned.phase } })
+                Some(if tuned.phase == PI {
+                    Self::Plain(iterations)
+                } else {
+                    Self::Matched { iterations, phase: tuned.phase }
+                })
             }
             Details::FixedPoint(sequence) => sequence.phases().map(Self::Sequence),
             Details::Schedule(..) => Some(Self::Given),
@@ -229,8 +233,7 @@ impl<'o> Search<'o> {
     fn measure(&mut self, course: &Course) {
         let from = self.circuit.gates().len();
         let counting = matches!(course, Course::Counting(_));
-        let (name, mut qubits) =
-            if counting { (COUNTED, self.count.clone()) } else { (FOUND, self.search.clone()) };
+        let (name, mut qubits) = if counting { (COUNTED, self.count.clone()) } else { (FOUND, self.search.clone()) };
         if counting {
             qubits.reverse();
         }

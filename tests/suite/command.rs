@@ -74,7 +74,7 @@ fn the_dossier_of_a_demo() {
     assert_eq!(report["audit"]["inputs"], "8192");
     assert_eq!(report["search"]["audit"]["verdict"], "equal");
     assert_eq!(report["plan"]["iterations"], "10");
-    for name in ["oracle.qasm", "search.qasm", "places.json", "report.json", "summary.txt"] {
+    for name in ["oracle.qasm", "search.qasm", "search.svg", "places.json", "report.json", "summary.txt"] {
         assert!(desk.path("folder").join(name).exists(), "{name}");
     }
     let written: Value = serde_json::from_slice(&std::fs::read(desk.path("folder/report.json")).unwrap()).unwrap();

@@ -168,8 +168,7 @@ fn matched_phases_from_a_restricted_start() {
     let places = Places { start, ..Places::as_given(&problem) };
     let (space, marked) = (BigUint::from(6u32), BigUint::from(marked(&problem)));
     let tuned = certainty(&space, &marked).unwrap();
-    let course =
-        Course::Matched { iterations: u64::try_from(&tuned.iterations).unwrap(), phase: tuned.phase };
+    let course = Course::Matched { iterations: u64::try_from(&tuned.iterations).unwrap(), phase: tuned.phase };
     let bit = oracle(&problem, &places, Level::Toffoli, Mark::Bit);
     let circuit = course::circuit(&bit, &places.start, &course, Level::Toffoli);
     let found = follow(&text_of(&circuit), Some(Way::Classes));

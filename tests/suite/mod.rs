@@ -23,6 +23,7 @@ mod planning;
 mod proofs;
 mod random_problem;
 mod rebuilt;
+mod restricting;
 mod simulating;
 mod starting;
 mod states;

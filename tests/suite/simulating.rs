@@ -83,7 +83,7 @@ fn every_level_and_every_way_gives_the_published_curve() {
                     let found = run(&circuit, way);
                     if way != Some(Way::Gates) {
                         assert_ne!(found.way, Way::Gates, "seed {seed} {level} {iterations}: {:?}", found.notes);
-                        assert_eq!(found.marked, Some(if iterations > 0 { marked } else { 0 }), "seed {seed} {level}");
+                        assert_eq!(found.marked, (iterations > 0).then_some(marked), "seed {seed} {level}");
                         assert_eq!(found.iterations, iterations);
                         if iterations > 0 {
                             assert_eq!(found.curve.len() as u64, iterations + 1);
@@ -94,8 +94,7 @@ fn every_level_and_every_way_gives_the_published_curve() {
                         }
                     } else {
                         // The results gate by gate: the solutions together have the published probability.
-                        let hit: f64 =
-                            found.likeliest.iter().filter(|(b, _)| problem.holds(b)).map(|(_, p)| p).sum();
+                        let hit: f64 = found.likeliest.iter().filter(|(b, _)| problem.holds(b)).map(|(_, p)| p).sum();
                         assert!((hit - published(bits, marked, 5)).abs() < 1e-9, "seed {seed} {level}: {hit}");
                     }
                     tried += 1;
@@ -218,8 +217,14 @@ fn what_does_not_fit_is_refused_in_numbers() {
         simulate(circuit, &Options { way, ..Options::default() }, budget).unwrap_err()
     };
     assert!(matches!(refused(&circuit, &Budget::unlimited(), None), SimulateError::TooLarge { .. }));
-    let small = through_text(&whole_search(&oracle(&clauses(8, 6, 1), Level::Wide, Mark::Phase).unwrap(), 2, Level::Wide), |t| t);
+    let small = through_text(
+        &whole_search(&oracle(&clauses(8, 6, 1), Level::Wide, Mark::Phase).unwrap(), 2, Level::Wide),
+        |t| t,
+    );
     let error = refused(&small, &Budget::unlimited().with_memory(1000), Some(Way::Steps));
     assert!(matches!(&error, SimulateError::TooLarge { .. }), "{error}");
-    assert_eq!(refused(&oracle(&clauses(8, 6, 1), Level::Wide, Mark::Phase).unwrap(), &Budget::unlimited(), None), SimulateError::NoResult);
+    assert_eq!(
+        refused(&oracle(&clauses(8, 6, 1), Level::Wide, Mark::Phase).unwrap(), &Budget::unlimited(), None),
+        SimulateError::NoResult
+    );
 }

@@ -150,12 +150,18 @@ fn check_from(problem: &Problem, places: &Places, level: Level, what: &str) -> b
     let marked = (0..1u64 << bits).filter(|&value| holds(value)).count();
     let search = through_text(&course::circuit(&circuit, &places.start, &Course::Plain(3), level));
     let found = follow(&search);
-    assert_ne!(found.way, Way::Gates, "{what} {level}: {:?}", found.notes);
-    assert_eq!((found.space, found.marked), (Some(all as u64), Some(marked as u64)), "{what} {level}");
     let theta = (marked as f64 / all as f64).sqrt().asin();
+    let success = |k: usize| ((2 * k + 1) as f64 * theta).sin().powi(2);
+    if found.way == Way::Gates {
+        // Sign flips under two controls have complex phases inside below `toffoli`: these are followed gate by gate.
+        assert!(level >= Level::CliffordT, "{what} {level}: {:?}", found.notes);
+        let hit: f64 = found.likeliest.iter().filter(|(bits, _)| problem.holds(bits)).map(|one| one.1).sum();
+        assert!((hit - success(3)).abs() < 1e-9, "{what} {level}: {hit}");
+        return true;
+    }
+    assert_eq!((found.space, found.marked), (Some(all as u64), Some(marked as u64)), "{what} {level}");
     for (k, p) in found.curve.iter().enumerate() {
-        let wanted = ((2 * k + 1) as f64 * theta).sin().powi(2);
-        assert!((p - wanted).abs() < 1e-9, "{what} {level} {k}: {p} not {wanted}");
+        assert!((p - success(k)).abs() < 1e-9, "{what} {level} {k}: {p} not {}", success(k));
     }
     if level <= Level::Toffoli {
         let verdict = audit::audit_search(problem, places, &search, 1 << 22, &Budget::unlimited()).unwrap();
@@ -271,14 +277,15 @@ fn the_judge_finds_a_start_that_loses_solutions_and_an_oracle_that_is_wrong_with
     assert_eq!(verdict.outcome, Outcome::Differs);
     let witness = verdict.witness.unwrap();
     assert!(problem.holds(&witness.bits), "{witness:?}");
-    let too_small = Places { start: below(2, 3), ..good.clone() };
+    let too_small = Places { start: below(1, 1), ..good.clone() };
     let verdict = judge(&too_small, &circuit);
     assert!(problem.holds(&verdict.witness.expect("a lost solution").bits));
     // One more sign, on a string within the start.
     let mut wrong = circuit.clone();
     let search = wrong.register("search");
     let inside = (0..1u64 << 7).find(|value| good.start.allows(|qubit| value >> qubit & 1 == 1)).unwrap();
-    let controls: Vec<_> = (0..6).map(|at| tallymark::circuit::Control::new(search[at], inside >> at & 1 == 1)).collect();
+    let controls: Vec<_> =
+        (0..6).map(|at| tallymark::circuit::Control::new(search[at], inside >> at & 1 == 1)).collect();
     wrong.push(Op::X, &[], search[6]);
     wrong.push(Op::Z, &controls, search[6]);
     wrong.push(Op::X, &[], search[6]);

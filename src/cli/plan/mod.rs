@@ -12,17 +12,17 @@ use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, input, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
-use crate::pipeline;
+use crate::pipeline::{self, Priced};
 use crate::places::Places;
 use crate::report::plan::answer_json;
-use crate::report::{json, summary};
+use crate::report::{json, objective, summary};
 use crate::search::Advice;
 use crate::search::plan::split::Machines;
 use crate::search::plan::{self, Aim, Answer, Erring, Known, Question, Unanswerable, noise};
 use crate::source::Loaded;
 use crate::span::Sources;
 
-pub(super) use options::{Options, inner_chance, number};
+pub(super) use options::{Options, aim, inner_chance, number};
 
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     match &options.file {
@@ -62,7 +62,26 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, Mark::Phase);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
-    let places = input::choose(global, &loaded, settings, &budget).map_err(stage)?;
+    let places = input::places_from(global, &loaded, options.start, settings, &budget).map_err(stage)?;
+    if options.objective {
+        let ladder = pipeline::ladder(&loaded.problem, &places, settings, &budget).map_err(stage)?;
+        drop(line);
+        if !global.json {
+            return Ok((Exit::Done, objective::text(&loaded, &ladder)));
+        }
+        object.insert("objective".to_owned(), objective::json(&ladder));
+        return Ok((Exit::Done, json::print(object)));
+    }
+    let starts = match options.start {
+        input::Wanted::Cheapest => {
+            let plain = Places::as_given(&loaded.problem);
+            pipeline::priced(&loaded.problem, &plain, settings, pipeline::PRECISION, &budget).map_err(stage)?
+        }
+        input::Wanted::Choice(_) => Vec::new(),
+    };
+    if !starts.is_empty() {
+        object.insert("starts".to_owned(), starts.iter().map(start_json).collect());
+    }
     let mut ground = ground(&loaded, &places, options.error);
     if let Some(each) = options.gate_error {
         let gates = pipeline::gates_of_iteration(&loaded.problem, &places, settings, &budget).map_err(stage)?;
@@ -94,7 +113,29 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     };
     advice.append(&mut answer.outline.advice);
     answer.outline.advice.clone_from(&advice);
-    Ok(print(global, Some(&loaded), object, Some(&answer), &advice, exit))
+    let (exit, mut text) = print(global, Some(&loaded), object, Some(&answer), &advice, exit);
+    if !global.json {
+        starts.iter().for_each(|priced| text += &start_line(priced));
+    }
+    Ok((exit, text))
+}
+
+/// A start state with its price.
+fn start_json(priced: &Priced) -> Value {
+    serde_json::json!({
+        "start": priced.choice.name(),
+        "space": Counted::space(&priced.places).to_string(),
+        "t_gates_of_iteration": priced.iteration,
+        "rotations_of_iteration": priced.rotations,
+        "t_gates": priced.total,
+    })
+}
+
+fn start_line(priced: &Priced) -> String {
+    let Priced { choice, places, iteration, rotations, total } = priced;
+    let space = words(&Counted::space(places));
+    let costs = format!("{iteration:.0} T an iteration with {rotations} rotations, {total:.0} T for one marked state");
+    format!("{:<12}{}: {space} states, {costs}\n", "start", choice.name())
 }
 
 fn ground(loaded: &Loaded, places: &Places, error: Option<f64>) -> Ground {

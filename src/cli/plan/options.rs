@@ -64,6 +64,13 @@ pub(in crate::cli) struct Options {
     /// Guess some bits where that is faster: so many machines run side by side
     #[arg(long, value_name = "NUMBER")]
     pub(super) machines: Option<std::num::NonZeroU64>,
+    /// With a problem: the start state, strings, domains, groups or cheapest
+    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start, conflicts_with = "space")]
+    pub(super) start: input::Wanted,
+    /// The objective of the problem: its best value with the proof, the thresholds with their tallies, and what a search for
+    /// the best value takes
+    #[arg(long, conflicts_with_all = ["space", "aim", "count", "low", "high"])]
+    pub(super) objective: bool,
     /// Say as well what it takes to see every solution
     #[arg(long)]
     pub(super) find_all: bool,
@@ -114,7 +121,8 @@ fn bound(text: &str) -> Result<BigUint, String> {
     fits.then_some(short).ok_or_else(|| format!("expected a number below 2^{PRINTED_BITS}"))
 }
 
-fn aim(name: &str) -> Result<Aim, String> {
+/// The aim of this name.
+pub(in crate::cli) fn aim(name: &str) -> Result<Aim, String> {
     Aim::ALL.into_iter().find(|aim| aim.name() == name).ok_or_else(|| {
         let names: Vec<_> = Aim::ALL.iter().map(|aim| aim.name()).collect();
         format!("expected one of {}", names.join(", "))

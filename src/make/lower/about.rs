@@ -84,7 +84,8 @@ pub fn append_reflection_about(
 /// The measured bits of the oracle's corrections serve again where there are enough; else the reflection gets its own.
 fn outcomes(circuit: &mut Circuit, count: usize) -> Vec<MeasuredId> {
     const OWN: &str = "reflected";
-    let fits = |name: &str, register: &crate::circuit::Register| register.name == name && register.len as usize >= count;
+    let fits =
+        |name: &str, register: &crate::circuit::Register| register.name == name && register.len as usize >= count;
     let found = circuit.measured.iter().find(|register| fits(OUTCOME, register) || fits(OWN, register));
     match found {
         Some(register) => (0..count).map(|at| MeasuredId::new(register.start as usize + at)).collect(),

@@ -65,9 +65,16 @@ fn figures(space: &BigUint, low: &BigUint, high: &BigUint, iterations: BigUint) 
     let worst = if zero_inside { Wide::ZERO } else { at_low.min(at_high) };
     // The success is 1 somewhere inside where a quarter turn, or an odd number of them, lies between the two angles.
     let quarters = |theta: Wide| (odd * theta * Wide::new(std::f64::consts::FRAC_2_PI)).to_f64();
-    let (from, to) = (quarters(super::success::theta_wide(space, low)), quarters(super::success::theta_wide(space, high)));
+    let (from, to) =
+        (quarters(super::success::theta_wide(space, low)), quarters(super::success::theta_wide(space, high)));
     let peak_inside = ((from + 1.0) / 2.0).ceil() * 2.0 - 1.0 <= to;
-    let best = if peak_inside { Wide::ONE } else if at_low > at_high { at_low } else { at_high };
+    let best = if peak_inside {
+        Wide::ONE
+    } else if at_low > at_high {
+        at_low
+    } else {
+        at_high
+    };
     let figures = Interval {
         best: best.to_f64(),
         success_at_low: at_low.to_f64(),
@@ -103,6 +110,15 @@ mod tests {
             let peak = u64::try_from(first_peak(&big(n), &big(low))).unwrap();
             let best = (0..=peak).map(worst_of).fold(0.0, f64::max);
             let own = worst_of(u64::try_from(found.iterations.clone()).unwrap());
+            let odd = 2.0 * u64::try_from(found.iterations.clone()).unwrap() as f64 + 1.0;
+            let (from, to) = (theta(&big(n), &big(low)), theta(&big(n), &big(high)));
+            let top = (0..=4000).map(|i| (odd * (from + (to - from) * f64::from(i) / 4000.0)).sin().powi(2));
+            let top = top.fold(0.0, f64::max);
+            assert!(
+                found.best + 1e-12 > top && found.best < top + 1e-4,
+                "{low} to {high} in {n}: {top}, {}",
+                found.best
+            );
             assert!((own - found.worst).abs() < 1e-4, "{low} to {high} in {n}: {own} and {}", found.worst);
             assert!(found.worst > best - 1e-4, "{low} to {high} in {n}: {} but {best} is possible", found.worst);
         }

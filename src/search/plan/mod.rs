@@ -24,6 +24,7 @@ pub mod collect;
 pub mod estimate;
 pub mod fixed_point;
 pub mod interval;
+pub mod ladder;
 pub mod minimum;
 pub mod noise;
 pub mod outline;

@@ -48,7 +48,7 @@ impl<'r> Classes<'r> {
             } else {
                 for value in values {
                     let (s, a) = (axis.at(value), start.at(value));
-                    sum.size += u64::from(a != 0.0);
+                    sum.size += u64::from(is_there(a));
                     sum.axis += s * s;
                     sum.both += s * a;
                     sum.start += a * a;
@@ -83,9 +83,8 @@ impl<'r> Classes<'r> {
     /// `1 - (1 - f)|s><s|`.
     pub(super) fn reflect(&mut self, factor: Complex) {
         let parts = self.rules.iter().zip(&self.sums);
-        let along = parts.fold(Complex::ZERO, |along, (rule, sum)| {
-            along + rule.axis.scaled(sum.axis) + rule.start.scaled(sum.both)
-        });
+        let along = parts
+            .fold(Complex::ZERO, |along, (rule, sum)| along + rule.axis.scaled(sum.axis) + rule.start.scaled(sum.both));
         let taken = (Complex::ONE - factor) * along;
         self.rules.iter_mut().for_each(|rule| rule.axis = rule.axis - taken);
     }
@@ -105,9 +104,8 @@ impl<'r> Classes<'r> {
     /// not level, runs of one value).
     pub(super) fn chances(&self, bits: usize, mut each: impl FnMut(std::ops::Range<usize>, f64)) {
         let levels = self.axis.level().zip(self.start.level());
-        let flat: Option<Vec<f64>> = levels.map(|(s, a)| {
-            self.rules.iter().map(|rule| (rule.axis.scaled(s) + rule.start.scaled(a)).norm()).collect()
-        });
+        let flat: Option<Vec<f64>> = levels
+            .map(|(s, a)| self.rules.iter().map(|rule| (rule.axis.scaled(s) + rule.start.scaled(a)).norm()).collect());
         each_run(bits, self.planes, |class, values| match &flat {
             Some(flat) => each(values, flat[class]),
             None => {
@@ -119,6 +117,11 @@ impl<'r> Classes<'r> {
             }
         });
     }
+}
+
+/// Whether an amplitude is more than what rounding leaves: that of 2^30 strings is above 3e-5.
+pub(super) fn is_there(amplitude: f64) -> bool {
+    amplitude.abs() > 1e-9
 }
 
 /// Calls `each` with runs of neighbouring values of one class, in order.

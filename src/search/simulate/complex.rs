@@ -24,12 +24,8 @@ impl Complex {
     pub(super) fn turn(angle: f64) -> Self {
         let quarters = angle / std::f64::consts::FRAC_PI_2;
         if (quarters - quarters.round()).abs() < 1e-15 && quarters.abs() < 1e6 {
-            return [
-                Self::ONE,
-                Self { re: 0.0, im: 1.0 },
-                Self::real(-1.0),
-                Self { re: 0.0, im: -1.0 },
-            ][(quarters.round() as i64).rem_euclid(4) as usize];
+            return [Self::ONE, Self { re: 0.0, im: 1.0 }, Self::real(-1.0), Self { re: 0.0, im: -1.0 }]
+                [(quarters.round() as i64).rem_euclid(4) as usize];
         }
         let (im, re) = angle.sin_cos();
         Self { re, im }

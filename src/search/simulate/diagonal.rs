@@ -70,9 +70,8 @@ impl Run<'_> {
 
     /// The basis state of the other qubits, where rows will do.
     fn basis_state(&self) -> Option<&[u64]> {
-        let plain = |gate: &Gate| {
-            gate.condition().is_none() && !matches!(gate.op(), Op::H | Op::Ry | Op::Measure | Op::Reset)
-        };
+        let plain =
+            |gate: &Gate| gate.condition().is_none() && !matches!(gate.op(), Op::H | Op::Ry | Op::Measure | Op::Reset);
         let turning = self.gates.iter().filter(|gate| !matches!(gate.op(), Op::X | Op::Z)).count();
         let fits = self.rest.len() == 1 && turning <= MOST_PLANES && self.gates.iter().all(plain);
         fits.then(|| self.rest.entries().next().expect("one basis state").0)
@@ -107,7 +106,12 @@ impl Run<'_> {
     }
 
     /// The sets of values, block by block: first the sign, then each gate with another phase.
-    fn rows_of(&self, rest: &[u64], blocks: std::ops::Range<usize>, budget: &Budget) -> Result<Vec<Plane>, NotDiagonal> {
+    fn rows_of(
+        &self,
+        rest: &[u64],
+        blocks: std::ops::Range<usize>,
+        budget: &Budget,
+    ) -> Result<Vec<Plane>, NotDiagonal> {
         let mut rows: Vec<Row> = (0..self.circuit.qubit_count())
             .map(|qubit| [if is_set(rest, QubitId::new(qubit)) { u64::MAX } else { 0 }; WORDS])
             .collect();

@@ -45,7 +45,8 @@ pub(super) fn run(
     };
     let success = |state: &Sparse| {
         let marked = marked?;
-        let value = |row: &[u64]| search.iter().enumerate().map(|(at, &q)| usize::from(is_set(row, q)) << at).sum::<usize>();
+        let value =
+            |row: &[u64]| search.iter().enumerate().map(|(at, &q)| usize::from(is_set(row, q)) << at).sum::<usize>();
         let is_marked = |row: &[u64]| marked[value(row) / 64] >> (value(row) % 64) & 1 == 1;
         Some(state.entries().filter(|(row, _)| is_marked(row)).map(|(_, a)| a.norm()).sum::<f64>())
     };
@@ -75,7 +76,9 @@ pub(super) fn run(
         }
     }
     let last = success(&machine.state);
-    if curve.is_empty() || circuit.blocks().last().is_some_and(|block| block.repeat == 1 && (block.gates.start as usize) < tail) {
+    if curve.is_empty()
+        || circuit.blocks().last().is_some_and(|block| block.repeat == 1 && (block.gates.start as usize) < tail)
+    {
         curve.extend(last);
     }
     Ok(Ran { curve, results: machine.results(&circuit.gates()[tail..]), drawn: machine.drawn })

@@ -14,6 +14,7 @@
 mod classes;
 mod complex;
 mod diagonal;
+mod draw;
 mod gates;
 mod reading;
 mod sparse;
@@ -26,9 +27,9 @@ use crate::budget::Budget;
 use crate::circuit::{Circuit, FOUND, Gate, Op, QubitId, SEARCH};
 use crate::id::Id;
 use crate::problem::Bits;
-use crate::random::SplitMix64;
 use classes::Classes;
 use complex::Complex;
+use draw::{draw, draw_from};
 use reading::Reading;
 use steps::{Axis, Stepped};
 use vector::Vector;
@@ -201,7 +202,12 @@ pub fn bytes_needed(circuit: &Circuit, search: &[QubitId], steps: bool) -> u128 
     strings * 8 * vectors + strings / 8 * 4
 }
 
-fn check_memory(circuit: &Circuit, search: &[QubitId], options: &Options, budget: &Budget) -> Result<(), SimulateError> {
+fn check_memory(
+    circuit: &Circuit,
+    search: &[QubitId],
+    options: &Options,
+    budget: &Budget,
+) -> Result<(), SimulateError> {
     if search.len() > MOST_BITS {
         let words = |bits: usize| format!("a search register of {bits} qubits");
         return Err(SimulateError::TooLarge { needed: words(search.len()), limit: format!("{MOST_BITS} qubits") });
@@ -256,6 +262,12 @@ fn by_classes(reading: &Reading, bits: usize, options: &Options, budget: &Budget
         notes: Vec::new(),
         partial: done < iterations,
     };
+    if iterations == 0 {
+        // Without an iteration there is no oracle that says what is marked.
+        (simulation.marked, simulation.success) = (None, None);
+        simulation.curve.clear();
+        simulation.notes.push("the file has no iteration, so it does not say what is marked".to_owned());
+    }
     if options.draw > 0 {
         simulation.drawn = draw(bits, options, |each| classes.chances(bits, each));
     }
@@ -266,7 +278,9 @@ fn by_steps(reading: &Reading, bits: usize, options: &Options, budget: &Budget) 
     let is_sign = |factor: Complex| factor.is_near(Complex::real(-1.0));
     let mut steps = reading.loops.iter().flat_map(|part| &part.steps);
     let first = steps.clone().next().map_or(&[][..], |step| &step.turns);
-    if !steps.all(|step| step.turns == first && is_sign(step.reflection) && step.turns.iter().all(|turn| is_sign(turn.1))) {
+    if !steps
+        .all(|step| step.turns == first && is_sign(step.reflection) && step.turns.iter().all(|turn| is_sign(turn.1)))
+    {
         let why = "its phases are not the same signs in every iteration".to_owned();
         return Err(SimulateError::NotFollowed { way: "step by step", why });
     }
@@ -287,7 +301,7 @@ fn by_steps(reading: &Reading, bits: usize, options: &Options, budget: &Budget) 
     let mut curve = vec![chance(&amplitudes)];
     let there = |word: usize| {
         let of = &amplitudes[word * 64..amplitudes.len().min(word * 64 + 64)];
-        of.iter().enumerate().fold(0u64, |set, (at, &a)| set | u64::from(a != 0.0) << at)
+        of.iter().enumerate().fold(0u64, |set, (at, &a)| set | u64::from(classes::is_there(a)) << at)
     };
     let counts = (0..marked.len()).map(|word| (there(word), there(word) & marked[word]));
     let (space, marked_count) = counts.fold((0, 0), |(space, all), (there, set)| {
@@ -366,63 +380,4 @@ fn by_gates(
         notes,
         partial: false,
     })
-}
-
-/// The points at which results are drawn, in increasing order.
-fn points(options: &Options) -> Vec<f64> {
-    let mut random = SplitMix64::new(options.seed);
-    let mut points: Vec<f64> = (0..options.draw).map(|_| random.unit()).collect();
-    points.sort_by(f64::total_cmp);
-    points
-}
-
-/// Draws by one pass over all strings: each point falls into the string whose share of the whole covers it.
-fn draw(
-    bits: usize,
-    options: &Options,
-    all: impl FnOnce(&mut dyn FnMut(std::ops::Range<usize>, f64)),
-) -> Vec<(Bits, u64)> {
-    let points = points(options);
-    let mut drawn: Vec<(Bits, u64)> = Vec::new();
-    let (mut next, mut so_far, mut last) = (0, 0.0, 0);
-    let mut take = |value: usize| {
-        let bits = Bits::from_number(value as u128, bits);
-        match drawn.last_mut() {
-            Some(before) if before.0 == bits => before.1 += 1,
-            _ => drawn.push((bits, 1)),
-        }
-    };
-    all(&mut |values: std::ops::Range<usize>, chance: f64| {
-        if chance > 0.0 {
-            last = values.end - 1;
-            while next < points.len() && points[next] < so_far + chance * values.len() as f64 {
-                let at = ((points[next] - so_far) / chance).max(0.0) as usize;
-                take(values.start + at.min(values.len() - 1));
-                next += 1;
-            }
-            so_far += chance * values.len() as f64;
-        }
-    });
-    // Rounding may leave the sum of all a little below 1.
-    (next..points.len()).for_each(|_| take(last));
-    drawn
-}
-
-fn draw_from(results: &[(Bits, f64)], options: &Options) -> Vec<(Bits, u64)> {
-    let mut sorted: Vec<&(Bits, f64)> = results.iter().collect();
-    sorted.sort_by(|a, b| a.0.cmp(&b.0));
-    let all: f64 = sorted.iter().map(|result| result.1).sum();
-    let (mut at, mut so_far) = (0, 0.0);
-    let mut drawn: Vec<(Bits, u64)> = Vec::new();
-    for point in points(options) {
-        while at + 1 < sorted.len() && point >= (so_far + sorted[at].1) / all {
-            so_far += sorted[at].1;
-            at += 1;
-        }
-        match drawn.last_mut() {
-            Some(before) if before.0 == sorted[at].0 => before.1 += 1,
-            _ => drawn.push((sorted[at].0.clone(), 1)),
-        }
-    }
-    drawn
 }

@@ -137,7 +137,8 @@ impl<'c> Reader<'c> {
     fn segments(&mut self, tail: usize) -> Result<Vec<Segment<'c>>, String> {
         let gates = &self.circuit.gates()[..tail];
         let blocks = self.circuit.blocks();
-        let cut = |range: &std::ops::Range<u32>| &gates[(range.start as usize).min(tail)..(range.end as usize).min(tail)];
+        let cut =
+            |range: &std::ops::Range<u32>| &gates[(range.start as usize).min(tail)..(range.end as usize).min(tail)];
         let mut segments: Vec<Segment<'c>> = blocks
             .iter()
             .map(|block| Segment { gates: cut(&block.gates), repeat: block.repeat })
@@ -286,7 +287,9 @@ impl<'c> Reader<'c> {
             match self.planes(&gates[at..end]) {
                 Ok(planes) => return Ok((end, planes)),
                 Err(NotDiagonal::Moves) if self.local(&gates[end - 1]).is_some() => end -= 1,
-                Err(NotDiagonal::Moves) => return Err("a run of gates moves values or leaves qubits changed".to_owned()),
+                Err(NotDiagonal::Moves) => {
+                    return Err("a run of gates moves values or leaves qubits changed".to_owned());
+                }
                 Err(NotDiagonal::Tells) => return Err("a measurement depends on the value of the register".to_owned()),
                 Err(NotDiagonal::Phases) => return Err("there are too many different phases".to_owned()),
                 Err(NotDiagonal::Spent) => return Err(SPENT.to_owned()),
@@ -306,8 +309,16 @@ impl<'c> Reader<'c> {
         while centre < gates.len() {
             let begins = centre == at || matches!(gates[centre - 1].op(), Op::H | Op::Ry);
             let end = self.run_end(gates, centre);
-            if begins && end > centre && let Some(found) = self.reflect(gates, &before, centre..end)? {
-                return Ok(found);
+            let axis = self.axis.clone();
+            if begins
+                && end > centre
+                && let Some(found) = self.reflect(gates, &before, centre..end)?
+            {
+                // A part of the preparation may look like a reflection by itself: then no oracle comes after it.
+                if found.0 == gates.len() || self.diagonal(gates, found.0).is_ok() {
+                    return Ok(found);
+                }
+                self.axis = axis;
             }
             let Some(local) = self.local(&gates[centre]) else { break };
             before.push(local);
@@ -333,7 +344,9 @@ impl<'c> Reader<'c> {
         };
         let Some((value, factor)) = self.single(&planes) else { return Ok(None) };
         let window = gates.get(end..end + before.len()).unwrap_or(&[]);
-        let Some(after) = window.iter().map(|gate| self.local(gate)).collect::<Option<Vec<_>>>() else { return Ok(None) };
+        let Some(after) = window.iter().map(|gate| self.local(gate)).collect::<Option<Vec<_>>>() else {
+            return Ok(None);
+        };
         if after.len() != before.len() || !cancels(before, &after) || !after.iter().all(Local::is_real) {
             return Ok(None);
         }
@@ -352,9 +365,8 @@ impl<'c> Reader<'c> {
         let [plane] = planes else { return None };
         let ones: u64 = plane.set.iter().map(|word| u64::from(word.count_ones())).sum();
         let all = 1u64 << self.search.len();
-        let find = |wanted: bool| {
-            (0..all as usize).find(|&value| (plane.set[value / 64] >> (value % 64) & 1 == 1) == wanted)
-        };
+        let find =
+            |wanted: bool| (0..all as usize).find(|&value| (plane.set[value / 64] >> (value % 64) & 1 == 1) == wanted);
         match ones {
             1 => find(true).map(|value| (value, plane.factor)),
             // All the others have it: the same up to a global phase.
@@ -369,7 +381,9 @@ fn cancels(first: &[Local], second: &[Local]) -> bool {
     let mut left: Vec<&Local> = second.iter().collect();
     first.iter().rev().all(|gate| {
         let found = left.iter().position(|other| other.undoes(gate));
-        let Some(at) = found.filter(|&at| left[..at].iter().all(|before| !before.meets(left[at]))) else { return false };
+        let Some(at) = found.filter(|&at| left[..at].iter().all(|before| !before.meets(left[at]))) else {
+            return false;
+        };
         left.remove(at);
         true
     })

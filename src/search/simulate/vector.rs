@@ -96,9 +96,10 @@ impl Vector {
         }
         self.spread();
         let Self::Dense(amplitudes) = self else { return };
-        let (mask, want) = gate.controls.iter().fold((0usize, 0usize), |(mask, want), &(at, value)| {
-            (mask | 1 << at, want | usize::from(value) << at)
-        });
+        let (mask, want) = gate
+            .controls
+            .iter()
+            .fold((0usize, 0usize), |(mask, want), &(at, value)| (mask | 1 << at, want | usize::from(value) << at));
         let matrix = gate.matrix();
         let stride = 1usize << gate.target;
         for (block, pair) in amplitudes.chunks_exact_mut(2 * stride).enumerate() {
@@ -131,7 +132,9 @@ impl Vector {
         match self {
             Self::Product(qubits) => {
                 let even = qubits.iter().all(|&[a, b]| (a - b).abs() < 1e-15);
-                even.then(|| 0.5f64.powf(qubits.len() as f64 / 2.0) * qubits.iter().map(|q| q[0].signum()).product::<f64>())
+                even.then(|| {
+                    0.5f64.powf(qubits.len() as f64 / 2.0) * qubits.iter().map(|q| q[0].signum()).product::<f64>()
+                })
             }
             Self::Dense(_) => None,
         }

@@ -69,6 +69,8 @@ impl Compared {
         let mut findings = Findings::default();
         let lanes = LANES.min(1 << case.places.search_len());
         let within = Row::first_lanes(lanes);
+        // Where the start state holds every string, blocks without a difference are passed together.
+        let is_whole = case.places.start.parts().is_empty();
         // The first block after the last difference.
         let mut start = blocks.start;
         let mut block = blocks.start;
@@ -78,16 +80,13 @@ impl Compared {
                 (Some(one), None) | (None, Some(one)) => *one & within,
                 (Some(one), Some(other)) => (*one ^ *other) & within,
             };
-            let wrong = match wrong.is_zero() {
-                true => wrong,
-                false => wrong & support::row(&case.places.start, |qubit| Row::of_bit(qubit, block)),
-            };
-            if wrong.is_zero() {
+            let judged = support::row(&case.places.start, |qubit| Row::of_bit(qubit, block));
+            if wrong.is_zero() && is_whole {
                 block = circuit.dead_until(block).min(problem.dead_until(block)).clamp(block + 1, blocks.end);
                 continue;
             }
             findings.agree(case.roles, self.global, start * LANES, (block - start) * lanes);
-            findings.compared(case.roles, self.global, &wrong, block * LANES, lanes);
+            findings.compared(case.roles, self.global, &wrong, &judged, block * LANES, lanes);
             block += 1;
             start = block;
         }

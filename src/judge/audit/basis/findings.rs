@@ -10,6 +10,7 @@ use crate::id::Id;
 use crate::judge::audit::basis::kernel::Machine;
 use crate::judge::audit::basis::smallest::smallest;
 use crate::judge::audit::oracle::{Roles, Trace, problem_bits, trace};
+use crate::judge::audit::support;
 use crate::judge::audit::{How, Options, Outcome, Phases, Verdict, Witness};
 use crate::judge::rows::lanes::Row;
 use crate::places::Places;
@@ -87,18 +88,18 @@ impl Findings {
     }
 
     /// Adds `count` inputs from number `first` on, with one phase for all besides the mark, which is wrong in the lanes of
-    /// `wrong`.
-    pub(crate) fn compared(&mut self, roles: &Roles, global: u8, wrong: &Row, first: u64, count: u64) {
+    /// `wrong`; only the lanes of `judged` say anything.
+    pub(crate) fn compared(&mut self, roles: &Roles, global: u8, wrong: &Row, judged: &Row, first: u64, count: u64) {
         if roles.mark.is_some() {
-            note(&mut self.fault, wrong, first);
+            note(&mut self.fault, &(*wrong & *judged), first);
             return self.agree(roles, global, first, count);
         }
-        let lanes = Row::first_lanes(count);
+        let lanes = Row::first_lanes(count) & *judged;
         self.inputs += count;
         for at in 0..8 {
             let fits = match (usize::from(global) + 8 - at) % 8 {
                 0 => !*wrong & lanes,
-                4 => *wrong,
+                4 => *wrong & lanes,
                 _ => Row::ZEROS,
             };
             self.phase(at, &fits, &lanes, first);
@@ -225,9 +226,12 @@ impl Case<'_> {
     }
 
     /// Explains a difference by running the one input gate by gate and asking the reference evaluator; `None` where
-    /// there is none.
+    /// there is none, as on an input that the start state does not hold.
     pub(crate) fn explain(&self, x: &Bits, global: u8) -> Option<Witness> {
         let bits = problem_bits(self.places, x);
+        if !support::holds(self.places, &bits) {
+            return None;
+        }
         let is_solution = self.problem.holds(&bits);
         let expected = if is_solution { "marked" } else { "not marked" };
         let ys: &[bool] = if self.roles.mark.is_some() { &[false, true] } else { &[false] };

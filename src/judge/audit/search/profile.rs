@@ -47,9 +47,8 @@ impl<'t> Profile<'t> {
         let strings = 1usize << bits;
         let mut profile = Self { truth, start, strings, all: 0.0, marked: 0.0, theta: 0.0 };
         let held = (0..strings).filter(|&value| profile.is_held(value));
-        let (all, marked) = held.fold((0u64, 0u64), |(all, marked), value| {
-            (all + 1, marked + u64::from(profile.is_marked(value)))
-        });
+        let (all, marked) =
+            held.fold((0u64, 0u64), |(all, marked), value| (all + 1, marked + u64::from(profile.is_marked(value))));
         (profile.all, profile.marked) = (all as f64, marked as f64);
         profile.theta = (profile.marked / profile.all).sqrt().asin();
         profile

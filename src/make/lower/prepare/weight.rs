@@ -14,7 +14,8 @@ use crate::circuit::Op;
 /// Appends the gates.
 pub(super) fn append(turns: &mut Vec<Turn>, qubits: &[u32], ones: u32) {
     let (n, k) = (qubits.len(), ones as usize);
-    let flip_all = |turns: &mut Vec<Turn>, of: &[u32]| turns.extend(of.iter().map(|&qubit| Turn::new(Op::X, &[], qubit)));
+    let flip_all =
+        |turns: &mut Vec<Turn>, of: &[u32]| turns.extend(of.iter().map(|&qubit| Turn::new(Op::X, &[], qubit)));
     match k {
         0 => {}
         _ if k == n => flip_all(turns, qubits),
