@@ -42,6 +42,12 @@ pub(super) struct Options {
     /// The ancillas, which begin and end as 0 [default: all other qubits]
     #[arg(long, value_name = "QUBITS")]
     work: Option<String>,
+    /// Where the searched qubits are after an oracle, in the same order, if a router moved them [default: where they began]
+    #[arg(long, value_name = "QUBITS")]
+    search_after: Option<String>,
+    /// Where the mark is after a bit oracle, if a router moved it [default: where it began]
+    #[arg(long, value_name = "QUBIT")]
+    mark_after: Option<String>,
     /// The measured bits that hold the result of a whole search [default: the register found]
     #[arg(long, value_name = "BITS")]
     found: Option<String>,
@@ -151,8 +157,15 @@ fn exit_of(outcome: Found) -> Exit {
 
 /// The circuit with its qubits in the registers of their roles.
 fn assigned(options: &Options, path: &Path, circuit: Circuit) -> Result<Circuit, Box<Diagnostic>> {
-    let Options { search, mark, work, found, .. } = options;
-    let roles = Roles { search: search.clone(), mark: mark.clone(), work: work.clone(), found: found.clone() };
+    let Options { search, mark, work, found, search_after, mark_after, .. } = options;
+    let roles = Roles {
+        search: search.clone(),
+        mark: mark.clone(),
+        work: work.clone(),
+        found: found.clone(),
+        search_after: search_after.clone(),
+        mark_after: mark_after.clone(),
+    };
     if roles.is_empty() {
         return Ok(circuit);
     }
