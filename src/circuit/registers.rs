@@ -2,7 +2,8 @@
 //!
 //! Input: a circuit, and for each role a selection such as `q[0:4], r[2]`. Output: the same circuit with the qubits in
 //! registers `search`, `mark` and `work`, and measured bits in `found`. Qubits without a role become `work`. Gates keep
-//! their order and their number; only the numbers of qubits and bits change.
+//! their order and their number; only the numbers of qubits and bits change. Where a router left the search register or
+//! the mark on other qubits, swaps at the end bring them home.
 
 use thiserror::Error;
 
@@ -23,6 +24,10 @@ pub struct Roles {
     pub work: Option<String>,
     /// The measured bits that hold the result, in order.
     pub found: Option<String>,
+    /// Where the searched qubits are at the end, in the same order, if a router moved them.
+    pub search_after: Option<String>,
+    /// Where the mark is at the end, if a router moved it.
+    pub mark_after: Option<String>,
 }
 
 impl Roles {
@@ -47,6 +52,16 @@ pub enum RegistersError {
     /// A qubit or bit that is selected twice.
     #[error("{0} is selected twice")]
     Twice(String),
+    /// Another number of qubits at the end than at the beginning.
+    #[error("`{selection}` selects {found} qubits, and {expected} were given for the beginning")]
+    OtherNumber {
+        /// The selection for the end.
+        selection: String,
+        /// How many it selects.
+        found: usize,
+        /// How many there are.
+        expected: usize,
+    },
     /// A qubit that has no role.
     #[error("{0} is neither searched nor the mark nor a work qubit")]
     NoRole(String),
@@ -77,7 +92,32 @@ pub fn assign(circuit: &Circuit, roles: &Roles) -> Result<Circuit, RegistersErro
         measured.group(FOUND, selection)?;
     }
     measured.keep_rest();
-    Ok(renumbered(circuit, &qubits, &measured))
+    let mut moves = qubits.moves(SEARCH, roles.search_after.as_deref())?;
+    moves.extend(qubits.moves(MARK, roles.mark_after.as_deref())?);
+    let is_twice = |&(at, &(_, place)): &(usize, &(u32, u32))| moves[..at].iter().any(|&(_, before)| before == place);
+    if let Some((_, &(_, twice))) = moves.iter().enumerate().find(is_twice) {
+        let old = qubits.places.iter().position(|&place| place == twice).expect("a qubit of the circuit");
+        return Err(RegistersError::Twice(circuit.qubit_name(QubitId::new(old))));
+    }
+    let mut assigned = renumbered(circuit, &qubits, &measured);
+    move_back(&mut assigned, moves);
+    Ok(assigned)
+}
+
+/// Appends swaps that bring to each first place what is at the second one.
+fn move_back(circuit: &mut Circuit, mut moves: Vec<(u32, u32)>) {
+    for at in 0..moves.len() {
+        let (home, place) = moves[at];
+        if home == place {
+            continue;
+        }
+        let [a, b] = [home, place].map(|place| QubitId::new(place as usize));
+        for (control, target) in [(a, b), (b, a), (a, b)] {
+            circuit.push(Op::X, &[Control::on(control)], target);
+        }
+        // What was at home is now where the other came from.
+        moves[at + 1..].iter_mut().filter(|other| other.1 == home).for_each(|other| other.1 = place);
+    }
 }
 
 fn renumbered(circuit: &Circuit, qubits: &Groups<'_>, measured: &Groups<'_>) -> Circuit {
@@ -144,6 +184,19 @@ impl<'c> Groups<'c> {
             self.made.push(Register { name: name.to_owned(), start, len: self.next - start });
         }
         Ok(())
+    }
+
+    /// For each element of a register made here: its place, and that of what is selected in its stead, if anything is.
+    fn moves(&self, name: &str, selection: Option<&str>) -> Result<Vec<(u32, u32)>, RegistersError> {
+        let made = self.made.iter().find(|register| register.name == name);
+        let homes = made.map_or(0..0, |register| register.start..register.start + register.len);
+        let Some(selection) = selection else { return Ok(homes.map(|home| (home, home)).collect()) };
+        let after = select(self.old, selection)?;
+        if after.len() != homes.len() {
+            let selection = selection.to_owned();
+            return Err(RegistersError::OtherNumber { selection, found: after.len(), expected: homes.len() });
+        }
+        Ok(homes.zip(after.into_iter().map(|at| self.places[at as usize])).collect())
     }
 
     fn first_free(&self) -> Option<usize> {
@@ -221,7 +274,7 @@ mod tests {
 
     fn roles(search: &str, mark: &str, work: &str, found: &str) -> Roles {
         let some = |text: &str| (!text.is_empty()).then(|| text.to_owned());
-        Roles { search: some(search), mark: some(mark), work: some(work), found: some(found) }
+        Roles { search: some(search), mark: some(mark), work: some(work), found: some(found), ..Roles::default() }
     }
 
     #[test]

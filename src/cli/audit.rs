@@ -44,6 +44,12 @@ pub(super) struct Options {
     /// The ancillas, which begin and end as 0 [default: all other qubits]
     #[arg(long, value_name = "QUBITS")]
     work: Option<String>,
+    /// Where the searched qubits are after an oracle, in the same order, if a router moved them [default: where they began]
+    #[arg(long, value_name = "QUBITS")]
+    search_after: Option<String>,
+    /// Where the mark is after a bit oracle, if a router moved it [default: where it began]
+    #[arg(long, value_name = "QUBIT")]
+    mark_after: Option<String>,
     /// The measured bits that hold the result of a whole search [default: the register found]
     #[arg(long, value_name = "BITS")]
     found: Option<String>,
@@ -188,13 +194,16 @@ fn exit_of(outcome: Found) -> Exit {
 
 /// The circuit with its qubits in the registers of their roles.
 fn assigned(options: &Options, path: &Path, circuit: Circuit) -> Result<Circuit, Box<Diagnostic>> {
-    let Options { search, mark, work, found, control, .. } = options;
+    let Options { search, mark, work, found, control, search_after, mark_after, .. } = options;
     // The control is the last of the searched qubits.
+    let and_control = |list: &str| control.as_ref().map_or_else(|| list.to_owned(), |control| format!("{list},{control}"));
     let search = match (search, control) {
-        (_, None) => search.clone(),
-        (search, Some(control)) => Some(format!("{},{control}", search.as_deref().unwrap_or(SEARCH))),
+        (None, None) => None,
+        (list, _) => Some(and_control(list.as_deref().unwrap_or(SEARCH))),
     };
-    let roles = Roles { search, mark: mark.clone(), work: work.clone(), found: found.clone() };
+    let search_after = search_after.as_deref().map(and_control);
+    let (mark_after, mark) = (mark_after.clone(), mark.clone());
+    let roles = Roles { search, mark, work: work.clone(), found: found.clone(), search_after, mark_after };
     if roles.is_empty() {
         return Ok(circuit);
     }

@@ -67,7 +67,8 @@ pub fn check(formula: &Formula, proof: &Proof, budget: &Budget) -> Result<Checke
             Step::Add(clause) => {
                 let hints = hinted.next_if(|&(step, _)| step == at).map_or(&[][..], |(_, hints)| hints);
                 let hints = hints.iter().filter_map(|&hint| clause_of.get(hint as usize).copied());
-                if !checker.follows_by(clause, hints) && !checker.follows(clause) {
+                let is_clear = checker.is_blocked(clause) || checker.follows_by(clause, hints);
+                if !is_clear && !checker.follows(clause) {
                     return Err(Refused::Step(at + 1));
                 }
                 if let Some(place) = clause_of.get_mut(at) {
@@ -229,6 +230,18 @@ impl Checker {
         }
         self.known.get_mut(&hash(&wanted)).expect("just found").swap_remove(at);
         self.clauses[id as usize].is_dead = true;
+    }
+
+    /// Whether a clause begins with a literal of a variable that the proof brought in, and every resolvent on it is a
+    /// tautology, as in a definition: then no propagation is needed.
+    fn is_blocked(&mut self, clause: &[Lit]) -> bool {
+        self.make_room(clause);
+        let Some(&pivot) = clause.first() else { return false };
+        let Some(place) = code(!pivot).checked_sub(self.given) else { return false };
+        self.having[place].iter().all(|&id| {
+            let is_dead = self.clauses[id as usize].is_dead;
+            is_dead || self.lits(id).iter().any(|&lit| lit != !pivot && clause.contains(&!lit))
+        })
     }
 
     /// Whether a clause follows from some clauses taken in this order, each with at most one literal left. Those that are

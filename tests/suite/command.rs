@@ -384,6 +384,33 @@ fn registers_of_other_names_are_told_by_options() {
     assert_eq!(code(&[]), "P003");
 }
 
+/// A router left the qubits of `a and not b` in a ring: q[0] to q[1], q[1] to q[2], q[2] to q[0]; q[2] is the ancilla.
+#[test]
+fn qubits_may_end_elsewhere_than_they_began() {
+    let desk = Desk::new();
+    desk.file("p.tally", "pick a\npick b\nmust a and not b\n");
+    let routed = "swap q[0], q[1];\nswap q[0], q[2];\n";
+    let head = "include \"stdgates.inc\";\nqubit[3] q;\n";
+    let oracle = "x q[1];\nccx q[0], q[1], q[2];\nz q[2];\nccx q[0], q[1], q[2];\nx q[1];\n";
+    desk.file("c.qasm", &format!("{head}{oracle}{routed}"));
+    let audit = |more: &[&str]| desk.exit(&[&["audit", "p.tally", "c.qasm", "--search", "q[0:1]"], more].concat());
+    assert_eq!(audit(&["--search-after", "q[1:2]"]), 0);
+    assert_eq!(audit(&[]), 1, "read as if nothing had moved");
+    assert_eq!(audit(&["--search-after", "q[2], q[1]"]), 1, "two of them exchanged");
+    assert_eq!(audit(&["--search-after", "q[1], q[0]"]), 1, "an ancilla in the place of a bit");
+    for bad in ["q[1]", "q[1], q[1]", "r"] {
+        assert_eq!(audit(&["--search-after", bad]), 2, "{bad}");
+    }
+    // A bit oracle, its mark exchanged with an input.
+    desk.file("b.qasm", &format!("{head}x q[1];\nccx q[0], q[1], q[2];\nx q[1];\nswap q[1], q[2];\n"));
+    let audit = |more: &[&str]| {
+        desk.exit(&[&["audit", "p.tally", "b.qasm", "--search", "q[0:1]", "--mark", "q[2]"], more].concat())
+    };
+    assert_eq!(audit(&["--search-after", "q[0], q[2]", "--mark-after", "q[1]"]), 0);
+    assert_eq!(audit(&["--search-after", "q[0], q[2]", "--mark-after", "q[2]"]), 2, "one qubit for two");
+    assert_eq!(audit(&["--mark-after", "q[1]"]), 2, "one qubit for two");
+}
+
 /// A bit oracle whose mark has another name.
 #[test]
 fn the_mark_may_have_another_name() {

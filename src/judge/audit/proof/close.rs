@@ -1,8 +1,9 @@
 //! Closing the miter: which claims are made, in which order.
 //!
 //! First what must never hold. Then, with what both sides have as facts, conjuncts of the two sides that look equal are
-//! proven equal, and those without a partner from all conjuncts of the other side. All that with little effort first;
-//! what stays open is tried again after a sweep, with more. The last resort is the whole miter at once.
+//! proven equal, and those without a partner from all conjuncts of the other side: by decision diagrams where they are
+//! about the same bits (`groups`), by linear algebra where they are parities (`parities`), else on windows. All that with
+//! little effort first; what stays open is tried again with more, after a sweep. The last resort is the whole miter at once.
 
 use rustc_hash::{FxHashMap, FxHashSet};
 
@@ -24,12 +25,14 @@ const SWEEP: Effort = Effort { steps: 2_000, nodes: 3_000, rounds: 8 };
 /// After it.
 const MUCH: Effort = Effort { steps: 400_000, nodes: 100_000, rounds: 200 };
 
+/// How many goals may stay open before the rest waits for stronger means.
+const PATIENCE: usize = 24;
 /// Steps of diagrams for a group of conjuncts, at first.
 const FEW_STEPS: usize = 1 << 16;
 /// For those that this is not enough for.
-const MANY_STEPS: usize = 1 << 21;
+const MANY_STEPS: usize = 1 << 20;
 /// For all of them together: some seconds.
-const ALL_STEPS: usize = 1 << 23;
+const ALL_STEPS: usize = 1 << 22;
 
 /// What came of it.
 pub(super) enum Found {
@@ -90,7 +93,6 @@ impl<'a, 'p> Closing<'a, 'p> {
         self.state_sides();
         groups::follow(&mut self.prover, &self.sides, &mut self.done, FEW_STEPS, usize::MAX);
         parities::follow(&mut self.prover, &self.sides, &mut self.done, ALL_STEPS);
-        groups::follow(&mut self.prover, &self.sides, &mut self.done, MANY_STEPS, ALL_STEPS);
         match self.show(self.implications()) {
             Found::Closed => self.conclude(),
             Found::Open(_) => self.last_resort(),
@@ -114,8 +116,12 @@ impl<'a, 'p> Closing<'a, 'p> {
 
     /// Shows goals: with little effort, then with more after a sweep.
     fn show(&mut self, mut goals: Vec<Goal>) -> Found {
-        if let Some(input) = self.try_goals(&mut goals, LITTLE) {
+        if let Some(input) = self.try_goals(&mut goals, LITTLE, PATIENCE) {
             return Found::Input(input);
+        }
+        if let Some(Goal::Follows(..)) = goals.first() {
+            groups::follow(&mut self.prover, &self.sides, &mut self.done, MANY_STEPS, ALL_STEPS);
+            goals.retain(|goal| !self.is_done(*goal));
         }
         if goals.is_empty() {
             return Found::Closed;
@@ -128,19 +134,23 @@ impl<'a, 'p> Closing<'a, 'p> {
         if let Goal::Follows(..) = goals[0] {
             self.pair(MUCH);
             self.state_sides();
-            groups::follow(&mut self.prover, &self.sides, &mut self.done, MANY_STEPS, ALL_STEPS);
             goals = self.implications();
         }
-        if let Some(input) = self.try_goals(&mut goals, MUCH) {
+        if let Some(input) = self.try_goals(&mut goals, MUCH, usize::MAX) {
             return Found::Input(input);
         }
         if goals.is_empty() { Found::Closed } else { Found::Open(goals.len()) }
     }
 
-    /// Tries goals and keeps those that stay open; an input if one was refuted.
-    fn try_goals(&mut self, goals: &mut Vec<Goal>, effort: Effort) -> Option<Bits> {
+    /// Tries goals and keeps those that stay open, without a try once so many have stayed open; an input if one was
+    /// refuted.
+    fn try_goals(&mut self, goals: &mut Vec<Goal>, effort: Effort, patience: usize) -> Option<Bits> {
         let mut open = Vec::new();
         for goal in goals.drain(..) {
+            if open.len() >= patience {
+                open.push(goal);
+                continue;
+            }
             let shown = match goal {
                 Goal::Never(signal) => self.prover.claim(&[signal], None, effort),
                 Goal::Follows(side, signal) => self.prover.claim(&[!signal], Some(side), effort),

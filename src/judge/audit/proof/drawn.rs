@@ -58,14 +58,18 @@ impl<'a> Drawn<'a> {
             if self.edges.contains_key(&node) || !seen.insert(node) {
                 continue;
             }
-            match self.equal.get(&node) {
-                Some(equal) => open.push(equal.node()),
-                None => open.extend(self.graph.operands(node).iter().map(|operand| operand.node())),
+            if self.twin(node).is_none() {
+                open.extend(self.graph.operands(node).iter().map(|operand| operand.node()));
             }
         }
         let mut missing: Vec<usize> = seen.into_iter().collect();
         missing.sort_unstable();
         missing
+    }
+
+    /// What a node was proven equal to, if that is drawn. Elsewhere it may depend on inputs that are no leaves.
+    fn twin(&self, node: usize) -> Option<Signal> {
+        self.equal.get(&node).copied().filter(|equal| self.edges.contains_key(&equal.node()))
     }
 
     fn known(&self, signal: Signal) -> Edge {
@@ -74,7 +78,7 @@ impl<'a> Drawn<'a> {
 
     fn draw(&mut self, node: usize) -> Result<Edge, TooLarge> {
         let lit = self.miter.lit(Signal::of(node));
-        if let Some(&equal) = self.equal.get(&node) {
+        if let Some(equal) = self.twin(node) {
             let edge = self.known(equal);
             self.tie(lit, edge);
             return Ok(edge);
