@@ -271,11 +271,8 @@ fn damaged_refutations_are_refused() {
     };
     assert_eq!(verdict(&right), Ok(BigUint::ZERO));
     assert_eq!(verdict("").unwrap_err(), "the refutation ends without a contradiction");
-    assert_eq!(verdict("0\n").unwrap_err(), "step 1 of the refutation does not follow by unit propagation");
-    assert_eq!(
-        verdict(&format!("1 0\n{right}")).unwrap_err(),
-        "step 1 of the refutation does not follow by unit propagation"
-    );
+    assert_eq!(verdict("0\n").unwrap_err(), "step 1 of the refutation does not follow");
+    assert_eq!(verdict(&format!("1 0\n{right}")).unwrap_err(), "step 1 of the refutation does not follow");
     // A satisfiable formula has no refutation, whatever the file says.
     let fewer = Formula::of(&load_instance("php-5-5.cnf"), Over::Shown);
     let foreign = text::read(&right, fewer.var_count).unwrap();

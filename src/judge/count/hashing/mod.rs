@@ -100,6 +100,9 @@ pub fn count(
     Ok(Some(Hashed { low, high, exact: false }))
 }
 
+/// What rounds found, each a number of equations and the size of the cell; `None` where the budget ran out.
+type Found = Result<Option<Vec<(usize, u64)>>, WrongModel>;
+
 /// The guesses of all rounds, in increasing order.
 fn rounds(
     formula: &Formula,
@@ -122,7 +125,7 @@ fn rounds(
     let Some(first) = round(seeds[0], 1)? else { return Ok(None) };
     let work = &|seeds: &[u64]| seeds.iter().map(|&seed| round(seed, first.0)).collect();
     let share = (seeds.len() - 1).div_ceil(options.threads.max(1)).max(1);
-    let parts: Vec<Result<Option<Vec<(usize, u64)>>, WrongModel>> = thread::scope(|scope| {
+    let parts: Vec<Found> = thread::scope(|scope| {
         let handles: Vec<_> = seeds[1..].chunks(share).map(|seeds| scope.spawn(move || work(seeds))).collect();
         let joined = handles.into_iter().map(|handle| handle.join());
         joined.map(|part| part.unwrap_or_else(|panic| std::panic::resume_unwind(panic))).collect()

@@ -148,7 +148,7 @@ mod tests {
             let truth = |row: usize, noise: u64| match kind {
                 0 => noise & 1 == 1,
                 1 => row.count_ones() % 2 == 1,
-                2 => row.count_ones() % 2 == 0,
+                2 => row.count_ones().is_multiple_of(2),
                 _ => row.count_ones() as usize > len / 2,
             };
             let rows: Vec<bool> = (0..1usize << len).map(|row| truth(row, random.next_u64())).collect();
