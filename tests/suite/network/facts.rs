@@ -14,7 +14,7 @@ const AT_LEAST: [&[usize]; 4] = [&[1, 1], &[2, 1, 2], &[3, 3, 3, 3], &[4, 3, 3, 
 const ELEMENTARY: [&[usize]; 4] = [&[0, 1], &[0, 1, 2], &[0, 2, 2, 3], &[0, 2, 3, 3, 4]];
 
 fn choose(n: usize, k: usize) -> usize {
-    (0..k).fold(1, |product, at| product * (n - at) / (at + 1))
+    if k > n { 0 } else { (0..k).fold(1, |product, at| product * (n - at) / (at + 1)) }
 }
 
 /// The clauses that forbid every row on which the function of the number of ones fails.
