@@ -7,6 +7,8 @@
 //!
 //! Folders: `problems`, and the one that `TALLYMARK_INSTANCES` names. Run with `cargo bench --bench textbook`.
 
+#![allow(clippy::print_stdout, reason = "a bench prints its table")]
+
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 

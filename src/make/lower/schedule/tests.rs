@@ -58,8 +58,11 @@ fn line(n: usize) -> Cells {
     }
 }
 
+/// The moves of a game that ends with the last node alone, and of one that reaches it.
+type Games = (Option<usize>, Option<usize>);
+
 /// The moves of the two games on a line: end with only the last node held, and merely reach it.
-fn moves(n: usize, pebbles: usize) -> (Option<usize>, Option<usize>) {
+fn moves(n: usize, pebbles: usize) -> Games {
     let cells = line(n);
     let order: Vec<CellId> = cells.list.ids().collect();
     let line = Line::new(&cells, &order, &order[n - 1..]);
@@ -102,9 +105,8 @@ fn lines_take_the_fewest_moves_for_each_number_of_pebbles() {
 fn lines_take_the_fewest_pebbles_in_both_games() {
     for n in 2..=16usize {
         let log = |n: usize| n.next_power_of_two().ilog2() as usize;
-        let fewest = |reached: fn((Option<usize>, Option<usize>)) -> Option<usize>| {
-            (1..=n).find(|&pebbles| reached(moves(n, pebbles)).is_some())
-        };
+        let fewest =
+            |reached: fn(Games) -> Option<usize>| (1..=n).find(|&pebbles| reached(moves(n, pebbles)).is_some());
         assert_eq!(fewest(|games| games.0), Some(log(n) + 1), "{n} nodes, the last alone");
         assert_eq!(fewest(|games| games.1), Some(log(n + 1)), "{n} nodes, reached");
     }
