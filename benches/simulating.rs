@@ -3,6 +3,8 @@
 //! `cargo bench --bench simulating` prints, for each size, the rate of an in-place update `a = k - a` and the rate of an
 //! iteration in the same run, both in bytes read and written a second, and their ratio, of which at least 0.6 is the goal.
 
+#![allow(clippy::print_stdout, reason = "a bench reports on standard output")]
+
 use std::hint::black_box;
 use std::time::Instant;
 

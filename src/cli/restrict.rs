@@ -6,7 +6,7 @@ use clap::Args;
 
 use crate::cli::render::Failure;
 use crate::diag::{Code, Diagnostic};
-use crate::problem::Problem;
+use crate::problem::{Domain, Problem, VarId};
 use crate::search::shots;
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -40,7 +40,7 @@ impl Options {
         let usage = |diagnostic| Failure::input(vec![diagnostic], &Sources::new());
         if !self.fix.is_empty() {
             let values = self.fix.iter().map(|(name, value)| fixed(&loaded.problem, name, value));
-            let values = values.collect::<Result<Vec<_>, _>>().map_err(usage)?;
+            let values = values.collect::<Result<Vec<_>, _>>()?;
             loaded.problem = loaded.problem.fixed(&values);
         }
         if let Some(value) = self.threshold {
@@ -63,23 +63,25 @@ impl Options {
     }
 }
 
-fn fixed(problem: &Problem, name: &str, value: &str) -> Result<(crate::problem::VarId, i64), Diagnostic> {
+fn fixed(problem: &Problem, name: &str, value: &str) -> Result<(VarId, i64), Box<Failure>> {
     let found = format!("--fix {name}={value}");
     let Some(var) = problem.var_named(name) else {
-        return Err(Diagnostic::error(Code("U020"), format!("the problem has no variable `{name}`"))
+        let diagnostic = Diagnostic::error(Code("U020"), format!("the problem has no variable `{name}`"))
             .found(found)
-            .expected("the name of a variable as `tallymark explain` lists them"));
+            .expected("the name of a variable as `tallymark explain` lists them");
+        return Err(Failure::usage(diagnostic));
     };
     let domain = problem.vars()[var].domain;
     let number = problem.value_named(domain, value).ok_or_else(|| {
         let expected = match domain {
-            crate::problem::Domain::YesNo => "yes or no".to_owned(),
-            crate::problem::Domain::Range { lo, hi } => format!("a number from {lo} to {hi}"),
-            crate::problem::Domain::Kind(kind) => {
+            Domain::YesNo => "yes or no".to_owned(),
+            Domain::Range { lo, hi } => format!("a number from {lo} to {hi}"),
+            Domain::Kind(kind) => {
                 problem.kinds[kind].values.iter().map(|value| &**value).collect::<Vec<_>>().join(", ")
             }
         };
-        Diagnostic::error(Code("U021"), format!("`{name}` cannot be {value}")).found(found).expected(expected)
+        let message = format!("`{name}` cannot be {value}");
+        Failure::usage(Diagnostic::error(Code("U021"), message).found(found).expected(expected))
     })?;
     Ok((var, number))
 }

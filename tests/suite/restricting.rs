@@ -92,7 +92,7 @@ fn the_ladder_has_every_value_with_its_number() {
             let range: tallymark::problem::check::Interval = ranges[id];
             types[id] == tallymark::problem::Type::Number && (1..60).contains(&(range.hi - range.lo))
         };
-        let Some(expr) = problem.exprs.iter().map(|(id, _)| id).filter(|&id| is_small(id)).last() else { continue };
+        let Some(expr) = problem.exprs.iter().map(|(id, _)| id).rfind(|&id| is_small(id)) else { continue };
         if problem.shown.is_some() {
             continue;
         }
