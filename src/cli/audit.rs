@@ -196,7 +196,8 @@ fn exit_of(outcome: Found) -> Exit {
 fn assigned(options: &Options, path: &Path, circuit: Circuit) -> Result<Circuit, Box<Diagnostic>> {
     let Options { search, mark, work, found, control, search_after, mark_after, .. } = options;
     // The control is the last of the searched qubits.
-    let and_control = |list: &str| control.as_ref().map_or_else(|| list.to_owned(), |control| format!("{list},{control}"));
+    let and_control =
+        |list: &str| control.as_ref().map_or_else(|| list.to_owned(), |control| format!("{list},{control}"));
     let search = match (search, control) {
         (None, None) => None,
         (list, _) => Some(and_control(list.as_deref().unwrap_or(SEARCH))),

@@ -17,6 +17,7 @@ use crate::report::places::places_json;
 use crate::report::{self, files, json, summary};
 use crate::search::course::Course;
 use crate::source::Loaded;
+use crate::span::Sources;
 
 #[derive(Args)]
 pub(super) struct Options {

@@ -39,7 +39,7 @@ pub use choice::{Candidate, Narrowing, choose};
 pub use counting::count;
 pub use error::Error;
 pub use files::{read_circuit, read_circuit_given, write_certificate, write_json};
-pub use objective::{Ladder, Optimal, Rung, ladder};
+pub use objective::ladder;
 pub use oracle::{
     CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, turned, whole_search,
     whole_search_within,

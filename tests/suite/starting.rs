@@ -9,7 +9,9 @@ use tallymark::circuit::{Circuit, Level, Mark, Op};
 use tallymark::id::Id;
 use tallymark::judge::audit::{self, Outcome};
 use tallymark::judge::count::Counted;
-use tallymark::make::lower::{self, LowerError, Rotation as Turn, append_preparation, append_unpreparation, preparation};
+use tallymark::make::lower::{
+    self, LowerError, Rotation as Turn, append_preparation, append_unpreparation, preparation,
+};
 use tallymark::make::network;
 use tallymark::make::start::{Choice, start};
 use tallymark::places::{Part, Places, Start};

@@ -35,13 +35,13 @@ use crate::circuit::{Circuit, Gate, Level, Mark, Op, Part, tidy};
 use crate::diag::{Code, Diagnostic};
 use crate::make::network::{Lit, Network};
 
+pub use about::{Form, about_work, append_reflection_about};
 pub use forms::{Turn, lower_turn};
 pub use gates::gadgets;
 pub use multi::{Idle, Way, append_controlled, ways};
 pub use prepare::{Turn as Rotation, append_preparation, append_unpreparation, preparation};
 pub use reflection::{append_reflection, least_reflection_work, reflection_work};
 pub use within::{Favour, Limits, Lowered, front_of, lower_within};
-pub use about::{Form, about_work, append_reflection_about};
 
 /// What kind of oracle is wanted.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
