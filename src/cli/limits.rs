@@ -45,7 +45,7 @@ fn favour(name: &str) -> Result<Favour, String> {
 }
 
 fn no_t_gates(level: Level) -> Diagnostic {
-    Diagnostic::error(Code("U011"), "circuits of this level hold no T gate")
+    Diagnostic::error(Code("U022"), "circuits of this level hold no T gate")
         .found(format!("--t-count at level {level}"))
         .expected("--level clifford-t or --level feedback")
 }

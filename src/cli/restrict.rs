@@ -50,7 +50,7 @@ impl Options {
         for path in &self.except {
             let name = path.display().to_string();
             let text = std::fs::read_to_string(path).map_err(|error| {
-                usage(Diagnostic::error(Code("F093"), format!("the answers cannot be read: {error}")).in_file(&name))
+                usage(Diagnostic::error(Code("F094"), format!("the answers cannot be read: {error}")).in_file(&name))
             })?;
             let reading = shots::Options::new(loaded.problem.bit_count());
             let read = shots::read(&text, &name, sources, &reading);

@@ -70,7 +70,7 @@ impl Error {
                 Diagnostic::error(Code("A080"), refusal.to_string())
                     .help("give more --time; the count itself needs less than its certificate")
             }
-            Error::Read { path, .. } => Diagnostic::error(Code("F092"), self.to_string())
+            Error::Read { path, .. } => Diagnostic::error(Code("F095"), self.to_string())
                 .in_file(path.display().to_string())
                 .expected("a file that `tallymark count --certificate` wrote, or a decision-DNNF in nnf text"),
             Error::TooManyIterations(_) => Diagnostic::error(Code("C090"), self.to_string())

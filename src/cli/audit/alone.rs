@@ -21,7 +21,7 @@ pub(super) fn is_circuit(file: &str) -> bool {
 
 /// The message where the only file is no circuit.
 pub(super) fn no_circuit(file: &str) -> Diagnostic {
-    Diagnostic::error(Code("U003"), "there is no circuit to judge")
+    Diagnostic::error(Code("U023"), "there is no circuit to judge")
         .found(file.to_owned())
         .expected("a problem and a circuit, or a circuit file (.qasm) alone")
 }
@@ -37,7 +37,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         return Err(Failure::usage(no_circuit(&options.file)));
     }
     if options.self_test.is_some() {
-        let diagnostic = Diagnostic::error(Code("U004"), "the self-test needs a problem")
+        let diagnostic = Diagnostic::error(Code("U024"), "the self-test needs a problem")
             .expected("a problem and a circuit that is right for it");
         return Err(Failure::usage(diagnostic));
     }
