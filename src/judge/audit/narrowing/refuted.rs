@@ -73,9 +73,12 @@ pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -
         }
     }
     let unique = places.computed.len() - replaced;
-    Obligations::Hold(format!(
-        "a solver refuted that {unique} computed bits could be otherwise, and that setting {replaced} others could break a solution"
-    ))
+    let claims = [
+        (unique, format!("that any of {unique} computed bits could be otherwise")),
+        (replaced, format!("that computing {replaced} bits could break a solution")),
+    ];
+    let claims: Vec<String> = claims.into_iter().filter(|&(bits, _)| bits > 0).map(|(_, claim)| claim).collect();
+    Obligations::Hold(format!("a solver refuted {}", claims.join(", and ")))
 }
 
 fn stopped(own: usize) -> Obligations {
