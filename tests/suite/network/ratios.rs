@@ -55,6 +55,7 @@ fn groups_of_clauses_cost_about_an_and_for_each_variable() {
 /// table; `cargo test --release -- --ignored --nocapture shared_instances`.
 #[test]
 #[ignore = "needs the shared instances, and some time"]
+#[expect(clippy::print_stdout, reason = "the table is what it is run for")]
 fn shared_instances_stay_below_plain() {
     let Some(folder) = std::env::var_os("TALLYMARK_INSTANCES").map(PathBuf::from) else {
         println!("skipped: TALLYMARK_INSTANCES names no folder");
