@@ -6,7 +6,7 @@
 //! says otherwise it is what every solution has. The judge proves that again (`judge/audit/narrowing`); it trusts nothing
 //! said here.
 //!
-//! A bit is computed where all that is known before it leaves no choice ([`unique`]), where a parity does ([`rows`]), or, if
+//! A bit is computed where all that is known before it leaves no choice ([`unique`]), where a parity does ([`ground`]), or, if
 //! one solution may stand for many, by the one-sided rule ([`closure`]): when all clauses with *not y* have only known
 //! other literals, *y* is the conjunction of their rests, and these clauses hold from then on; or its dual. For a hidden bit
 //! of a projection that is always enough, since its value is not part of a solution.
