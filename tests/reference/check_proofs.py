@@ -31,7 +31,7 @@ def examine(command, path, folder):
     """One problem: whether all is as it must be, a line, and whether the proof has steps."""
     circuit = folder / "oracle.qasm"
     try:
-        run(command, "compile", path, "--level", "toffoli", "-o", circuit)
+        run(command, "compile", path, "--level", "toffoli", "--no-narrowing", "-o", circuit)
         audit = run_json(command, "audit", path, circuit, "--proof", folder / "proof")["audit"]
     except CommandFailed as error:
         return False, str(error), False
