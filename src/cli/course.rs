@@ -131,7 +131,7 @@ pub(super) fn in_words(course: &Course) -> String {
 fn nothing_to_find() -> Diagnostic {
     Diagnostic::error(Code("C091"), "no state or every state is marked, so a search finds nothing new")
         .expected("at least one marked and one unmarked state")
-        .help("`tallymark plan` says more; compile without --whole gives the oracle")
+        .help("`tallymark plan` says more")
 }
 
 fn unknown_count() -> Diagnostic {

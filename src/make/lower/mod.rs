@@ -62,7 +62,7 @@ pub enum LowerError {
     #[error("no assignment satisfies the constraints: the oracle would mark nothing")]
     NothingMarked,
     /// The constraints always hold, and folding constants shows it.
-    #[error("every assignment satisfies the constraints: the oracle would mark everything")]
+    #[error("every state that would be searched is marked: an oracle would mark everything")]
     EverythingMarked,
     /// The budget ran out; half an oracle is of no use.
     #[error("the time for compiling ran out")]
@@ -105,7 +105,9 @@ impl LowerError {
             Self::TooShallow { least, .. } => return limit("C007", "--depth", least),
             Self::NoBits => ("C001", "every variable has one value only: `count` says whether the constraints hold"),
             Self::NothingMarked => ("C002", "there is nothing to search for; `count` gives the tally, which is 0"),
-            Self::EverythingMarked => ("C003", "any assignment is a solution: nothing has to be searched"),
+            Self::EverythingMarked => {
+                ("C003", "any values of the searched bits make a solution; --no-narrowing searches computed bits too")
+            }
             Self::OutOfTime => ("C004", "give more time with --time"),
         };
         Diagnostic::error(Code(code), self.to_string()).help(help)
