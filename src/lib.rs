@@ -12,6 +12,7 @@
 
 // The floor: every room may use these, and these use no room.
 pub mod budget;
+pub mod columns;
 pub mod diag;
 pub mod id;
 pub mod random;

@@ -68,6 +68,26 @@ impl Op {
         !matches!(self, Op::Measure | Op::Reset)
     }
 
+    /// The phase where the target is 1, in multiples of pi/4, of a diagonal gate without an angle. The judge has a table
+    /// of its own, since it judges what is made with this one.
+    pub fn eighths(self) -> Option<u8> {
+        match self {
+            Op::T => Some(1),
+            Op::S => Some(2),
+            Op::Z => Some(4),
+            Op::Sdg => Some(6),
+            Op::Tdg => Some(7),
+            _ => None,
+        }
+    }
+
+    /// The gates that turn by so many multiples of pi/4, fewer than 8.
+    pub fn turning(eighths: u8) -> &'static [Op] {
+        const TURNS: [&[Op]; 8] =
+            [&[], &[Op::T], &[Op::S], &[Op::S, Op::T], &[Op::Z], &[Op::Z, Op::T], &[Op::Sdg], &[Op::Tdg]];
+        TURNS[usize::from(eighths)]
+    }
+
     /// Whether this has an angle.
     pub fn has_angle(self) -> bool {
         matches!(self, Op::P | Op::Rz | Op::Ry)

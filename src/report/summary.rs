@@ -41,7 +41,11 @@ pub(super) fn line(name: &str, value: impl std::fmt::Display) -> String {
 
 /// The tally.
 pub fn count(loaded: &Loaded, counted: &Counted, listed: &[&Bits]) -> String {
-    head(loaded) + &tally_lines(counted) + &solutions(&loaded.problem, listed)
+    let why = match counted.states {
+        Some(_) => line("", "not solutions one for one: hidden bits are searched too, or one state stands for several"),
+        None => String::new(),
+    };
+    head(loaded) + &tally_lines(counted) + &why + &solutions(&loaded.problem, listed)
 }
 
 /// The verdict on a certificate file, without a count of our own.

@@ -8,7 +8,7 @@ use std::fs;
 use std::path::{Path, PathBuf};
 
 /// The floor: every room may name these, and they name none but each other.
-const FLOOR: &[&str] = &["span", "diag", "id", "budget", "random"];
+const FLOOR: &[&str] = &["span", "diag", "id", "budget", "random", "columns"];
 
 /// A room, and the rooms it may name besides itself and the floor.
 const MATRIX: &[(&str, &[&str])] = &[
@@ -17,6 +17,7 @@ const MATRIX: &[(&str, &[&str])] = &[
     ("id", &[]),
     ("budget", &[]),
     ("random", &[]),
+    ("columns", &[]),
     ("problem", &[]),
     ("circuit", &[]),
     ("sat", &[]),

@@ -265,7 +265,8 @@ impl Writer<'_> {
     }
 }
 
-fn keyword(op: Op) -> &'static str {
+/// The name of a gate in the standard library of OpenQASM 3.
+pub(super) fn keyword(op: Op) -> &'static str {
     match op {
         Op::X => "x",
         Op::Z => "z",

@@ -11,6 +11,7 @@ use std::io::{self, Write};
 
 use thiserror::Error;
 
+use super::write;
 use crate::circuit::{Circuit, Control, Gate, MeasuredId, Op};
 use crate::id::Id;
 
@@ -164,20 +165,7 @@ impl<W: Write> Writer<'_, W> {
 }
 
 fn keyword(op: Op) -> &'static str {
-    match op {
-        Op::X => "x",
-        Op::Z => "z",
-        Op::S => "s",
-        Op::Sdg => "sdg",
-        Op::T => "t",
-        Op::Tdg => "tdg",
-        Op::H => "h",
-        Op::P => "u1",
-        Op::Rz => "rz",
-        Op::Ry => "ry",
-        Op::Measure => "measure",
-        Op::Reset => "reset",
-    }
+    if op == Op::P { "u1" } else { write::keyword(op) }
 }
 
 #[cfg(test)]

@@ -67,7 +67,7 @@ fn fold_block(circuit: &Circuit, gates: std::ops::Range<usize>, fates: &mut [Fat
             (Op::Measure, _) => {}
             (Op::Reset, _) => state[target] = Parity { variables: 0, complemented: false },
             (op, []) => {
-                if let Some(turn) = eighths(op) {
+                if let Some(turn) = op.eighths() {
                     let Parity { variables, complemented } = state[target];
                     let place = *places.entry(variables).or_insert(groups.len());
                     if place == groups.len() {
@@ -85,20 +85,6 @@ fn fold_block(circuit: &Circuit, gates: std::ops::Range<usize>, fates: &mut [Fat
         merge(group, constant == Some(place), fates);
     }
 }
-
-fn eighths(op: Op) -> Option<u8> {
-    match op {
-        Op::T => Some(1),
-        Op::S => Some(2),
-        Op::Z => Some(4),
-        Op::Sdg => Some(6),
-        Op::Tdg => Some(7),
-        _ => None,
-    }
-}
-
-/// The gates that turn by so many eighths.
-const TURNS: [&[Op]; 8] = [&[], &[Op::T], &[Op::S], &[Op::S, Op::T], &[Op::Z], &[Op::Z, Op::T], &[Op::Sdg], &[Op::Tdg]];
 
 /// A turn t of the complement of p is a turn of everything by t and of p by -t.
 fn merge(group: &Group, constant: bool, fates: &mut [Fate]) {
@@ -124,7 +110,7 @@ fn merge(group: &Group, constant: bool, fates: &mut [Fate]) {
         for &(at, _, _) in &group.members {
             fates[at] = Fate::Dropped;
         }
-        fates[first] = Fate::Became(TURNS[usize::from(sum)]);
+        fates[first] = Fate::Became(Op::turning(sum));
     }
 }
 

@@ -30,22 +30,14 @@ macro_rules! wide_fn {
 }
 pub(crate) use wide_fn;
 
+use crate::columns::column;
+
 /// Words in a row.
 pub(crate) const WORDS: usize = 16;
 /// The low bits of an input that its lane gives.
 pub(crate) const LANE_BITS: usize = 10;
 /// Lanes in a row.
 pub(crate) const LANES: u64 = 1 << LANE_BITS;
-
-/// For each of the low six bits of a number, the word whose bit `j` is that bit of `j`.
-pub(crate) const COLUMNS: [u64; 6] = [
-    0xaaaa_aaaa_aaaa_aaaa,
-    0xcccc_cccc_cccc_cccc,
-    0xf0f0_f0f0_f0f0_f0f0,
-    0xff00_ff00_ff00_ff00,
-    0xffff_0000_ffff_0000,
-    0xffff_ffff_0000_0000,
-];
 
 /// A row of lanes.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -66,10 +58,7 @@ impl Row {
         if at >= LANE_BITS {
             return Self::splat(block >> (at - LANE_BITS) & 1 == 1);
         }
-        Row(std::array::from_fn(|word| match COLUMNS.get(at) {
-            Some(&pattern) => pattern,
-            None => 0u64.wrapping_sub((word >> (at - COLUMNS.len()) & 1) as u64),
-        }))
+        Row(std::array::from_fn(|word| column(at, word)))
     }
 
     /// The lanes below `count`.

@@ -1,5 +1,6 @@
 //! Truth tables over a window of few bits.
 
+use crate::columns::column;
 use crate::problem::{BitId, BitLit};
 
 /// The most bits of a window: 1024 rows.
@@ -67,23 +68,6 @@ impl Window {
         let mut rows = self.none();
         lits.for_each(|lit| rows.iter_mut().zip(self.lit(lit)).for_each(|(word, other)| *word |= other));
         rows
-    }
-}
-
-/// The word of the table of one bit of the window.
-fn column(at: usize, word: usize) -> u64 {
-    const PATTERNS: [u64; 6] = [
-        0xaaaa_aaaa_aaaa_aaaa,
-        0xcccc_cccc_cccc_cccc,
-        0xf0f0_f0f0_f0f0_f0f0,
-        0xff00_ff00_ff00_ff00,
-        0xffff_0000_ffff_0000,
-        0xffff_ffff_0000_0000,
-    ];
-    match at {
-        0..6 => PATTERNS[at],
-        _ if word >> (at - 6) & 1 == 1 => u64::MAX,
-        _ => 0,
     }
 }
 

@@ -15,6 +15,7 @@ use super::complex::Complex;
 use super::sparse::{Sparse, is_set, phases};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Gate, Op, QubitId};
+use crate::columns::column;
 use crate::id::Id;
 use crate::random::SplitMix64;
 
@@ -292,17 +293,5 @@ fn merge(planes: Vec<Plane>) -> Result<Vec<Plane>, NotDiagonal> {
 
 /// Bit `index` of the values of a block.
 fn input_row(index: usize, block: usize) -> Row {
-    const LOW: [u64; 6] = [
-        0xaaaa_aaaa_aaaa_aaaa,
-        0xcccc_cccc_cccc_cccc,
-        0xf0f0_f0f0_f0f0_f0f0,
-        0xff00_ff00_ff00_ff00,
-        0xffff_0000_ffff_0000,
-        0xffff_ffff_0000_0000,
-    ];
-    std::array::from_fn(|word| match LOW.get(index) {
-        Some(&low) => low,
-        None if (block * WORDS + word) >> (index - 6) & 1 == 1 => u64::MAX,
-        None => 0,
-    })
+    std::array::from_fn(|word| column(index, block * WORDS + word))
 }

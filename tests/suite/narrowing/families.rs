@@ -282,6 +282,17 @@ pub(super) enum Counting {
     ExactlyBothWays,
 }
 
+impl Counting {
+    pub(super) const ALL: [Self; 6] = [
+        Self::Sequential,
+        Self::Sorting,
+        Self::Totalizer,
+        Self::ExactlySequential,
+        Self::ExactlyTotalizer,
+        Self::ExactlyBothWays,
+    ];
+}
+
 /// Random 3-SAT of this ratio on n inputs of which at most, or exactly, k hold.
 pub(super) fn sat_with_count(n: usize, ratio: f64, k: usize, counting: Counting, seed: u64) -> Encoder {
     let mut encoder = Encoder::new(n);

@@ -30,14 +30,7 @@ fn encodings_shrink_to_their_inputs() {
     shrunk(&families::weighted(24, 8, true, 2).finish(), false, 24, "weighted =");
     shrunk(&families::weighted(24, 8, false, 3).finish(), false, 24, "weighted <=");
     shrunk(&families::random_circuit(32, 400, 1).finish(), false, 32, "random circuit");
-    for counting in [
-        Counting::Sequential,
-        Counting::Sorting,
-        Counting::Totalizer,
-        Counting::ExactlySequential,
-        Counting::ExactlyTotalizer,
-        Counting::ExactlyBothWays,
-    ] {
+    for counting in Counting::ALL {
         let encoder = || families::sat_with_count(32, 2.5, 14, counting, 1);
         shrunk(&encoder().finish_shown(), false, 32, &format!("{counting:?}, shown"));
         let most = match counting {
@@ -110,14 +103,7 @@ fn row(name: &str, problem: &Problem, one_for_many: bool) {
 #[ignore = "prints a table and takes minutes"]
 fn table_of_gains() {
     println!("{:<34} mode before after  log2 of gain", "instance");
-    for counting in [
-        Counting::Sequential,
-        Counting::Sorting,
-        Counting::Totalizer,
-        Counting::ExactlySequential,
-        Counting::ExactlyTotalizer,
-        Counting::ExactlyBothWays,
-    ] {
+    for counting in Counting::ALL {
         let encoder = || families::sat_with_count(32, 2.5, 14, counting, 1);
         row(&format!("3-SAT, {counting:?}, shown"), &encoder().finish_shown(), false);
         row(&format!("3-SAT, {counting:?}"), &encoder().finish(), true);

@@ -10,8 +10,8 @@
 use std::f64::consts::FRAC_1_SQRT_2;
 
 use crate::circuit::{Circuit, Control, Gate, Op, QubitId};
+use crate::columns::column;
 use crate::id::Id;
-use crate::judge::rows::lanes::COLUMNS;
 use crate::problem::Bits;
 
 /// The state is not of this form after the gate.
@@ -67,7 +67,7 @@ impl Rows {
         };
         for (index, qubit) in search.iter().enumerate() {
             let at = qubit.index() * words;
-            (0..words).for_each(|word| state.rows[at + word] = input_word(index, word));
+            (0..words).for_each(|word| state.rows[at + word] = column(index, word));
             state.patterns[qubit.index()] = Pattern::Input { index, negated: false };
         }
         state
@@ -134,7 +134,7 @@ impl Rows {
             let input = || {
                 let inputs = (0..self.bits).flat_map(|index| [(index, false), (index, true)]);
                 let mut inputs = inputs.filter(|&(index, negated)| {
-                    equals(&|word| input_word(index, word) ^ if negated { u64::MAX } else { 0 })
+                    equals(&|word| column(index, word) ^ if negated { u64::MAX } else { 0 })
                 });
                 inputs.next()
             };
@@ -180,7 +180,7 @@ impl Rows {
             let stride = 1 << (index - 6);
             return row.chunks_exact(2 * stride).all(|pair| pair[..stride] == pair[stride..]);
         }
-        let low = !input_word(index, 0) & last_mask(self.bits);
+        let low = !column(index, 0) & last_mask(self.bits);
         row.iter().all(|&word| (word ^ word >> (1 << index)) & low == 0)
     }
 
@@ -265,7 +265,7 @@ impl Rows {
         self.amplitudes = sorted;
         for (index, qubit) in search.iter().enumerate() {
             let at = qubit.index() * self.words;
-            (0..self.words).for_each(|word| self.rows[at + word] = input_word(index, word));
+            (0..self.words).for_each(|word| self.rows[at + word] = column(index, word));
             self.patterns[qubit.index()] = Pattern::Input { index, negated: false };
         }
     }
@@ -279,15 +279,6 @@ const NOTHING: f64 = 1e-13;
 pub(super) struct Residue {
     pub(super) qubit: QubitId,
     pub(super) value: usize,
-}
-
-/// Bit `index` of the numbers of the 64 entries of a word.
-fn input_word(index: usize, word: usize) -> u64 {
-    match COLUMNS.get(index) {
-        Some(&low) => low,
-        None if word >> (index - 6) & 1 == 1 => u64::MAX,
-        None => 0,
-    }
 }
 
 /// The entries of the last word that exist.

@@ -11,7 +11,7 @@
 use super::lit::Lit;
 use super::prepare::Class;
 use super::propagate::Propagator;
-use crate::judge::rows::lanes::COLUMNS;
+use crate::columns::COLUMNS;
 
 /// The most variables of a leaf.
 pub(crate) const MAX_LEAF: usize = 12;

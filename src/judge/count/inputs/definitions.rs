@@ -8,8 +8,8 @@
 //! from a new variable is found before the next one becomes an input. Encodings number inputs before gates and gates
 //! before their users, so the inputs found are mostly those that the encoding was made from.
 
+use crate::columns;
 use crate::judge::count::engine::{Class, Lit, Prepared};
-use crate::judge::rows::lanes::COLUMNS;
 
 /// Variables besides the defined one that the defining clauses may speak of: the table of its values has a word or so.
 const MAX_WIDTH: usize = 8;
@@ -149,10 +149,7 @@ fn table(formula: &Prepared, var: usize, clauses: &[u32]) -> Option<Rule> {
 
 /// The rows in which the variable at this place is true.
 pub(super) fn column(at: usize) -> Table {
-    match COLUMNS.get(at) {
-        Some(&column) => [column; WORDS],
-        None => std::array::from_fn(|word| if word >> (at - 6) & 1 == 1 { u64::MAX } else { 0 }),
-    }
+    std::array::from_fn(|word| columns::column(at, word))
 }
 
 /// A conjunction (or, by negation, a disjunction) of any width: one long clause, and clauses of two that exclude its

@@ -9,6 +9,7 @@
 
 use super::Passed;
 use crate::budget::Budget;
+use crate::columns::column;
 use crate::id::{Id, IdVec};
 use crate::make::network::{Lit, Network, Node, NodeId};
 use crate::random::SplitMix64;
@@ -63,7 +64,7 @@ pub fn check(before: &Network, passed: &Passed, seed: u64, budget: &Budget) -> R
     let count = before.searched().len();
     if count <= MAX_INPUTS {
         for first in (0..1u64 << count).step_by(64) {
-            compare(before, passed, &|at| row_word(first, at))?;
+            compare(before, passed, &|at| column(at, first as usize / 64))?;
         }
         return Ok(Shown::EveryInput);
     }
@@ -73,19 +74,6 @@ pub fn check(before: &Network, passed: &Passed, seed: u64, budget: &Budget) -> R
         compare(before, passed, &|at| words[at])?;
     }
     refute(before, &passed.network, budget)
-}
-
-/// The values of input `at` in the 64 rows from `first`; rows beyond the last repeat the first ones.
-fn row_word(first: u64, at: usize) -> u64 {
-    const LOW: [u64; 6] = [
-        0xaaaa_aaaa_aaaa_aaaa,
-        0xcccc_cccc_cccc_cccc,
-        0xf0f0_f0f0_f0f0_f0f0,
-        0xff00_ff00_ff00_ff00,
-        0xffff_0000_ffff_0000,
-        0xffff_ffff_0000_0000,
-    ];
-    LOW.get(at).copied().unwrap_or_else(|| if first >> at & 1 == 1 { !0 } else { 0 })
 }
 
 /// Random words in which a half, a quarter, three quarters, an eighth or seven eighths of the bits are set.

@@ -48,8 +48,8 @@ pub(super) fn apply(circuit: &mut Circuit, gate: &Application<'_>) {
         (Action::Plain(op @ (Op::P | Op::Rz | Op::Ry)), &[target]) if power != 0 => {
             pen.angle(op, angle, controls, target);
         }
-        (Action::Plain(op), &[target]) => match unit(op) {
-            Some(unit) => pen.turn(eighths(unit), controls, target),
+        (Action::Plain(op), &[target]) => match op.eighths() {
+            Some(unit) => pen.turn(eighths(unit.into()), controls, target),
             None if is_odd => pen.put(op, controls, target),
             None => {}
         },
@@ -76,18 +76,6 @@ pub(super) fn apply(circuit: &mut Circuit, gate: &Application<'_>) {
             pen.put(Op::X, &[Control::on(other)], target);
         }
         _ => {}
-    }
-}
-
-/// The phase of a diagonal gate in multiples of pi/4.
-fn unit(op: Op) -> Option<i64> {
-    match op {
-        Op::T => Some(1),
-        Op::S => Some(2),
-        Op::Z => Some(4),
-        Op::Sdg => Some(6),
-        Op::Tdg => Some(7),
-        _ => None,
     }
 }
 
@@ -135,17 +123,7 @@ impl Pen<'_> {
 
     /// A phase in multiples of pi/4.
     fn turn(&mut self, eighths: u8, controls: &[Control], target: QubitId) {
-        let ops: &[Op] = match eighths {
-            0 => &[],
-            1 => &[Op::T],
-            2 => &[Op::S],
-            3 => &[Op::S, Op::T],
-            4 => &[Op::Z],
-            5 => &[Op::Z, Op::T],
-            6 => &[Op::Sdg],
-            _ => &[Op::Tdg],
-        };
-        ops.iter().for_each(|&op| self.put(op, controls, target));
+        Op::turning(eighths).iter().for_each(|&op| self.put(op, controls, target));
     }
 
     /// A phase that was computed: by named gates where it is a multiple of pi/4 up to the rounding of doubles.

@@ -11,8 +11,8 @@
 
 use super::Class;
 use super::form::{Form, State};
+use crate::columns;
 use crate::judge::count::engine::lit::Lit;
-use crate::judge::rows::lanes::COLUMNS;
 
 /// The most variables of a table.
 const MAX_WIDTH: usize = 10;
@@ -105,7 +105,7 @@ fn column(at: usize, negated: bool) -> [u64; WORDS] {
     let flip = if negated { u64::MAX } else { 0 };
     let mut column = [flip; WORDS];
     for (place, word) in column.iter_mut().enumerate() {
-        *word ^= COLUMNS.get(at).copied().unwrap_or_else(|| if place >> (at - 6) & 1 == 1 { u64::MAX } else { 0 });
+        *word ^= columns::column(at, place);
     }
     column
 }
