@@ -85,7 +85,7 @@ pub fn picture(level: Level, front: &[Figures]) -> String {
     for value in up.ends() {
         words(MARGIN - 8.0, y(value) + 4.0, "end", &value.to_string());
     }
-    words(f64::midpoint(MARGIN, right), bottom + 40.0, "middle", "qubits");
+    words(f64::midpoint(MARGIN, right), bottom + 40.0, "middle", "qubits (both axes logarithmic; darker is deeper)");
     words(MARGIN, MARGIN / 2.0 - 10.0, "middle", name);
     for one in front {
         let light = 200.0 - 180.0 * shade.place(one.depth);
