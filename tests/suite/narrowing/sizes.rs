@@ -1,4 +1,8 @@
 //! How much is searched on instances of known kinds.
+//!
+//! The bounds: where an encoding defines every other variable from its inputs, so many as there are inputs (derived). All
+//! others (below the inputs, the puzzles, random 3-SAT) are goals of ours, set by an earlier trial of the same rules on
+//! instances of the same kinds; no published value is known.
 #![expect(clippy::print_stdout, reason = "tables of what was reached, for whoever runs a test with --nocapture")]
 
 use std::time::Duration;
@@ -149,19 +153,20 @@ fn random_3sat_medians() {
     }
 }
 
-/// A hundred thousand clauses: near linear.
+/// A hundred thousand clauses: narrowed as far as smaller ones, 0.65 n for 3-SAT, and to the inputs of encodings.
 #[test]
 #[ignore = "takes a quarter of a minute"]
 fn large_formulas_are_narrowed_in_seconds() {
     let cases = [
-        ("random 3-SAT", families::random_3sat(25_000, 100_000, 1), true),
-        ("random circuit", families::random_circuit(1_000, 25_000, 1).finish(), false),
-        ("parities", families::parities(2_000, 900, 40, 1).finish(), false),
+        ("random 3-SAT", families::random_3sat(25_000, 100_000, 1), true, 16_250),
+        ("random circuit", families::random_circuit(1_000, 25_000, 1).finish(), false, 1_000),
+        ("parities", families::parities(2_000, 900, 40, 1).finish(), false, 2_000),
     ];
-    for (name, problem, one_for_many) in cases {
+    for (name, problem, one_for_many, most) in cases {
         let start = std::time::Instant::now();
         let found = searched(&problem, one_for_many, Options::EFFORT);
         let seconds = start.elapsed().as_secs_f64();
         println!("{name}: {} clauses, {} -> {found} in {seconds:.1} s", problem.clauses.len(), problem.bit_count());
+        assert!(found <= most, "{name}: {found} searched, at most {most} expected");
     }
 }
