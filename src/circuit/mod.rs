@@ -6,6 +6,7 @@
 //!
 //! The text form is OpenQASM: [`qasm::write`] and [`qasm::read`], neither of which imports the other.
 
+mod copy;
 pub mod figures;
 pub mod level;
 pub mod product;

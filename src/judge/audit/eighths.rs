@@ -15,14 +15,12 @@ pub(super) fn with_eighths(circuit: &Circuit, strict: bool) -> Cow<'_, Circuit> 
     if !circuit.gates().iter().any(is_angle) {
         return Cow::Borrowed(circuit);
     }
-    let mut made = Circuit::new();
-    circuit.qubits.iter().for_each(|register| drop(made.add_qubits(&register.name, register.len as usize)));
-    circuit.measured.iter().for_each(|register| drop(made.add_measured(&register.name, register.len as usize)));
+    let mut made = Circuit::with_registers_of(circuit);
     for block in circuit.blocks() {
         let start = made.gates().len();
         for gate in &circuit.gates()[block.gates.start as usize..block.gates.end as usize] {
             if !is_angle(gate) || !turn(circuit, gate, strict, &mut made) {
-                copy(circuit, gate, &mut made);
+                made.push_copy(circuit, gate);
             }
         }
         if block.repeat != 1 {
@@ -30,15 +28,6 @@ pub(super) fn with_eighths(circuit: &Circuit, strict: bool) -> Cow<'_, Circuit> 
         }
     }
     Cow::Owned(made)
-}
-
-fn copy(circuit: &Circuit, gate: &Gate, made: &mut Circuit) {
-    let (condition, controls, target) = (gate.condition(), circuit.controls(gate), gate.target());
-    match (circuit.angle(gate), gate.measured()) {
-        (Some(angle), _) => made.push_angle(condition, gate.op(), angle, controls, target),
-        (_, Some(bit)) => made.push_measure(condition, target, bit),
-        _ => made.push_if(condition, gate.op(), controls, target),
-    }
 }
 
 /// Writes a gate with an angle without it, if that goes.

@@ -21,6 +21,7 @@ pub mod compare;
 mod eighths;
 pub mod faults;
 mod forms;
+mod marked;
 pub mod narrowing;
 mod oracle;
 mod paths;
@@ -32,6 +33,7 @@ mod support;
 pub mod verdict;
 
 pub use forms::controlled;
+pub use marked::marked_values;
 pub use search::{SearchVerdict, audit_search};
 pub use verdict::{Certificate, How, Outcome, Phases, Verdict, Witness};
 

@@ -129,16 +129,45 @@ fn count_run(
 /// searched. The table has `2^n` bits: this is for up to some 24 of them.
 pub fn truth(problem: &Problem, searched: &[BitId]) -> Vec<u64> {
     assert_eq!(searched.len(), problem.bit_count(), "every bit is searched");
-    let tape = tape(problem, searched);
-    let mut sweep = Sweep::new(&tape);
-    let inputs = 1u64 << searched.len();
-    let mut table = vec![0; inputs.div_ceil(64) as usize];
-    let lanes = Row::first_lanes(LANES.min(inputs));
-    for (block, words) in table.chunks_mut(WORDS).enumerate() {
-        if let Some(row) = sweep.block(block as u64) {
-            let row = *row & lanes;
-            words.copy_from_slice(&row.0[..words.len()]);
+    let table = table(&tape(problem, searched), searched.len(), 1, &Budget::unlimited());
+    table.expect("the budget has no end")
+}
+
+/// The same for the requirements of a tape over so many bits; `None` where the budget ran out.
+pub(crate) fn table(tape: &Tape, bits: usize, threads: usize, budget: &Budget) -> Option<Vec<u64>> {
+    let blocks = 1u64 << bits.saturating_sub(LANE_BITS);
+    let runs = RUNS.min(blocks);
+    let len = blocks / runs;
+    let words = (1usize << bits).div_ceil(64);
+    let mut table = Vec::with_capacity(words);
+    let work = |sweep: &mut Sweep, run| table_run(sweep, run * len..(run + 1) * len, bits, budget);
+    let merge = |_, part: Vec<u64>| {
+        table.extend(part);
+        Then::GoOn
+    };
+    let merged = in_order(threads, runs, || Sweep::new(tape), work, merge);
+    (merged == runs).then_some(table)
+}
+
+/// The part of the table for some blocks.
+fn table_run(sweep: &mut Sweep, blocks: Range<u64>, bits: usize, budget: &Budget) -> Option<Vec<u64>> {
+    let lanes = Row::first_lanes(LANES.min(1 << bits));
+    let words = WORDS.min((1usize << bits).div_ceil(64));
+    let mut part = vec![0; words * (blocks.end - blocks.start) as usize];
+    let mut block = blocks.start;
+    let mut steps: u64 = 0;
+    while block < blocks.end {
+        if steps.is_multiple_of(BLOCKS_A_LOOK) && budget.spent() {
+            return None;
         }
+        steps += 1;
+        let Some(row) = sweep.block(block) else {
+            block = sweep.dead_until(block);
+            continue;
+        };
+        let at = (block - blocks.start) as usize * words;
+        part[at..at + words].copy_from_slice(&(*row & lanes).0[..words]);
+        block += 1;
     }
-    table
+    Some(part)
 }

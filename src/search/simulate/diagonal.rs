@@ -4,15 +4,16 @@
 //! share a factor. After: for every value, the search register and the other qubits are what they were, up to the phase;
 //! a run that does anything else is no diagonal.
 //!
-//! Two ways. Where the gates keep basis states and the other qubits are in one, 1024 values are run at a time, a row of
-//! bits for each qubit. Otherwise (Hadamard gates on ancillas, measurements with corrections, a mark in superposition)
-//! each value is followed by itself as a small sparse state; the outcomes of measurements are drawn once, for all values
-//! alike, and a measurement whose chances depend on the value makes the run no diagonal.
+//! Three ways. The gates are read for all values at once, and what they mark is evaluated on each (`symbolic`). Where that
+//! does not close, and the gates keep basis states and the other qubits are in one, 1024 values are run at a time, a row of
+//! bits for each qubit. Otherwise each value is followed by itself as a small sparse state; the outcomes of measurements
+//! are drawn once, for all values alike, and a measurement whose chances depend on the value makes the run no diagonal.
 
 use rustc_hash::FxHashSet;
 
 use super::complex::Complex;
 use super::sparse::{Sparse, is_set, phases};
+use super::symbolic;
 use crate::budget::Budget;
 use crate::circuit::{Circuit, Gate, Op, QubitId};
 use crate::columns::column;
@@ -41,6 +42,8 @@ pub(super) enum NotDiagonal {
     Moves,
     /// The chances of a measurement depend on the value.
     Tells,
+    /// A gate depends on what was measured before the run.
+    Earlier,
     /// There are too many different phases.
     Phases,
     /// The budget ran out.
@@ -55,6 +58,8 @@ pub(super) struct Run<'a> {
     pub(super) gates: &'a [Gate],
     /// The other qubits; the search register is 0 in it.
     pub(super) rest: &'a Sparse,
+    /// The gates that make `rest` of all zeros.
+    pub(super) outside: &'a Circuit,
     pub(super) threads: usize,
     pub(super) seed: u64,
 }
@@ -62,11 +67,27 @@ pub(super) struct Run<'a> {
 impl Run<'_> {
     /// The phases over all values.
     pub(super) fn planes(&self, budget: &Budget) -> Result<Vec<Plane>, NotDiagonal> {
-        let planes = match self.basis_state() {
-            Some(rest) => self.by_rows(rest, budget)?,
-            None => self.one_by_one(budget)?,
+        if self.depends_on_earlier() {
+            return Err(NotDiagonal::Earlier);
+        }
+        let planes = match (symbolic::plane(self, budget), self.basis_state()) {
+            (Some(plane), _) => vec![plane],
+            (None, Some(rest)) => self.by_rows(rest, budget)?,
+            (None, None) => self.one_by_one(budget)?,
         };
         merge(planes)
+    }
+
+    /// Whether a gate depends on a bit that the run has not measured before.
+    fn depends_on_earlier(&self) -> bool {
+        let mut measured = vec![false; self.circuit.measured_count()];
+        self.gates.iter().any(|gate| {
+            let depends = gate.condition().is_some_and(|condition| !measured[condition.bit().index()]);
+            if let Some(bit) = gate.measured() {
+                measured[bit.index()] = true;
+            }
+            depends
+        })
     }
 
     /// The basis state of the other qubits, where rows will do.
@@ -169,7 +190,7 @@ impl Run<'_> {
         planes[0].set.extend(sign);
     }
 
-    fn one_by_one(&self, budget: &Budget) -> Result<Vec<Plane>, NotDiagonal> {
+    pub(super) fn one_by_one(&self, budget: &Budget) -> Result<Vec<Plane>, NotDiagonal> {
         let bits = self.search.len();
         let outcomes = self.follow(0, None)?.outcomes;
         let share = (1usize << bits).div_ceil(self.threads.max(1)).next_multiple_of(64);

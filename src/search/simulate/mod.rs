@@ -19,6 +19,7 @@ mod gates;
 mod reading;
 mod sparse;
 pub mod steps;
+mod symbolic;
 mod vector;
 
 use thiserror::Error;

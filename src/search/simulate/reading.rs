@@ -79,6 +79,7 @@ pub(super) fn read(
         seed,
         budget,
         rest: Sparse::new(circuit.qubit_count()),
+        outside: Circuit::with_registers_of(circuit),
         start: Vector::basis(search.len(), 0),
         axis: None,
         sets: Vec::new(),
@@ -116,6 +117,8 @@ struct Reader<'c> {
     budget: &'c Budget,
     /// The qubits outside the search register.
     rest: Sparse,
+    /// The gates that brought them there.
+    outside: Circuit,
     start: Vector,
     /// The value z and the gates P' of the reflections.
     axis: Option<(usize, Vec<Local>)>,
@@ -219,6 +222,7 @@ impl<'c> Reader<'c> {
                 return Err("the preparation entangles the search register with other qubits".to_owned());
             } else {
                 self.rest.apply(self.circuit, gate);
+                self.outside.push_copy(self.circuit, gate);
             }
         }
         Ok(())
@@ -240,6 +244,7 @@ impl<'c> Reader<'c> {
             chance if chance < 1e-12 => Ok(()),
             chance if chance > 1.0 - 1e-12 => {
                 self.rest.flip(qubit);
+                self.outside.push(Op::X, &[], qubit);
                 Ok(())
             }
             _ => refused(),
@@ -290,6 +295,9 @@ impl<'c> Reader<'c> {
                 Err(NotDiagonal::Moves) => {
                     return Err("a run of gates moves values or leaves qubits changed".to_owned());
                 }
+                Err(NotDiagonal::Earlier) => {
+                    return Err("a gate depends on what an oracle before it measured".to_owned());
+                }
                 Err(NotDiagonal::Tells) => return Err("a measurement depends on the value of the register".to_owned()),
                 Err(NotDiagonal::Phases) => return Err("there are too many different phases".to_owned()),
                 Err(NotDiagonal::Spent) => return Err(SPENT.to_owned()),
@@ -299,7 +307,8 @@ impl<'c> Reader<'c> {
 
     fn planes(&self, gates: &[Gate]) -> Result<Vec<Plane>, NotDiagonal> {
         let (circuit, search) = (self.circuit, self.search);
-        Run { circuit, search, gates, rest: &self.rest, threads: self.threads, seed: self.seed }.planes(self.budget)
+        let (rest, outside) = (&self.rest, &self.outside);
+        Run { circuit, search, gates, rest, outside, threads: self.threads, seed: self.seed }.planes(self.budget)
     }
 
     /// The reflection from `at` on: where it ends, and its factor.

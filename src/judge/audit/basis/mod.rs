@@ -10,7 +10,7 @@ mod exhaustive;
 pub(in crate::judge::audit) mod findings;
 pub(in crate::judge::audit) mod form;
 mod kernel;
-mod normal;
+pub(in crate::judge::audit) mod normal;
 mod sample;
 mod smallest;
 mod symbols;

@@ -15,7 +15,7 @@ use crate::id::Id;
 use crate::judge::audit::basis::form::Form;
 use crate::judge::audit::oracle::Roles;
 use crate::judge::audit::state::amplitude::multiples;
-use crate::judge::reading::graph::Graph;
+use crate::judge::reading::graph::{Graph, Signal};
 
 /// Angles that differ by less are the same.
 const TOLERANCE: f64 = 1e-9;
@@ -48,6 +48,12 @@ impl Read {
     /// The same with no phase besides.
     pub(in crate::judge::audit) fn without_global(&self) -> Self {
         Self { global: Some(0), ..self.clone() }
+    }
+
+    /// The graph over the inputs, and what is marked as a node of it.
+    pub(in crate::judge::audit) fn into_function(mut self) -> (Graph, Signal) {
+        let root = self.function.signal(&mut self.graph);
+        (self.graph, root)
     }
 
     /// Whether everything but the function was shown.

@@ -1,0 +1,41 @@
+//! Which values of its search register a circuit marks, as a set: for whoever runs searches and not audits.
+//!
+//! Input: a circuit with a register `search`, all other qubits 0 before it. Output: the values that get the phase, where the
+//! reading as a sum over paths shows that, for every string of measurement outcomes, the circuit is that diagonal up to a
+//! global phase and gives every other qubit back as 0. Where it does not show that, nothing is said about the circuit.
+//!
+//! The gates are read once, for all values; then the function that they mark is evaluated on each.
+
+use crate::budget::Budget;
+use crate::circuit::{Circuit, QubitId, SEARCH};
+use crate::id::Id;
+use crate::judge::audit::basis::normal;
+use crate::judge::audit::compare::Shared;
+use crate::judge::audit::oracle::Roles;
+use crate::judge::audit::paths::{self, Read};
+use crate::judge::rows;
+use crate::problem::BitId;
+
+/// The values that get the phase `angle`, or a sign where that is `None`; value `x` is bit `x % 64` of word `x / 64`.
+///
+/// The set has `2^n` bits for `n` search qubits, and about as much memory is used besides. `None` where the reading does
+/// not close, and where the budget ran out.
+pub fn marked_values(circuit: &Circuit, angle: Option<f64>, threads: usize, budget: &Budget) -> Option<Vec<u64>> {
+    let search: Vec<QubitId> = circuit.register(SEARCH);
+    let bits = search.len();
+    let work = Shared::rest(circuit, &search);
+    let read = paths::read(circuit, &Roles { search, mark: None, work }, angle, budget).ok();
+    let read = read.filter(Read::is_shown)?;
+    // A sign on the whole is one on what is not marked, as far as gates can tell.
+    let is_turned = angle.is_none() && read.global() == Some(4);
+    let (graph, root) = read.into_function();
+    let is_better_negated = normal::is_better_negated(&graph, root);
+    let reading = normal::for_evaluation(&graph, root ^ is_better_negated, bits);
+    let searched: Vec<BitId> = (0..bits).map(BitId::new).collect();
+    let mut set = rows::table(&rows::tape_of(&reading, &searched), bits, threads, budget)?;
+    if is_turned != is_better_negated {
+        let values = if bits < 6 { (1 << (1 << bits)) - 1 } else { u64::MAX };
+        set.iter_mut().for_each(|word| *word ^= values);
+    }
+    Some(set)
+}
