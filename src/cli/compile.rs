@@ -89,9 +89,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         false => Vec::new(),
     };
     if let Some(course) = &chosen {
-        product = match (course, places.start.parts()) {
-            (Course::Plain(iterations), []) => pipeline::whole_search_within(&product, &(*iterations).into(), &limits),
-            (course, _) => pipeline::course(&product, &places.start, course),
+        product = match course {
+            Course::Plain(iterations) => pipeline::search_from(&places.start, &product, &(*iterations).into(), &limits),
+            course => pipeline::course(&product, &places.start, course),
         }
         .map_err(stage)?;
     }

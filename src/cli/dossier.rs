@@ -12,7 +12,7 @@ use crate::judge::audit::Outcome as Found;
 use crate::pipeline;
 use crate::places::Places;
 use crate::report::dossier::Dossier;
-use crate::report::{files, json, summary};
+use crate::report::{files, json, objective, start, summary};
 use crate::source::Loaded;
 use crate::span::Sources;
 
@@ -28,6 +28,14 @@ pub(super) struct Options {
     mark: Mark,
     #[command(flatten)]
     limits: limits::Options,
+    /// The start state: strings (all of them), domains (of each variable its own values), groups (besides, exactly so many
+    /// of some), or cheapest (of these, by the T gates of the whole search)
+    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start)]
+    start: input::Wanted,
+    /// The objective too: its best value with the proof, the thresholds with their tallies, and what a search for the best
+    /// value takes
+    #[arg(long)]
+    objective: bool,
     /// The folder to write [default: out/NAME]
     #[arg(short, long, value_name = "DIR")]
     output: Option<PathBuf>,
@@ -39,13 +47,24 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let limits = options.limits.limits(options.level)?;
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
-    let places = input::choose(global, &loaded, settings, &budget).map_err(|error| Failure::stage(&error, &sources))?;
-    let dossier = pipeline::dossier(&loaded, &places, &folder, settings, &limits, &budget)
-        .map_err(|error| Failure::stage(&error, &sources))?;
+    let stage = |error| Failure::stage(&error, &sources);
+    let (places, starts) =
+        input::places_and_prices(global, &loaded, options.start, settings, &budget).map_err(stage)?;
+    let mut dossier =
+        pipeline::dossier(&loaded, &places, starts, &folder, settings, &limits, &budget).map_err(stage)?;
+    dossier.advice.extend(start::advice(&dossier.starts, options.start.name()));
+    let ladder = match options.objective {
+        true => Some(pipeline::ladder(&loaded.problem, &places, settings, &budget).map_err(stage)?),
+        false => None,
+    };
     drop(line);
     let exit = exit_of(&dossier);
-    let report = report(&loaded, &sources, &places, &dossier, exit);
-    let text = summary::dossier(&loaded, &places, &dossier, &folder);
+    let mut report = report(&loaded, &sources, &places, &dossier, exit);
+    let mut text = summary::dossier(&loaded, &places, &dossier, &folder);
+    if let Some(ladder) = &ladder {
+        report["objective"] = objective::json(ladder);
+        text = format!("{}\n{text}", objective::text(&loaded, ladder));
+    }
     write(&folder, &report, &text).map_err(|error| Failure::stage(&error.into(), &sources))?;
     Ok((exit, if global.json { format!("{report:#}\n") } else { text }))
 }
@@ -89,6 +108,7 @@ fn report(loaded: &Loaded, sources: &Sources, places: &Places, dossier: &Dossier
         "search",
         dossier.search.as_ref().map(|judged| json::search_product_json(&judged.product, &judged.verdict)).into(),
     );
+    put("starts", start::json(&dossier.starts));
     put("advice", serde_json::to_value(&dossier.advice).expect("plain data"));
     object.into()
 }

@@ -10,6 +10,7 @@ use crate::diag::{Code, Diagnostic};
 use crate::make::start::Choice;
 use crate::pipeline::{self, Narrowing, Settings};
 use crate::places::Places;
+use crate::search::price::StartPrice;
 use crate::source::{self, Loaded};
 use crate::span::Sources;
 
@@ -60,6 +61,19 @@ pub(super) enum Wanted {
     Cheapest,
 }
 
+impl Wanted {
+    /// All strings.
+    pub(super) const STRINGS: Self = Self::Choice(Choice::Strings);
+
+    /// The name on the command line.
+    pub(super) fn name(self) -> &'static str {
+        match self {
+            Wanted::Choice(choice) => choice.name(),
+            Wanted::Cheapest => "cheapest",
+        }
+    }
+}
+
 /// The start state of this name.
 pub(super) fn start(name: &str) -> Result<Wanted, String> {
     let found = Choice::ALL.into_iter().find(|choice| choice.name() == name).map(Wanted::Choice);
@@ -76,13 +90,32 @@ pub(super) fn places_from(
     settings: Settings,
     budget: &Budget,
 ) -> Result<Places, pipeline::Error> {
-    let plain = Places::as_given(&loaded.problem);
+    match wanted {
+        Wanted::Choice(Choice::Strings) => choose(global, loaded, settings, budget),
+        Wanted::Choice(choice) => Ok(pipeline::places_from(&loaded.problem, choice)),
+        Wanted::Cheapest => Ok(places_and_prices(global, loaded, wanted, settings, budget)?.0),
+    }
+}
+
+/// The same, and what a search costs from each start there is, the cheapest first; no prices where nothing is to be compared.
+pub(super) fn places_and_prices(
+    global: &Global,
+    loaded: &Loaded,
+    wanted: Wanted,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<(Places, Vec<StartPrice>), pipeline::Error> {
+    let strings = choose(global, loaded, settings, budget)?;
     Ok(match wanted {
-        Wanted::Choice(Choice::Strings) => choose(global, loaded, settings, budget)?,
-        Wanted::Choice(choice) => pipeline::places_from(&loaded.problem, &plain, choice),
         Wanted::Cheapest => {
-            let priced = pipeline::priced(&loaded.problem, &plain, settings, pipeline::PRECISION, budget)?;
-            priced.into_iter().next().map_or(plain, |cheapest| cheapest.places)
+            let priced = pipeline::priced(&loaded.problem, &strings, settings, pipeline::PRECISION, budget)?;
+            let prices = priced.iter().map(|one| one.price.clone()).collect();
+            (priced.into_iter().next().map_or(strings, |cheapest| cheapest.places), prices)
+        }
+        Wanted::Choice(choice) => {
+            let prices = pipeline::prices(&loaded.problem, &strings, settings, budget);
+            let is_plain = choice == Choice::Strings;
+            (if is_plain { strings } else { pipeline::places_from(&loaded.problem, choice) }, prices)
         }
     })
 }

@@ -49,6 +49,10 @@ struct Folder {
     /// Also repeat the work of problems whose file and program version are those of the ledger
     #[arg(long)]
     all: bool,
+    /// The start state of every problem: strings, domains, groups or cheapest [default: what the ledger has for it, else
+    /// strings]
+    #[arg(long, value_name = "NAME", value_parser = input::start)]
+    start: Option<input::Wanted>,
 }
 
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
@@ -106,16 +110,20 @@ fn read_folder(global: &Global, folder: &Folder, kept: &Ledger) -> Result<Ledger
     for name in problems(&folder.folder)? {
         let path = folder.folder.join(&name).display().to_string();
         let (loaded, sources) = input::load(global, &path)?;
-        let same = |entry: &&Entry| entry.sha256 == loaded.sha256 && entry.version == env!("CARGO_PKG_VERSION");
+        let kept_start = kept.entries.get(&name).and_then(|entry| input::start(&entry.start).ok());
+        let start = folder.start.or(kept_start).unwrap_or(input::Wanted::STRINGS);
+        let same = |entry: &&Entry| {
+            let by_this = entry.version == env!("CARGO_PKG_VERSION") && entry.start == start.name();
+            entry.sha256 == loaded.sha256 && by_this
+        };
         let entry = match kept.entries.get(&name).filter(|entry| !folder.all && same(entry)) {
             Some(entry) => entry.clone(),
             None => {
                 let (budget, line) = progress::budget(global);
                 let settings = input::settings(global, Level::Toffoli, Mark::Phase);
-                let places = input::choose(global, &loaded, settings, &budget)
-                    .map_err(|error| Failure::stage(&error, &sources))?;
-                let entry = pipeline::ledger_entry(&loaded, &places, settings, &budget)
-                    .map_err(|error| Failure::stage(&error, &sources))?;
+                let stage = |error| Failure::stage(&error, &sources);
+                let places = input::places_from(global, &loaded, start, settings, &budget).map_err(stage)?;
+                let entry = pipeline::ledger_entry(&loaded, &places, start.name(), settings, &budget).map_err(stage)?;
                 drop(line);
                 entry
             }

@@ -11,11 +11,11 @@ use crate::cli::exit::Exit;
 use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, compile, course, input, plan, progress};
 use crate::diag::{Code, Diagnostic};
+use crate::make::lower::Limits;
 use crate::pipeline;
 use crate::places::Places;
 use crate::report::simulation::{self as report, Terms};
 use crate::report::{files, json};
-use crate::search::course::Course;
 use crate::search::simulate::{self, SimulateError, Simulation, Way};
 use crate::source::Loaded;
 use crate::span::Sources;
@@ -118,10 +118,7 @@ fn from_problem(global: &Global, options: &Options, budget: &Budget) -> Result<R
             Some(iterations) => iterations.clone(),
             None => course::planned(&loaded, &places, settings, None, budget, &sources)?.0,
         };
-        let product = match (places.start.parts(), u64::try_from(&iterations)) {
-            ([], _) | (_, Err(_)) => pipeline::whole_search(&oracle, &iterations),
-            (_, Ok(iterations)) => pipeline::course(&oracle, &places.start, &Course::Plain(iterations)),
-        };
+        let product = pipeline::search_from(&places.start, &oracle, &iterations, &Limits::default());
         (places, product.map_err(stage)?)
     };
     let mut text = Vec::new();

@@ -37,6 +37,7 @@ fn compare_entry(file: &str, kept: &Entry, now: &Entry, percent: u64, findings: 
     let numbers = [
         ("count", kept.count.clone().unwrap_or_else(unknown), now.count.clone().unwrap_or_else(unknown)),
         ("marked", kept.marked.clone().unwrap_or_else(unknown), now.marked.clone().unwrap_or_else(unknown)),
+        ("start", kept.start.clone(), now.start.clone()),
         ("space", kept.space.clone(), now.space.clone()),
         ("verdict", kept.verdict.clone(), now.verdict.clone()),
     ];
@@ -84,6 +85,7 @@ mod tests {
         Entry {
             sha256: "0".repeat(64),
             version: "0".to_owned(),
+            start: "strings".to_owned(),
             count: Some(count.to_owned()),
             marked: Some(count.to_owned()),
             space: "8".to_owned(),

@@ -25,6 +25,9 @@ pub struct Entry {
     pub sha256: String,
     /// The version of the program that did the work.
     pub version: String,
+    /// The start state that was wanted.
+    #[serde(default = "all_strings", skip_serializing_if = "is_all_strings")]
+    pub start: String,
     /// The tally, null where it is not known exactly.
     pub count: Option<String>,
     /// The marked states, null where they are not known exactly.
@@ -35,6 +38,15 @@ pub struct Entry {
     pub verdict: String,
     /// What the oracle costs, by level.
     pub costs: BTreeMap<String, Cost>,
+}
+
+/// The start of entries that name none.
+fn all_strings() -> String {
+    "strings".to_owned()
+}
+
+fn is_all_strings(start: &str) -> bool {
+    start == "strings"
 }
 
 /// What an oracle costs at a level.

@@ -16,9 +16,10 @@ use crate::search::simulate;
 use crate::source::Loaded;
 use crate::span::Sources;
 
-/// The largest search whose curve a dossier shows: with gates that keep basis states, and with others.
+/// The largest search whose curve a dossier shows: with gates that keep basis states, and with others, where values may
+/// have to be followed one by one.
 const CURVE_BITS: usize = 22;
-const CURVE_BITS_ONE_BY_ONE: usize = 12;
+const CURVE_BITS_ONE_BY_ONE: usize = 16;
 
 /// Writes a circuit file and reads it back from the disk, so that what is judged is what the user gets.
 pub(super) fn write_and_read(

@@ -32,6 +32,7 @@ use crate::problem::Problem;
 use crate::report::dossier::{Dossier, Judged};
 use crate::report::files::WriteError;
 use crate::report::places::places_json;
+use crate::search::price::StartPrice;
 use crate::source::Loaded;
 
 pub use certificate::{Certified, certify, check_certificate, draw, values};
@@ -41,11 +42,10 @@ pub use error::Error;
 pub use files::{read_circuit, read_circuit_given, write_certificate, write_json};
 pub use objective::ladder;
 pub use oracle::{
-    CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, turned, whole_search,
-    whole_search_within,
+    CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, search_from, turned,
 };
 pub use planning::{advice_on, plan_for};
-pub use start::{PRECISION, Priced, places_from, priced};
+pub use start::{PRECISION, Priced, places_from, priced, prices};
 pub use tally::{Margin, Tallied, tally, tally_for_plan};
 
 use files::{write_and_read, write_curve};
@@ -79,10 +79,11 @@ pub fn audit(
     Ok(audit::audit(problem, places, circuit, options, budget)?)
 }
 
-/// The main job: counts, compiles, audits what is on the disk, plans, and writes the folder.
+/// The main job: counts, compiles, audits what is on the disk, plans, and writes the folder. `starts` are the prices to report.
 pub fn dossier(
     loaded: &Loaded,
     places: &Places,
+    starts: Vec<StartPrice>,
     folder: &Path,
     settings: Settings,
     limits: &Limits,
@@ -105,7 +106,7 @@ pub fn dossier(
     let search = match (&plan, &oracle) {
         (Some(plan), Ok(_)) if plan.success > 0.0 && plan.success < 1.0 || !plan.iterations.is_zero() => {
             let phase = oracle_within(problem, places, Settings { mark: Mark::Phase, ..settings }, limits, budget)?;
-            let product = whole_search_within(&phase, &plan.iterations, limits)?;
+            let product = search_from(&places.start, &phase, &plan.iterations, limits)?;
             let circuit = write_and_read(&folder.join("search.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit::audit_search(problem, places, &circuit, SEARCH_WORK, budget)?;
             write_curve(&folder.join("search.svg"), loaded, &product, &circuit, settings, budget)?;
@@ -122,13 +123,19 @@ pub fn dossier(
     {
         advice.push(reason.clone());
     }
-    Ok(Dossier { counted, oracle, levels, plan, search, advice })
+    Ok(Dossier { counted, starts, oracle, levels, plan, search, advice })
 }
 
-/// What the ledger keeps of a problem: the main job without its folder.
-pub fn ledger_entry(loaded: &Loaded, places: &Places, settings: Settings, budget: &Budget) -> Result<Entry, Error> {
+/// What the ledger keeps of a problem: the main job without its folder. `start` is the name of the start that was wanted.
+pub fn ledger_entry(
+    loaded: &Loaded,
+    places: &Places,
+    start: &str,
+    settings: Settings,
+    budget: &Budget,
+) -> Result<Entry, Error> {
     let scratch = tempfile::tempdir().map_err(|error| WriteError { path: std::env::temp_dir(), error })?;
-    let found = dossier(loaded, places, scratch.path(), settings, &Limits::default(), budget)?;
+    let found = dossier(loaded, places, Vec::new(), scratch.path(), settings, &Limits::default(), budget)?;
     let cost = |product: &Product| {
         let Figures { qubits, t_count, depth, gates, .. } = product.figures;
         (product.level.name().to_owned(), Cost { qubits, and_count: product.and_count, t_count, depth, gates })
@@ -141,6 +148,7 @@ pub fn ledger_entry(loaded: &Loaded, places: &Places, settings: Settings, budget
     Ok(Entry {
         sha256: loaded.sha256.clone(),
         version: env!("CARGO_PKG_VERSION").to_owned(),
+        start: start.to_owned(),
         count: found.counted.tally.exact().map(BigUint::to_string),
         marked: found.counted.marked().map(BigUint::to_string),
         space: found.counted.space.to_string(),

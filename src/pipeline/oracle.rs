@@ -93,13 +93,8 @@ pub fn check_passes(problem: &Problem, places: &Places, seed: u64, budget: &Budg
     .map(|_| list)
 }
 
-/// Puts a phase oracle into the whole search circuit.
-pub fn whole_search(oracle: &Product, iterations: &BigUint) -> Result<Product, Error> {
-    whole_search_within(oracle, iterations, &Limits::default())
-}
-
 /// Puts a phase oracle into the whole search circuit, whose reflection keeps to the limit of qubits.
-pub fn whole_search_within(oracle: &Product, iterations: &BigUint, limits: &Limits) -> Result<Product, Error> {
+fn whole_search_within(oracle: &Product, iterations: &BigUint, limits: &Limits) -> Result<Product, Error> {
     let iterations = u64::try_from(iterations).map_err(|_| Error::TooManyIterations(iterations.clone()))?;
     let most = limits.qubits.unwrap_or(u64::MAX);
     let circuit = whole::whole_search_within(&oracle.circuit, iterations, oracle.level, most);
@@ -108,6 +103,19 @@ pub fn whole_search_within(oracle: &Product, iterations: &BigUint, limits: &Limi
         return Err(LowerError::TooFewQubits { asked: most, least }.into());
     }
     Ok(Product::new(circuit, oracle.level, oracle.mark, oracle.and_count))
+}
+
+/// Puts a phase oracle into the whole search circuit from its start state, within the limit of qubits.
+pub fn search_from(start: &Start, oracle: &Product, iterations: &BigUint, limits: &Limits) -> Result<Product, Error> {
+    if start.parts().is_empty() {
+        return whole_search_within(oracle, iterations, limits);
+    }
+    let iterations = u64::try_from(iterations).map_err(|_| Error::TooManyIterations(iterations.clone()))?;
+    let product = course(oracle, start, &Course::Plain(iterations))?;
+    match (limits.qubits, product.circuit.qubit_count() as u64) {
+        (Some(asked), least) if least > asked => Err(LowerError::TooFewQubits { asked, least }.into()),
+        _ => Ok(product),
+    }
 }
 
 /// Puts an oracle into the circuit of a course from a start state.
@@ -124,7 +132,9 @@ pub fn gates_of_iteration(
     budget: &Budget,
 ) -> Result<u64, Error> {
     let phase = oracle(problem, places, Settings { mark: Mark::Phase, ..settings }, budget)?;
-    let gates = |iterations: u32| whole_search(&phase, &iterations.into()).map(|search| search.figures.gates);
+    let gates = |iterations: u32| {
+        search_from(&places.start, &phase, &iterations.into(), &Limits::default()).map(|search| search.figures.gates)
+    };
     Ok(gates(2)?.saturating_sub(gates(1)?))
 }
 

@@ -21,6 +21,7 @@ use crate::places::Places;
 use crate::problem::Problem;
 use crate::search::course::Course;
 use crate::search::number::Wide;
+use crate::search::price::StartPrice;
 
 /// The error that all rotations of a search may make together, where nothing else is said.
 pub const PRECISION: f64 = 1e-3;
@@ -28,51 +29,48 @@ pub const PRECISION: f64 = 1e-3;
 /// A start state with what a search from it costs.
 #[derive(Clone, PartialEq, Debug)]
 pub struct Priced {
-    /// The choice.
-    pub choice: Choice,
     /// The places with that start.
     pub places: Places,
-    /// T gates of one iteration, rotations included.
-    pub iteration: f64,
-    /// Rotations of one iteration that have to be approximated.
-    pub rotations: u64,
-    /// T gates of all iterations, for one marked state.
-    pub total: Wide,
+    /// What a search from it costs.
+    pub price: StartPrice,
 }
 
-/// The places with the start state of this choice.
-pub fn places_from(problem: &Problem, places: &Places, choice: Choice) -> Places {
-    Places { start: start(problem, places, choice), ..places.clone() }
+/// The bits as given, with the start state of this choice.
+pub fn places_from(problem: &Problem, choice: Choice) -> Places {
+    let plain = Places::as_given(problem);
+    Places { start: start(problem, &plain, choice), ..plain }
 }
 
-/// Every choice that finds a start of its own, the cheapest first; of equals, the plainer. A start from which everything
-/// is marked, or nothing, is no candidate.
+/// What can be started from: all strings of the bits that are searched then, some perhaps computed from others, and each
+/// choice that finds a start of its own for the bits as given.
+fn candidates(problem: &Problem, strings: &Places) -> Vec<(Choice, Places)> {
+    let mut all = vec![(Choice::Strings, strings.clone())];
+    for choice in [Choice::Domains, Choice::Groups] {
+        let places = places_from(problem, choice);
+        if !places.start.parts().is_empty() && all.iter().all(|(_, other)| other.start != places.start) {
+            all.push((choice, places));
+        }
+    }
+    all
+}
+
+/// Every candidate with its price, the cheapest first; of equals, the plainer. A start from which everything is marked,
+/// or nothing, is no candidate. `strings` is what is searched from all strings.
+///
+/// Where hidden bits are searched too, more states may be marked than where they are computed, and all strings then look
+/// dearer or the other starts cheaper by at most the root of that.
 pub fn priced(
     problem: &Problem,
-    places: &Places,
+    strings: &Places,
     settings: Settings,
     precision: f64,
     budget: &Budget,
 ) -> Result<Vec<Priced>, Error> {
     let mut all: Vec<Priced> = Vec::new();
     let mut last = None;
-    for choice in Choice::ALL {
-        let places = places_from(problem, places, choice);
-        if all.iter().any(|other| other.places.start == places.start) {
-            continue;
-        }
-        let phase = Settings { mark: Mark::Phase, ..settings };
-        match oracle(problem, &places, phase, budget) {
-            Ok(oracle) => {
-                let iterations = Wide::of(&Counted::space(&places)).sqrt() * Wide::new(FRAC_PI_4);
-                let one = course(&oracle, &places.start, &Course::Plain(1))?.circuit;
-                let none = course(&oracle, &places.start, &Course::Plain(0))?.circuit;
-                let rotations = approximated(&one) - approximated(&none);
-                let number = (iterations * Wide::new(rotations.max(1) as f64)).log2();
-                let each = 3.0 * (number - precision.log2()).max(0.0);
-                let iteration = t_gates(&one) - t_gates(&none) + rotations as f64 * each;
-                all.push(Priced { choice, total: iterations * Wide::new(iteration), places, iteration, rotations });
-            }
+    for (choice, places) in candidates(problem, strings) {
+        match price(problem, &places, choice, settings, precision, budget) {
+            Ok(price) => all.push(Priced { places, price }),
             Err(Error::Lower(error @ (LowerError::EverythingMarked | LowerError::NothingMarked))) => last = Some(error),
             Err(error) => return Err(error),
         }
@@ -80,10 +78,49 @@ pub fn priced(
     match last {
         Some(error) if all.is_empty() => Err(error.into()),
         _ => {
-            all.sort_by(|a, b| a.total.partial_cmp(&b.total).unwrap_or(std::cmp::Ordering::Equal));
+            let order = |a: &Priced, b: &Priced| a.price.t_gates.partial_cmp(&b.price.t_gates);
+            all.sort_by(|a, b| order(a, b).unwrap_or(std::cmp::Ordering::Equal));
             Ok(all)
         }
     }
+}
+
+/// The prices of all candidates, where there is more than one; for a report, so without an error.
+pub fn prices(problem: &Problem, strings: &Places, settings: Settings, budget: &Budget) -> Vec<StartPrice> {
+    if candidates(problem, strings).len() < 2 {
+        return Vec::new();
+    }
+    let priced = priced(problem, strings, settings, PRECISION, budget).unwrap_or_default();
+    priced.into_iter().map(|one| one.price).collect()
+}
+
+fn price(
+    problem: &Problem,
+    places: &Places,
+    choice: Choice,
+    settings: Settings,
+    precision: f64,
+    budget: &Budget,
+) -> Result<StartPrice, Error> {
+    let phase = Settings { mark: Mark::Phase, ..settings };
+    let oracle = oracle(problem, places, phase, budget)?;
+    let space = Counted::space(places);
+    let iterations = Wide::of(&space).sqrt() * Wide::new(FRAC_PI_4);
+    let one = course(&oracle, &places.start, &Course::Plain(1))?.circuit;
+    let none = course(&oracle, &places.start, &Course::Plain(0))?.circuit;
+    let rotations = approximated(&one) - approximated(&none);
+    let number = (iterations * Wide::new(rotations.max(1) as f64)).log2();
+    let each = 3.0 * (number - precision.log2()).max(0.0);
+    let t_gates_of_iteration = t_gates(&one) - t_gates(&none) + rotations as f64 * each;
+    Ok(StartPrice {
+        start: choice.name(),
+        searched_bits: places.search_len(),
+        space,
+        t_gates_of_iteration,
+        rotations_of_iteration: rotations,
+        precision,
+        t_gates: iterations * Wide::new(t_gates_of_iteration),
+    })
 }
 
 /// How many eighths of a turn a rotation is, where it is a whole number of them.

@@ -3,6 +3,7 @@
 use crate::circuit::Product;
 use crate::judge::audit::{SearchVerdict, Verdict};
 use crate::judge::count::Counted;
+use crate::search::price::StartPrice;
 use crate::search::{Advice, Plan};
 
 /// Everything that the main job finds out.
@@ -10,6 +11,8 @@ use crate::search::{Advice, Plan};
 pub struct Dossier {
     /// The tally.
     pub counted: Counted,
+    /// What a search costs from each start state, where there are several; the cheapest first.
+    pub starts: Vec<StartPrice>,
     /// The oracle with its verdict, or why there is none.
     pub oracle: Result<Judged<Verdict>, Advice>,
     /// The oracle at every level, for its cost.

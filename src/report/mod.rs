@@ -14,6 +14,7 @@ pub mod readable;
 pub mod self_test;
 pub mod shots;
 pub mod simulation;
+pub mod start;
 pub mod story;
 pub mod summary;
 pub mod values;

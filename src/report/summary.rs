@@ -15,6 +15,7 @@ use crate::report::dossier::Dossier;
 use crate::report::header::CAUTION;
 use crate::report::json::mark_name;
 use crate::report::plan::answer_text;
+use crate::report::start;
 use crate::report::values::{CheckedFile, certificate_line};
 use crate::search::number::in_words;
 use crate::search::plan::Answer;
@@ -224,6 +225,7 @@ pub fn dossier(loaded: &Loaded, places: &Places, dossier: &Dossier, folder: &Pat
     if let Some(judged) = &dossier.search {
         text += &search_verdict(&judged.verdict);
     }
+    text += &start::lines(&dossier.starts);
     text += &advice_lines(&dossier.advice);
     if !dossier.levels.is_empty() {
         _ = write!(text, "\nThe oracle at every level\n{}", cost_table(&dossier.levels));

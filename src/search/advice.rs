@@ -4,6 +4,8 @@ use num_bigint::BigUint;
 use num_traits::{One, Zero};
 use serde::Serialize;
 
+use crate::search::price::StartPrice;
+
 /// A piece of advice.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize)]
 pub struct Advice {
@@ -72,6 +74,18 @@ impl Advice {
              calibration for instances whose count is known from elsewhere."
         };
         Self::new("already-decided", text)
+    }
+
+    /// From another start state the whole search is cheaper.
+    pub fn cheaper_start(other: &StartPrice, here: &StartPrice) -> Self {
+        Self::new(
+            "cheaper-start",
+            format!(
+                "From the start state `{}` the whole search costs {:.0} T gates instead of {:.0}, rotations included: \
+                 --start {} takes it, and the oracle is then right on the strings of that state only.",
+                other.start, other.t_gates, here.t_gates, other.start
+            ),
+        )
     }
 
     /// The lower end of the count is 0.

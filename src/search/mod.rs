@@ -6,6 +6,7 @@ pub mod binomial;
 pub mod course;
 pub mod number;
 pub mod plan;
+pub mod price;
 pub mod shots;
 pub mod simulate;
 pub mod whole;

@@ -10,8 +10,9 @@ use tallymark::circuit::qasm::{read::read, write::write};
 use tallymark::circuit::{Circuit, Level, Mark};
 use tallymark::judge::audit::faults::{Fault, Found, Kind, SelfTest, apply, self_test};
 use tallymark::judge::audit::{Options, Outcome, audit, audit_search};
+use tallymark::make::lower::Limits;
 use tallymark::pipeline::{self, Settings};
-use tallymark::places::Places;
+use tallymark::places::{Places, Start};
 use tallymark::problem::{Bits, Problem};
 use tallymark::source;
 use tallymark::span::Sources;
@@ -121,7 +122,9 @@ fn every_fault_is_caught_or_harmless() {
     let places = Places::as_given(&problem);
     for level in [Level::Wide, Level::Toffoli, Level::CliffordT] {
         let phase = pipeline::oracle(&problem, &places, settings(level, Mark::Phase), &budget).expect("an oracle");
-        let circuit = pipeline::whole_search(&phase, &3u32.into()).expect("a search").circuit;
+        let circuit = pipeline::search_from(&Start::AllStrings, &phase, &3u32.into(), &Limits::default())
+            .expect("a search")
+            .circuit;
         assert!(machine::is_search(&circuit, &meaning(&problem, &places), 3), "search {level}");
         let options = Options { seed, threads: 1, ..Options::default() };
         let test = self_test(&problem, &places, &circuit, 40, &options, &budget).expect("a search");
@@ -171,7 +174,9 @@ fn a_search_says_how_many_iterations_are_planned() {
     let places = Places::as_given(&problem);
     let phase = oracle_product(&problem);
     for iterations in [0u32, 1, 2, 3, 4, 5] {
-        let circuit = pipeline::whole_search(&phase, &iterations.into()).expect("a search").circuit;
+        let circuit = pipeline::search_from(&Start::AllStrings, &phase, &iterations.into(), &Limits::default())
+            .expect("a search")
+            .circuit;
         let verdict = audit_search(&problem, &places, &circuit, 1 << 24, &Budget::unlimited()).expect("a search");
         assert_eq!((verdict.outcome, verdict.planned), (Outcome::Equal, Some(3)));
         assert_eq!(verdict.iterations, u64::from(iterations));

@@ -21,6 +21,7 @@ mod network;
 mod paths;
 mod planning;
 mod proofs;
+mod published;
 mod random_problem;
 mod rebuilt;
 mod restricting;

@@ -181,6 +181,67 @@ fn a_change_of_one_gate_changes_what_comes_out() {
     assert!(tried >= 10 && changed * 10 >= tried * 9, "{changed} of {tried}");
 }
 
+/// The same at the levels whose oracles open sums over paths and measure: what comes out is what gate by gate gives.
+#[test]
+fn a_change_of_one_gate_changes_what_comes_out_at_every_level() {
+    let problem = clauses(4, 6, 5);
+    let marked = solutions(&problem);
+    for level in [Level::Wide, Level::CliffordT, Level::Feedback] {
+        let circuit = whole_search(&oracle(&problem, level, Mark::Phase).unwrap(), 2, level);
+        let mut text = Vec::new();
+        write::write(&circuit, &[], &mut text).unwrap();
+        let text = String::from_utf8(text).unwrap();
+        let body = text.find("for int").unwrap();
+        let lines: Vec<&str> = text[body..].lines().collect();
+        let (mut changed, mut tried) = (0, 0);
+        for (at, line) in lines.iter().enumerate() {
+            let is_gate = line.ends_with(';') && !line.trim_start().starts_with("found");
+            // Long circuits: every third gate.
+            if !is_gate || (lines.len() > 100 && at % 3 > 0) {
+                continue;
+            }
+            let without: String = lines
+                .iter()
+                .enumerate()
+                .filter(|(other, _)| *other != at)
+                .map(|(_, line)| format!("{line}\n"))
+                .collect();
+            let edited = through_text(&circuit, |_| format!("{}{without}", &text[..body]));
+            let usual =
+                simulate(&edited, &Options { way: None, draw: 4000, seed: 7, threads: 2 }, &Budget::unlimited());
+            let usual = usual.unwrap();
+            if level != Level::Feedback {
+                let gates = run(&edited, Some(Way::Gates));
+                let hit: f64 = gates.likeliest.iter().filter(|(bits, _)| problem.holds(bits)).map(|(_, p)| p).sum();
+                let drawn = usual.drawn.iter().filter(|(bits, _)| problem.holds(bits)).map(|one| one.1).sum::<u64>();
+                // Five standard deviations of a binomial count, and the rounding of a sure one.
+                let spread = 5.0 * (4000.0 * hit * (1.0 - hit)).max(0.0).sqrt() + 1e-6;
+                assert!((drawn as f64 - 4000.0 * hit).abs() <= spread, "{level} `{line}`: {drawn} of 4000 at {hit}");
+            }
+            let same = usual.curve.iter().enumerate().all(|(k, p)| (p - published(4, marked, k)).abs() < 1e-9);
+            changed += u32::from(!same || usual.curve.len() != 3);
+            tried += 1;
+        }
+        // Of a measurement that is not corrected, a run may have drawn the outcome that needs no correction.
+        let least = if level == Level::Feedback { 8 } else { 9 };
+        assert!(tried >= 10 && changed * 10 >= tried * least, "{level}: {changed} of {tried}");
+    }
+}
+
+/// Oracles that are read as sums over paths are read for all values at once, as many as there are.
+#[test]
+fn large_searches_are_read_at_every_level() {
+    let problem = clauses(18, 40, 2);
+    let marked = solutions(&problem);
+    assert!(marked > 0);
+    for level in Level::ALL {
+        let circuit = whole_search(&oracle(&problem, level, Mark::Phase).unwrap(), 3, level);
+        let found = run(&through_text(&circuit, |text| text), None);
+        assert_eq!((found.way, found.marked, found.curve.len()), (Way::Classes, Some(marked), 4), "{level}");
+        assert!((found.success.unwrap() - published(18, marked, 3)).abs() < 1e-12, "{level}");
+    }
+}
+
 #[test]
 fn results_are_drawn_with_their_probabilities() {
     let problem = clauses(10, 30, 11);

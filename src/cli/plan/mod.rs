@@ -12,10 +12,10 @@ use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, input, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::judge::count::Counted;
-use crate::pipeline::{self, Priced};
+use crate::pipeline;
 use crate::places::Places;
 use crate::report::plan::answer_json;
-use crate::report::{json, objective, summary};
+use crate::report::{json, objective, start, summary};
 use crate::search::Advice;
 use crate::search::plan::split::Machines;
 use crate::search::plan::{self, Aim, Answer, Erring, Known, Question, Unanswerable, noise};
@@ -62,8 +62,8 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, Mark::Phase);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
-    let places = input::places_from(global, &loaded, options.start, settings, &budget).map_err(stage)?;
     if options.objective {
+        let places = input::places_from(global, &loaded, options.start, settings, &budget).map_err(stage)?;
         let ladder = pipeline::ladder(&loaded.problem, &places, settings, &budget).map_err(stage)?;
         drop(line);
         if !global.json {
@@ -72,15 +72,10 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
         object.insert("objective".to_owned(), objective::json(&ladder));
         return Ok((Exit::Done, json::print(object)));
     }
-    let starts = match options.start {
-        input::Wanted::Cheapest => {
-            let plain = Places::as_given(&loaded.problem);
-            pipeline::priced(&loaded.problem, &plain, settings, pipeline::PRECISION, &budget).map_err(stage)?
-        }
-        input::Wanted::Choice(_) => Vec::new(),
-    };
+    let (places, starts) =
+        input::places_and_prices(global, &loaded, options.start, settings, &budget).map_err(stage)?;
     if !starts.is_empty() {
-        object.insert("starts".to_owned(), starts.iter().map(start_json).collect());
+        object.insert("starts".to_owned(), start::json(&starts));
     }
     let mut ground = ground(&loaded, &places, options.error);
     if let Some(each) = options.gate_error {
@@ -112,30 +107,13 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
         Err(why) => return Err(unanswered(&why, options, &ground, &sources)),
     };
     advice.append(&mut answer.outline.advice);
+    advice.extend(start::advice(&starts, options.start.name()));
     answer.outline.advice.clone_from(&advice);
     let (exit, mut text) = print(global, Some(&loaded), object, Some(&answer), &advice, exit);
     if !global.json {
-        starts.iter().for_each(|priced| text += &start_line(priced));
+        text += &start::lines(&starts);
     }
     Ok((exit, text))
-}
-
-/// A start state with its price.
-fn start_json(priced: &Priced) -> Value {
-    serde_json::json!({
-        "start": priced.choice.name(),
-        "space": Counted::space(&priced.places).to_string(),
-        "t_gates_of_iteration": priced.iteration,
-        "rotations_of_iteration": priced.rotations,
-        "t_gates": priced.total,
-    })
-}
-
-fn start_line(priced: &Priced) -> String {
-    let Priced { choice, places, iteration, rotations, total } = priced;
-    let space = words(&Counted::space(places));
-    let costs = format!("{iteration:.0} T an iteration with {rotations} rotations, {total:.0} T for one marked state");
-    format!("{:<12}{}: {space} states, {costs}\n", "start", choice.name())
 }
 
 fn ground(loaded: &Loaded, places: &Places, error: Option<f64>) -> Ground {

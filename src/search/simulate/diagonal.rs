@@ -25,6 +25,8 @@ const LANES: usize = 1024;
 const WORDS: usize = LANES / 64;
 type Row = [u64; WORDS];
 
+/// Values are followed by themselves up to so many bits of them; a circuit of a thousand gates then takes a quarter of an hour.
+const MOST_BITS_BY_THEMSELVES: usize = 20;
 /// At most so many sets of values with phases of their own.
 pub(super) const MOST_PLANES: usize = 6;
 
@@ -40,12 +42,14 @@ pub(super) struct Plane {
 pub(super) enum NotDiagonal {
     /// The gates change the register, or leave the other qubits in another state.
     Moves,
-    /// The chances of a measurement depend on the value.
+    /// The chances of a measurement depend on the value, or the phases on its outcome.
     Tells,
     /// A gate depends on what was measured before the run.
     Earlier,
     /// There are too many different phases.
     Phases,
+    /// Each value would have to be followed by itself, and there are too many.
+    Values,
     /// The budget ran out.
     Spent,
 }
@@ -73,6 +77,7 @@ impl Run<'_> {
         let planes = match (symbolic::plane(self, budget), self.basis_state()) {
             (Some(plane), _) => vec![plane],
             (None, Some(rest)) => self.by_rows(rest, budget)?,
+            (None, None) if self.search.len() > MOST_BITS_BY_THEMSELVES => return Err(NotDiagonal::Values),
             (None, None) => self.one_by_one(budget)?,
         };
         merge(planes)
@@ -190,9 +195,24 @@ impl Run<'_> {
         planes[0].set.extend(sign);
     }
 
+    /// The phases of every value by itself: for outcomes that are drawn once, and, where some were free, for the others
+    /// too, since what depends on outcomes is no diagonal.
     pub(super) fn one_by_one(&self, budget: &Budget) -> Result<Vec<Plane>, NotDiagonal> {
+        let phases = self.for_outcomes(false, budget)?;
+        if self.gates.iter().any(|gate| gate.measured().is_some()) {
+            let others = self.for_outcomes(true, budget)?;
+            let turned = others[0].conj() * phases[0];
+            if !phases.iter().zip(&others).all(|(&phase, &other)| phase.is_near(other * turned)) {
+                return Err(NotDiagonal::Tells);
+            }
+        }
+        sorted_by_phase(&phases)
+    }
+
+    /// The phases for the outcomes that the seed gives, or for the opposite ones.
+    fn for_outcomes(&self, opposite: bool, budget: &Budget) -> Result<Vec<Complex>, NotDiagonal> {
         let bits = self.search.len();
-        let outcomes = self.follow(0, None)?.outcomes;
+        let outcomes = self.follow(0, None, opposite)?.outcomes;
         let share = (1usize << bits).div_ceil(self.threads.max(1)).next_multiple_of(64);
         let work = |from: usize| -> Result<Vec<Complex>, NotDiagonal> {
             let mut phases = Vec::new();
@@ -200,7 +220,7 @@ impl Run<'_> {
                 if value % 64 == 0 && budget.spent() {
                     return Err(NotDiagonal::Spent);
                 }
-                phases.push(self.follow(value, Some(&outcomes))?.phase);
+                phases.push(self.follow(value, Some(&outcomes), opposite)?.phase);
             }
             Ok(phases)
         };
@@ -210,37 +230,11 @@ impl Run<'_> {
                 (0..1usize << bits).step_by(share).map(|from| scope.spawn(move || work(from))).collect();
             threads.into_iter().map(|thread| thread.join().expect("no panic in a thread")).collect()
         });
-        let mut planes: Vec<Plane> = Vec::new();
-        let mut sizes: Vec<usize> = Vec::new();
-        let words = (1usize << bits).div_ceil(64);
-        let mut value = 0;
-        for part in parts {
-            for phase in part? {
-                let known = planes.iter().position(|plane| plane.factor.is_near(phase));
-                let at = known.unwrap_or_else(|| {
-                    planes.push(Plane { set: vec![0; words], factor: phase });
-                    sizes.push(0);
-                    planes.len() - 1
-                });
-                if planes.len() > MOST_PLANES + 1 {
-                    return Err(NotDiagonal::Phases);
-                }
-                planes[at].set[value / 64] |= 1 << (value % 64);
-                sizes[at] += 1;
-                value += 1;
-            }
-        }
-        // Corrections may leave a phase that all values share, which nothing shows.
-        if !planes.iter().any(|plane| plane.factor.is_near(Complex::ONE)) {
-            let most = (0..planes.len()).max_by_key(|&at| sizes[at]).expect("a value has a phase");
-            let common = planes[most].factor.conj();
-            planes.iter_mut().for_each(|plane| plane.factor = plane.factor * common);
-        }
-        Ok(planes)
+        Ok(parts.into_iter().collect::<Result<Vec<_>, _>>()?.concat())
     }
 
     /// Follows one value through the gates.
-    fn follow(&self, value: usize, given: Option<&[bool]>) -> Result<Followed, NotDiagonal> {
+    fn follow(&self, value: usize, given: Option<&[bool]>, opposite: bool) -> Result<Followed, NotDiagonal> {
         let mut state = self.rest.clone();
         for (at, &qubit) in self.search.iter().enumerate() {
             if value >> at & 1 == 1 {
@@ -264,7 +258,7 @@ impl Run<'_> {
             let outcome = match given {
                 // Both outcomes must be as likely as for the first value: that is 1/2 for a mark that tells nothing.
                 Some(given) => given[outcomes.len()],
-                None => settled.unwrap_or_else(|| random.coin()),
+                None => settled.unwrap_or_else(|| random.coin() != opposite),
             };
             if settled.is_some_and(|settled| settled != outcome) {
                 return Err(NotDiagonal::Tells);
@@ -294,6 +288,33 @@ impl Run<'_> {
 struct Followed {
     phase: Complex,
     outcomes: Vec<bool>,
+}
+
+/// The values of each phase. Corrections may leave a phase that all values share, which nothing shows: then it is taken
+/// away.
+fn sorted_by_phase(phases: &[Complex]) -> Result<Vec<Plane>, NotDiagonal> {
+    let words = phases.len().div_ceil(64);
+    let mut planes: Vec<Plane> = Vec::new();
+    let mut sizes: Vec<usize> = Vec::new();
+    for (value, &phase) in phases.iter().enumerate() {
+        let known = planes.iter().position(|plane| plane.factor.is_near(phase));
+        let at = known.unwrap_or_else(|| {
+            planes.push(Plane { set: vec![0; words], factor: phase });
+            sizes.push(0);
+            planes.len() - 1
+        });
+        if planes.len() > MOST_PLANES + 1 {
+            return Err(NotDiagonal::Phases);
+        }
+        planes[at].set[value / 64] |= 1 << (value % 64);
+        sizes[at] += 1;
+    }
+    if !planes.iter().any(|plane| plane.factor.is_near(Complex::ONE)) {
+        let most = (0..planes.len()).max_by_key(|&at| sizes[at]).expect("a value has a phase");
+        let common = planes[most].factor.conj();
+        planes.iter_mut().for_each(|plane| plane.factor = plane.factor * common);
+    }
+    Ok(planes)
 }
 
 /// Leaves out what has no effect, and makes one of planes over the same values.

@@ -298,8 +298,11 @@ impl<'c> Reader<'c> {
                 Err(NotDiagonal::Earlier) => {
                     return Err("a gate depends on what an oracle before it measured".to_owned());
                 }
-                Err(NotDiagonal::Tells) => return Err("a measurement depends on the value of the register".to_owned()),
+                Err(NotDiagonal::Tells) => return Err("a measurement tells of the value of the register".to_owned()),
                 Err(NotDiagonal::Phases) => return Err("there are too many different phases".to_owned()),
+                Err(NotDiagonal::Values) => {
+                    return Err("the sums over paths of an oracle do not close, and its values are too many".to_owned());
+                }
                 Err(NotDiagonal::Spent) => return Err(SPENT.to_owned()),
             }
         }
