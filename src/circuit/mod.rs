@@ -6,6 +6,7 @@
 //!
 //! The text form is OpenQASM: [`qasm::write`] and [`qasm::read`], neither of which imports the other.
 
+pub mod bounds;
 pub mod figures;
 pub mod level;
 pub mod product;
@@ -16,6 +17,7 @@ pub mod tidy;
 use std::num::NonZeroU32;
 use std::ops::Range;
 
+pub use bounds::Bounds;
 pub use figures::Figures;
 pub use level::Level;
 pub use product::Product;
