@@ -6,6 +6,7 @@
 //!
 //! The text form is OpenQASM: [`qasm::write`] and [`qasm::read`], neither of which imports the other.
 
+pub mod bounds;
 mod copy;
 pub mod figures;
 pub mod level;
@@ -17,6 +18,7 @@ pub mod tidy;
 use std::num::NonZeroU32;
 use std::ops::Range;
 
+pub use bounds::Bounds;
 pub use figures::Figures;
 pub use level::Level;
 pub use product::Product;

@@ -1,6 +1,6 @@
 //! A finished circuit with what it is and what it costs.
 
-use crate::circuit::{Circuit, FOUND, Figures, Level, Mark, figures};
+use crate::circuit::{Bounds, Circuit, FOUND, Figures, Level, Mark, figures};
 
 /// An oracle or a whole search, ready to be written.
 #[derive(Clone, PartialEq, Debug)]
@@ -16,13 +16,15 @@ pub struct Product {
     pub and_count: u64,
     /// Costs counted from the gates.
     pub figures: Figures,
+    /// What no oracle of the same predicate can go below, where that is known.
+    pub bounds: Option<Bounds>,
 }
 
 impl Product {
     /// The product with its figures counted.
     pub fn new(circuit: Circuit, level: Level, mark: Mark, and_count: u64) -> Self {
         let figures = figures::figures(&circuit);
-        Self { circuit, level, mark, and_count, figures }
+        Self { circuit, level, mark, and_count, figures, bounds: None }
     }
 
     /// Whether this is a whole search: it measures into `found`.

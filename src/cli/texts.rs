@@ -18,7 +18,7 @@ pub(super) struct Options {
     /// The version of OpenQASM: 3 or 2
     #[arg(long, value_name = "VERSION", default_value = "3", value_parser = ["2", "3"])]
     dialect: String,
-    /// Write gadgets as gates with names, and beside each constraint what the source says
+    /// Write gadgets as gates with names, and what serves one constraint as a subroutine beside what the source says
     #[arg(long)]
     readable: bool,
 }
@@ -51,7 +51,7 @@ impl Options {
             qasm::write_two::write(circuit, header, &mut out)
         } else if self.readable {
             let note = |id| note(&loaded.problem, sources, id);
-            let readable = qasm::write::Readable { gadgets: &gadgets(), note: &note };
+            let readable = qasm::write::Readable { gadgets: &gadgets(), note: &note, subroutines: true };
             qasm::write::write_readable(circuit, header, &readable, &mut out)
         } else {
             qasm::write::write(circuit, header, &mut out)

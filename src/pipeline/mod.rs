@@ -5,6 +5,7 @@
 //!     └────► Counted ─► Plan ─► whole search ─► search file ─► SearchVerdict
 //! ```
 
+mod bounds;
 mod certificate;
 mod choice;
 mod counting;
@@ -93,7 +94,8 @@ pub fn dossier(
     let counted = count(problem, places, settings, budget)?;
     write_json(&folder.join("places.json"), &places_json(loaded, places))?;
     let (oracle, levels) = match oracle_within(problem, places, settings, limits, budget) {
-        Ok(product) => {
+        Ok(mut product) => {
+            product.bounds = bounds::bounds(problem, places, settings.mark, counted.marked());
             let circuit = write_and_read(&folder.join("oracle.qasm"), loaded, places, &product, &counted)?;
             let verdict = audit(problem, places, &circuit, &audit_options(settings, &counted), budget)?;
             let levels = every_level(problem, places, settings, limits, budget)?;

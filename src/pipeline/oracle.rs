@@ -4,6 +4,7 @@ use std::convert::Infallible;
 
 use num_bigint::BigUint;
 
+use super::bounds::bounds;
 use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::circuit::{Level, Mark, Product};
@@ -30,7 +31,8 @@ pub fn oracle_within(
 ) -> Result<Product, Error> {
     let network = network(problem, places, budget);
     let lowered = lower::lower_within(&network, &options(settings), limits, budget)?;
-    Ok(product(lowered, settings))
+    let bounds = bounds(problem, places, settings.mark, None);
+    Ok(Product { bounds, ..product(lowered, settings) })
 }
 
 /// Compiles another form of the oracle: an angle in place of the sign, or under a control.
@@ -59,7 +61,7 @@ fn options(settings: Settings) -> lower::Options {
 
 fn product(lowered: Lowered, settings: Settings) -> Product {
     let Lowered { circuit, and_count, figures } = lowered;
-    Product { circuit, level: settings.level, mark: settings.mark, and_count, figures }
+    Product { circuit, level: settings.level, mark: settings.mark, and_count, figures, bounds: None }
 }
 
 /// The network after all passes.

@@ -133,6 +133,7 @@ pub fn circuit_json(product: &Product) -> Value {
         "gates": figures.gates,
         "rotations": figures.rotations,
         "measurements": figures.measurements,
+        "bounds": product.bounds,
     })
 }
 

@@ -5,7 +5,8 @@ use std::path::Path;
 
 use comfy_table::{CellAlignment, Table, presets};
 
-use crate::circuit::{Level, Product};
+use crate::circuit::{Bounds, Level, Product};
+use crate::diag::plural;
 use crate::judge::audit::{How, Outcome, Phases, SearchVerdict, Verdict};
 use crate::judge::count::Counted;
 use crate::ledger::Finding;
@@ -31,7 +32,7 @@ pub(super) fn head(loaded: &Loaded) -> String {
         (problem.bit_count(), "bit", "bits"),
         (problem.constraint_count(), "constraint", "constraints"),
     ];
-    let sizes = sizes.map(|(number, one, many)| crate::diag::plural(number, one, many));
+    let sizes = sizes.map(|(number, one, many)| plural(number, one, many));
     format!("{title}{}: {}\n", loaded.file, sizes.join(", "))
 }
 
@@ -94,7 +95,20 @@ pub(super) fn values(problem: &Problem, bits: &Bits) -> String {
 /// What a circuit is and costs.
 pub fn circuit(product: &Product) -> String {
     let what = if product.is_search() { "search" } else { "oracle" };
-    format!("{} {what} at level {}\n{}", mark_name(product.mark), product.level, cost_table([product]))
+    let table = cost_table([product]);
+    format!("{} {what} at level {}\n{table}{}", mark_name(product.mark), product.level, bounds_line(product))
+}
+
+/// What no exact oracle can go below, where that is known.
+fn bounds_line(product: &Product) -> String {
+    product.bounds.filter(|bounds| bounds.t_count > 0).map_or_else(
+        String::new,
+        |Bounds { degree, and_count, t_count }| {
+            let (ands, gates) =
+                (plural(and_count as usize, "AND", "ANDs"), plural(t_count as usize, "T gate", "T gates"));
+            line("bounds", format!("no exact oracle has fewer than {ands} or {gates} (degree {degree})"))
+        },
+    )
 }
 
 /// A table of costs, one circuit a row.
@@ -217,6 +231,7 @@ pub fn dossier(loaded: &Loaded, places: &Places, dossier: &Dossier, folder: &Pat
             let figures = &judged.product.figures;
             let mark = mark_name(judged.product.mark);
             text += &line("oracle", format!("{mark}, level {}, {} qubits", judged.product.level, figures.qubits));
+            text += &bounds_line(&judged.product);
             text += &verdict(&loaded.problem, &judged.verdict);
         }
         Err(advice) => text += &line("oracle", format!("none: {}", advice.text)),

@@ -7,12 +7,17 @@
 //! `negctrl @` for each control on 0 (the language text is at odds with itself on `negctrl(n)`). Outside
 //! oracles a run of the same operation over a whole register is written as one statement on the register.
 
-use std::f64::consts::PI;
 use std::io::{self, Write};
+
+mod angle;
+mod names;
+mod parts;
 
 use super::gadget::Gadget;
 use crate::circuit::{Circuit, Control, GIVEN, Gate, ITERATIONS, Op, Part, Region, Register};
 use crate::id::{ConstraintId, Id};
+use names::Names;
+use parts::Parts;
 
 /// What makes a text readable.
 #[derive(Clone, Copy)]
@@ -21,11 +26,13 @@ pub struct Readable<'a> {
     pub gadgets: &'a [Gadget],
     /// What is said of a constraint beside its number.
     pub note: &'a dyn Fn(ConstraintId) -> String,
+    /// Whether the gates that serve one constraint are a subroutine, where they are neither measured nor conditional.
+    pub subroutines: bool,
 }
 
 /// Writes the circuit; `header` lines become comments below the version line.
 pub fn write(circuit: &Circuit, header: &[String], out: &mut impl Write) -> io::Result<()> {
-    write_readable(circuit, header, &Readable { gadgets: &[], note: &|_| String::new() }, out)
+    write_readable(circuit, header, &Readable { gadgets: &[], note: &|_| String::new(), subroutines: false }, out)
 }
 
 /// Writes the circuit with names for gadgets and words for constraints.
@@ -54,8 +61,11 @@ pub fn write_readable(
     for register in &circuit.measured {
         writeln!(out, "bit[{}] {};", register.len, register.name)?;
     }
+    let parts = if readable.subroutines { Parts::of(circuit) } else { Parts::default() };
+    parts.define(circuit, readable, &mut out)?;
     let mut writer = Writer {
         circuit,
+        parts: &parts,
         qubits: Names::new(&circuit.qubits),
         bits: Names::new(&circuit.measured),
         regions: circuit.regions.iter().peekable(),
@@ -83,32 +93,9 @@ pub fn write_readable(
     out.flush()
 }
 
-/// The names of all elements of a list of registers, in one string.
-struct Names {
-    text: String,
-    ends: Vec<u32>,
-}
-
-impl Names {
-    fn new(registers: &[Register]) -> Self {
-        use std::fmt::Write;
-        let mut names = Self { text: String::new(), ends: vec![0] };
-        for register in registers {
-            for at in 0..register.len {
-                write!(names.text, "{}[{at}]", register.name).expect("a string takes everything");
-                names.ends.push(u32::try_from(names.text.len()).expect("names below 4 GiB"));
-            }
-        }
-        names
-    }
-
-    fn get(&self, index: usize) -> &str {
-        &self.text[self.ends[index] as usize..self.ends[index + 1] as usize]
-    }
-}
-
 struct Writer<'a> {
     circuit: &'a Circuit,
+    parts: &'a Parts,
     qubits: Names,
     bits: Names,
     /// The regions that begin at or after the next gate, in order.
@@ -129,9 +116,16 @@ impl Writer<'_> {
         while at < gates.end {
             while let Some(region) = self.regions.next_if(|region| region.gates.start as usize <= at) {
                 self.part = Some(region.part);
-                self.comment(out, region)?;
+                if self.parts.at(region.gates.start).is_none() {
+                    self.comment(out, region)?;
+                }
             }
             out.write_all(self.indent.as_bytes())?;
+            if let Some((end, part)) = self.parts.at(at as u32) {
+                self.parts.call(part, &self.qubits, out)?;
+                at = end as usize;
+                continue;
+            }
             let next_region = self.regions.peek().map_or(gates.end, |region| region.gates.start as usize);
             let limit = gates.end.min(next_region.max(at + 1));
             if let Some(len) = self.gadget(out, at..limit)? {
@@ -166,14 +160,7 @@ impl Writer<'_> {
     }
 
     fn comment(&self, out: &mut impl Write, region: &Region) -> io::Result<()> {
-        let part = match region.part {
-            Part::Prepare => "prepare",
-            Part::Compute => "compute",
-            Part::Mark => "mark",
-            Part::Undo => "undo",
-            Part::Reflect => "reflect",
-            Part::Measure => "measure",
-        };
+        let part = part_name(region.part);
         match region.constraint {
             Some(constraint) => {
                 let note = (self.readable.note)(constraint);
@@ -258,10 +245,21 @@ impl Writer<'_> {
         out.write_all(keyword(gate.op()).as_bytes())?;
         if let Some(angle) = self.circuit.angle(gate) {
             out.write_all(b"(")?;
-            write_angle(out, angle)?;
+            angle::write(out, angle)?;
             out.write_all(b")")?;
         }
         out.write_all(b" ")
+    }
+}
+
+fn part_name(part: Part) -> &'static str {
+    match part {
+        Part::Prepare => "prepare",
+        Part::Compute => "compute",
+        Part::Mark => "mark",
+        Part::Undo => "undo",
+        Part::Reflect => "reflect",
+        Part::Measure => "measure",
     }
 }
 
@@ -294,29 +292,10 @@ fn modifiers(out: &mut impl Write, controls: &[Control]) -> io::Result<()> {
     Ok(())
 }
 
-/// A multiple of pi over a power of two where that is the very number, else the shortest decimal that reads back.
-fn write_angle(out: &mut impl Write, angle: f64) -> io::Result<()> {
-    if angle == 0.0 {
-        return out.write_all(b"0");
-    }
-    for exponent in 0..=20 {
-        let denominator = f64::from(1u32 << exponent);
-        let numerator = (angle * denominator / PI).round();
-        if numerator != 0.0 && numerator.abs() < 1e6 && numerator * PI / denominator == angle {
-            let sign = if numerator < 0.0 { "-" } else { "" };
-            write!(out, "{sign}")?;
-            if numerator.abs() != 1.0 {
-                write!(out, "{}*", numerator.abs())?;
-            }
-            write!(out, "pi")?;
-            return if exponent > 0 { write!(out, "/{denominator}") } else { Ok(()) };
-        }
-    }
-    write!(out, "{angle:?}")
-}
-
 #[cfg(test)]
 mod tests {
+    use std::f64::consts::PI;
+
     use super::*;
     use crate::circuit::Condition;
 
@@ -386,21 +365,5 @@ ry(0.1) search[0];
 found = measure search;
 ";
         assert_eq!(text(&circuit, &["two\n\nlines"]), expected);
-    }
-
-    #[test]
-    fn angles_read_back_exactly() {
-        for (angle, expected) in [
-            (PI / 4.0, "pi/4"),
-            (-PI, "-pi"),
-            (5.0 * PI / 8.0, "5*pi/8"),
-            (0.0, "0"),
-            (1e-7, "1e-7"),
-            (2.126_880_047_155_5, "2.1268800471555"),
-        ] {
-            let mut out = Vec::new();
-            write_angle(&mut out, angle).unwrap();
-            assert_eq!(String::from_utf8(out).unwrap(), expected);
-        }
     }
 }

@@ -1,8 +1,9 @@
 //! Writing OpenQASM 2.0 (A. Cross, L. Bishop, J. Smolin, J. Gambetta, "Open quantum assembly language",
 //! arXiv:1707.03429).
 //!
-//! Input:  a circuit whose gates have at most two controls, all on 1. Output: text, streamed.
-//! After:  read back, the text gives the same operation; a CCZ becomes a CCX between Hadamard gates.
+//! Input:  a circuit whose gates have at most two controls. Output: text, streamed.
+//! After:  read back, the text gives the same operation; a CCZ becomes a CCX between Hadamard gates, and a control on 0
+//!         stands between two flips.
 //!
 //! The language compares whole registers in a condition, so every measured bit that a gate depends on is a register of
 //! its own. It has no loops, so blocks are written out as often as they are applied.
@@ -24,9 +25,6 @@ pub enum Unsayable {
     /// There are no modifiers: a gate has at most two controls.
     #[error("a gate has {0} controls, and OpenQASM 2.0 has none with more than 2")]
     ManyControls(usize),
-    /// There are no modifiers: a control holds on 1.
-    #[error("a control holds on 0, which OpenQASM 2.0 cannot say")]
-    NegatedControl,
     /// A controlled gate that the standard library of the language does not have.
     #[error("a {0:?} gate has a control, and OpenQASM 2.0 has no such gate")]
     ControlledGate(Op),
@@ -45,13 +43,10 @@ pub fn can_say(circuit: &Circuit) -> Result<(), Unsayable> {
     if total > MOST_GATES {
         return Err(Unsayable::TooLong(total));
     }
-    circuit.gates().iter().try_for_each(|gate| can_say_gate(circuit, gate))
+    circuit.gates().iter().try_for_each(can_say_gate)
 }
 
-fn can_say_gate(circuit: &Circuit, gate: &Gate) -> Result<(), Unsayable> {
-    if circuit.controls(gate).iter().any(|control| control.is_negated()) {
-        return Err(Unsayable::NegatedControl);
-    }
+fn can_say_gate(gate: &Gate) -> Result<(), Unsayable> {
     match (gate.op(), gate.control_count()) {
         (_, 0) | (Op::X | Op::Z, 1 | 2) => Ok(()),
         (Op::X | Op::Z, many) => Err(Unsayable::ManyControls(many)),
@@ -120,6 +115,20 @@ struct Writer<'a, W: Write> {
 
 impl<W: Write> Writer<'_, W> {
     fn gate(&mut self, gate: &Gate) -> io::Result<()> {
+        self.flips(gate)?;
+        self.between_flips(gate)?;
+        self.flips(gate)
+    }
+
+    /// Flips the controls that hold on 0.
+    fn flips(&mut self, gate: &Gate) -> io::Result<()> {
+        for control in self.circuit.controls(gate).iter().filter(|control| control.is_negated()) {
+            writeln!(self.out, "x {};", self.name(control))?;
+        }
+        Ok(())
+    }
+
+    fn between_flips(&mut self, gate: &Gate) -> io::Result<()> {
         let target = self.circuit.qubit_name(gate.target());
         let controls = self.circuit.controls(gate);
         if let Some(bit) = gate.measured() {
@@ -224,7 +233,9 @@ measure search[2] -> found[2];
         let mut circuit = Circuit::new();
         let q = circuit.add_qubits("search", 4);
         circuit.push(Op::X, &[!on(q[0])], q[3]);
-        assert_eq!(can_say(&circuit), Err(Unsayable::NegatedControl));
+        let mut out = Vec::new();
+        write(&circuit, &[], &mut out).unwrap();
+        assert!(String::from_utf8(out).unwrap().ends_with("x search[0];\ncx search[0],search[3];\nx search[0];\n"));
         circuit = Circuit::new();
         let q = circuit.add_qubits("search", 1);
         circuit.push(Op::X, &[], q[0]);

@@ -13,10 +13,10 @@ const WINDOW: usize = 48;
 const NONE: u32 = u32::MAX;
 
 /// The circuit without pairs of gates that undo each other.
-pub fn cancel(circuit: &Circuit) -> Circuit {
+pub fn cancel(circuit: Circuit) -> Circuit {
     let mut fates = vec![Fate::Kept; circuit.gates().len()];
     for block in circuit.blocks() {
-        let mut links = Links::new(circuit);
+        let mut links = Links::new(&circuit);
         for at in block.gates.start..block.gates.end {
             if let Some(partner) = links.partner(at, &fates) {
                 fates[at as usize] = Fate::Dropped;
@@ -160,7 +160,7 @@ mod tests {
         let mut circuit = Circuit::new();
         let q = circuit.add_qubits("search", 4);
         push(&mut circuit, &q);
-        cancel(&circuit).gates().len()
+        cancel(circuit).gates().len()
     }
 
     #[test]
@@ -202,7 +202,7 @@ mod tests {
         circuit.push(Op::X, &[], q[0]);
         circuit.push_if(Some(Condition::new(m[0], true)), Op::Z, &[], q[0]);
         circuit.push(Op::X, &[], q[0]);
-        assert_eq!(cancel(&circuit).gates().len(), 3);
+        assert_eq!(cancel(circuit).gates().len(), 3);
     }
 
     #[test]
@@ -218,7 +218,7 @@ mod tests {
         circuit.push(Op::H, &[], q[1]);
         circuit.note(3, Part::Undo, None);
         circuit.repeat_from(3, 5);
-        let tidy = cancel(&circuit);
+        let tidy = cancel(circuit);
         assert_eq!(tidy.regions.iter().map(|region| region.gates.clone()).collect::<Vec<_>>(), [0..1, 1..2]);
         assert_eq!(tidy.blocks().iter().map(|block| block.repeat).collect::<Vec<_>>(), [1, 5]);
     }

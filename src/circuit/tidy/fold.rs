@@ -17,7 +17,7 @@ use crate::circuit::{Circuit, Gate, Op, PerQubit};
 use crate::random::SplitMix64;
 
 /// The circuit with rotations about equal parities merged.
-pub fn fold(circuit: &Circuit) -> Circuit {
+pub fn fold(circuit: Circuit) -> Circuit {
     let foldable = |gate: &Gate| {
         let plain = circuit.controls(gate).iter().all(|control| !control.is_negated());
         gate.condition().is_none() && plain && gate.control_count() <= usize::from(matches!(gate.op(), Op::X | Op::Z))
@@ -25,7 +25,7 @@ pub fn fold(circuit: &Circuit) -> Circuit {
     let mut fates = vec![Fate::Kept; circuit.gates().len()];
     if circuit.gates().iter().all(foldable) {
         for block in circuit.blocks() {
-            fold_block(circuit, block.gates.start as usize..block.gates.end as usize, &mut fates);
+            fold_block(&circuit, block.gates.start as usize..block.gates.end as usize, &mut fates);
         }
     }
     rebuilt(circuit, &fates)
@@ -110,7 +110,7 @@ fn merge(group: &Group, constant: bool, fates: &mut [Fate]) {
         for &(at, _, _) in &group.members {
             fates[at] = Fate::Dropped;
         }
-        fates[first] = Fate::Became(Op::turning(sum));
+        fates[first] = Fate::Turn(sum);
     }
 }
 
@@ -124,7 +124,7 @@ mod tests {
         let mut circuit = Circuit::new();
         let q = circuit.add_qubits("search", 3);
         push(&mut circuit, &q);
-        figures(&fold(&circuit)).t_count
+        figures(&fold(circuit)).t_count
     }
 
     #[test]

@@ -6,7 +6,9 @@
 mod cancel;
 mod fold;
 
-use crate::circuit::{Block, Circuit, Op, Region};
+use std::collections::VecDeque;
+
+use crate::circuit::{Circuit, Gate, Op};
 
 pub use cancel::cancel;
 pub use fold::fold;
@@ -16,37 +18,40 @@ pub use fold::fold;
 enum Fate {
     Kept,
     Dropped,
-    /// Gates without controls take its place, on the same target.
-    Became(&'static [Op]),
+    /// A turn by so many multiples of pi/4 takes its place, on the same target.
+    Turn(u8),
 }
 
-/// The circuit with each gate after its fate.
-fn rebuilt(circuit: &Circuit, fates: &[Fate]) -> Circuit {
-    let mut gates = Vec::with_capacity(circuit.gates.len());
+const _: () = assert!(size_of::<Fate>() <= 2);
+
+/// The circuit with each gate after its fate, in the memory of the old one.
+fn rebuilt(mut circuit: Circuit, fates: &[Fate]) -> Circuit {
     let mut moved = Vec::with_capacity(circuit.gates.len() + 1);
-    for (gate, fate) in circuit.gates.iter().zip(fates) {
-        moved.push(gates.len() as u32);
+    // A turn may be two gates: those for which there is no room yet wait.
+    let mut waiting: VecDeque<Gate> = VecDeque::new();
+    let mut kept = 0;
+    for (at, fate) in fates.iter().enumerate() {
+        moved.push((kept + waiting.len()) as u32);
+        let gate = circuit.gates[at];
         match fate {
-            Fate::Kept => gates.push(*gate),
+            Fate::Kept => waiting.push_back(gate),
             Fate::Dropped => {}
-            Fate::Became(ops) => gates.extend(ops.iter().map(|&op| {
-                let mut new = *gate;
-                new.op = op;
-                new
-            })),
+            Fate::Turn(eighths) => waiting.extend(Op::turning(*eighths).iter().map(|&op| Gate { op, ..gate })),
+        }
+        while kept <= at
+            && let Some(gate) = waiting.pop_front()
+        {
+            circuit.gates[kept] = gate;
+            kept += 1;
         }
     }
-    moved.push(gates.len() as u32);
+    circuit.gates.truncate(kept);
+    circuit.gates.extend(waiting);
+    moved.push(circuit.gates.len() as u32);
     let range = |range: &std::ops::Range<u32>| moved[range.start as usize]..moved[range.end as usize];
-    let region = |region: &Region| Region { gates: range(&region.gates), ..region.clone() };
-    let block = |block: &Block| Block { gates: range(&block.gates), repeat: block.repeat };
-    Circuit {
-        qubits: circuit.qubits.clone(),
-        measured: circuit.measured.clone(),
-        regions: circuit.regions.iter().map(region).filter(|region| !region.gates.is_empty()).collect(),
-        gates,
-        controls: circuit.controls.clone(),
-        angles: circuit.angles.clone(),
-        blocks: circuit.blocks.iter().map(block).filter(|block| !block.gates.is_empty()).collect(),
-    }
+    circuit.regions.iter_mut().for_each(|region| region.gates = range(&region.gates));
+    circuit.regions.retain(|region| !region.gates.is_empty());
+    circuit.blocks.iter_mut().for_each(|block| block.gates = range(&block.gates));
+    circuit.blocks.retain(|block| !block.gates.is_empty());
+    circuit
 }

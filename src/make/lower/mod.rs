@@ -135,16 +135,16 @@ fn lower_spread(network: &Network, options: &Options, share: usize, budget: &Bud
     Ok(tidied(emit::emit(&plan, &steps, &spread, options, budget)?, options.level))
 }
 
-/// Circuits of more gates are left as they are: tidying holds a second copy.
-const MOST_TIDIED: usize = 20_000_000;
+/// Circuits of more gates are left as they are: while it is tidied, a gate takes some 60 bytes more.
+const MOST_TIDIED: usize = 100_000_000;
 
 /// The circuit without gates that undo each other, and at `clifford-t` with rotations merged.
 fn tidied(circuit: Circuit, level: Level) -> Circuit {
     match level {
         Level::Wide => circuit,
         _ if circuit.gates().len() > MOST_TIDIED => circuit,
-        Level::Toffoli | Level::Feedback => tidy::cancel(&circuit),
-        Level::CliffordT => tidy::cancel(&tidy::fold(&tidy::cancel(&circuit))),
+        Level::Toffoli | Level::Feedback => tidy::cancel(circuit),
+        Level::CliffordT => tidy::cancel(tidy::fold(tidy::cancel(circuit))),
     }
 }
 

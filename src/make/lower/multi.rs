@@ -14,6 +14,8 @@
 //! The dirty ways are Lemma 7.2 and Corollary 7.4 of A. Barenco and others, "Elementary gates for quantum computation",
 //! Phys. Rev. A 52:3457 (1995).
 
+use std::collections::VecDeque;
+
 use super::gates::Pen;
 use crate::circuit::{Circuit, Control, Level, MeasuredId, Op, QubitId};
 
@@ -33,7 +35,10 @@ pub struct Idle<'a> {
 pub enum Way {
     /// A balanced tree of ANDs in clean ancillas: the fewest T gates and layers.
     Tree,
-    /// ANDs in the clean ancillas there are, at least one, then in conditionally clean controls.
+    /// ANDs in the clean ancillas there are, at least two, then layer by layer in conditionally clean controls: the layers
+    /// grow as powers of two, so the depth grows as the logarithm.
+    Layers,
+    /// ANDs in the clean ancillas there are, at least one, then in conditionally clean controls, one after the other.
     Conditional,
     /// A ladder over dirty qubits, two fewer than controls.
     Ladder,
@@ -57,6 +62,7 @@ pub fn ways(controls: usize, op: Op, idle: Idle<'_>, level: Level) -> Vec<Way> {
     let clean = idle.clean.len();
     let mut ways = Vec::new();
     ways.extend((clean >= missing).then_some(Way::Tree));
+    ways.extend((clean >= 2 && missing > 1).then_some(Way::Layers));
     ways.extend((clean >= 1 && missing > 1).then_some(Way::Conditional));
     let borrowed = clean + idle.dirty.len();
     ways.extend((controls >= 3 && borrowed >= controls - 2).then_some(Way::Ladder));
@@ -77,7 +83,7 @@ pub fn append_controlled(
     let mut writer = Writer { pen: Pen::new(circuit, level), steps: Vec::new() };
     let borrowed: Vec<QubitId> = idle.dirty.iter().chain(idle.clean).copied().collect();
     match way {
-        Way::Tree | Way::Conditional => {
+        Way::Tree | Way::Layers | Way::Conditional => {
             // Conditionally clean qubits leave two controls: none is left to gather those in.
             let most = if way == Way::Tree { width(level, op) } else { width(level, op).max(2) };
             let left = writer.shorten(controls, idle.clean, most, way);
@@ -106,8 +112,11 @@ struct Writer<'c> {
 impl Writer<'_> {
     /// Brings the controls down to `most`.
     fn shorten(&mut self, controls: &[QubitId], clean: &[QubitId], most: usize, way: Way) -> Vec<QubitId> {
-        let mut left: std::collections::VecDeque<QubitId> = controls.iter().copied().collect();
+        let mut left: VecDeque<QubitId> = controls.iter().copied().collect();
         let mut clean = clean.iter();
+        if way == Way::Layers {
+            return self.layers(left, clean.copied().collect(), most);
+        }
         if way == Way::Tree {
             while left.len() > most {
                 let (Some(a), Some(b), Some(&target)) = (left.pop_front(), left.pop_front(), clean.next()) else {
@@ -141,7 +150,7 @@ impl Writer<'_> {
     fn conditional(&mut self, gate: QubitId, rest: Vec<QubitId>, ones: Vec<QubitId>, most: usize) -> Vec<QubitId> {
         let mut list = vec![gate];
         let mut spare = vec![ones];
-        let mut rest = std::collections::VecDeque::from(rest);
+        let mut rest = VecDeque::from(rest);
         while list.len() + rest.len() > most && rest.len() >= 2 {
             let target = spare.last_mut().and_then(Vec::pop).expect("two of them are clean at each place");
             let (Some(a), Some(b)) = (rest.pop_front(), rest.pop_front()) else { break };
@@ -158,6 +167,43 @@ impl Writer<'_> {
             list.push(target);
         }
         list
+    }
+
+    /// Shortens the list layer by layer. A layer is a balanced tree over as many controls as there are clean qubits for;
+    /// where its root is 1, all below it are, so they are clean for the next layer but one, which stays for the end. A
+    /// layer needs the controls of the one before only after the lowest level there, and the rest of it level by level:
+    /// each begins one AND after the other. At last the roots are gathered from the end in what was left of the layers.
+    fn layers(&mut self, mut rest: VecDeque<QubitId>, clean: Vec<QubitId>, most: usize) -> Vec<QubitId> {
+        let mut roots = Vec::new();
+        let mut spare = Vec::new();
+        let mut free = VecDeque::from(clean);
+        while !rest.is_empty() {
+            let first = roots.is_empty();
+            let size = rest.len().min(free.len() + 1);
+            let mut layer: VecDeque<QubitId> = rest.drain(..size).collect();
+            let mut ones = layer.clone();
+            while let (Some(a), Some(b)) = (layer.pop_front(), layer.pop_front()) {
+                let target = free.pop_front().expect("one for each control but one");
+                self.step([a, b], target, first);
+                layer.push_back(target);
+                ones.push_back(target);
+                if layer.len() == 1 {
+                    break;
+                }
+            }
+            roots.extend(if size > 1 { ones.pop_back() } else { ones.pop_front() });
+            ones.append(&mut free);
+            spare.push(ones.pop_back());
+            free = ones;
+        }
+        while roots.len() > most {
+            let (Some(b), Some(a)) = (roots.pop(), roots.pop()) else { break };
+            // Clean where all the roots before `a` are 1.
+            let target = spare[roots.len() - 1].expect("one is left of each layer");
+            self.step([a, b], target, false);
+            roots.push(target);
+        }
+        roots
     }
 
     fn step(&mut self, operands: [QubitId; 2], target: QubitId, clean: bool) {

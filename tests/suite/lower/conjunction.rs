@@ -2,9 +2,9 @@
 //! optimum.
 
 use tallymark::budget::Budget;
-use tallymark::circuit::{Level, Mark};
+use tallymark::circuit::{Figures, Level, Mark};
 use tallymark::id::Id;
-use tallymark::make::lower::lower_within;
+use tallymark::make::lower::{Lowered, front_of, lower_within};
 use tallymark::problem::{BitId, BitLit, Problem};
 
 use super::{check, network_of, options, within};
@@ -40,6 +40,68 @@ fn conjunctions_of_a_hundred_clauses_cost_what_a_dynamic_programme_gives() {
         let (_, all) = ands(100, ancillas, Level::CliffordT);
         assert!(all <= unitary, "{ancillas} ancillas: {all} without measurement");
     }
+}
+
+/// The same for a thousand clauses, at every number of ancillas of its table: on average and in the worst case with
+/// measured erasure, and without measurement. The programme may share nothing between clauses, as there is nothing to share.
+#[test]
+#[ignore = "a minute"]
+fn conjunctions_of_a_thousand_clauses_cost_what_a_dynamic_programme_gives() {
+    let network = network_of(&conjunction(1000));
+    let budget = Budget::unlimited();
+    let measured = front_of(&network, &options(Level::Feedback, Mark::Phase), &budget).unwrap();
+    let unitary = front_of(&network, &options(Level::CliffordT, Mark::Phase), &budget).unwrap();
+    let within = |front: &[Lowered], ancillas: u64, of: fn(&Figures) -> f64| {
+        let fit = front.iter().filter(|one| one.figures.qubits <= 3000 + ancillas);
+        fit.map(|one| of(&one.figures) / 4.0).fold(f64::INFINITY, f64::min)
+    };
+    let mut missed = Vec::new();
+    let mut compare = |what: &str, ancillas: u64, found: f64, reached: f64| {
+        println!("{what} at {ancillas}: {found} for {reached}");
+        if found > reached {
+            missed.push(format!("{what} at {ancillas}: {found} for {reached}"));
+        }
+    };
+    let on_average = [
+        (2998, 2998.0),
+        (1999, 3498.0),
+        (1001, 4496.0),
+        (89, 4453.0),
+        (88, 4474.0),
+        (30, 6548.0),
+        (21, 8700.0),
+        (14, 15363.0),
+    ];
+    for (ancillas, reached) in on_average {
+        compare("on average", ancillas, within(&measured, ancillas, |f| f.t_count_expected), reached);
+    }
+    let worst = [
+        (2998, 2998.0),
+        (1999, 3998.0),
+        (1001, 5994.0),
+        (89, 5908.0),
+        (29, 9255.0),
+        (23, 11006.0),
+        (21, 15007.0),
+        (14, 46821.0),
+    ];
+    for (ancillas, reached) in worst {
+        compare("in the worst case", ancillas, within(&measured, ancillas, |f| f.t_count as f64), reached);
+    }
+    let without = [
+        (2998, 5996.0),
+        (1999, 7996.0),
+        (1001, 13998.0),
+        (89, 11816.0),
+        (29, 18510.0),
+        (23, 22012.0),
+        (21, 30014.0),
+        (14, 121_256.0),
+    ];
+    for (ancillas, reached) in without {
+        compare("without measurement", ancillas, within(&unitary, ancillas, |f| f.t_count as f64), reached);
+    }
+    assert!(missed.is_empty(), "{missed:#?}");
 }
 
 #[test]

@@ -84,6 +84,23 @@ fn one_clean_ancilla() {
     }
 }
 
+/// The same with two clean ancillas or more: no more Toffolis than the published 2c (abstract), and each doubling of the
+/// controls adds so many layers at most, so the depth grows with the logarithm.
+#[test]
+fn layers_of_conditionally_clean_qubits() {
+    for c in 5..=11usize {
+        let n = c as u64;
+        assert_eq!(costs(Level::Toffoli, Op::X, c, (2, 0), Way::Layers).0, 2 * n - 3);
+        assert_eq!(costs(Level::Toffoli, Op::Z, c, (2, 0), Way::Layers).0, 2 * n - 3);
+        assert_eq!(costs(Level::CliffordT, Op::X, c, (2, 0), Way::Layers).1, 8 * n - 9);
+        assert_eq!(costs(Level::Feedback, Op::Z, c, (2, 0), Way::Layers).1, 8 * (n - 4) + 2 * 4 + 7);
+    }
+    let depth = |c: usize, way| figures(&case(Level::Toffoli, Op::X, c, (2, 0), way).circuit).depth;
+    let depths: Vec<u64> = (5..=10).map(|log| depth(1 << log, Way::Layers)).collect();
+    assert!(depths.windows(2).all(|pair| pair[1] <= pair[0] + 12), "{depths:?}");
+    assert!(depths[5] * 10 < depth(1 << 10, Way::Conditional), "{depths:?}");
+}
+
 #[test]
 fn every_way_at_every_level_with_every_number_of_idle_qubits() {
     let mut cases = 0;

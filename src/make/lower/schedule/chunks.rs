@@ -42,12 +42,21 @@ impl<'a> Conjunction<'a> {
         Self { cells, kept, steps: cells.chain.iter().map(step).collect(), direct }
     }
 
-    /// The unit the table is made for: the average, and the room of the largest or of the average.
-    pub(in crate::make::lower) fn unit(&self, largest: bool) -> Unit {
-        let sizes = || self.steps.iter().map(|step| step.inner.len() + 1);
-        let average = sizes().sum::<usize>() as f64 / self.steps.len() as f64;
-        let room = if largest { sizes().max().unwrap_or(1) } else { average.ceil() as usize };
-        Unit { cells: average, room }
+    /// The units that tables are made for: the average with the room of the largest or its own, and the most frequent.
+    pub(in crate::make::lower) fn kinds(&self) -> Vec<Unit> {
+        let mut sizes: Vec<usize> = self.steps.iter().map(|step| step.inner.len() + 1).collect();
+        sizes.sort_unstable();
+        let average = sizes.iter().sum::<usize>() as f64 / sizes.len() as f64;
+        let largest = sizes.last().copied().unwrap_or(1);
+        let runs = sizes.chunk_by(|a, b| a == b).max_by_key(|run| run.len());
+        let usual = runs.map_or(1, |run| run[0]);
+        let mut kinds = vec![
+            Unit { cells: average, room: largest },
+            Unit { cells: average, room: average.ceil() as usize },
+            Unit { cells: usual as f64, room: usual },
+        ];
+        kinds.dedup();
+        kinds
     }
 
     pub(in crate::make::lower) fn kept(&self) -> usize {

@@ -77,10 +77,9 @@ impl Front<'_> {
     }
 
     fn chunks(&mut self, conjunction: &Conjunction<'_>, rooms: &[usize], budget: &Budget) -> Result<(), LowerError> {
-        let units = [conjunction.unit(true), conjunction.unit(false)];
-        for unit in &units[..if units[0] == units[1] { 1 } else { 2 }] {
+        for unit in conjunction.kinds() {
             let largest = rooms.last().copied().unwrap_or(1).min(DENSE);
-            let table = Table::new(conjunction.units(), largest, *unit, Game::of(self.pay));
+            let table = Table::new(conjunction.units(), largest, unit, Game::of(self.pay));
             for &room in rooms {
                 self.time(budget)?;
                 let Some(left) = room.checked_sub(conjunction.kept()) else { continue };

@@ -11,23 +11,26 @@
 
 use super::Passed;
 use super::copy::Copy;
-use super::view::{self, Clause};
+use super::view::{self, Clause, View};
 use crate::id::Id;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::{Lit, Network, Node, NodeId};
 
 /// The pass.
-pub(super) fn known(network: &Network) -> Passed {
-    let clauses = view::clauses(network);
+pub(super) fn known(view: View<'_>) -> Option<Passed> {
+    let (network, clauses) = (view.network, view.clauses());
     let single = |clause: &Clause| if let [lit] = clause.lits[..] { Some(lit) } else { None };
-    let mut copy = Copy::new(network);
     let mut fixed: Vec<Lit> = clauses.iter().filter_map(single).filter(|lit| !lit.is_constant()).collect();
     fixed.sort_unstable();
     fixed.dedup();
+    if fixed.is_empty() {
+        return None;
+    }
+    let mut copy = Copy::new(network);
     if fixed.windows(2).any(|pair| pair[0] == !pair[1]) {
         let mut conjuncts = Conjuncts::default();
         conjuncts.add(Lit::NO, None);
-        return copy.finish(conjuncts);
+        return Some(copy.finish(conjuncts));
     }
     // Smaller nodes first: what a conjunct is made of is settled before it.
     let mut made: Vec<(Lit, Lit)> = Vec::with_capacity(fixed.len());
@@ -38,7 +41,7 @@ pub(super) fn known(network: &Network) -> Passed {
         copy.assume(lit.node(), Lit::constant(!lit.is_complemented()));
     }
     let mut conjuncts = Conjuncts::default();
-    for clause in &clauses {
+    for clause in clauses {
         match single(clause) {
             Some(lit) if !lit.is_constant() => {
                 let place = made.binary_search_by_key(&lit, |&(old, _)| old).expect("it was fixed");
@@ -47,7 +50,7 @@ pub(super) fn known(network: &Network) -> Passed {
             _ => view::add(&mut copy, &mut conjuncts, clause),
         }
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 /// Where a conjunct says that two bits are equal or opposite, the later one becomes the other from here on.

@@ -2,13 +2,16 @@
 //!
 //! Takes a network, gives one with the same root function over the same inputs. Each pass says in its file what holds
 //! after it, and returns, for every node of the old network, the literal of the new one that computes the same, or none
-//! where nothing does any more. [`simplify`] runs them all and keeps a result only where the ANDs do not become more.
+//! where nothing does any more; a pass that finds nothing to do returns nothing. [`simplify`] runs them all and keeps a
+//! result only where the ANDs do not become more.
 
 pub mod check;
 mod cone;
 mod copy;
 mod cuts;
+mod function;
 mod known;
+mod lists;
 mod parities;
 mod pivots;
 mod share;
@@ -18,9 +21,12 @@ mod view;
 mod weights;
 mod windows;
 
+use std::cell::OnceCell;
+
 use super::{Lit, Network, NodeId};
 use crate::budget::Budget;
 use crate::id::IdVec;
+use view::View;
 
 /// For every old node what computes the same in the new network; none where nothing does.
 pub type NodeMap = IdVec<NodeId, Option<Lit>>;
@@ -35,7 +41,7 @@ pub struct Passed {
 }
 
 /// A pass by name, and how often it may run while it removes ANDs.
-type Pass = (&'static str, usize, fn(&Network) -> Passed);
+type Pass = (&'static str, usize, fn(View<'_>) -> Option<Passed>);
 
 /// The passes in the order they run. Clauses become the gates and counters they spell before what is left of them is
 /// grouped on pivots; the last two work on the graph.
@@ -69,19 +75,22 @@ pub fn simplify<E>(
     budget: &Budget,
     mut each: impl FnMut(Step<'_>) -> Result<(), E>,
 ) -> Result<Network, E> {
+    let mut read = OnceCell::new();
+    let mut before = network.and_count();
     for &(name, rounds, pass) in PASSES {
         for _ in 0..rounds {
             if view::is_settled(&network) || budget.spent() {
                 return Ok(network);
             }
-            let passed = pass(&network);
-            let (before, after) = (network.and_count(), passed.network.and_count());
+            let Some(passed) = pass(View::new(&network, &read)) else { break };
+            let after = passed.network.and_count();
             if after > before {
                 break;
             }
             each(Step { name, before: &network, passed: &passed })?;
             network = passed.network;
-            if after == before {
+            read = OnceCell::new();
+            if std::mem::replace(&mut before, after) == after {
                 break;
             }
         }

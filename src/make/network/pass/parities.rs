@@ -10,7 +10,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 
 use super::Passed;
 use super::copy::Copy;
-use super::view::{self, Clause};
+use super::view::{self, Clause, View};
 use crate::make::network::build::Conjuncts;
 use crate::make::network::{Lit, Network, Node, NodeId};
 
@@ -28,9 +28,9 @@ struct Parity {
 }
 
 /// The pass.
-pub(super) fn parities(network: &Network) -> Passed {
-    let clauses = view::clauses(network);
-    let (spelled, mut part_of) = spelled_out(&clauses);
+pub(super) fn parities(view: View<'_>) -> Option<Passed> {
+    let (network, clauses) = (view.network, view.clauses());
+    let (spelled, mut part_of) = spelled_out(clauses);
     // Where each parity stands, as the place of a clause.
     let mut list: Vec<(usize, Parity)> = spelled;
     for (at, clause) in clauses.iter().enumerate() {
@@ -38,6 +38,9 @@ pub(super) fn parities(network: &Network) -> Passed {
             list.push((at, parity_of(network, *lit)));
             part_of[at] = true;
         }
+    }
+    if list.is_empty() {
+        return None;
     }
     list.sort_by_key(|(at, _)| *at);
     let mut copy = Copy::new(network);
@@ -60,7 +63,7 @@ pub(super) fn parities(network: &Network) -> Passed {
     if elimination.contradictory {
         conjuncts.add(Lit::NO, None);
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 /// The parities that groups of clauses say, each with the place of its first clause, and which clauses are part of one.

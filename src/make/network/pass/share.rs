@@ -13,7 +13,7 @@ use rustc_hash::FxHashMap;
 
 use super::Passed;
 use super::copy::Copy;
-use super::view;
+use super::view::{self, View};
 use crate::id::{Id, IdVec};
 use crate::make::network::build::Conjuncts;
 use crate::make::network::builder::Builder;
@@ -23,7 +23,8 @@ use crate::make::network::{Lit, Network, Node, NodeId};
 const MAX_OPERANDS: usize = 24;
 
 /// The pass.
-pub(super) fn share(network: &Network) -> Passed {
+pub(super) fn share(view: View<'_>) -> Option<Passed> {
+    let network = view.network;
     let uses = view::uses(network);
     let inner = inner_nodes(network, &uses);
     let mut trees: Vec<(NodeId, Vec<Lit>)> = Vec::new();
@@ -47,7 +48,7 @@ pub(super) fn share(network: &Network) -> Passed {
         let lit = copy.lit(conjunct.lit);
         conjuncts.add(lit, conjunct.constraint);
     }
-    copy.finish_by(conjuncts, |builder, lits| depths.join(builder, lits))
+    Some(copy.finish_by(conjuncts, |builder, lits| depths.join(builder, lits)))
 }
 
 /// ANDs that are part of the one AND that uses them.
@@ -85,16 +86,20 @@ const FIRST_DIVISOR: u32 = 1 << 31;
 
 /// Takes out pairs, the most frequent first. A divisor stands in the trees as a literal of a number beyond all nodes.
 fn divide(trees: &mut [(NodeId, Vec<Lit>)]) -> Vec<(Lit, Lit)> {
-    let mut users: FxHashMap<(Lit, Lit), Vec<usize>> = FxHashMap::default();
+    let mut pairs: Vec<((Lit, Lit), u32)> = Vec::new();
     for (at, (_, lits)) in trees.iter().enumerate().filter(|(_, (_, lits))| lits.len() <= MAX_OPERANDS) {
         for (place, &a) in lits.iter().enumerate() {
-            lits[place + 1..].iter().for_each(|&b| users.entry((a, b)).or_default().push(at));
+            lits[place + 1..].iter().for_each(|&b| pairs.push(((a, b), at as u32)));
         }
     }
+    pairs.sort_unstable();
+    let mut users: FxHashMap<(Lit, Lit), Vec<usize>> = FxHashMap::default();
     let mut heap: BinaryHeap<(usize, Reverse<(Lit, Lit)>)> = BinaryHeap::new();
-    for (&pair, users) in users.iter().filter(|(_, users)| users.len() > 1) {
-        heap.push((users.len(), Reverse(pair)));
+    for run in pairs.chunk_by(|a, b| a.0 == b.0).filter(|run| run.len() > 1) {
+        users.insert(run[0].0, run.iter().map(|&(_, at)| at as usize).collect());
+        heap.push((run.len(), Reverse(run[0].0)));
     }
+    drop(pairs);
     let mut divisors = Vec::new();
     while let Some((claimed, Reverse(pair))) = heap.pop() {
         let has = |lits: &[Lit]| lits.binary_search(&pair.0).is_ok() && lits.binary_search(&pair.1).is_ok();

@@ -8,10 +8,11 @@
 
 use super::Passed;
 use super::copy::Copy;
-use super::view::{self, Clause};
+use super::lists::Lists;
+use super::view::{self, Clause, View};
 use crate::id::Id;
+use crate::make::network::Lit;
 use crate::make::network::build::Conjuncts;
-use crate::make::network::{Lit, Network};
 
 /// A literal in more clauses than this is not searched.
 const MAX_CLAUSES: usize = 400;
@@ -20,8 +21,8 @@ const MAX_CLAUSES: usize = 400;
 const MAX_LENGTH: usize = 16;
 
 /// The pass.
-pub(super) fn subsume(network: &Network) -> Passed {
-    let mut clauses = view::clauses(network);
+pub(super) fn subsume(view: View<'_>) -> Option<Passed> {
+    let mut clauses = view.clauses().to_vec();
     let mut store = Store::new(&mut clauses);
     // Short clauses first; a clause that became shorter is looked at again.
     let mut open: Vec<usize> = (0..store.clauses.len()).collect();
@@ -31,54 +32,59 @@ pub(super) fn subsume(network: &Network) -> Passed {
             store.use_clause(at, &mut open);
         }
     }
+    if !store.changed {
+        return None;
+    }
     let gone = store.gone;
-    let mut copy = Copy::new(network);
+    let mut copy = Copy::new(view.network);
     let mut conjuncts = Conjuncts::default();
     for (clause, _) in clauses.iter().zip(gone).filter(|(_, gone)| !gone) {
         view::add(&mut copy, &mut conjuncts, clause);
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 struct Store<'a> {
     clauses: &'a mut Vec<Clause>,
     /// The clauses of each literal, by its number.
-    at_lit: Vec<Vec<usize>>,
+    at_lit: Lists,
     /// For each clause the set of its nodes, hashed into 64 bits: a cheap look before the comparison.
     nodes: Vec<u64>,
     gone: Vec<bool>,
+    /// Whether a clause went or became shorter.
+    changed: bool,
 }
 
 impl<'a> Store<'a> {
     fn new(clauses: &'a mut Vec<Clause>) -> Self {
         let last = clauses.iter().flat_map(|clause| &clause.lits).map(|lit| lit.0 | 1).max().unwrap_or(0);
-        let mut at_lit = vec![Vec::new(); last as usize + 1];
-        for (at, clause) in clauses.iter().enumerate() {
-            clause.lits.iter().for_each(|&lit| at_lit[lit.0 as usize].push(at));
-        }
+        let entries = clauses.iter().enumerate();
+        let entries = entries.flat_map(|(at, clause)| clause.lits.iter().map(move |lit| (lit.0 as usize, at)));
+        let at_lit = Lists::new(last as usize + 1, entries);
         let nodes = clauses.iter().map(|clause| node_set(&clause.lits)).collect();
-        Self { gone: vec![false; clauses.len()], clauses, at_lit, nodes }
+        Self { gone: vec![false; clauses.len()], clauses, at_lit, nodes, changed: false }
     }
 
     /// Removes what the clause subsumes, and the literals that it resolves away.
     fn use_clause(&mut self, at: usize, open: &mut Vec<usize>) {
         let lits = self.clauses[at].lits.clone();
         // Every clause that is touched holds the rarest literal, or its complement, or another one complemented.
-        let count = |lit: Lit| self.at_lit[lit.0 as usize].len();
+        let count = |lit: Lit| self.at_lit.of(lit.0 as usize).len();
         let set = node_set(&lits);
         let Some(&rare) = lits.iter().min_by_key(|&&lit| (count(lit), lit)) else { return };
         for &pivot in &lits {
             for (in_clause, flipped) in [(rare, None), (!pivot, Some(pivot))] {
                 // Without a flipped literal once is enough; with one, the rarest of the others would do as well.
-                if flipped.is_none() && pivot != rare || self.at_lit[in_clause.0 as usize].len() > MAX_CLAUSES {
+                if flipped.is_none() && pivot != rare || self.at_lit.of(in_clause.0 as usize).len() > MAX_CLAUSES {
                     continue;
                 }
-                for place in 0..self.at_lit[in_clause.0 as usize].len() {
-                    let other = self.at_lit[in_clause.0 as usize][place];
+                for place in 0..self.at_lit.of(in_clause.0 as usize).len() {
+                    let other = self.at_lit.of(in_clause.0 as usize)[place] as usize;
                     let may = set & !self.nodes[other] == 0 && other != at && !self.gone[other];
                     if !may || !self.contains(other, &lits, flipped) {
                         continue;
                     }
+                    self.changed = true;
                     match flipped {
                         None => self.gone[other] = true,
                         Some(pivot) => {

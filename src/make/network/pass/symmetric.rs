@@ -14,7 +14,7 @@ use std::collections::BTreeSet;
 use super::Passed;
 use super::cone::Uses;
 use super::copy::Copy;
-use super::view;
+use super::view::{self, Clause, View};
 use crate::make::network::build::Conjuncts;
 use crate::make::network::builder::Builder;
 use crate::make::network::linear::Linear;
@@ -28,14 +28,19 @@ const MAX_INPUTS: usize = 12;
 const MAX_NODES: usize = 4096;
 
 /// The pass.
-pub(super) fn symmetric(network: &Network) -> Passed {
+pub(super) fn symmetric(view: View<'_>) -> Option<Passed> {
+    let network = view.network;
+    // A clause of many literals is a symmetric function at its least already.
+    let found = |clause: &Clause| if clause.lits.len() == 1 { values(network, clause.root) } else { None };
+    let found: Vec<_> = view.clauses().iter().map(found).collect();
+    if found.iter().all(Option::is_none) {
+        return None;
+    }
     let mut uses = Uses::new(network);
     let small = RefCell::new(Small::new());
     let mut copy = Copy::new(network);
     let mut conjuncts = Conjuncts::default();
-    for clause in view::clauses(network) {
-        // A clause of many literals is a symmetric function at its least already.
-        let found = if clause.lits.len() == 1 { values(network, clause.root) } else { None };
+    for (clause, found) in view.clauses().iter().zip(found) {
         if let Some((inputs, values)) = found {
             let ones: Vec<Linear> = inputs.iter().map(|&input| Linear::truth(Lit::new(input, false))).collect();
             let before = copy.builder.and_count();
@@ -45,9 +50,9 @@ pub(super) fn symmetric(network: &Network) -> Passed {
                 continue;
             }
         }
-        view::add(&mut copy, &mut conjuncts, &clause);
+        view::add(&mut copy, &mut conjuncts, clause);
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 /// The bits of a cone and its value for each number of them that hold, where that is all that matters.

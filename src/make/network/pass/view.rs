@@ -7,6 +7,8 @@
 //! Holds: literals of a clause are sorted, none occurs twice and none with its complement; a clause that always holds is
 //! left out. A clause without literals never holds.
 
+use std::cell::OnceCell;
+
 use super::copy::Copy;
 use crate::id::{ConstraintId, Id, IdVec};
 use crate::make::network::build::Conjuncts;
@@ -25,8 +27,26 @@ pub(super) struct Clause {
     pub(super) constraint: Option<ConstraintId>,
 }
 
-/// The clauses whose conjunction is the root.
-pub(super) fn clauses(network: &Network) -> Vec<Clause> {
+/// A network with its root as clauses, which are read when a pass first asks for them and serve until one changes it.
+#[derive(Clone, Copy)]
+pub(super) struct View<'a> {
+    pub(super) network: &'a Network,
+    read: &'a OnceCell<Vec<Clause>>,
+}
+
+impl<'a> View<'a> {
+    /// The network, and where its clauses are kept once they are read.
+    pub(super) fn new(network: &'a Network, read: &'a OnceCell<Vec<Clause>>) -> Self {
+        Self { network, read }
+    }
+
+    /// The clauses whose conjunction is the root.
+    pub(super) fn clauses(&self) -> &'a [Clause] {
+        self.read.get_or_init(|| clauses(self.network))
+    }
+}
+
+fn clauses(network: &Network) -> Vec<Clause> {
     let uses = uses(network);
     let mut clauses = Vec::with_capacity(network.conjuncts().len());
     for conjunct in network.conjuncts() {

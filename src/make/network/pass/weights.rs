@@ -10,17 +10,19 @@
 //! A set grows from a clause literal by literal while all the clauses it needs are there and free. Sets of up to five
 //! are left to the pass of [`windows`](super::windows).
 
+use std::cell::OnceCell;
 use std::collections::BTreeMap;
 
 use rustc_hash::FxHashMap;
 
 use super::Passed;
 use super::copy::Copy;
-use super::view::{self, Clause};
+use super::lists::Lists;
+use super::view::{self, Clause, View};
+use crate::make::network::Lit;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::linear::Linear;
 use crate::make::network::small::INPUTS;
-use crate::make::network::{Lit, Network};
 
 /// The longest clauses of a group.
 const MAX_LENGTH: usize = 8;
@@ -29,9 +31,9 @@ const MAX_LENGTH: usize = 8;
 const MAX_NEEDED: usize = 20_000;
 
 /// The pass.
-pub(super) fn weights(network: &Network) -> Passed {
-    let clauses = view::clauses(network);
-    let mut search = Search::new(&clauses);
+pub(super) fn weights(view: View<'_>) -> Option<Passed> {
+    let (network, clauses) = (view.network, view.clauses());
+    let mut search = Search::new(clauses);
     let mut groups: BTreeMap<Vec<Lit>, Bounds> = BTreeMap::new();
     for (at, clause) in clauses.iter().enumerate() {
         if let Some((set, members)) = search.group(at) {
@@ -44,10 +46,13 @@ pub(super) fn weights(network: &Network) -> Passed {
             if flip { bounds.most = bounds.most.min(set.len() - least) } else { bounds.least = bounds.least.max(least) }
         }
     }
+    if groups.is_empty() {
+        return None;
+    }
     for (set, bounds) in &mut groups {
         let opposite: Vec<Lit> = set.iter().map(|&lit| !lit).collect();
         for (clause, is_least) in [(set, true), (&opposite, false)] {
-            if let Some(&at) = search.by_lits.get(clause.as_slice())
+            if let Some(&at) = search.by_lits().get(clause.as_slice())
                 && !std::mem::replace(&mut search.taken[at], true)
             {
                 if is_least {
@@ -70,7 +75,7 @@ pub(super) fn weights(network: &Network) -> Passed {
             view::add(&mut copy, &mut conjuncts, clause);
         }
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 /// How many of a set hold.
@@ -100,23 +105,32 @@ impl Bounds {
 
 struct Search<'a> {
     clauses: &'a [Clause],
-    by_lits: FxHashMap<&'a [Lit], usize>,
-    /// The clauses of each literal.
-    at_lit: FxHashMap<Lit, Vec<usize>>,
+    /// Made when it is first asked for.
+    by_lits: OnceCell<FxHashMap<&'a [Lit], usize>>,
+    /// The clauses of each literal, by its number.
+    at_lit: Lists,
     taken: Vec<bool>,
 }
 
 impl<'a> Search<'a> {
     fn new(clauses: &'a [Clause]) -> Self {
-        let mut by_lits = FxHashMap::default();
-        let mut at_lit: FxHashMap<Lit, Vec<usize>> = FxHashMap::default();
-        for (at, clause) in clauses.iter().enumerate() {
-            by_lits.entry(clause.lits.as_slice()).or_insert(at);
-            if (2..=MAX_LENGTH).contains(&clause.lits.len()) {
-                clause.lits.iter().for_each(|&lit| at_lit.entry(lit).or_default().push(at));
+        let last = clauses.iter().flat_map(|clause| &clause.lits).map(|lit| lit.0).max().unwrap_or(0);
+        let short = |&(_, clause): &(usize, &Clause)| (2..=MAX_LENGTH).contains(&clause.lits.len());
+        let entries = clauses.iter().enumerate().filter(short);
+        let entries = entries.flat_map(|(at, clause)| clause.lits.iter().map(move |lit| (lit.0 as usize, at)));
+        let at_lit = Lists::new(last as usize + 1, entries);
+        Self { clauses, by_lits: OnceCell::new(), at_lit, taken: vec![false; clauses.len()] }
+    }
+
+    /// The first clause of these literals.
+    fn by_lits(&self) -> &FxHashMap<&'a [Lit], usize> {
+        self.by_lits.get_or_init(|| {
+            let mut by_lits = FxHashMap::default();
+            for (at, clause) in self.clauses.iter().enumerate() {
+                by_lits.entry(clause.lits.as_slice()).or_insert(at);
             }
-        }
-        Self { clauses, by_lits, at_lit, taken: vec![false; clauses.len()] }
+            by_lits
+        })
     }
 
     /// The largest set that grows from a clause, and its clauses, where counting is worth it.
@@ -125,9 +139,13 @@ impl<'a> Search<'a> {
         if self.taken[seed] || !(2..=MAX_LENGTH).contains(&size) {
             return None;
         }
+        let candidates = self.candidates(seed);
         let mut set = self.clauses[seed].lits.clone();
+        if set.len() + candidates.len() <= INPUTS {
+            return None;
+        }
         let mut members = vec![seed];
-        for next in self.candidates(seed) {
+        for next in candidates {
             if set.contains(&next) {
                 continue;
             }
@@ -145,7 +163,8 @@ impl<'a> Search<'a> {
         let lits = &self.clauses[seed].lits;
         let (_, fixed) = lits.split_last().expect("two literals or more");
         let mut found: Vec<Lit> = Vec::new();
-        for &at in &self.at_lit[&lits[0]] {
+        for &at in self.at_lit.of(lits[0].0 as usize) {
+            let at = at as usize;
             let other = &self.clauses[at].lits;
             if other.len() == lits.len() && !self.taken[at] && fixed.iter().all(|lit| other.binary_search(lit).is_ok())
             {
@@ -164,7 +183,7 @@ impl<'a> Search<'a> {
         loop {
             let mut lits: Vec<Lit> = places.iter().map(|&place| set[place]).chain([next]).collect();
             lits.sort_unstable();
-            found.push(*self.by_lits.get(lits.as_slice()).filter(|&&at| !self.taken[at])?);
+            found.push(*self.by_lits().get(lits.as_slice()).filter(|&&at| !self.taken[at])?);
             if found.len() > MAX_NEEDED {
                 return None;
             }

@@ -10,13 +10,15 @@
 //! taken where it saves enough for each clause. Clauses that a pivot would serve as well are left to that pass.
 
 use super::Passed;
-use super::cone::{self, Function, Uses};
+use super::cone::Uses;
 use super::copy::Copy;
-use super::view::{self, Clause};
-use crate::id::IdVec;
+use super::function::{self, Function, Leaves};
+use super::lists::Lists;
+use super::view::{self, Clause, View};
+use crate::id::{Id, IdVec};
 use crate::make::network::build::Conjuncts;
 use crate::make::network::small::{INPUTS, Small};
-use crate::make::network::{Lit, Network, NodeId};
+use crate::make::network::{Lit, Network, Node, NodeId};
 
 /// A node with more clauses than this leads to no others: windows around it would be looked for again and again.
 const MAX_CLAUSES: usize = 256;
@@ -24,10 +26,13 @@ const MAX_CLAUSES: usize = 256;
 /// ANDs that a window must save for each of its clauses, in tenths: grouping on a pivot saves one.
 const LEAST_SAVING: usize = 13;
 
+/// Bits that hold a number of nodes.
+const COUNT_BITS: u32 = 3;
+
 /// The pass.
-pub(super) fn windows(network: &Network) -> Passed {
-    let clauses = view::clauses(network);
-    let mut finder = Finder::new(network, &clauses);
+pub(super) fn windows(view: View<'_>) -> Option<Passed> {
+    let (network, clauses) = (view.network, view.clauses());
+    let mut finder = Finder::new(network, clauses);
     let mut order: Vec<usize> = (0..clauses.len()).filter(|&at| finder.functions[at].is_some()).collect();
     order.sort_by_key(|&at| std::cmp::Reverse(finder.functions[at].as_ref().map_or(0, |f| f.inputs.len())));
     let mut window_of: Vec<Option<usize>> = vec![None; clauses.len()];
@@ -37,6 +42,9 @@ pub(super) fn windows(network: &Network) -> Passed {
             members.iter().for_each(|&member| window_of[member] = Some(windows.len()));
             windows.push(function);
         }
+    }
+    if windows.is_empty() {
+        return None;
     }
     let mut copy = Copy::new(network);
     let mut conjuncts = Conjuncts::default();
@@ -53,30 +61,35 @@ pub(super) fn windows(network: &Network) -> Passed {
             conjuncts.add(lit, clause.constraint);
         }
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 struct Finder<'a> {
     clauses: &'a [Clause],
     /// What each clause says about few nodes; none where it is about many.
     functions: Vec<Option<Function>>,
-    /// The clauses of each node.
-    at_node: IdVec<NodeId, Vec<usize>>,
+    network: &'a Network,
+    /// The clauses of each node, each with how many nodes it is about in the lowest [`COUNT_BITS`] bits.
+    at_node: Lists,
     taken: Vec<bool>,
     uses: Uses<'a>,
     small: Small,
+    /// The clauses met around the window at hand.
+    met: Vec<u32>,
 }
 
 impl<'a> Finder<'a> {
     fn new(network: &'a Network, clauses: &'a [Clause]) -> Self {
-        let of_nodes = cone::functions(network);
+        let of_nodes = function::functions(network);
         let functions: Vec<Option<Function>> = clauses.iter().map(|clause| function_of(clause, &of_nodes)).collect();
-        let mut at_node: IdVec<NodeId, Vec<usize>> = vec![Vec::new(); network.nodes().len()].into();
-        for (at, function) in functions.iter().enumerate() {
-            function.iter().flat_map(|f| &f.inputs).for_each(|&node| at_node[node].push(at));
-        }
+        let entries = functions.iter().enumerate().filter_map(|(at, function)| Some((at, function.as_ref()?)));
+        let entries = entries.flat_map(|(at, Function { inputs, .. })| {
+            inputs.iter().map(move |&node| (node.index(), at << COUNT_BITS | inputs.len()))
+        });
+        let at_node = Lists::new(network.nodes().len(), entries);
         let taken = vec![false; clauses.len()];
-        Self { clauses, functions, at_node, taken, uses: Uses::new(network), small: Small::new() }
+        let met = Vec::new();
+        Self { clauses, functions, network, at_node, taken, uses: Uses::new(network), small: Small::new(), met }
     }
 
     /// The best window around a clause, where one is worth it; its clauses are taken.
@@ -84,10 +97,16 @@ impl<'a> Finder<'a> {
         if self.taken[seed] {
             return None;
         }
-        let mut nodes = self.functions[seed].as_ref()?.inputs.clone();
+        let mut nodes = self.functions[seed].as_ref()?.inputs;
         let mut best: Option<(usize, Function, Vec<usize>)> = None;
         loop {
             let (members, next) = self.members(&nodes, seed);
+            if members.len() == 1 && self.is_plain(seed) {
+                // As few ANDs as the function needs: nothing to save yet.
+                let Some(next) = next.filter(|_| nodes.len() < INPUTS) else { break };
+                nodes = nodes.union(&Leaves::one(next)).expect("there is room");
+                continue;
+            }
             let table = members.iter().fold(!0, |table, &at| {
                 table & self.functions[at].as_ref().expect("a member has few nodes").table_over(&nodes)
             });
@@ -96,30 +115,46 @@ impl<'a> Finder<'a> {
             let saving = before.saturating_sub(self.small.ands(table) + 1);
             let enough = if members.len() == 1 { saving > 0 } else { saving * 10 >= members.len() * LEAST_SAVING };
             if enough && best.as_ref().is_none_or(|best| saving > best.0) {
-                best = Some((saving, Function { inputs: nodes.clone(), table }, members));
+                best = Some((saving, Function { inputs: nodes, table }, members));
             }
             let Some(next) = next.filter(|_| nodes.len() < INPUTS) else { break };
-            nodes.insert(nodes.partition_point(|&node| node < next), next);
+            nodes = nodes.union(&Leaves::one(next)).expect("there is room");
         }
         let (_, function, members) = best?;
         members.iter().for_each(|&at| self.taken[at] = true);
         Some((function, members))
     }
 
+    /// Whether the clause is an OR of searched bits.
+    fn is_plain(&self, at: usize) -> bool {
+        let is_bit = |lit: &Lit| matches!(self.network.nodes()[lit.node()], Node::Input(_));
+        self.clauses[at].lits.iter().all(is_bit)
+    }
+
     /// The free clauses within the nodes, and the node with which most others would be.
-    fn members(&self, nodes: &[NodeId], seed: usize) -> (Vec<usize>, Option<NodeId>) {
+    fn members(&mut self, nodes: &[NodeId], seed: usize) -> (Vec<usize>, Option<NodeId>) {
+        self.met.clear();
+        let mut busy = 0;
+        for &node in nodes {
+            let at_node = self.at_node.of(node.index());
+            if at_node.len() <= MAX_CLAUSES { self.met.extend_from_slice(at_node) } else { busy += 1 }
+        }
+        self.met.sort_unstable();
         let mut members = vec![seed];
         let mut outside: Vec<NodeId> = Vec::new();
-        for &node in nodes.iter().filter(|&&node| self.at_node[node].len() <= MAX_CLAUSES) {
-            for &at in self.at_node[node].iter().filter(|&&at| !self.taken[at]) {
-                let inputs = &self.functions[at].as_ref().expect("it has few nodes").inputs;
-                let mut others = inputs.iter().filter(|input| nodes.binary_search(input).is_err());
-                match (others.next(), others.next()) {
-                    (None, _) => members.push(at),
-                    // A clause that shares more nodes with the window is met, and so counts, more often.
-                    (Some(&other), None) => outside.push(other),
-                    _ => {}
-                }
+        for run in self.met.chunk_by(|a, b| a == b) {
+            let (at, count) = ((run[0] >> COUNT_BITS) as usize, (run[0] & ((1 << COUNT_BITS) - 1)) as usize);
+            // Two of its nodes or more are outside, or it is in another window.
+            if count > run.len() + busy + 1 || self.taken[at] {
+                continue;
+            }
+            let inputs = &self.functions[at].as_ref().expect("it has few nodes").inputs;
+            let mut others = inputs.iter().filter(|input| nodes.binary_search(input).is_err());
+            match (others.next(), others.next()) {
+                (None, _) => members.push(at),
+                // A clause that shares more nodes with the window is met, and so counts, more often.
+                (Some(&other), None) => outside.extend(run.iter().map(|_| other)),
+                _ => {}
             }
         }
         members.sort_unstable();
@@ -133,9 +168,9 @@ impl<'a> Finder<'a> {
 /// What a clause says about the searched bits, or else about its own literals' nodes, where these are few.
 fn function_of(clause: &Clause, of_nodes: &IdVec<NodeId, Option<Function>>) -> Option<Function> {
     let or = |of: &dyn Fn(NodeId) -> Option<Function>| {
-        clause.lits.iter().try_fold(Function { inputs: Vec::new(), table: 0 }, |sum, &lit| {
-            sum.join(&of(lit.node())?, |sum, table| sum | cone::complement_if(table, lit))
+        clause.lits.iter().try_fold(Function::no(), |sum, &lit| {
+            sum.join(&of(lit.node())?, |sum, table| sum | function::complement_if(table, lit))
         })
     };
-    or(&|node| of_nodes[node].clone()).or_else(|| or(&|node| Some(Function::of_node(node))))
+    or(&|node| of_nodes[node]).or_else(|| or(&|node| Some(Function::of_node(node))))
 }

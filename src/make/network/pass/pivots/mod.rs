@@ -12,19 +12,19 @@ mod plan;
 
 use super::Passed;
 use super::copy::Copy;
-use super::view::{self, Clause};
+use super::view::{self, Clause, View};
+use crate::make::network::Lit;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::builder::Builder;
-use crate::make::network::{Lit, Network};
 use plan::Term;
 
 /// The pass.
-pub(super) fn pivots(network: &Network) -> Passed {
-    let mut copy = Copy::new(network);
-    let clauses = view::clauses(network);
+pub(super) fn pivots(view: View<'_>) -> Option<Passed> {
+    let mut copy = Copy::new(view.network);
+    let clauses = view.clauses();
     let mut conjuncts = Conjuncts::default();
     let mut open: Vec<Vec<Lit>> = Vec::with_capacity(clauses.len());
-    for Clause { lits, .. } in &clauses {
+    for Clause { lits, .. } in clauses {
         let mut lits: Vec<Lit> = lits.iter().map(|&lit| copy.lit(lit)).collect();
         // Different old literals may be one new literal.
         open.push(if view::tidy(&mut lits) { lits } else { vec![Lit::YES] });
@@ -34,7 +34,7 @@ pub(super) fn pivots(network: &Network) -> Passed {
         let lit = build(&mut copy.builder, term);
         conjuncts.add(lit, clauses[*first].constraint);
     }
-    copy.finish(conjuncts)
+    Some(copy.finish(conjuncts))
 }
 
 fn build(builder: &mut Builder, term: &Term) -> Lit {
