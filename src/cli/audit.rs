@@ -71,7 +71,8 @@ pub(super) struct Options {
     /// Inputs to draw where there are too many to try all
     #[arg(long, value_name = "NUMBER")]
     sample: Option<usize>,
-    /// Decide by proof, whatever the number of inputs, and write it: miter.cnf and proof.drat in this folder
+    /// Decide by proof, whatever the number of inputs, and write it: miter.cnf and proof.drat in this folder, and
+    /// obligations.cnf and obligations.drat for bits that are computed
     #[arg(long, value_name = "DIR")]
     proof: Option<PathBuf>,
     /// Amplitude updates to spend on a whole search, as a power of two
@@ -140,6 +141,10 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
             if second.outcome != Found::Undecided || second.inputs >= verdict.inputs {
                 verdict = second;
             }
+        }
+        if let Some(folder) = options.proof.as_ref().filter(|_| !places.computed.is_empty()) {
+            let said = pipeline::write_obligations(folder, &loaded.problem, &places, &budget).map_err(stage)?;
+            verdict.notes.push(said);
         }
         let mut value = json::audit_json(&loaded.problem, &verdict);
         value["form"] = form::json(options, &circuit);

@@ -5,7 +5,7 @@
 //! ([`Places::assignment`]) are a solution of the problem. So what counts and audits problems counts and audits narrowed ones.
 
 use crate::id::Id;
-use crate::places::{Claim, Formula, Places};
+use crate::places::{Claim, Digit, Formula, Places};
 use crate::problem::{BitId, BitLit, Bits, Compare, Domain, Expr, ExprId, ExprList, Origin, Problem, VarId};
 
 /// A problem over the searched bits alone, and where these are in the search register.
@@ -52,6 +52,8 @@ struct Writer<'a> {
     kept: Vec<Option<VarId>>,
     /// The expression of each bit, once there is one.
     bits: Vec<Option<ExprId>>,
+    /// The number whose digit was asked for last: the next digit is often one of it.
+    number: Option<(Digit, ExprId)>,
 }
 
 impl<'a> Writer<'a> {
@@ -81,7 +83,7 @@ impl<'a> Writer<'a> {
                 bits[var.first_bit.index()] = Some(to.exprs.node(Expr::Var(id)));
             }
         }
-        Self { from, places, to, moved, kept, bits }
+        Self { from, places, to, moved, kept, bits, number: None }
     }
 
     fn node(&mut self, expr: Expr) -> ExprId {
@@ -135,7 +137,31 @@ impl<'a> Writer<'a> {
             Formula::And(list) => self.formulas_of(Expr::All, list),
             Formula::Or(list) => self.formulas_of(Expr::Some, list),
             Formula::Xor(list) => self.formulas_of(Expr::Odd, list),
+            Formula::Digit(digit) => self.digit(digit),
         }
+    }
+
+    /// The number, divided and rounded down, is odd; that is so for negative ones too.
+    fn digit(&mut self, digit: &Digit) -> ExprId {
+        let whole = Digit { at: 0, ..digit.clone() };
+        let number = match &self.number {
+            Some((last, number)) if *last == whole => *number,
+            _ => self.number(&whole),
+        };
+        self.number = Some((whole, number));
+        let moved = self.node(Expr::Quotient(number, 1 << digit.at));
+        let (low, one) = (self.node(Expr::Remainder(moved, 2)), self.node(Expr::Number(1)));
+        self.node(Expr::Compare(Compare::Eq, low, one))
+    }
+
+    fn number(&mut self, digit: &Digit) -> ExprId {
+        let zero = self.node(Expr::Number(0));
+        let mut items = vec![self.node(Expr::Number(digit.constant))];
+        for (weight, term) in &digit.terms {
+            let (term, weight) = (self.formula(term), self.node(Expr::Number(*weight)));
+            items.push(self.node(Expr::Choose(term, weight, zero)));
+        }
+        self.to.exprs.over(Expr::Sum, &items)
     }
 
     fn formulas_of(&mut self, make: fn(ExprList) -> Expr, list: &[Formula]) -> ExprId {

@@ -6,11 +6,13 @@
 //! candidate that costs no more for each iteration is never worse, and of one that costs more the price for a single
 //! solution is taken, which is the case that a search is for.
 
+use std::convert::Infallible;
+
 use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::make::lower;
 use crate::make::narrow::{self, Options};
-use crate::make::network;
+use crate::make::network::{self, pass};
 use crate::places::{Claim, Places};
 use crate::problem::Problem;
 
@@ -25,6 +27,9 @@ pub enum Narrowing {
     OneForMany,
 }
 
+/// Networks of more ANDs are priced as they are built; of smaller ones the passes take some hundredths of a second.
+const MAX_SIMPLIFIED: usize = 1 << 12;
+
 /// A way to search, and what it would cost.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct Candidate {
@@ -36,7 +41,11 @@ pub struct Candidate {
 
 impl Candidate {
     fn new(problem: &Problem, places: Places, settings: Settings, budget: &Budget) -> Self {
-        let network = network::build(problem, &places);
+        let mut network = network::build(problem, &places);
+        if network.and_count() <= MAX_SIMPLIFIED {
+            let Ok(simplified) = pass::simplify(network, budget, |_| Ok::<(), Infallible>(()));
+            network = simplified;
+        }
         let oracle = lower::and_count(&network, settings.mark, budget).ok();
         let ands = oracle.map(|ands| ands + places.search_len().saturating_sub(1) as u64);
         Self { places, ands }

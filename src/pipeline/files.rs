@@ -6,9 +6,10 @@ use super::{Error, Settings};
 use crate::budget::Budget;
 use crate::circuit::{Circuit, ITERATIONS, Level, Product, SEARCH, qasm};
 use crate::diag::{Code, Diagnostic};
-use crate::judge::audit;
+use crate::judge::audit::{self, narrowing};
 use crate::judge::count::Counted;
 use crate::places::Places;
+use crate::problem::Problem;
 use crate::report::files::{WriteError, write_whole};
 use crate::report::header::header;
 use crate::report::simulation::svg;
@@ -90,6 +91,24 @@ pub fn write_json(path: &Path, value: &serde_json::Value) -> Result<(), WriteErr
         serde_json::to_writer_pretty(&mut *out, value)?;
         out.write_all(b"\n")
     })
+}
+
+/// Proves what places claim of computed bits, and writes the clauses and the proof: `obligations.cnf` and
+/// `obligations.drat`. Gives what came of it, in words.
+pub fn write_obligations(folder: &Path, problem: &Problem, places: &Places, budget: &Budget) -> Result<String, Error> {
+    let proven = match narrowing::prove(problem, places, budget) {
+        Ok(Some(proven)) => proven,
+        Ok(None) => {
+            return Ok("the claims about computed bits are not one formula: no proof of them is written".to_owned());
+        }
+        Err(why) => return Ok(format!("the claims about computed bits are not proven: {why}")),
+    };
+    write_whole(&folder.join("obligations.cnf"), |mut out| proven.write_formula(&mut out))?;
+    write_whole(&folder.join("obligations.drat"), |mut out| proven.write_proof(&mut out))?;
+    let (clauses, steps) = (proven.formula.len(), proven.proof.len());
+    Ok(format!(
+        "the claims about computed bits: {clauses} clauses without a model, a proof of {steps} steps was checked"
+    ))
 }
 
 /// Writes the clauses and the proof of a verdict: `miter.cnf` and `proof.drat`.

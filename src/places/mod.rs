@@ -12,7 +12,7 @@ use thiserror::Error;
 use crate::id::Id;
 use crate::problem::{BitId, Bits, Problem};
 
-pub use formula::Formula;
+pub use formula::{Digit, Formula};
 pub use start::{Part, Start};
 
 /// What a marked state stands for.
@@ -70,6 +70,9 @@ pub enum PlacesError {
     /// A formula mentions a bit that is neither searched nor computed before it.
     #[error("bit {0} is computed from a bit that is not known before it")]
     NotBefore(usize),
+    /// The numbers of a formula do not fit 62 bits.
+    #[error("the numbers that bit {0} is computed from are too large")]
+    TooLarge(usize),
     /// A part of the start state is empty, too large, or shares a qubit.
     #[error("part {0} of the start state does not fit the search register")]
     Start(usize),
@@ -136,6 +139,9 @@ impl Places {
             formula.for_each_bit(&mut |of| is_known &= seen.get(of.index()).is_some_and(|&seen| seen));
             if !is_known {
                 return Err(PlacesError::NotBefore(*bit as usize));
+            }
+            if !formula.is_small() {
+                return Err(PlacesError::TooLarge(*bit as usize));
             }
             place(*bit as usize, &mut seen)?;
         }

@@ -4,6 +4,7 @@ use batsat::interface::SolverInterface;
 use batsat::{Callbacks, Lit as TheirLit, Solver, SolverOpts, lbool};
 
 use super::parity::Parities;
+use super::withheld::is_withheld;
 use super::{Answer, Engine, Lit};
 use crate::budget::Budget;
 
@@ -89,7 +90,8 @@ impl Engine for Batsat {
     }
 
     fn solve(&mut self, assumptions: &[Lit], budget: &Budget) -> Answer {
-        if budget.spent() {
+        let is_bounded = self.solver.cb_mut().most < u64::MAX;
+        if budget.spent() || !is_bounded && is_withheld() {
             return Answer::Stopped;
         }
         let watch = self.solver.cb_mut();

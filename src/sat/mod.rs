@@ -20,6 +20,7 @@ pub mod formula;
 mod parity;
 pub mod refute;
 mod varisat;
+pub mod withheld;
 
 use std::ops::Not;
 

@@ -12,6 +12,7 @@ use varisat::{ExtendFormula, Lit as TheirLit, ProofFormat, Solver, Var};
 use super::Lit;
 use super::drat::Proof;
 use super::formula::Formula;
+use super::withheld::is_withheld;
 use crate::budget::Budget;
 
 /// What came of it.
@@ -30,6 +31,9 @@ const LOOK: Duration = Duration::from_millis(50);
 
 /// Looks for a model, on a thread of its own, until the budget is spent.
 pub fn refute(formula: &Formula, budget: &Budget) -> Refutation {
+    if is_withheld() {
+        return Refutation::Stopped;
+    }
     let (sender, receiver) = channel();
     let owned = formula.clone();
     std::thread::spawn(move || {
@@ -51,6 +55,9 @@ pub fn refute(formula: &Formula, budget: &Budget) -> Refutation {
 
 /// Looks for a model on this thread, however long it takes.
 pub fn refute_here(formula: &Formula) -> Refutation {
+    if is_withheld() {
+        return Refutation::Stopped;
+    }
     let mut bytes = Vec::new();
     let mut solver = Solver::new();
     solver.write_proof(&mut bytes, ProofFormat::BinaryDrat);

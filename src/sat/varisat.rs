@@ -9,6 +9,7 @@
 
 use varisat::{ExtendFormula, Lit as TheirLit, Solver, Var};
 
+use super::withheld::is_withheld;
 use super::{Answer, Engine, Lit};
 use crate::budget::Budget;
 
@@ -19,11 +20,20 @@ pub struct Varisat {
     model: Vec<bool>,
     /// Room for a clause in the library's literals.
     clause: Vec<TheirLit>,
+    /// Whether its questions are small from the start.
+    is_local: bool,
 }
 
 impl std::fmt::Debug for Varisat {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         f.debug_struct("Varisat").finish_non_exhaustive()
+    }
+}
+
+impl Varisat {
+    /// An engine for questions of bounded size that are about no assignment of a problem.
+    pub fn local() -> Self {
+        Self { is_local: true, ..Self::new() }
     }
 }
 
@@ -33,7 +43,7 @@ fn theirs(lit: Lit) -> TheirLit {
 
 impl Engine for Varisat {
     fn new() -> Self {
-        Self { solver: Solver::new(), model: Vec::new(), clause: Vec::new() }
+        Self { solver: Solver::new(), model: Vec::new(), clause: Vec::new(), is_local: false }
     }
 
     fn add_clause(&mut self, clause: &[Lit]) {
@@ -43,7 +53,7 @@ impl Engine for Varisat {
     }
 
     fn solve(&mut self, assumptions: &[Lit], budget: &Budget) -> Answer {
-        if budget.spent() {
+        if budget.spent() || !self.is_local && is_withheld() {
             return Answer::Stopped;
         }
         self.clause.clear();

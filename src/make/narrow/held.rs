@@ -97,7 +97,7 @@ fn is_value(part: &Formula, value: bool, clause: &[BitLit], own: BitLit) -> bool
         Formula::And(list) => list.iter().any(|part| is_value(part, false, clause, own)),
         Formula::Or(list) if value => list.iter().any(|part| is_value(part, true, clause, own)),
         Formula::Or(list) => list.iter().all(|part| is_value(part, false, clause, own)),
-        Formula::Xor(_) => false,
+        Formula::Xor(_) | Formula::Digit(_) => false,
     }
 }
 
@@ -126,6 +126,17 @@ fn rows(formula: &Formula, window: &Window) -> Rows {
         Formula::And(list) => join(list, window.all(), |a, b| a & b),
         Formula::Or(list) => join(list, window.none(), |a, b| a | b),
         Formula::Xor(list) => join(list, window.none(), |a, b| a ^ b),
+        Formula::Digit(digit) => {
+            let terms: Vec<(i64, Rows)> =
+                digit.terms.iter().map(|(weight, term)| (*weight, rows(term, window))).collect();
+            let mut set = window.none();
+            for row in 0..1usize << window.bits().len() {
+                let held = terms.iter().filter(|(_, rows)| rows[row / 64] >> (row % 64) & 1 == 1);
+                let number = i128::from(digit.constant) + held.map(|&(weight, _)| i128::from(weight)).sum::<i128>();
+                set[row / 64] |= ((number >> digit.at & 1) as u64) << (row % 64);
+            }
+            set
+        }
     }
 }
 

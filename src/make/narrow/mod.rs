@@ -6,7 +6,7 @@
 //! says otherwise it is what every solution has. The judge proves that again (`judge/audit/narrowing`); it trusts nothing
 //! said here.
 //!
-//! A bit is computed where all that is known before it leaves no choice ([`unique`]), where a parity does ([`ground`]), or, if
+//! A variable that an equation determines is computed from it ([`equations`]). A bit is computed where all that is known before it leaves no choice ([`unique`]), where a parity does ([`ground`]), or, if
 //! one solution may stand for many, by the one-sided rule ([`closure`]): when all clauses with *not y* have only known
 //! other literals, *y* is the conjunction of their rests, and these clauses hold from then on; or its dual. For a hidden bit
 //! of a projection that is always enough, since its value is not part of a solution.
@@ -15,6 +15,7 @@
 //! Nothing is decided by a model or by a solver, and effort is measured in steps, not in seconds.
 
 mod closure;
+mod equations;
 mod function;
 mod ground;
 mod held;
@@ -32,6 +33,7 @@ use closure::{How, Step};
 use function::Ranks;
 use ground::Ground;
 
+pub use equations::{Settled, settled};
 pub use held::held;
 pub use orders::Order;
 
@@ -66,7 +68,7 @@ pub struct Narrowed {
     pub order: Order,
 }
 
-/// Narrows a problem. Bits of variables in expressions are searched, unless clauses determine them too.
+/// Narrows a problem. Bits of variables in expressions are searched, unless clauses determine them or an equation does.
 pub fn narrow(problem: &Problem, options: &Options, budget: &Budget) -> Narrowed {
     let ground = Ground::new(problem, options.one_for_many);
     let (steps, order) = orders::best(&ground, options, budget);
@@ -77,16 +79,18 @@ pub fn narrow(problem: &Problem, options: &Options, budget: &Budget) -> Narrowed
     let mut searched: Vec<BitId> =
         steps.iter().filter(|step| step.how == How::Searched).map(|step| BitId::new(step.bit as usize)).collect();
     searched.sort_unstable();
-    let claim = claim(&ground, &steps);
-    Narrowed { places: Places { start: Start::AllStrings, searched, computed, claim }, order }
+    let mut places = Places { start: Start::AllStrings, searched, computed, claim: Claim::OneForOne };
+    equations::solve_equations(problem, &mut places);
+    places.claim = claim(&ground, &steps, &places);
+    Narrowed { places, order }
 }
 
-/// What a marked state stands for after these steps.
-fn claim(ground: &Ground, steps: &[Step]) -> Claim {
+/// What a marked state stands for after these steps. Bits of expressions are sure, and so is what equations make of them.
+fn claim(ground: &Ground, steps: &[Step], places: &Places) -> Claim {
     let is_lost = |step: &&Step| !step.is_sure && ground.is_shown(step.bit);
     if steps.iter().any(|step| is_lost(&step)) {
         return Claim::OneForMany;
     }
-    let is_extra = |step: &Step| step.how == How::Searched && !ground.is_shown(step.bit);
-    if steps.iter().any(is_extra) { Claim::ManyForOne } else { Claim::OneForOne }
+    let is_extra = |bit: &BitId| !ground.is_shown(bit.index() as u32);
+    if places.searched.iter().any(is_extra) { Claim::ManyForOne } else { Claim::OneForOne }
 }

@@ -2,13 +2,14 @@
 
 use super::builder::Builder;
 use super::expr::Values;
-use super::linear::{Linear, Range};
+use super::linear::{self, Linear, Range};
 use super::{Conjunct, Lit, Network, NodeId, Places};
 use crate::id::{ConstraintId, Id, IdVec};
-use crate::make::narrow::held;
+use crate::make::narrow::{Settled, held, settled};
 use crate::make::start::Guaranteed;
-use crate::places::Formula;
-use crate::problem::{BitId, Problem};
+use crate::places::{Digit, Formula};
+use crate::problem::{BitId, ExprId, Problem};
+use rustc_hash::FxHashMap;
 
 /// The network of a problem over its searched bits; computed bits are nodes, and clauses that hold by construction are left
 /// out. The problem passed [`check`](crate::problem::check::check), and the
@@ -25,7 +26,14 @@ pub fn build(problem: &Problem, places: &Places) -> Network {
     let mut conjuncts = Conjuncts::default();
     let guaranteed = Guaranteed::of(problem, places);
     domains(&mut builder, problem, &bits, &guaranteed, &mut conjuncts);
-    let mut values = Values::new(problem, &bits);
+    let solved: FxHashMap<ExprId, Lit> = settled(problem, places)
+        .into_iter()
+        .map(|(id, settled)| match settled {
+            Settled::Always => (id, Lit::YES),
+            Settled::Within { number, width } => (id, within(&mut builder, &number, width, &bits)),
+        })
+        .collect();
+    let mut values = Values::new(problem, &bits, solved);
     for (at, constraint) in problem.constraints.iter().enumerate() {
         if guaranteed.constraint(constraint.expr) {
             continue;
@@ -145,5 +153,44 @@ fn formula(builder: &mut Builder, of: &Formula, bits: &[Lit]) -> Lit {
             let lits = parts(list, builder);
             builder.odd(&lits)
         }
+        Formula::Digit(digit) => {
+            let at = usize::from(digit.at);
+            let number = number(builder, digit, bits);
+            builder.digits(&number, 0, at + 1).digits[at]
+        }
     }
+}
+
+/// A number of which digits are computed. Its range is what its terms can reach, whatever they are for.
+fn number(builder: &mut Builder, of: &Digit, bits: &[Lit]) -> Linear {
+    let terms: Vec<(Lit, i128)> =
+        of.terms.iter().map(|(weight, term)| (formula(builder, term, bits), i128::from(*weight))).collect();
+    let parts = terms.iter().map(|&(_, weight)| weight);
+    let reach = parts.fold(Range::new(of.constant.into(), of.constant.into()), |range, weight| Range {
+        lo: range.lo + weight.min(0),
+        hi: range.hi + weight.max(0),
+    });
+    Linear::of(of.constant.into(), terms, reach)
+}
+
+/// Whether a number lies from 0 to `2^width - 1`: by its digits above, which are those of [`formula`], node for node, or by
+/// comparing it with both ends.
+fn within(builder: &mut Builder, of: &Digit, width: usize, bits: &[Lit]) -> Lit {
+    let number = number(builder, of, bits);
+    let range = number.range();
+    if range.lo >= 0 && range.hi >> width == 0 {
+        return Lit::YES;
+    }
+    let digits_of = |number: i128| linear::width(number.max(0) as u128);
+    let size = digits_of(range.hi).max(digits_of(-(range.lo + 1))).max(width);
+    let count = size + usize::from(range.lo < 0);
+    let digits = |b: &mut Builder| {
+        let above: Vec<Lit> = b.digits(&number, 0, count).digits[width..].iter().map(|&digit| !digit).collect();
+        b.all(&above)
+    };
+    let ends = |b: &mut Builder| {
+        let (low, high) = (b.at_least(&number, 0), b.at_least(&number, 1 << width));
+        b.and(low, !high)
+    };
+    builder.cheapest(&[&digits, &ends])
 }

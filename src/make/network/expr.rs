@@ -1,5 +1,7 @@
 //! From expressions to the network: each yes/no expression becomes a literal, each number a linear form.
 
+use rustc_hash::FxHashMap;
+
 use super::Lit;
 use super::builder::Builder;
 use super::linear::{Linear, Range};
@@ -21,11 +23,13 @@ pub(super) struct Values<'a> {
     values: IdVec<ExprId, Option<Value>>,
     /// How many expressions use this one.
     uses: IdVec<ExprId, u32>,
+    /// Constraints of which only this is left to check.
+    left: FxHashMap<ExprId, Lit>,
 }
 
 impl<'a> Values<'a> {
-    /// Nothing built yet.
-    pub(super) fn new(problem: &'a Problem, bits: &'a [Lit]) -> Self {
+    /// Nothing built yet but what is left of some constraints.
+    pub(super) fn new(problem: &'a Problem, bits: &'a [Lit], left: FxHashMap<ExprId, Lit>) -> Self {
         let mut uses: IdVec<ExprId, u32> = vec![0; problem.exprs.len()].into();
         problem.constraints.iter().for_each(|constraint| uses[constraint.expr] += 1);
         for (id, &expr) in problem.exprs.iter().rev() {
@@ -33,7 +37,7 @@ impl<'a> Values<'a> {
                 problem.exprs.operands(expr).into_iter().for_each(|operand| uses[operand] += 1);
             }
         }
-        Self { problem, bits, values: vec![None; problem.exprs.len()].into(), uses }
+        Self { problem, bits, values: vec![None; problem.exprs.len()].into(), uses, left }
     }
 
     /// The conjuncts of a constraint, in order: what stands under *all of*, and the pairs of *different*.
@@ -41,6 +45,10 @@ impl<'a> Values<'a> {
         let mut conjuncts = Vec::new();
         let mut open = vec![constraint];
         while let Some(id) = open.pop() {
+            if let Some(&left) = self.left.get(&id) {
+                conjuncts.push(left);
+                continue;
+            }
             match self.problem.exprs.get(id) {
                 Expr::All(list) => open.extend(self.problem.exprs.items(list).iter().rev()),
                 Expr::Different(list) => {

@@ -23,7 +23,7 @@ fn narrowed(problem: &Problem, one_for_many: bool) -> Places {
 }
 
 /// Both ways of settling, which must agree where both settle.
-fn settle(problem: &Problem, places: &Places) -> Obligations {
+pub(super) fn settle(problem: &Problem, places: &Places) -> Obligations {
     let [tried, solved] = [Way::Best, Way::Solver].map(|way| obligations(problem, places, way, &Budget::unlimited()));
     match (&tried, &solved) {
         (Obligations::Hold(_), Obligations::Broken(bits, why))

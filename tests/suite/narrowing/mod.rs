@@ -2,7 +2,10 @@
 
 mod claims;
 mod commands;
+mod equations;
 mod families;
 mod obligations;
 mod reading;
 mod sizes;
+mod table;
+mod withheld;

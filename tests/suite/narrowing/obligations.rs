@@ -15,7 +15,7 @@ use super::families::{self, Counting, Encoder};
 const EFFORT: u64 = 1 << 18;
 
 /// Checks every obligation, and that held clauses hold and the network is the predicate. Gives how many bits are computed.
-fn check(problem: &Problem, one_for_many: bool, seed: u64) -> Narrowed {
+pub(super) fn check(problem: &Problem, one_for_many: bool, seed: u64) -> Narrowed {
     let options = Options { one_for_many, seed, effort: EFFORT };
     let narrowed = narrow(problem, &options, &Budget::unlimited());
     let places = &narrowed.places;

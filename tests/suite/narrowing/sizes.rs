@@ -5,15 +5,13 @@
 //! instances of the same kinds; no published value is known.
 #![expect(clippy::print_stdout, reason = "tables of what was reached, for whoever runs a test with --nocapture")]
 
-use std::time::Duration;
-
 use tallymark::budget::Budget;
-use tallymark::judge::count::{self, Over};
 use tallymark::judge::restate::restate;
 use tallymark::make::narrow::{Options, narrow};
 use tallymark::problem::Problem;
 
 use super::families::{self, Counting};
+use super::table::log2_count;
 
 fn searched(problem: &Problem, one_for_many: bool, effort: u64) -> usize {
     let options = Options { one_for_many, seed: 1, effort };
@@ -72,17 +70,6 @@ fn random_3sat_shrinks_where_one_solution_is_enough() {
         println!("ratio {ratio}: {found:?}");
         assert!(found[2] as f64 <= most * 50.0, "ratio {ratio}: {found:?}");
     }
-}
-
-/// The logarithm to base 2 of a number of solutions, where it is found in some seconds.
-fn log2_count(problem: &Problem) -> Option<f64> {
-    let options = count::Options { threads: 2, keep: 0, ..count::Options::default() };
-    let budget = Budget::unlimited().within(Duration::from_secs(10));
-    let tally = count::count(problem, Over::AllBits, &options, &budget).expect("the ways of counting agree");
-    let exact = tally.exact()?;
-    let shift = exact.bits().saturating_sub(53);
-    let top: u64 = (exact >> shift).try_into().expect("53 bits");
-    (top > 0).then(|| (top as f64).log2() + shift as f64)
 }
 
 fn row(name: &str, problem: &Problem, one_for_many: bool) {

@@ -12,7 +12,11 @@
 //! ([`refuted`]). Nothing is taken from whoever made the places.
 
 mod exhaustive;
+mod proof;
 mod refuted;
+mod solver;
+
+pub use proof::{Proven, prove};
 
 use crate::budget::Budget;
 use crate::judge::audit::{Outcome, Verdict, Witness};

@@ -9,17 +9,25 @@
 use crate::budget::Budget;
 use crate::id::Id;
 use crate::judge::clauses::{Cnf, encode};
-use crate::places::{Claim, Computed, Formula, Places};
-use crate::problem::{BitId, BitLit, Bits, Problem};
-use crate::sat::{Answer, Batsat, Engine, Lit};
+use crate::places::{Claim, Computed, Places};
+use crate::problem::{BitLit, Bits, Problem};
+use crate::sat::{Answer, Formula, Lit};
 
+use super::solver::{Solver, moved};
 use super::{Obligations, search_of, shown};
 
 /// Settles the obligations; see the module above.
 pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -> Obligations {
+    settle(problem, places, budget, &mut None)
+}
+
+/// The same; clauses without a model are left in `all` where the obligations hold and one formula says so at once: a solution
+/// in which a computed bit has another value than its formula gives and need not, or cannot, be replaced.
+pub(super) fn settle(problem: &Problem, places: &Places, budget: &Budget, all: &mut Option<Formula>) -> Obligations {
     let cnf = encode(problem);
     let shown = shown(problem);
     let mut solver = Solver::new(&cnf);
+    let mut broken: Vec<Lit> = Vec::new();
     let mut sure = vec![false; problem.bit_count()];
     places.searched.iter().for_each(|bit| sure[bit.index()] = true);
     let mut replaced = 0;
@@ -33,7 +41,8 @@ pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -
         match solver.solve(&[differs], budget) {
             Answer::Stopped => return stopped(own),
             Answer::Unsat => {
-                solver.engine.add_clause(&[!differs]);
+                solver.learn(&[!differs]);
+                broken.push(differs);
                 let mut all_sure = true;
                 computed.formula.for_each_bit(&mut |bit| all_sure &= sure[bit.index()]);
                 sure[own] = all_sure;
@@ -52,9 +61,12 @@ pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -
                     return Obligations::Broken(solution, got);
                 }
                 replaced += 1;
-                match solver.is_replaceable(problem, &uses, computed, differs, budget) {
+                match self::is_replaceable(&mut solver, problem, &uses, computed, differs, budget) {
                     None => return stopped(own),
-                    Some(yes) => is_replaceable &= yes,
+                    Some((yes, breaks)) => {
+                        is_replaceable &= yes;
+                        broken.push(solver.all(&[differs, breaks]));
+                    }
                 }
             }
         }
@@ -71,6 +83,9 @@ pub(super) fn obligations(problem: &Problem, places: &Places, budget: &Budget) -
             Ok(()) => {}
             Err(other) => return other,
         }
+    }
+    if is_replaceable && hidden == 0 {
+        *all = Some(solver.into_formula(&broken));
     }
     let unique = places.computed.len() - replaced;
     let claims = [
@@ -103,126 +118,31 @@ impl Uses {
     }
 }
 
-/// An engine with the clauses of a problem, in which formulas become literals.
-struct Solver {
-    engine: Batsat,
-    next: usize,
-}
-
-impl Solver {
-    fn new(cnf: &Cnf) -> Self {
-        let mut solver = Self { engine: Batsat::new(), next: cnf.var_count };
-        solver.add(cnf, &|var| var);
-        solver
+/// Whether in no solution that `differs` setting the bit to the other value breaks a clause. `None` where the budget ran
+/// out; else also the literal that is asked about with `differs`.
+fn is_replaceable(
+    solver: &mut Solver,
+    problem: &Problem,
+    uses: &Uses,
+    computed: &Computed,
+    differs: Lit,
+    budget: &Budget,
+) -> Option<(bool, Lit)> {
+    if uses.has_expressions {
+        return Some((false, differs));
     }
-
-    /// Adds the clauses with other variables.
-    fn add(&mut self, cnf: &Cnf, var: &impl Fn(usize) -> usize) {
-        for clause in cnf.clauses.iter() {
-            let lits: Vec<Lit> = clause.iter().map(|&lit| moved(lit, var)).collect();
-            self.engine.add_clause(&lits);
-        }
+    let own = computed.bit as usize;
+    let flipped = |lit: BitLit| {
+        let as_is = moved(lit, &|var| var);
+        if lit.bit().index() == own { !as_is } else { as_is }
+    };
+    let clauses = uses.clauses[own].iter().map(|&at| problem.clauses.get(at as usize));
+    let broken = solver.some_fails(clauses, &flipped);
+    match solver.solve(&[differs, broken], budget) {
+        Answer::Unsat => Some((true, broken)),
+        Answer::Sat => Some((false, broken)),
+        Answer::Stopped => None,
     }
-
-    fn new_lit(&mut self) -> Lit {
-        self.next += 1;
-        Lit::new(self.next - 1, true)
-    }
-
-    fn solve(&mut self, assumptions: &[Lit], budget: &Budget) -> Answer {
-        self.engine.solve(assumptions, budget)
-    }
-
-    fn model(&self, bits: usize) -> Bits {
-        (0..bits).map(|bit| self.engine.value(bit)).collect()
-    }
-
-    /// The literal that holds where the formula does, bits being these literals.
-    fn formula(&mut self, formula: &Formula, bit: &impl Fn(BitId) -> Lit) -> Lit {
-        match formula {
-            Formula::Constant(value) => {
-                let lit = self.new_lit();
-                self.engine.add_clause(&[if *value { lit } else { !lit }]);
-                lit
-            }
-            Formula::Bit(of) => bit(*of),
-            Formula::Not(inner) => !self.formula(inner, bit),
-            Formula::And(list) => {
-                let lits: Vec<Lit> = list.iter().map(|part| self.formula(part, bit)).collect();
-                self.all(&lits)
-            }
-            Formula::Or(list) => {
-                let lits: Vec<Lit> = list.iter().map(|part| !self.formula(part, bit)).collect();
-                !self.all(&lits)
-            }
-            Formula::Xor(list) => {
-                let lits: Vec<Lit> = list.iter().map(|part| self.formula(part, bit)).collect();
-                let sum = lits.into_iter().reduce(|a, b| self.odd(a, b));
-                sum.unwrap_or_else(|| !self.all(&[]))
-            }
-        }
-    }
-
-    fn all(&mut self, lits: &[Lit]) -> Lit {
-        let all = self.new_lit();
-        lits.iter().for_each(|&lit| self.engine.add_clause(&[!all, lit]));
-        let back: Vec<Lit> = lits.iter().map(|&lit| !lit).chain([all]).collect();
-        self.engine.add_clause(&back);
-        all
-    }
-
-    fn odd(&mut self, a: Lit, b: Lit) -> Lit {
-        let odd = self.new_lit();
-        for clause in [[!odd, a, b], [!odd, !a, !b], [odd, a, !b], [odd, !a, b]] {
-            self.engine.add_clause(&clause);
-        }
-        odd
-    }
-
-    /// A literal that implies that one of the clauses at these places fails, each literal being what `lit` says.
-    fn some_fails<'c>(&mut self, clauses: impl Iterator<Item = &'c [BitLit]>, lit: &impl Fn(BitLit) -> Lit) -> Lit {
-        let mut some = vec![];
-        for clause in clauses {
-            let fails = self.new_lit();
-            clause.iter().for_each(|&of| self.engine.add_clause(&[!fails, !lit(of)]));
-            some.push(fails);
-        }
-        let any = self.new_lit();
-        some.push(!any);
-        self.engine.add_clause(&some);
-        any
-    }
-
-    /// Whether in no solution that `differs` setting the bit to the other value breaks a clause. `None` where the budget ran
-    /// out.
-    fn is_replaceable(
-        &mut self,
-        problem: &Problem,
-        uses: &Uses,
-        computed: &Computed,
-        differs: Lit,
-        budget: &Budget,
-    ) -> Option<bool> {
-        if uses.has_expressions {
-            return Some(false);
-        }
-        let own = computed.bit as usize;
-        let flipped = |lit: BitLit| {
-            let as_is = moved(lit, &|var| var);
-            if lit.bit().index() == own { !as_is } else { as_is }
-        };
-        let clauses = uses.clauses[own].iter().map(|&at| problem.clauses.get(at as usize));
-        let broken = self.some_fails(clauses, &flipped);
-        match self.solve(&[differs, broken], budget) {
-            Answer::Unsat => Some(true),
-            Answer::Sat => Some(false),
-            Answer::Stopped => None,
-        }
-    }
-}
-
-fn moved(lit: BitLit, var: &impl Fn(usize) -> usize) -> Lit {
-    Lit::new(var(lit.bit().index()), !lit.is_negated())
 }
 
 /// Whether some solution has a searched part for which the formulas give no solution.
@@ -258,19 +178,18 @@ fn different_states(
     budget: &Budget,
 ) -> Result<(), Obligations> {
     let mut solver = Solver::new(cnf);
-    let offset = solver.next;
+    let offset = solver.add_vars(cnf.var_count);
     let second = |var: usize| if shown.get(var) == Some(&true) { var } else { var + offset };
-    solver.next += cnf.var_count;
     solver.add(cnf, &second);
     let hidden = places.searched.iter().map(|bit| bit.index()).filter(|&bit| !shown[bit]);
     let differ: Vec<Lit> = hidden.map(|bit| solver.odd(Lit::new(bit, true), Lit::new(second(bit), true))).collect();
-    solver.engine.add_clause(&differ);
+    solver.add_clause(&differ);
     match solver.solve(&[], budget) {
         Answer::Unsat => Ok(()),
         Answer::Stopped => Err(Obligations::Open("the budget ran out".to_owned())),
         Answer::Sat => {
             let solution = solver.model(problem.bit_count());
-            let other: Bits = (0..problem.bit_count()).map(|bit| solver.engine.value(second(bit))).collect();
+            let other: Bits = (0..problem.bit_count()).map(|bit| solver.value(second(bit))).collect();
             let other = search_of(places, &other);
             Err(Obligations::Broken(solution, format!("the search string {other} shows the same bits")))
         }

@@ -57,7 +57,7 @@ impl<'a> Game<'a> {
         let n = self.order.len();
         let held = |at: usize, cell: usize| at * n + cell;
         let changed = |at: usize, cell: usize| (moves + 1) * n + at * n + cell;
-        let mut engine = Varisat::new();
+        let mut engine = Varisat::local();
         for cell in 0..n {
             engine.add_clause(&[Lit::new(held(0, cell), false)]);
         }
