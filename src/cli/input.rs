@@ -11,7 +11,7 @@ use crate::make::lower::LowerError;
 use crate::make::start::Choice;
 use crate::pipeline::{self, Narrowing, Settings};
 use crate::places::Places;
-use crate::search::price::StartPrice;
+use crate::search::price::{PRECISION, StartPrice};
 use crate::source::{self, Loaded};
 use crate::span::Sources;
 
@@ -109,7 +109,7 @@ pub(super) fn places_and_prices(
     let strings = choose(global, loaded, settings, budget)?;
     Ok(match wanted {
         Wanted::Cheapest => {
-            let priced = match pipeline::priced(&loaded.problem, &strings, settings, pipeline::PRECISION, budget) {
+            let priced = match pipeline::priced(&loaded.problem, &strings, settings, PRECISION, budget) {
                 // Nothing to search for: whoever wants a circuit is told so, and all others have their answer.
                 Err(pipeline::Error::Lower(LowerError::EverythingMarked | LowerError::NothingMarked)) => Vec::new(),
                 priced => priced?,
