@@ -78,6 +78,9 @@ pub(super) struct Options {
     /// Amplitude updates to spend on a whole search, as a power of two
     #[arg(long, value_name = "POWER", default_value_t = 30, value_parser = clap::value_parser!(u32).range(0..=60))]
     effort: u32,
+    /// The number of iterations of a whole search that has it as an input
+    #[arg(long, value_name = "NUMBER", requires = "circuit")]
+    iterations: Option<u64>,
     /// A circuit known to be good: where the two part is said; without a problem, whether they are the same
     #[arg(long, value_name = "GOOD.qasm")]
     against: Option<PathBuf>,
@@ -89,7 +92,8 @@ pub(super) struct Options {
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let Some(path) = &options.circuit else { return alone::run(global, options) };
     let (mut loaded, mut sources) = input::load(global, &options.file)?;
-    let circuit = alone::read(path, &mut sources)?;
+    let circuit = pipeline::read_circuit_given(path, options.iterations, &mut sources)
+        .map_err(|diagnostics| Failure::input(diagnostics, &sources))?;
     let circuit = assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?;
     let mut places = places(options, path, &loaded, &circuit, &sources)?;

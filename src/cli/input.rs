@@ -7,10 +7,11 @@ use crate::circuit::{Level, Mark};
 use crate::cli::Global;
 use crate::cli::render::{Failure, show};
 use crate::diag::{Code, Diagnostic};
+use crate::make::lower::LowerError;
 use crate::make::start::Choice;
 use crate::pipeline::{self, Narrowing, Settings};
 use crate::places::Places;
-use crate::search::price::StartPrice;
+use crate::search::price::{PRECISION, StartPrice};
 use crate::source::{self, Loaded};
 use crate::span::Sources;
 
@@ -108,7 +109,11 @@ pub(super) fn places_and_prices(
     let strings = choose(global, loaded, settings, budget)?;
     Ok(match wanted {
         Wanted::Cheapest => {
-            let priced = pipeline::priced(&loaded.problem, &strings, settings, pipeline::PRECISION, budget)?;
+            let priced = match pipeline::priced(&loaded.problem, &strings, settings, PRECISION, budget) {
+                // Nothing to search for: whoever wants a circuit is told so, and all others have their answer.
+                Err(pipeline::Error::Lower(LowerError::EverythingMarked | LowerError::NothingMarked)) => Vec::new(),
+                priced => priced?,
+            };
             let prices = priced.iter().map(|one| one.price.clone()).collect();
             (priced.into_iter().next().map_or(strings, |cheapest| cheapest.places), prices)
         }

@@ -82,6 +82,11 @@ pub fn read_circuit_given(
         ]
     })?;
     let given = iterations.and_then(|value| qasm::read::give(&text, ITERATIONS, value));
+    if iterations.is_some() && given.is_none() {
+        let message = "the circuit has its number of iterations, which is no input of it";
+        let diagnostic = Diagnostic::error(Code("U025"), message).in_file(&name).found("--iterations");
+        return Err(vec![diagnostic.expected(format!("a file with `input int {ITERATIONS};`, or no --iterations"))]);
+    }
     qasm::read::read(given.as_ref().unwrap_or(&text), &name, sources)
 }
 

@@ -46,7 +46,7 @@ pub use oracle::{
     CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, search_from, turned,
 };
 pub use planning::{advice_on, plan_for};
-pub use start::{PRECISION, Priced, places_from, priced, prices};
+pub use start::{Priced, places_from, priced, prices};
 pub use tally::{Margin, Tallied, tally, tally_for_plan};
 
 use files::{write_and_read, write_curve};

@@ -2,9 +2,8 @@
 //!
 //! The price of a search is the number of its iterations times the T gates of one. An AND of a level without T gates
 //! counts as four of them (C. Gidney, "Halving the cost of quantum addition", Quantum 2:74, 2018), and a rotation as
-//! `3 log2(1 / e)` (N. Ross and P. Selinger, "Optimal ancilla-free Clifford+T approximation of z-rotations", Quantum
-//! Information and Computation 16:901, 2016: typical), where e is the precision of the whole divided by its rotations;
-//! a rotation by an odd multiple of pi/4 is one T gate and Cliffords, by an even one none.
+//! `search/price` says for the precision of the whole; a rotation by an odd multiple of pi/4 is one T gate and Cliffords, by
+//! an even one none.
 //!
 //! Iterations are taken in proportion to the square root of N: how many solutions there are is the same for every choice,
 //! and nothing else of the tally would matter. So the choice does not rest on a count.
@@ -21,10 +20,7 @@ use crate::places::Places;
 use crate::problem::Problem;
 use crate::search::course::Course;
 use crate::search::number::Wide;
-use crate::search::price::StartPrice;
-
-/// The error that all rotations of a search may make together, where nothing else is said.
-pub const PRECISION: f64 = 1e-3;
+use crate::search::price::{PRECISION, StartPrice, t_gates_of_rotation};
 
 /// A start state with what a search from it costs.
 #[derive(Clone, PartialEq, Debug)]
@@ -109,8 +105,7 @@ fn price(
     let one = course(&oracle, &places.start, &Course::Plain(1))?.circuit;
     let none = course(&oracle, &places.start, &Course::Plain(0))?.circuit;
     let rotations = approximated(&one) - approximated(&none);
-    let number = (iterations * Wide::new(rotations.max(1) as f64)).log2();
-    let each = 3.0 * (number - precision.log2()).max(0.0);
+    let each = t_gates_of_rotation(iterations * Wide::new(rotations as f64), precision);
     let t_gates_of_iteration = t_gates(&one) - t_gates(&none) + rotations as f64 * each;
     Ok(StartPrice {
         start: choice.name(),

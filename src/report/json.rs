@@ -12,7 +12,8 @@ use crate::judge::count::Counted;
 use crate::places::{Computed, Places};
 use crate::problem::{BitId, Bits, Problem};
 use crate::search::Plan;
-use crate::search::number::in_words;
+use crate::search::number::{Wide, in_words};
+use crate::search::price::{PRECISION, t_gates_of_rotation};
 use crate::source::Loaded;
 use crate::span::Sources;
 
@@ -132,9 +133,17 @@ pub fn circuit_json(product: &Product) -> Value {
         "depth": figures.depth,
         "gates": figures.gates,
         "rotations": figures.rotations,
+        "t_count_of_a_rotation": t_of_a_rotation(product),
+        "rotation_precision": (figures.rotations > 0).then_some(PRECISION),
         "measurements": figures.measurements,
         "bounds": product.bounds,
     })
+}
+
+/// T gates of a rotation of a circuit that has some, where all of them together keep to the precision.
+pub(super) fn t_of_a_rotation(product: &Product) -> Option<f64> {
+    let rotations = product.figures.rotations;
+    (rotations > 0).then(|| t_gates_of_rotation(Wide::new(rotations as f64), PRECISION))
 }
 
 /// `phase` or `bit`.

@@ -90,7 +90,7 @@ fn prediction(predicted: &Predicted, comparison: &Comparison) -> String {
     let iterations = in_words(&predicted.iterations);
     let mut text = line("plan", format!("success {:.9} after {iterations} iterations", predicted.high));
     let verdict = if comparison.contradicts { "CONTRADICT the plan" } else { "do not contradict the plan" };
-    text += &line("verdict", format!("the results {verdict} (p-value {:.3e})", comparison.p_value));
+    text += &line("verdict", format!("the results {verdict} (p-value {})", p_value(comparison.p_value)));
     let range = match (comparison.error_low, comparison.error_high) {
         (Some(low), Some(high)) => format!(", between {low:.6} and {high:.6}"),
         (Some(low), None) => format!(", at least {low:.6}"),
@@ -100,5 +100,14 @@ fn prediction(predicted: &Predicted, comparison: &Comparison) -> String {
         Some(error) => line("noise", format!("an error of {error:.6} per iteration would explain the rate{range}")),
         None if predicted.iterations.bits() == 0 => line("noise", "no iteration was run that could err"),
         None => line("noise", "no error per iteration explains the rate"),
+    }
+}
+
+/// A p-value: as a decimal fraction while that says something.
+fn p_value(value: f64) -> String {
+    match value {
+        0.0 => "below 1e-300".to_owned(),
+        0.001.. => format!("{value:.3}"),
+        _ => format!("{value:.1e}"),
     }
 }

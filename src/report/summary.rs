@@ -14,12 +14,13 @@ use crate::places::Places;
 use crate::problem::{Bits, Problem};
 use crate::report::dossier::Dossier;
 use crate::report::header::CAUTION;
-use crate::report::json::mark_name;
+use crate::report::json::{mark_name, t_of_a_rotation};
 use crate::report::plan::answer_text;
 use crate::report::start;
 use crate::report::values::{CheckedFile, certificate_line};
 use crate::search::number::in_words;
 use crate::search::plan::Answer;
+use crate::search::price::PRECISION;
 use crate::search::{Advice, Plan};
 use crate::source::Loaded;
 
@@ -96,7 +97,13 @@ pub(super) fn values(problem: &Problem, bits: &Bits) -> String {
 pub fn circuit(product: &Product) -> String {
     let what = if product.is_search() { "search" } else { "oracle" };
     let table = cost_table([product]);
-    format!("{} {what} at level {}\n{table}{}", mark_name(product.mark), product.level, bounds_line(product))
+    format!(
+        "{} {what} at level {}\n{table}{}{}",
+        mark_name(product.mark),
+        product.level,
+        rotations(product),
+        bounds_line(product)
+    )
 }
 
 /// What no exact oracle can go below, where that is known.
@@ -109,6 +116,15 @@ fn bounds_line(product: &Product) -> String {
             line("bounds", format!("no exact oracle has fewer than {ands} or {gates} (degree {degree})"))
         },
     )
+}
+
+/// What the rotations of a circuit cost, where it has some: no column counts them.
+fn rotations(product: &Product) -> String {
+    t_of_a_rotation(product).map_or_else(String::new, |each| {
+        let number = product.figures.rotations;
+        let words = format!("{number}, besides; {each:.0} T gates each where together they may err by {PRECISION}");
+        line("rotations", words)
+    })
 }
 
 /// A table of costs, one circuit a row.
@@ -239,6 +255,7 @@ pub fn dossier(loaded: &Loaded, places: &Places, dossier: &Dossier, folder: &Pat
     text += &plan_lines(dossier.plan.as_ref());
     if let Some(judged) = &dossier.search {
         text += &search_verdict(&judged.verdict);
+        text += &rotations(&judged.product);
     }
     text += &start::lines(&dossier.starts);
     text += &advice_lines(&dossier.advice);

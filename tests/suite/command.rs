@@ -55,7 +55,7 @@ pub(super) const PUZZLE: &str = "title \"Four switches\"\n\
     pick a\npick b\npick n in 0 to 3\n\
     must a != b\nmust n = 3 or (n = 2 and a)\n";
 
-fn problem(name: &str) -> String {
+pub(super) fn problem(name: &str) -> String {
     Path::new(env!("CARGO_MANIFEST_DIR")).join("problems").join(name).display().to_string()
 }
 

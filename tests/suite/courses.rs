@@ -4,6 +4,7 @@ use num_bigint::BigUint;
 use tallymark::budget::Budget;
 use tallymark::circuit::qasm::{read, write};
 use tallymark::circuit::{Circuit, ITERATIONS, Level, Mark};
+use tallymark::judge::audit::{Outcome, audit_search};
 use tallymark::make::lower;
 use tallymark::make::network;
 use tallymark::places::{Part, Places, Start};
@@ -174,4 +175,41 @@ fn matched_phases_from_a_restricted_start() {
     let found = follow(&text_of(&circuit), Some(Way::Classes));
     assert_eq!(found.space, Some(6));
     assert!((found.success.unwrap() - 1.0).abs() < 1e-12, "{:?}", found.success);
+}
+
+/// The audit of searches whose iterations turn by angles of their own: right ones are equal with the success of their aim, a
+/// gate less is found.
+#[test]
+fn searches_with_angles_of_their_own_are_audited() {
+    let problem = &problems()[2];
+    let places = Places::as_given(problem);
+    let (space, marked) = (BigUint::from(16u32), BigUint::from(marked(problem)));
+    let tuned = certainty(&space, &marked).unwrap();
+    let sequence = FixedPoint::with(3u32.into(), 0.1);
+    let matched = Course::Matched { iterations: u64::try_from(&tuned.iterations).unwrap(), phase: tuned.phase };
+    let success = sequence.success(&space, &marked);
+    for (course, wanted) in [(matched, 1.0), (Course::Sequence(sequence.phases().unwrap()), success)] {
+        let bit = oracle(problem, &places, Level::Toffoli, Mark::Bit);
+        let text = text_of(&course::circuit(&bit, &places.start, &course, Level::Toffoli));
+        let judge = |text: &str| {
+            let circuit = read::read(text, "search.qasm", &mut Sources::new()).unwrap();
+            audit_search(problem, &places, &circuit, 1 << 24, &Budget::unlimited()).unwrap()
+        };
+        let verdict = judge(&text);
+        assert_eq!((verdict.outcome, verdict.planned), (Outcome::Equal, None), "{course:?}: {verdict:?}");
+        assert!((verdict.success - wanted).abs() < 1e-9, "{course:?}: {}", verdict.success);
+        // Without a gate of the oracle: the state leaves the plane, or a qubit is left changed.
+        let lines: Vec<&str> = text.lines().collect();
+        let gates =
+            (0..lines.len()).filter(|&at| lines[at].trim_start().starts_with(['c', 'p']) && lines[at].ends_with(';'));
+        let mut caught = 0;
+        let tried = gates
+            .map(|at| {
+                let without = [&lines[..at], &lines[at + 1..]].concat().join("\n");
+                let verdict = judge(&without);
+                caught += usize::from(verdict.outcome == Outcome::Differs || (verdict.success - wanted).abs() > 1e-9);
+            })
+            .count();
+        assert!(tried >= 10 && caught == tried, "{course:?}: {caught} of {tried}");
+    }
 }

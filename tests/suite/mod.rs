@@ -4,6 +4,7 @@ mod certificate;
 mod command;
 mod command_audit;
 mod command_count;
+mod command_start;
 mod counting;
 mod courses;
 mod dimacs;

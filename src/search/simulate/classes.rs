@@ -91,7 +91,7 @@ impl<'r> Classes<'r> {
 
     /// The probability of the values that are in some plane.
     pub(super) fn success(&self) -> f64 {
-        (1..self.rules.len()).map(|class| self.chance(class)).sum()
+        (1..self.rules.len()).map(|class| self.chance(class)).sum::<f64>().max(0.0)
     }
 
     fn chance(&self, class: usize) -> f64 {

@@ -2,6 +2,8 @@
 //!
 //! One pass flips the signs of the marked amplitudes, takes the part along the axis away, and adds up what the next
 //! reflection needs; it reads and writes every amplitude once. All numbers are real: factors are 1 or -1.
+//!
+//! Sums are taken run by run and then added: one long sum of nearly equal numbers would lose digits.
 
 use crate::budget::Budget;
 
@@ -30,6 +32,15 @@ struct Sums {
     along: f64,
     success: f64,
 }
+
+impl Sums {
+    fn plus(self, other: Self) -> Self {
+        Self { along: self.along + other.along, success: self.success + other.success }
+    }
+}
+
+/// Words of marks in a run: with its amplitudes, what the second cache holds.
+const WORDS_A_RUN: usize = 256;
 
 impl Stepped {
     /// The search before its first iteration; the numbers of amplitudes and of bits agree.
@@ -61,10 +72,15 @@ impl Stepped {
         let words = self.marked.len();
         let share = words.div_ceil(self.threads);
         let axis = &self.axis;
-        let work = |amplitudes: &mut [f64], marked: &[u64], from: usize| match (axis, only_look) {
+        let run = |amplitudes: &mut [f64], marked: &[u64], from: usize| match (axis, only_look) {
             (Axis::Level(level), true) => level_pass::<true>(amplitudes, marked, *level, part),
             (Axis::Level(level), false) => level_pass::<false>(amplitudes, marked, *level, part),
             (Axis::Each(axis), _) => each_pass(amplitudes, marked, &axis[from * 64..], part, only_look),
+        };
+        let work = |amplitudes: &mut [f64], marked: &[u64], from: usize| {
+            let runs = amplitudes.chunks_mut(WORDS_A_RUN * 64).zip(marked.chunks(WORDS_A_RUN)).enumerate();
+            runs.map(|(at, (amplitudes, marked))| run(amplitudes, marked, from + at * WORDS_A_RUN))
+                .fold(Sums::default(), Sums::plus)
         };
         let chunks = self.amplitudes.chunks_mut(share * 64).zip(self.marked.chunks(share)).enumerate();
         let all: Vec<Sums> = if self.threads == 1 {
@@ -78,10 +94,7 @@ impl Stepped {
                 threads.into_iter().map(|thread| thread.join().expect("no panic in a thread")).collect()
             })
         };
-        all.iter().fold(Sums::default(), |sum, part| Sums {
-            along: sum.along + part.along,
-            success: sum.success + part.success,
-        })
+        all.into_iter().fold(Sums::default(), Sums::plus)
     }
 }
 

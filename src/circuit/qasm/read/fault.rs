@@ -237,7 +237,7 @@ fn why_unknown(word: &str) -> Option<&'static str> {
     Some(match word {
         "while" | "break" | "continue" | "end" => "how many gates there are must not depend on the run; use `for`",
         "switch" => "use `if` on one measured bit",
-        "input" => "all values must be in the file; `simulate --iterations N` gives a search its number of iterations",
+        "input" => "all values must be in the file; --iterations N of `simulate` and `audit` gives a search its number",
         "output" => "what is measured is what comes out",
         "int" | "uint" | "float" | "angle" | "bool" | "complex" | "array" => "only constants are known: write `const`",
         "box" | "delay" | "nop" | "duration" | "stretch" => "time has no meaning here",

@@ -9,6 +9,8 @@
 //! One turn of a loop must be one iteration. What stands outside of loops may hold iterations too (a loop of one turn
 //! is written without a loop): their number is the least that explains the state.
 //!
+//! Where iterations turn by angles of their own, only the end of the search is judged (`tuned`).
+//!
 //! A loop with many turns need not be followed to its end. States between iterations lie in a plane (spanned by the
 //! uniform superpositions of the solutions and of the rest); two followed turns say what the body does to two
 //! independent vectors of it, so if the body is unitary, it does the same in every further turn.
@@ -16,6 +18,7 @@
 mod entries;
 mod machine;
 mod profile;
+mod tuned;
 
 use self::entries::Rows;
 use self::machine::{MOST_ENTRIES, Machine, SEED};
@@ -49,7 +52,7 @@ pub struct SearchVerdict {
     /// Iterations in the file.
     pub iterations: u64,
     /// Iterations with the highest success at the first peak, for as many solutions as the problem has; `None` where
-    /// the search is too large to count them. A file with another number is a search for the problem all the same:
+    /// the search is too large to count them, and where its iterations turn by angles of their own. A file with another number is a search for the problem all the same:
     /// the notes say so.
     pub planned: Option<u64>,
     /// Iterations that were followed gate by gate.
@@ -104,6 +107,7 @@ pub fn audit_search_against(
         budget,
         verdict: open(),
         phase: Complex { re: 1.0, im: 0.0 },
+        is_tuned: tuned::is_tuned(circuit),
         unfollowed: false,
         since_check: 0,
     };
@@ -112,6 +116,9 @@ pub fn audit_search_against(
         Err(end) => follower.end(&end),
     }
     let mut verdict = follower.verdict;
+    if follower.is_tuned {
+        return Ok(verdict);
+    }
     let planned = follower.profile.planned();
     verdict.planned = Some(planned);
     if verdict.outcome == Outcome::Equal && verdict.iterations != planned {
@@ -174,6 +181,8 @@ struct Follower<'c> {
     verdict: SearchVerdict,
     /// The global phase at the last comparison.
     phase: Complex,
+    /// Whether iterations turn by angles of their own.
+    is_tuned: bool,
     /// Whether turns of a loop were not followed.
     unfollowed: bool,
     since_check: u32,
@@ -183,6 +192,9 @@ impl<'c> Follower<'c> {
     fn follow(&mut self) -> Result<(), End> {
         let circuit = self.circuit;
         let tail = self.check_measurement()?;
+        if self.is_tuned {
+            return self.follow_tuned(tail);
+        }
         for (at, block) in circuit.blocks().iter().enumerate() {
             let end = (block.gates.end as usize).min(tail);
             let gates = circuit.gates().get(block.gates.start as usize..end).unwrap_or(&[]);

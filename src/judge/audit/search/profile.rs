@@ -133,6 +133,22 @@ impl<'t> Profile<'t> {
         Fit { deviation: deviation.sqrt(), phase }
     }
 
+    /// How far a state with these sums is from one in which all marked strings are alike and all other start strings are.
+    pub(super) fn unlikeness(&self, sums: &Sums, amplitude: impl Fn(usize) -> Complex) -> f64 {
+        let mean = |sum: Complex, number: f64| sum.scaled(if number > 0.0 { 1.0 / number } else { 0.0 });
+        let (marked, other) = (mean(sums.marked, self.marked), mean(sums.other, self.all - self.marked));
+        let apart = |value: usize| {
+            let wanted = match (self.is_held(value), self.is_marked(value)) {
+                (false, _) => Complex { re: 0.0, im: 0.0 },
+                (true, true) => marked,
+                (true, false) => other,
+            };
+            let a = amplitude(value);
+            Complex { re: a.re - wanted.re, im: a.im - wanted.im }.norm()
+        };
+        (0..self.strings).map(apart).fold(0.0, f64::max).sqrt()
+    }
+
     /// Whether the sums alone rule out `turns` iterations, whatever the phase: a cheap test before [`Profile::fit`].
     pub(super) fn is_excluded(&self, turns: u64, sums: &Sums, tolerance: f64) -> bool {
         (self.success(turns) - sums.success).abs() > tolerance
