@@ -98,6 +98,9 @@ impl<'c> Links<'c> {
         if gate.condition().is_some() || !gate.op().is_unitary() || gate.op().has_angle() {
             return None;
         }
+        if !self.may_have_partner(at, fates) {
+            return None;
+        }
         let mut heads: Vec<(QubitId, u32)> = self.qubits(at).map(|qubit| (qubit, self.last[qubit])).collect();
         for _ in 0..WINDOW {
             let latest = heads.iter().map(|&(_, head)| head).filter(|&head| head != NONE).max()?;
@@ -113,6 +116,30 @@ impl<'c> Links<'c> {
             }
         }
         None
+    }
+
+    /// Whether the gates on its target alone allow a partner: most often they are few, and say no.
+    fn may_have_partner(&self, at: u32, fates: &[Fate]) -> bool {
+        let gate = &self.circuit.gates()[at as usize];
+        let target = gate.target();
+        let own = kind(self.circuit, gate, target);
+        let mut head = self.last[target];
+        for _ in 0..WINDOW {
+            if head == NONE {
+                return false;
+            }
+            if fates[head as usize] != Fate::Dropped {
+                if self.undoes(at, head) {
+                    return true;
+                }
+                let other = kind(self.circuit, &self.circuit.gates()[head as usize], target);
+                if own != other || own == Some(Kind::Other) {
+                    return false;
+                }
+            }
+            head = self.before(head, target);
+        }
+        true
     }
 
     fn commute(&self, gate: &Gate, other: &Gate) -> bool {

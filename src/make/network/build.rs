@@ -15,7 +15,8 @@ use rustc_hash::FxHashMap;
 /// out. The problem passed [`check`](crate::problem::check::check), and the
 /// places are about it ([`Places::check`]).
 pub fn build(problem: &Problem, places: &Places) -> Network {
-    let mut builder = Builder::new(&places.searched);
+    // A clause of k literals is k - 1 nodes and one that joins it to the others.
+    let mut builder = Builder::with_capacity(&places.searched, problem.clauses.iter().map(<[_]>::len).sum());
     let mut bits = vec![Lit::NO; problem.bit_count()];
     for (at, bit) in places.searched.iter().enumerate() {
         bits[bit.index()] = Lit::new(NodeId::new(at + 1), false);

@@ -1,7 +1,6 @@
 //! Building nodes: folding, structural hashing, and trying several ways to keep the cheapest.
 
-use rustc_hash::FxHashMap;
-
+use super::table::Table;
 use super::{Conjunct, Lit, Network, Node, NodeId, mark_live};
 use crate::id::{Id, IdVec};
 use crate::problem::BitId;
@@ -9,7 +8,7 @@ use crate::problem::BitId;
 /// A network under construction.
 pub(super) struct Builder {
     nodes: Vec<Node>,
-    known: FxHashMap<Node, NodeId>,
+    known: Table,
     ands: usize,
 }
 
@@ -18,7 +17,14 @@ impl Builder {
     pub(super) fn new(searched: &[BitId]) -> Self {
         let inputs = searched.iter().map(|&bit| Node::Input(bit));
         let nodes: Vec<Node> = std::iter::once(Node::Const).chain(inputs).collect();
-        Self { nodes, known: FxHashMap::default(), ands: 0 }
+        Self { nodes, known: Table::with_capacity(0), ands: 0 }
+    }
+
+    /// The same with room for so many nodes.
+    pub(super) fn with_capacity(searched: &[BitId], nodes: usize) -> Self {
+        let mut builder = Self { known: Table::with_capacity(nodes), ..Self::new(searched) };
+        builder.nodes.reserve(nodes);
+        builder
     }
 
     /// Both hold.
@@ -77,12 +83,11 @@ impl Builder {
     }
 
     fn node(&mut self, node: Node) -> Lit {
-        let next = NodeId::new(self.nodes.len());
-        let id = *self.known.entry(node).or_insert(next);
-        if id == next {
+        let id = self.known.find_or_add(&self.nodes, &node).unwrap_or_else(|| {
             self.nodes.push(node);
             self.ands += usize::from(matches!(node, Node::And(..)));
-        }
+            NodeId::new(self.nodes.len() - 1)
+        });
         Lit::new(id, false)
     }
 
@@ -147,9 +152,10 @@ impl Builder {
     }
 
     fn forget_from(&mut self, start: usize) {
-        for node in self.nodes.drain(start..) {
-            self.known.remove(&node);
-            self.ands -= usize::from(matches!(node, Node::And(..)));
+        while self.nodes.len() > start {
+            self.known.forget_last(&self.nodes);
+            let node = self.nodes.pop();
+            self.ands -= usize::from(matches!(node, Some(Node::And(..))));
         }
     }
 

@@ -24,6 +24,7 @@ mod linear;
 mod lookup;
 pub mod pass;
 mod small;
+mod table;
 mod text;
 
 use crate::define_id;

@@ -29,7 +29,7 @@ impl<'a> Copy<'a> {
         }
         Self {
             old,
-            builder: Builder::new(old.searched()),
+            builder: Builder::with_capacity(old.searched(), old.nodes().len()),
             map,
             assumed: vec![false; old.nodes().len()].into(),
             open: Vec::new(),

@@ -119,11 +119,16 @@ pub(super) fn complement_if(table: u32, lit: Lit) -> u32 {
     if lit.is_complemented() { !table } else { table }
 }
 
-/// For each node its function of the searched bits, where these are few.
-pub(super) fn functions(network: &Network) -> IdVec<NodeId, Option<Function>> {
+/// For each node that these literals depend on its function of the searched bits, where these are few; none for others.
+pub(super) fn functions(network: &Network, lits: &[Lit]) -> IdVec<NodeId, Option<Function>> {
+    let needed = network.live(lits);
     let mut functions: IdVec<NodeId, Option<Function>> = IdVec::new();
     functions.reserve(network.nodes().len());
     for (id, node) in network.nodes().iter() {
+        if !needed[id] {
+            functions.push(None);
+            continue;
+        }
         let of = |lit: Lit| functions[lit.node()].as_ref();
         let function = match *node {
             Node::Const | Node::Input(_) => Some(Function::of_node(id)),

@@ -11,6 +11,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 use super::Passed;
 use super::copy::Copy;
 use super::view::{self, Clause, View};
+use crate::id::Id;
 use crate::make::network::build::Conjuncts;
 use crate::make::network::{Lit, Network, Node, NodeId};
 
@@ -40,7 +41,7 @@ pub(super) fn parities(view: View<'_>) -> Option<Passed> {
         }
     }
     if list.is_empty() {
-        return None;
+        return view.unchanged();
     }
     list.sort_by_key(|(at, _)| *at);
     let mut copy = Copy::new(network);
@@ -72,6 +73,7 @@ fn spelled_out(clauses: &[Clause]) -> (Vec<(usize, Parity)>, Vec<bool>) {
     let nodes = |at: usize| clauses[at].lits.iter().map(|lit| lit.node());
     let mut order: Vec<usize> =
         (0..clauses.len()).filter(|&at| (2..=MAX_LENGTH).contains(&clauses[at].lits.len())).collect();
+    keep_frequent(clauses, &mut order);
     order.sort_by(|&a, &b| nodes(a).cmp(nodes(b)).then(a.cmp(&b)));
     let mut found = Vec::new();
     for same in order.chunk_by(|&a, &b| nodes(a).eq(nodes(b))) {
@@ -91,6 +93,23 @@ fn spelled_out(clauses: &[Clause]) -> (Vec<(usize, Parity)>, Vec<bool>) {
         }
     }
     (found, part_of)
+}
+
+/// Leaves out, by counts under a hash of the nodes, most clauses whose nodes too few others have.
+fn keep_frequent(clauses: &[Clause], order: &mut Vec<usize>) {
+    let bits = order.len().next_power_of_two().ilog2().max(6) + 1;
+    let place = |at: usize| {
+        let mixed = |hash: u64, lit: &Lit| (hash ^ lit.node().index() as u64).wrapping_mul(0x9e37_79b9_7f4a_7c15);
+        (clauses[at].lits.iter().fold(0, mixed) >> (64 - bits)) as usize
+    };
+    let places: Vec<usize> = order.iter().map(|&at| place(at)).collect();
+    let mut counts = vec![0u16; 1 << bits];
+    places.iter().for_each(|&place| counts[place] = counts[place].saturating_add(1));
+    let mut places = places.into_iter();
+    order.retain(|&at| {
+        let count = places.next().map_or(0, |place| counts[place]);
+        usize::from(count) >= 1 << (clauses[at].lits.len() - 1)
+    });
 }
 
 /// A conjunct as a parity of nodes that are not XORs.

@@ -8,9 +8,8 @@
 
 use super::Passed;
 use super::copy::Copy;
-use super::lists::Lists;
+use super::lists::{ClauseLists, node_set};
 use super::view::{self, Clause, View};
-use crate::id::Id;
 use crate::make::network::Lit;
 use crate::make::network::build::Conjuncts;
 
@@ -33,7 +32,7 @@ pub(super) fn subsume(view: View<'_>) -> Option<Passed> {
         }
     }
     if !store.changed {
-        return None;
+        return view.unchanged();
     }
     let gone = store.gone;
     let mut copy = Copy::new(view.network);
@@ -46,10 +45,8 @@ pub(super) fn subsume(view: View<'_>) -> Option<Passed> {
 
 struct Store<'a> {
     clauses: &'a mut Vec<Clause>,
-    /// The clauses of each literal, by its number.
-    at_lit: Lists,
-    /// For each clause the set of its nodes, hashed into 64 bits: a cheap look before the comparison.
-    nodes: Vec<u64>,
+    /// The clauses of each literal as they were at first: a clause that became shorter may have fewer nodes.
+    at_lit: ClauseLists,
     gone: Vec<bool>,
     /// Whether a clause went or became shorter.
     changed: bool,
@@ -57,31 +54,26 @@ struct Store<'a> {
 
 impl<'a> Store<'a> {
     fn new(clauses: &'a mut Vec<Clause>) -> Self {
-        let last = clauses.iter().flat_map(|clause| &clause.lits).map(|lit| lit.0 | 1).max().unwrap_or(0);
-        let entries = clauses.iter().enumerate();
-        let entries = entries.flat_map(|(at, clause)| clause.lits.iter().map(move |lit| (lit.0 as usize, at)));
-        let at_lit = Lists::new(last as usize + 1, entries);
-        let nodes = clauses.iter().map(|clause| node_set(&clause.lits)).collect();
-        Self { gone: vec![false; clauses.len()], clauses, at_lit, nodes, changed: false }
+        let at_lit = ClauseLists::new(clauses, |_| true);
+        Self { gone: vec![false; clauses.len()], clauses, at_lit, changed: false }
     }
 
     /// Removes what the clause subsumes, and the literals that it resolves away.
     fn use_clause(&mut self, at: usize, open: &mut Vec<usize>) {
         let lits = self.clauses[at].lits.clone();
         // Every clause that is touched holds the rarest literal, or its complement, or another one complemented.
-        let count = |lit: Lit| self.at_lit.of(lit.0 as usize).len();
         let set = node_set(&lits);
-        let Some(&rare) = lits.iter().min_by_key(|&&lit| (count(lit), lit)) else { return };
+        let Some(&rare) = lits.iter().min_by_key(|&&lit| (self.at_lit.len(lit), lit)) else { return };
         for &pivot in &lits {
             for (in_clause, flipped) in [(rare, None), (!pivot, Some(pivot))] {
                 // Without a flipped literal once is enough; with one, the rarest of the others would do as well.
-                if flipped.is_none() && pivot != rare || self.at_lit.of(in_clause.0 as usize).len() > MAX_CLAUSES {
+                if flipped.is_none() && pivot != rare || self.at_lit.len(in_clause) > MAX_CLAUSES {
                     continue;
                 }
-                for place in 0..self.at_lit.of(in_clause.0 as usize).len() {
-                    let other = self.at_lit.of(in_clause.0 as usize)[place] as usize;
-                    let may = set & !self.nodes[other] == 0 && other != at && !self.gone[other];
-                    if !may || !self.contains(other, &lits, flipped) {
+                let mut place = 0;
+                while let Some((other, next)) = self.at_lit.next(in_clause, place, set) {
+                    place = next;
+                    if other == at || self.gone[other] || !self.contains(other, &lits, flipped) {
                         continue;
                     }
                     self.changed = true;
@@ -89,7 +81,6 @@ impl<'a> Store<'a> {
                         None => self.gone[other] = true,
                         Some(pivot) => {
                             self.clauses[other].lits.retain(|&lit| lit != !pivot);
-                            self.nodes[other] = node_set(&self.clauses[other].lits);
                             open.push(other);
                         }
                     }
@@ -104,8 +95,4 @@ impl<'a> Store<'a> {
         let want = |lit: Lit| if flipped == Some(lit) { !lit } else { lit };
         clause.len() >= lits.len() && lits.iter().all(|&lit| clause.binary_search(&want(lit)).is_ok())
     }
-}
-
-fn node_set(lits: &[Lit]) -> u64 {
-    lits.iter().fold(0, |set, lit| set | 1 << (lit.node().index() % 64))
 }

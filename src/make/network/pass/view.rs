@@ -9,6 +9,7 @@
 
 use std::cell::OnceCell;
 
+use super::Passed;
 use super::copy::Copy;
 use crate::id::{ConstraintId, Id, IdVec};
 use crate::make::network::build::Conjuncts;
@@ -17,6 +18,9 @@ use crate::make::network::{Lit, Network, Node, NodeId};
 /// A shared AND is taken apart again only in clauses that stay below this length, so that a clause is never read from a
 /// graph much smaller than itself.
 const MAX_SHARED: usize = 64;
+
+/// Networks of more nodes are not numbered anew where nothing changes: for these it takes longer than most passes.
+const MAX_RENUMBERED: usize = 100_000;
 
 /// At least one of the literals holds.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -43,6 +47,18 @@ impl<'a> View<'a> {
     /// The clauses whose conjunction is the root.
     pub(super) fn clauses(&self) -> &'a [Clause] {
         self.read.get_or_init(|| clauses(self.network))
+    }
+
+    /// What a pass over clauses gives that found nothing. A small network is numbered anew in the order of its clauses:
+    /// where two cuts save as much, a later pass takes the one that comes first, and this order is the better one.
+    pub(super) fn unchanged(&self) -> Option<Passed> {
+        if self.network.nodes().len() > MAX_RENUMBERED {
+            return None;
+        }
+        let mut copy = Copy::new(self.network);
+        let mut conjuncts = Conjuncts::default();
+        self.clauses().iter().for_each(|clause| add(&mut copy, &mut conjuncts, clause));
+        Some(copy.finish(conjuncts))
     }
 }
 

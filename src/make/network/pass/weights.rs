@@ -17,7 +17,7 @@ use rustc_hash::FxHashMap;
 
 use super::Passed;
 use super::copy::Copy;
-use super::lists::Lists;
+use super::lists::{ClauseLists, node_set};
 use super::view::{self, Clause, View};
 use crate::make::network::Lit;
 use crate::make::network::build::Conjuncts;
@@ -47,7 +47,7 @@ pub(super) fn weights(view: View<'_>) -> Option<Passed> {
         }
     }
     if groups.is_empty() {
-        return None;
+        return view.unchanged();
     }
     for (set, bounds) in &mut groups {
         let opposite: Vec<Lit> = set.iter().map(|&lit| !lit).collect();
@@ -107,18 +107,14 @@ struct Search<'a> {
     clauses: &'a [Clause],
     /// Made when it is first asked for.
     by_lits: OnceCell<FxHashMap<&'a [Lit], usize>>,
-    /// The clauses of each literal, by its number.
-    at_lit: Lists,
+    /// The short clauses of each literal.
+    at_lit: ClauseLists,
     taken: Vec<bool>,
 }
 
 impl<'a> Search<'a> {
     fn new(clauses: &'a [Clause]) -> Self {
-        let last = clauses.iter().flat_map(|clause| &clause.lits).map(|lit| lit.0).max().unwrap_or(0);
-        let short = |&(_, clause): &(usize, &Clause)| (2..=MAX_LENGTH).contains(&clause.lits.len());
-        let entries = clauses.iter().enumerate().filter(short);
-        let entries = entries.flat_map(|(at, clause)| clause.lits.iter().map(move |lit| (lit.0 as usize, at)));
-        let at_lit = Lists::new(last as usize + 1, entries);
+        let at_lit = ClauseLists::new(clauses, |clause| (2..=MAX_LENGTH).contains(&clause.lits.len()));
         Self { clauses, by_lits: OnceCell::new(), at_lit, taken: vec![false; clauses.len()] }
     }
 
@@ -163,8 +159,9 @@ impl<'a> Search<'a> {
         let lits = &self.clauses[seed].lits;
         let (_, fixed) = lits.split_last().expect("two literals or more");
         let mut found: Vec<Lit> = Vec::new();
-        for &at in self.at_lit.of(lits[0].0 as usize) {
-            let at = at as usize;
+        let (mut place, set) = (0, node_set(fixed));
+        while let Some((at, next)) = self.at_lit.next(lits[0], place, set) {
+            place = next;
             let other = &self.clauses[at].lits;
             if other.len() == lits.len() && !self.taken[at] && fixed.iter().all(|lit| other.binary_search(lit).is_ok())
             {

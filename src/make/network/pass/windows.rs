@@ -44,7 +44,7 @@ pub(super) fn windows(view: View<'_>) -> Option<Passed> {
         }
     }
     if windows.is_empty() {
-        return None;
+        return view.unchanged();
     }
     let mut copy = Copy::new(network);
     let mut conjuncts = Conjuncts::default();
@@ -80,7 +80,8 @@ struct Finder<'a> {
 
 impl<'a> Finder<'a> {
     fn new(network: &'a Network, clauses: &'a [Clause]) -> Self {
-        let of_nodes = function::functions(network);
+        let lits: Vec<Lit> = clauses.iter().flat_map(|clause| &clause.lits).copied().collect();
+        let of_nodes = function::functions(network, &lits);
         let functions: Vec<Option<Function>> = clauses.iter().map(|clause| function_of(clause, &of_nodes)).collect();
         let entries = functions.iter().enumerate().filter_map(|(at, function)| Some((at, function.as_ref()?)));
         let entries = entries.flat_map(|(at, Function { inputs, .. })| {
