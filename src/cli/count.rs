@@ -134,11 +134,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let budget = options.how.memory.map_or(budget.clone(), |bytes| budget.with_memory(bytes));
     let keep = if options.list > 0 { pipeline::KEPT_SOLUTIONS.max(options.list) } else { 0 };
     let how = options.how.options(settings, keep, options.certified())?;
-    let places = input::choose(global, &loaded, settings, &budget).map_err(|error| Failure::stage(&error, &sources))?;
-    let tallied = match options.how.margin() {
-        Some(margin) => pipeline::tally_for_plan(&loaded.problem, &places, &how, margin, &budget),
-        None => pipeline::tally(&loaded.problem, &places, &how, &budget),
-    };
+    let tallied = tally(global, &options.how, &loaded, &how, &budget);
     let tallied = tallied.map_err(|error| Failure::stage(&error, &sources))?;
     let counted = &tallied.counted;
     let more = More::of(global, options, &loaded, &counted.tally, &budget)
@@ -166,6 +162,26 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     object.insert("solutions".to_owned(), solutions);
     object.extend(more.json.into_iter().map(|(name, value)| (name.to_owned(), value)));
     Ok((exit, json::print(object)))
+}
+
+/// Counts for a search where the options name one, and the solutions alone where they do not.
+fn tally(
+    global: &Global,
+    asked: &How,
+    loaded: &Loaded,
+    how: &count::Options,
+    budget: &Budget,
+) -> Result<Tallied, Error> {
+    let margin = asked.margin();
+    if margin.is_none() && !global.no_narrowing && !global.any {
+        return pipeline::tally_alone(&loaded.problem, how, budget);
+    }
+    let settings = input::settings(global, Level::Toffoli, Mark::Phase);
+    let places = input::choose(global, loaded, settings, budget)?;
+    match margin {
+        Some(margin) => pipeline::tally_for_plan(&loaded.problem, &places, how, margin, budget),
+        None => pipeline::tally(&loaded.problem, &places, how, budget),
+    }
 }
 
 impl Options {

@@ -47,7 +47,7 @@ pub use oracle::{
 };
 pub use planning::{advice_on, plan_for};
 pub use start::{Priced, places_from, priced, prices};
-pub use tally::{Margin, Tallied, tally, tally_for_plan};
+pub use tally::{Margin, Tallied, tally, tally_alone, tally_for_plan};
 
 use files::{write_and_read, write_curve};
 use oracle::{every_level, why_no_oracle};

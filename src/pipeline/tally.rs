@@ -9,7 +9,7 @@ use super::Error;
 use super::counting::counted;
 use crate::budget::Budget;
 use crate::judge::count::hashing::Accuracy;
-use crate::judge::count::{Counted, Options, Run, Wanted};
+use crate::judge::count::{self, Counted, Options, Over, Run, Wanted};
 use crate::places::Places;
 use crate::problem::Problem;
 use crate::search::number::Wide;
@@ -50,7 +50,16 @@ pub struct Margin {
 /// miss the margin by a little.
 const TRIES: usize = 4;
 
-/// Counts.
+/// Counts the solutions alone. The space is that of the bits that are counted over: what of it a search would leave out is
+/// a question of the plan, and finding it out takes longer than most counts.
+pub fn tally_alone(problem: &Problem, options: &Options, budget: &Budget) -> Result<Tallied, Error> {
+    let (tally, runs) = count::count_logged(problem, Over::Shown, options, budget)?;
+    let bits = problem.shown.as_ref().map_or(problem.bit_count(), Vec::len);
+    let counted = Counted { tally, states: None, space: BigUint::one() << bits };
+    Ok(Tallied { counted, runs, plan: None })
+}
+
+/// Counts the solutions, and the marked states of a search with these places.
 pub fn tally(problem: &Problem, places: &Places, options: &Options, budget: &Budget) -> Result<Tallied, Error> {
     let (counted, runs) = counted(problem, places, options, budget)?;
     Ok(Tallied { counted, runs, plan: None })

@@ -61,6 +61,21 @@ fn an_interval_says_what_it_is() {
     assert!(text.contains("with confidence 0.9"), "{text}");
 }
 
+/// A count by itself speaks of what is counted over; a search of every bit as given has its own space and marked states.
+#[test]
+fn the_space_is_that_of_what_is_counted_unless_a_search_is_named() {
+    let desk = Desk::new();
+    // Over 1 and 2 alone there are three, and one of these goes with both values of 3.
+    desk.file("shown.cnf", "p cnf 3 2\nc p show 1 2 0\n1 2 0\n-1 3 0\n");
+    for (more, space, marked, ways) in [(&[][..], "4", "3", 1), (&["--no-narrowing"][..], "8", "4", 2)] {
+        let (exit, object) = desk.json(&[&["count", "shown.cnf", "--unconfirmed"], more].concat());
+        let tally = &object["tally"];
+        assert_eq!((exit, &tally["count"]), (0, &"3".into()), "{more:?}");
+        assert_eq!((&tally["space"], &tally["marked"]), (&space.into(), &marked.into()), "{more:?}");
+        assert_eq!(methods(&object).len(), ways, "{more:?}");
+    }
+}
+
 #[test]
 fn what_comes_quickly_is_exact_in_spite_of_a_tolerance() {
     let desk = Desk::new();

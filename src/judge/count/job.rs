@@ -12,9 +12,9 @@ use super::list::Limits;
 use super::listed::Again;
 use super::sweep::Sweep;
 use super::{
-    CONFIRMED, CONFIRMED_WORK, Fault, LONG_INPUTS, LONG_STATES, LONG_WORK, Method, Options, Over, QUICK_INPUTS,
-    QUICK_STATES, QUICK_WORK, Run, SHORT_LISTED_WORK, TINY_WORK, Tally, Wanted, components, counted_over, frontier,
-    inputs, sweep,
+    CONFIRMED, CONFIRMED_WORK, Fault, LONG_INPUTS, LONG_STATES, LONG_WORK, MIDDLE_INPUTS, Method, Options, Over,
+    QUICK_INPUTS, QUICK_STATES, QUICK_WORK, Run, SHORT_LISTED_WORK, TINY_WORK, Tally, Wanted, components, counted_over,
+    frontier, inputs, sweep,
 };
 use crate::budget::Budget;
 use crate::judge::clauses::{self, Cnf};
@@ -100,6 +100,9 @@ impl<'a> Job<'a> {
         let tiny = self.components(TINY_WORK, &half(budget))?;
         if tiny.exact().is_some() {
             return self.confirmed(tiny, budget);
+        }
+        if let Some(counted) = self.inputs(MIDDLE_INPUTS, &half(budget))? {
+            return self.confirmed(counted, budget);
         }
         if let Some(counted) = self.frontier(QUICK_STATES, &half(budget))? {
             return self.confirmed(counted, budget);

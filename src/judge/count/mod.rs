@@ -10,7 +10,7 @@
 //! 1. the sweep tries every bit string: first where that costs next to nothing;
 //! 2. the `inputs` alone are swept where the clauses define all else and that costs next to nothing;
 //! 3. the `engine` splits the clauses into components and remembers their counts: next, with little work at first;
-//! 4. the `frontier` goes along a line of variables, where that does not seem to take many states; then the engine again;
+//! 4. the inputs again where there are a few more; the `frontier` goes along a line of variables, where that does not seem to take many states; then the engine again;
 //! 5. the listing goes through the solutions one by one, in short, for what was hard so far may have few solutions;
 //! 6. `hashing` gives an interval with a confidence: here, if an interval is wanted;
 //! 7. the inputs, the line, and the engine again with all the work that is allowed; then hashing, if an interval will do
@@ -70,6 +70,8 @@ pub const TINY_WORK: u64 = 1 << 20;
 pub const QUICK_WORK: u64 = 1 << 24;
 /// Row operations of a first sweep of the inputs: some hundredths of a second.
 pub const QUICK_INPUTS: u64 = 1 << 22;
+/// Row operations of a second sweep of the inputs, after the engine's first try: some tenths of a second.
+pub const MIDDLE_INPUTS: u64 = 1 << 25;
 /// Row operations of a sweep of the inputs at most: some tens of seconds.
 pub const LONG_INPUTS: u64 = 1 << 31;
 /// States that a first try along a line looks at: some tenths of a second; it is not begun if it seems to take more.

@@ -326,3 +326,6 @@ impl<'a, T: Trace> Search<'a, T> {
         BitLit::new(BitId::new(name.bit().index()), name.is_negated() == lit.is_negated())
     }
 }
+
+#[cfg(test)]
+mod tests;

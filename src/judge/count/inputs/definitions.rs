@@ -7,6 +7,10 @@
 //! Variables become inputs in the order of the formula, each only if nothing before it defines it; whatever follows
 //! from a new variable is found before the next one becomes an input. Encodings number inputs before gates and gates
 //! before their users, so the inputs found are mostly those that the encoding was made from.
+//!
+//! A definition may leave open what other clauses between the same earlier variables forbid. That is safe: such a clause
+//! is required where no definition contains it, and where one does, that definition is an earlier one, so its value
+//! cannot violate the clause unless a required clause was violated before.
 
 use crate::columns;
 use crate::judge::count::engine::{Class, Lit, Prepared};
@@ -111,40 +115,54 @@ impl Finder<'_> {
             clause.iter().all(|lit| lit.var() == var || self.known[lit.var()])
         };
         let clauses: Vec<u32> = self.lists[var].iter().filter(of_known).take(MAX_CLAUSES).copied().collect();
-        let by_table = table(self.formula, var, &clauses).map(|rule| (rule, clauses.clone()));
+        let by_table = self.table(var, &clauses).map(|rule| (rule, clauses.clone()));
         let (rule, clauses) = by_table.or_else(|| conjunction(self.formula, var, &clauses))?;
         Some(Definition { var: var as u32, rule, clauses })
     }
+
+    /// The values of a variable that its clauses leave no choice for, where they speak of few others. A row that the other
+    /// clauses between these forbid needs no value: such a clause may have taken the place of one of the variable's own
+    /// that it subsumes.
+    fn table(&self, var: usize, clauses: &[u32]) -> Option<Rule> {
+        let clause = |at: &u32| &self.formula.clauses[*at as usize];
+        let literals = clauses.iter().flat_map(clause);
+        let mut vars: Vec<u32> = literals.map(|lit| lit.var() as u32).filter(|&other| other as usize != var).collect();
+        vars.sort_unstable();
+        vars.dedup();
+        if vars.len() > MAX_WIDTH {
+            return None;
+        }
+        // Rows in which a clause forces the variable to be true, and false.
+        let mut forced = [[0u64; WORDS]; 2];
+        for clause in clauses.iter().map(clause) {
+            let own = clause.iter().find(|lit| lit.var() == var)?;
+            let side = &mut forced[usize::from(own.is_negated())];
+            add(side, falsified(clause.iter().filter(|lit| lit.var() != var), &vars)?);
+        }
+        let forbids = (0..WORDS).any(|word| forced[0][word] & forced[1][word] != 0);
+        let mut decided: Table = std::array::from_fn(|word| forced[0][word] | forced[1][word]);
+        if decided != [u64::MAX; WORDS] {
+            let between = vars.iter().flat_map(|&other| self.lists[other as usize].iter().take(MAX_CLAUSES));
+            between.filter_map(|at| falsified(clause(at).iter(), &vars)).for_each(|rows| add(&mut decided, rows));
+        }
+        (decided == [u64::MAX; WORDS]).then_some(Rule::Table { vars, values: forced[0], forbids })
+    }
 }
 
-/// The values of a variable that its clauses leave no choice for, where they speak of few others.
-fn table(formula: &Prepared, var: usize, clauses: &[u32]) -> Option<Rule> {
-    let literals = clauses.iter().flat_map(|&clause| &formula.clauses[clause as usize]);
-    let mut vars: Vec<u32> = literals.map(|lit| lit.var() as u32).filter(|&other| other as usize != var).collect();
-    vars.sort_unstable();
-    vars.dedup();
-    if vars.len() > MAX_WIDTH {
-        return None;
-    }
-    // Rows in which a clause forces the variable to be true, and false.
-    let mut forced = [[0u64; WORDS]; 2];
-    for &clause in clauses {
-        let clause = &formula.clauses[clause as usize];
-        let own = clause.iter().find(|lit| lit.var() == var)?;
-        let mut rows = [u64::MAX; WORDS];
-        for lit in clause.iter().filter(|lit| lit.var() != var) {
-            let at = vars.binary_search(&(lit.var() as u32)).ok()?;
-            let column = column(at);
-            for word in 0..WORDS {
-                rows[word] &= if lit.is_negated() { column[word] } else { !column[word] };
-            }
+fn add(rows: &mut Table, more: Table) {
+    rows.iter_mut().zip(more).for_each(|(word, more)| *word |= more);
+}
+
+/// The rows in which all these literals are false; nothing where one is of another variable.
+fn falsified<'a>(lits: impl Iterator<Item = &'a Lit>, vars: &[u32]) -> Option<Table> {
+    let mut rows = [u64::MAX; WORDS];
+    for lit in lits {
+        let column = column(vars.binary_search(&(lit.var() as u32)).ok()?);
+        for word in 0..WORDS {
+            rows[word] &= if lit.is_negated() { column[word] } else { !column[word] };
         }
-        let side = &mut forced[usize::from(own.is_negated())];
-        side.iter_mut().zip(rows).for_each(|(word, row)| *word |= row);
     }
-    let decided = (0..WORDS).all(|word| forced[0][word] | forced[1][word] == u64::MAX);
-    let forbids = (0..WORDS).any(|word| forced[0][word] & forced[1][word] != 0);
-    decided.then_some(Rule::Table { vars, values: forced[0], forbids })
+    Some(rows)
 }
 
 /// The rows in which the variable at this place is true.

@@ -129,6 +129,19 @@ mod tests {
         assert!(swept > 270, "nearly all that show every input are of this kind: {swept} of 300");
     }
 
+    /// In `d = a xor (a and b)` the clause `a or not c or d` falls to `a or not c`, a part of the definition of c.
+    #[test]
+    fn a_definition_that_lost_a_clause_to_another_one_is_found() {
+        let mut encoded = Encoded { clauses: Clauses::new(), vars: 4, inputs: 2 };
+        for clause in [&[-3, 1][..], &[-3, 2], &[3, -1, -2], &[1, 3, -4], &[-1, 3, 4], &[1, -3, 4], &[-1, -3, -4]] {
+            encoded.add(clause);
+        }
+        let prepared = prepare(&encoded.clauses, 4, None, Effort::Models, &Budget::unlimited());
+        assert_eq!(prepared.clauses.len(), 6, "one clause is subsumed");
+        assert_eq!(definitions(&prepared, 2).expect("two inputs").inputs, [0, 1]);
+        assert_eq!(count(&prepared, 1 << 20, 1, &Budget::unlimited()), Some(BigUint::from(4u32)));
+    }
+
     #[test]
     fn what_costs_too_much_is_left_alone() {
         let mut clauses = Clauses::new();
