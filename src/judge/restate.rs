@@ -141,9 +141,13 @@ impl<'a> Writer<'a> {
         }
     }
 
-    /// The number, divided and rounded down, is odd; that is so for negative ones too.
+    /// The number, divided and rounded down, is odd. A number that may be negative has the digits of the same number plus a
+    /// power of two that is beyond its size and the digit.
     fn digit(&mut self, digit: &Digit) -> ExprId {
-        let whole = Digit { at: 0, ..digit.clone() };
+        let below = digit.terms.iter().map(|&(weight, _)| weight.min(0)).sum::<i64>() + digit.constant.min(0);
+        let beyond = (i64::BITS - below.unsigned_abs().leading_zeros()).max(u32::from(digit.at) + 1);
+        let lift = if below < 0 { 1i64 << beyond } else { 0 };
+        let whole = Digit { at: 0, constant: digit.constant + lift, terms: digit.terms.clone() };
         let number = match &self.number {
             Some((last, number)) if *last == whole => *number,
             _ => self.number(&whole),

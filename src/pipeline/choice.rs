@@ -69,19 +69,37 @@ pub fn choose(
     if narrowing == Narrowing::Off {
         return Ok((Candidate { places: as_given, ands: None }, None));
     }
-    let one_for_many = narrowing == Narrowing::OneForMany;
-    let options = Options { one_for_many, seed: settings.seed, ..Options::default() };
-    let narrowed = narrow::narrow(problem, &options, budget).places;
-    // A register of no qubits is no search: then every bit is searched as given.
-    if narrowed.computed.is_empty() || narrowed.search_len() == 0 || !is_wanted(&narrowed, narrowing) {
-        return Ok((Candidate { places: as_given, ands: None }, None));
+    let mut best: Option<Candidate> = None;
+    for places in narrowings(problem, narrowing, settings, budget) {
+        let candidate = Candidate::new(problem, places, settings, budget);
+        if best.as_ref().is_none_or(|best| candidate.price() < best.price()) {
+            best = Some(candidate);
+        }
     }
+    let Some(narrowed) = best else {
+        return Ok((Candidate { places: as_given, ands: None }, None));
+    };
     let plain = Candidate::new(problem, as_given, settings, budget);
-    let narrowed = Candidate::new(problem, narrowed, settings, budget);
     if narrowed.ands <= plain.ands || narrowed.price() <= plain.price() {
         return Ok((narrowed, Some(plain)));
     }
     Ok((plain, Some(narrowed)))
+}
+
+/// The narrowings to choose from. Where one solution may stand for many, one for one is a narrowing too: the other may leave
+/// nothing to search, and a register of no qubits is no search.
+fn narrowings(problem: &Problem, narrowing: Narrowing, settings: Settings, budget: &Budget) -> Vec<Places> {
+    let kinds: &[bool] = if narrowing == Narrowing::OneForMany { &[true, false] } else { &[false] };
+    let mut found: Vec<Places> = Vec::new();
+    for &one_for_many in kinds {
+        let options = Options { one_for_many, seed: settings.seed, ..Options::default() };
+        let places = narrow::narrow(problem, &options, budget).places;
+        let is_search = !places.computed.is_empty() && places.search_len() > 0;
+        if is_search && is_wanted(&places, narrowing) && !found.contains(&places) {
+            found.push(places);
+        }
+    }
+    found
 }
 
 /// Whether the claim is one that was asked for.

@@ -98,3 +98,19 @@ fn any_lets_a_state_stand_for_several_solutions_and_says_so() {
     assert!(desk.text(&["explain", "r.cnf", "--any"]).contains("computed bit"));
     assert_eq!(desk.exit(&["count", "r.cnf", "--any", "--no-narrowing"]), 2);
 }
+
+/// Where one solution may stand for many, computing everything leaves nothing to search; what each solution determines is
+/// computed then.
+#[test]
+fn any_searches_no_more_than_one_for_one() {
+    let text = "p cnf 4 5\n-3 1 0\n-3 2 0\n3 -1 -2 0\n3 4 0\n1 2 0\n";
+    let desk = desk_with("small.cnf", text);
+    let bits = |arguments: &[&str]| {
+        let (exit, object) = desk.json(arguments);
+        assert_eq!(exit, 0, "{object}");
+        of(&object, "/narrowing/bits_after").as_u64().unwrap()
+    };
+    let one = bits(&["explain", "small.cnf"]);
+    let any = bits(&["explain", "small.cnf", "--any"]);
+    assert!(any > 0 && any <= one && one < 4, "{any} with --any, {one} without");
+}
