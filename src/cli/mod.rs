@@ -89,7 +89,7 @@ enum Command {
     /// The oracle, or with --whole the search circuit
     Compile(Box<compile::Options>),
     /// Judge an OpenQASM circuit against the problem
-    Audit(audit::Options),
+    Audit(Box<audit::Options>),
     /// All problems of a folder against the expected tallies and costs
     Ledger(ledger::Options),
     /// Iterations and success probability, for a problem or for numbers alone

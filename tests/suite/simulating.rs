@@ -206,7 +206,12 @@ fn a_change_of_one_gate_changes_what_comes_out_at_every_level() {
                 .filter(|(other, _)| *other != at)
                 .map(|(_, line)| format!("{line}\n"))
                 .collect();
-            let edited = through_text(&circuit, |_| format!("{}{without}", &text[..body]));
+            tried += 1;
+            let Ok(edited) = read::read(&format!("{}{without}", &text[..body]), "edited", &mut Sources::new()) else {
+                // A bit that is tested and no longer measured.
+                changed += 1;
+                continue;
+            };
             let usual =
                 simulate(&edited, &Options { way: None, draw: 4000, seed: 7, threads: 2 }, &Budget::unlimited());
             let usual = usual.unwrap();
@@ -220,7 +225,6 @@ fn a_change_of_one_gate_changes_what_comes_out_at_every_level() {
             }
             let same = usual.curve.iter().enumerate().all(|(k, p)| (p - published(4, marked, k)).abs() < 1e-9);
             changed += u32::from(!same || usual.curve.len() != 3);
-            tried += 1;
         }
         // Of a measurement that is not corrected, a run may have drawn the outcome that needs no correction.
         let least = if level == Level::Feedback { 8 } else { 9 };
