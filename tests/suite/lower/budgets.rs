@@ -6,6 +6,8 @@ use tallymark::id::Id;
 use tallymark::make::lower::{Favour, Limits, LowerError, Lowered, front_of, lower, lower_within};
 use tallymark::make::network::Network;
 use tallymark::problem::{BitId, BitLit, Problem};
+use tallymark::source::load;
+use tallymark::span::Sources;
 
 use super::super::making::problems::random_problem;
 use super::{MARKS, check, check_level, network_of, options, within};
@@ -73,6 +75,24 @@ fn every_budget_of_a_random_problem_has_a_right_circuit_and_more_never_costs_mor
         }
     }
     assert!(narrowed > 80, "{narrowed}");
+}
+
+/// The same on problems of this repository, each budget in turn.
+#[test]
+fn every_budget_of_a_problem_of_this_repository_has_a_circuit_and_more_never_costs_more() {
+    let folder = concat!(env!("CARGO_MANIFEST_DIR"), "/problems");
+    let mut met = 0;
+    for file in ["buoy-payload.tally", "four-into-three.cnf", "paint-shelf.tally"] {
+        let loaded = load(&format!("{folder}/{file}"), &[], &mut Sources::new()).unwrap();
+        let network = network_of(&loaded.problem);
+        for level in [Level::CliffordT, Level::Feedback] {
+            let circuits = every_budget(&network, level, MARKS[0]);
+            let narrowest = circuits.last().unwrap();
+            check(&loaded.problem, &narrowest.circuit, &format!("{file} {level} at its least"));
+            met += circuits.len();
+        }
+    }
+    assert!(met > 30, "{met}");
 }
 
 #[test]

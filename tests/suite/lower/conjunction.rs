@@ -57,7 +57,6 @@ fn conjunctions_of_a_thousand_clauses_cost_what_a_dynamic_programme_gives() {
     };
     let mut missed = Vec::new();
     let mut compare = |what: &str, ancillas: u64, found: f64, reached: f64| {
-        println!("{what} at {ancillas}: {found} for {reached}");
         if found > reached {
             missed.push(format!("{what} at {ancillas}: {found} for {reached}"));
         }

@@ -7,6 +7,7 @@ use super::cells::{CellId, Cells};
 use super::chunks::Conjunction;
 use super::counter;
 use super::exact;
+use super::fixed;
 use super::line::Line;
 use super::program::{Cost, Move, Pay, backwards, cost};
 use super::table::{Game, Table};
@@ -19,6 +20,8 @@ const COUNTED: usize = 64;
 const DENSE: usize = 128;
 /// With more cells than this has room for, fewer numbers of ancillas are tried.
 const MOVES: usize = 2_000_000;
+/// In larger networks equal chunks are not tried: there are some eighty sizes, each as long a program as the network.
+const MOST_FIXED: usize = 100_000;
 /// At most so many places of a line have a table of their own.
 const LINE_ROOM: usize = 512;
 /// Cells that so many conjuncts share are kept all the time, in one of the trials each.
@@ -61,6 +64,12 @@ pub(in crate::make::lower) fn front(cells: &Cells, pay: Pay, budget: &Budget) ->
                 found.chunks(&Conjunction::new(cells, kept, direct), &rooms, budget)?;
             }
         }
+    }
+    found.offer(Some(keep_all(cells).moves));
+    let sizes = if cells.list.len() <= MOST_FIXED { fixed::sizes(cells.chain.len()) } else { Vec::new() };
+    for size in sizes {
+        found.time(budget)?;
+        found.offer(Some(fixed::two_levels(cells, size, Game::of(pay))));
     }
     Ok(found.finish())
 }

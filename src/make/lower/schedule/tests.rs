@@ -3,9 +3,11 @@
 use super::cells::{Cell, CellId, Cells, Form, Term, cells};
 use super::counter;
 use super::exact;
+use super::fixed;
 use super::front::front;
 use super::line::Line;
 use super::program::{Cost, Move, Pay, backwards, cost};
+use super::table::Game;
 use crate::budget::Budget;
 use crate::circuit::figures::figures;
 use crate::circuit::{Level, Mark};
@@ -217,4 +219,37 @@ fn costs_of_programs_are_those_of_the_gates() {
             assert_eq!(figures.qubits as usize, 27 + point.cost.ancillas);
         }
     }
+}
+
+/// On problems of this repository: keeping everything, two levels of equal chunks, and counting, each at each size.
+#[test]
+fn the_front_is_never_behind_a_fixed_schedule_on_real_problems() {
+    use crate::make::network::{Places, build};
+    let folder = concat!(env!("CARGO_MANIFEST_DIR"), "/problems");
+    let mut compared = 0;
+    for file in ["even-streets.cnf", "ring-colours.cnf", "smaller-number.cnf"] {
+        let loaded = crate::source::load(&format!("{folder}/{file}"), &[], &mut crate::span::Sources::new()).unwrap();
+        let network = build(&loaded.problem, &Places::as_given(&loaded.problem));
+        let mut cells = cells(&network, true);
+        counter::group(&mut cells);
+        for pay in [Pay::Expected, Pay::Worst, Pay::Unitary] {
+            let front = front(&cells, pay, &Budget::unlimited()).unwrap();
+            let mut fixed = vec![super::front::keep_all(&cells).cost];
+            for size in 2..=cells.chain.len() / 2 {
+                fixed.push(cost(&cells, &fixed::two_levels(&cells, size, Game::of(pay))).unwrap());
+            }
+            for size in 0..cells.groups.len() {
+                let counted = (0..=64).filter_map(|room| counter::schedule(&cells, size, room));
+                fixed.extend(counted.map(|moves| cost(&cells, &moves).unwrap()));
+            }
+            for one in &fixed {
+                let as_good = |point: &super::front::Point| {
+                    point.cost.ancillas <= one.ancillas && point.cost.paid(pay) <= one.paid(pay)
+                };
+                assert!(front.iter().any(as_good), "{file} {pay:?}: {one:?}");
+            }
+            compared += fixed.len();
+        }
+    }
+    assert!(compared > 30, "{compared}");
 }
