@@ -86,6 +86,11 @@ impl Sources {
         self.files.push(SourceFile { name: name.into(), text: text.into(), first_line, first_column })
     }
 
+    /// The name of the file that was read first.
+    pub fn first_name(&self) -> Option<&str> {
+        self.files.iter().next().map(|(_, file)| &*file.name)
+    }
+
     /// The file.
     pub fn file(&self, id: FileId) -> &SourceFile {
         &self.files[id]

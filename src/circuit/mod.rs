@@ -248,6 +248,11 @@ pub struct Block {
     pub repeat: u64,
 }
 
+/// The register that controls counted iterations, digit 0 first.
+pub const COUNT: &str = "count";
+/// The measured register of a counting.
+pub const COUNTED: &str = "counted";
+
 /// The `repeat` of a block that is applied as often as the input [`ITERATIONS`] of the file says when it is run.
 pub const GIVEN: u64 = u64::MAX;
 /// The name of that input.

@@ -10,9 +10,9 @@ use std::time::Duration;
 use clap::Args;
 
 use crate::circuit::registers::{self, Roles};
-use crate::circuit::{Circuit, FOUND, Level, Mark, SEARCH};
+use crate::circuit::{COUNTED, Circuit, FOUND, Level, Mark, SEARCH};
 use crate::cli::exit::Exit;
-use crate::cli::render::Failure;
+use crate::cli::render::{Failure, show};
 use crate::cli::{Global, Outcome, compile, input, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::id::Id;
@@ -96,7 +96,7 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         .map_err(|diagnostics| Failure::input(diagnostics, &sources))?;
     let circuit = assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?;
-    let mut places = places(options, path, &loaded, &circuit, &sources)?;
+    let mut places = places(options, path, &mut loaded, &circuit, &sources)?;
     form::check(options, &circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     if options.control.is_some() {
         (loaded.problem, places) = audit::controlled(&loaded.problem, &places);
@@ -110,69 +110,70 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         seed: global.seed,
         ..audit::Options::default()
     };
-    let (outcome, mut text) = if circuit.measured.iter().any(|register| register.name == FOUND) {
-        places.check(&loaded.problem).map_err(|error| stage(error.into()))?;
-        let verdict = audit::audit_search(&loaded.problem, &places, &circuit, 1 << options.effort, &budget)
-            .map_err(|error| stage(error.into()))?;
-        let mut value = json::search_json(&verdict);
-        let mut text = summary::search_verdict(&verdict);
-        if let Some(good) = &good {
-            let compared = against::searches(good, &circuit, &budget).map_err(|error| stage(error.into()))?;
-            against::add_json(&mut value, &compared);
-            text += &against::text(&compared);
-        }
-        object.insert("audit".to_owned(), value);
-        (verdict.outcome, text)
-    } else {
-        let settings = input::settings(global, Level::Toffoli, Mark::Phase);
-        let sample = options.sample.unwrap_or(seeded.sample);
-        let mut judged = audit::Options { threads: settings.threads, sample, ..seeded.clone() };
-        if options.proof.is_some() {
-            (judged.way, judged.exhaustive_bits) = (audit::Way::Gates, 0);
-        }
-        let judge = |judged: &audit::Options| {
-            pipeline::audit(&loaded.problem, &places, &circuit, judged, &budget).map_err(stage)
-        };
-        let mut verdict = judge(&judged)?;
-        if verdict.outcome == Found::Undecided && loaded.problem.bit_count() > judged.exhaustive_bits as usize {
-            // Only a sample was affordable: a better one has the solutions in it.
-            let share = budget.time_left().map_or(MOST_COUNTING, |left| MOST_COUNTING.min(left / 8));
-            let counting = budget.clone().within(share);
-            let counted = pipeline::count(&loaded.problem, &places, settings, &counting).map_err(stage)?;
-            judged.known.clone_from(&counted.marks().solutions);
-            let second = if budget.spent() { verdict.clone() } else { judge(&judged)? };
-            // What ran out of time says less than what came before it.
-            if second.outcome != Found::Undecided || second.inputs >= verdict.inputs {
-                verdict = second;
+    let (outcome, mut text) =
+        if circuit.measured.iter().any(|register| [FOUND, COUNTED].contains(&register.name.as_str())) {
+            places.check(&loaded.problem).map_err(|error| stage(error.into()))?;
+            let verdict = audit::audit_search(&loaded.problem, &places, &circuit, 1 << options.effort, &budget)
+                .map_err(|error| stage(error.into()))?;
+            let mut value = json::search_json(&verdict);
+            let mut text = summary::search_verdict(&verdict);
+            if let Some(good) = &good {
+                let compared = against::searches(good, &circuit, &budget).map_err(|error| stage(error.into()))?;
+                against::add_json(&mut value, &compared);
+                text += &against::text(&compared);
             }
-        }
-        if let Some(folder) = options.proof.as_ref().filter(|_| !places.computed.is_empty()) {
-            let said = pipeline::write_obligations(folder, &loaded.problem, &places, &budget).map_err(stage)?;
-            verdict.notes.push(said);
-        }
-        let mut value = json::audit_json(&loaded.problem, &verdict);
-        value["form"] = form::json(options, &circuit);
-        let of_problem = |witness: &&audit::Witness| form::acts_on(options, &loaded.problem, witness);
-        let reason = verdict
-            .witness
-            .as_ref()
-            .filter(of_problem)
-            .map(|witness| story::reason(&loaded.problem, &sources, witness));
-        let parted = match (&good, &verdict.witness) {
-            (Some(good), Some(witness)) => {
-                let search = places.searched.iter().map(|&bit| witness.bits.get(bit)).collect();
-                parting(good, &circuit, &search, &budget).map_err(|error| stage(error.into()))?
+            object.insert("audit".to_owned(), value);
+            (verdict.outcome, text)
+        } else {
+            let settings = input::settings(global, Level::Toffoli, Mark::Phase);
+            let sample = options.sample.unwrap_or(seeded.sample);
+            let mut judged = audit::Options { threads: settings.threads, sample, ..seeded.clone() };
+            if options.proof.is_some() {
+                (judged.way, judged.exhaustive_bits) = (audit::Way::Gates, 0);
             }
-            _ => None,
+            let judge = |judged: &audit::Options| {
+                pipeline::audit(&loaded.problem, &places, &circuit, judged, &budget).map_err(stage)
+            };
+            let mut verdict = judge(&judged)?;
+            if verdict.outcome == Found::Undecided && loaded.problem.bit_count() > judged.exhaustive_bits as usize {
+                // Only a sample was affordable: a better one has the solutions in it.
+                let share = budget.time_left().map_or(MOST_COUNTING, |left| MOST_COUNTING.min(left / 8));
+                let counting = budget.clone().within(share);
+                let counted = pipeline::count(&loaded.problem, &places, settings, &counting).map_err(stage)?;
+                judged.known.clone_from(&counted.marks().solutions);
+                let second = if budget.spent() { verdict.clone() } else { judge(&judged)? };
+                // What ran out of time says less than what came before it.
+                if second.outcome != Found::Undecided || second.inputs >= verdict.inputs {
+                    verdict = second;
+                }
+            }
+            if let Some(folder) = options.proof.as_ref().filter(|_| !places.computed.is_empty()) {
+                let said = pipeline::write_obligations(folder, &loaded.problem, &places, &budget).map_err(stage)?;
+                verdict.notes.push(said);
+            }
+            let mut value = json::audit_json(&loaded.problem, &verdict);
+            value["form"] = form::json(options, &circuit);
+            let of_problem = |witness: &&audit::Witness| form::acts_on(options, &loaded.problem, witness);
+            let reason = verdict
+                .witness
+                .as_ref()
+                .filter(of_problem)
+                .map(|witness| story::reason(&loaded.problem, &sources, witness));
+            let parted = match (&good, &verdict.witness) {
+                (Some(good), Some(witness)) => {
+                    let search = places.searched.iter().map(|&bit| witness.bits.get(bit)).collect();
+                    parting(good, &circuit, &search, &budget).map_err(|error| stage(error.into()))?
+                }
+                _ => None,
+            };
+            if let (Some(folder), Some(certificate)) = (&options.proof, &verdict.certificate) {
+                pipeline::write_certificate(folder, certificate).map_err(stage)?;
+            }
+            story::add_json(&mut value, reason.as_ref(), parted.as_ref());
+            object.insert("audit".to_owned(), value);
+            let text = summary::verdict(&loaded.problem, &verdict) + &story::text(reason.as_ref(), parted.as_ref());
+            (verdict.outcome, text)
         };
-        if let (Some(folder), Some(certificate)) = (&options.proof, &verdict.certificate) {
-            pipeline::write_certificate(folder, certificate).map_err(stage)?;
-        }
-        story::add_json(&mut value, reason.as_ref(), parted.as_ref());
-        object.insert("audit".to_owned(), value);
-        let text = summary::verdict(&loaded.problem, &verdict) + &story::text(reason.as_ref(), parted.as_ref());
-        (verdict.outcome, text)
-    };
     let mut exit = exit_of(outcome);
     if let (Some(count), Found::Equal) = (options.self_test, outcome) {
         let test = self_test(&loaded.problem, &places, &circuit, count, &seeded, &budget)
@@ -258,7 +259,7 @@ fn listed_places(list: &str, loaded: &Loaded) -> Result<Places, Box<Diagnostic>>
 fn places(
     options: &Options,
     circuit_path: &Path,
-    loaded: &Loaded,
+    loaded: &mut Loaded,
     circuit: &Circuit,
     sources: &Sources,
 ) -> Result<Places, Box<Failure>> {
@@ -271,7 +272,11 @@ fn places(
     let is_own = options.search.is_none();
     let found = options.places.clone().or_else(|| [beside, folder].into_iter().find(|path| is_own && path.exists()));
     if let Some(path) = found {
-        return input::read_places(&path).map_err(|diagnostics| Failure::input(diagnostics, sources));
+        let read = input::read_places(&path, loaded);
+        let (places, warnings) = read.map_err(|diagnostics| Failure::input(diagnostics, sources))?;
+        show(&warnings, sources);
+        loaded.warnings.extend(warnings);
+        return Ok(places);
     }
     let searched = circuit.register(SEARCH).len() - usize::from(options.control.is_some());
     let bits = loaded.problem.bit_count();

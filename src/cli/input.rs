@@ -11,6 +11,7 @@ use crate::make::lower::LowerError;
 use crate::make::start::Choice;
 use crate::pipeline::{self, Narrowing, Settings};
 use crate::places::Places;
+use crate::report;
 use crate::search::price::{PRECISION, StartPrice};
 use crate::source::{self, Loaded};
 use crate::span::Sources;
@@ -159,18 +160,22 @@ pub(super) fn narrowing(global: &Global) -> Narrowing {
 /// The places in this file, which must fit the problem; without a file, bit i is search[i].
 pub(super) fn places(path: Option<&Path>, loaded: &Loaded, sources: &Sources) -> Result<Places, Box<Failure>> {
     let Some(path) = path else { return Ok(Places::as_given(&loaded.problem)) };
-    let places = read_places(path).map_err(|diagnostics| Failure::input(diagnostics, sources))?;
+    let (places, warnings) = read_places(path, loaded).map_err(|diagnostics| Failure::input(diagnostics, sources))?;
+    show(&warnings, sources);
     places.check(&loaded.problem).map_err(|error| Failure::stage(&error.into(), sources))?;
     Ok(places)
 }
 
-/// The places in this file.
-pub(super) fn read_places(path: &Path) -> Result<Places, Vec<Diagnostic>> {
+/// The places in this file, with a warning where they were written for another file; what they say of variables must fit.
+pub(super) fn read_places(path: &Path, loaded: &Loaded) -> Result<(Places, Vec<Diagnostic>), Vec<Diagnostic>> {
     let name = path.display().to_string();
     let text = std::fs::read_to_string(path).map_err(|error| {
         vec![Diagnostic::error(Code("F092"), format!("the places cannot be read: {error}")).in_file(&name)]
     })?;
-    Places::from_json(&text).map_err(|error| {
+    let places = Places::from_json(&text).map_err(|error| {
         vec![Diagnostic::error(Code("P002"), error.to_string()).in_file(&name).expected("a places file of tallymark")]
-    })
+    })?;
+    let warning = report::places::other_file(&text, loaded).map(|warning| warning.in_file(&name));
+    report::places::check(&text, loaded, &places).map_err(|diagnostic| vec![(*diagnostic).in_file(&name)])?;
+    Ok((places, warning.into_iter().collect()))
 }

@@ -42,7 +42,12 @@ impl Failure {
             _ if error.is_unfinished() => Exit::Unfinished,
             _ => Exit::Input,
         };
-        Box::new(Self { diagnostics: vec![error.diagnostic()], sources: sources.clone(), exit })
+        let mut diagnostic = error.diagnostic();
+        if diagnostic.file.is_none() && diagnostic.labels.is_empty() {
+            // What a stage says is about the problem, which was read first.
+            diagnostic.file = sources.first_name().map(str::to_owned);
+        }
+        Box::new(Self { diagnostics: vec![diagnostic], sources: sources.clone(), exit })
     }
 
     /// Prints the messages: text to standard error, or one JSON object to standard output.

@@ -5,7 +5,7 @@ use std::path::Path;
 
 use comfy_table::{CellAlignment, Table, presets};
 
-use crate::circuit::{Bounds, Level, Product};
+use crate::circuit::{Bounds, GIVEN, Level, Product};
 use crate::diag::plural;
 use crate::judge::audit::{How, Outcome, Phases, SearchVerdict, Verdict};
 use crate::judge::count::Counted;
@@ -191,9 +191,13 @@ pub fn search_verdict(verdict: &SearchVerdict) -> String {
     let outcome = match verdict.outcome {
         Outcome::Equal => "equal",
         Outcome::Differs => "DIFFERS",
-        Outcome::Undecided => "no difference found",
+        Outcome::Undecided => "undecided",
     };
-    let share = format!("{} of {} iterations simulated", verdict.iterations_checked, verdict.iterations);
+    let iterations = match verdict.iterations {
+        GIVEN => "as many as given".to_owned(),
+        iterations => iterations.to_string(),
+    };
+    let share = format!("{} of {iterations} iterations simulated", verdict.iterations_checked);
     let mut text = line("search", format!("{outcome} ({share}, success {:.9})", verdict.success));
     for note in &verdict.notes {
         text += &line("", note);

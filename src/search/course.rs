@@ -22,16 +22,11 @@ use std::f64::consts::PI;
 use num_bigint::BigUint;
 use num_traits::ToPrimitive;
 
-use crate::circuit::{Circuit, Control, FOUND, GIVEN, Level, MARK, Op, Part, QubitId, SEARCH, WORK};
+use crate::circuit::{COUNT, COUNTED, Circuit, Control, FOUND, GIVEN, Level, MARK, Op, Part, QubitId, SEARCH, WORK};
 use crate::make::lower::{Form, about_work, append_preparation, append_reflection_about};
 use crate::places::Start;
 use crate::search::plan::Details;
 use crate::search::whole::append_oracle;
-
-/// The register that controls counted iterations, digit 0 first.
-pub const COUNT: &str = "count";
-/// The measured register of a counting.
-pub const COUNTED: &str = "counted";
 
 /// The most digits that are counted: beyond, the loop of the last one is never run.
 const MOST_DIGITS: u64 = 60;

@@ -1,4 +1,5 @@
 mod aims;
+mod audited_courses;
 mod auditing;
 mod certificate;
 mod command;
@@ -10,6 +11,7 @@ mod courses;
 mod dimacs;
 mod engine;
 mod faults;
+mod forms_judged;
 mod identities;
 mod inputs;
 mod judging;

@@ -26,9 +26,13 @@ pub(super) fn no_circuit(file: &str) -> Diagnostic {
         .expected("a problem and a circuit, or a circuit file (.qasm) alone")
 }
 
-/// Reads a circuit file.
+/// Turns of a loop that the input of the file ends: two say what its body does to two different states.
+const GIVEN_TURNS: u64 = 2;
+
+/// Reads a circuit file; where its number of iterations is an input, there are two.
 pub(super) fn read(path: &Path, sources: &mut Sources) -> Result<Circuit, Box<Failure>> {
-    pipeline::read_circuit(path, sources).map_err(|diagnostics| Failure::input(diagnostics, sources))
+    pipeline::read_circuit_given(path, Some(GIVEN_TURNS), sources)
+        .map_err(|diagnostics| Failure::input(diagnostics, sources))
 }
 
 /// What a circuit marks; or whether it is the same as a good one.

@@ -66,7 +66,7 @@ pub struct Options {
     /// Whether a proof is tried where not every input can be.
     pub proof: bool,
     /// Larger ones are tried as well where the circuit is read symbolically and this many row operations are enough: an
-    /// operation takes one distinct node of circuit or problem through 1024 inputs, and a core does some 2^28 a second.
+    /// operation takes one distinct node of circuit or problem through 2048 inputs, and a core does some 2^27 a second.
     pub exhaustive_work: u64,
     /// How circuits are judged whose gates keep basis states.
     pub way: Way,
@@ -96,7 +96,7 @@ impl Default for Options {
             sample: 1 << 14,
             exhaustive_bits: 26,
             proof: true,
-            exhaustive_work: 1 << 32,
+            exhaustive_work: 1 << 31,
             way: Way::Best,
         }
     }

@@ -1,5 +1,5 @@
 //! The strings that a start state holds, as the judge reads them: by counting ones and comparing numbers, string by string
-//! or 1024 at a time. What a start state does not hold is no input of the oracle; but it must hold every solution.
+//! or 2048 at a time. What a start state does not hold is no input of the oracle; but it must hold every solution.
 
 use crate::budget::Budget;
 use crate::id::Id;

@@ -1,11 +1,11 @@
-//! Rows: one value of a Boolean for each of 1024 inputs at once.
+//! Rows: one value of a Boolean for each of 2048 inputs at once.
 //!
 //! Input `j` of a block of inputs is lane `j`: bit `j % 64` of word `j / 64`. In block `b` it is the number
-//! `1024 b + j`, so the low ten bits of the number have the same rows in every block, and every other bit is all zeros or
+//! `2048 b + j`, so the low eleven bits of the number have the same rows in every block, and every other bit is all zeros or
 //! all ones.
 
 /// Defines a function over rows that is compiled twice, for the target's default features and for AVX2; the second one
-/// is chosen when the program runs on a processor that has it. The body is plain Rust over sixteen words.
+/// is chosen when the program runs on a processor that has it. The body is plain Rust over words.
 macro_rules! wide_fn {
     ($(#[$doc:meta])* $vis:vis fn $name:ident($($arg:ident: $ty:ty),* $(,)?) -> $ret:ty $body:block) => {
         $(#[$doc])*
@@ -33,11 +33,14 @@ pub(crate) use wide_fn;
 use crate::columns::column;
 
 /// Words in a row.
-pub(crate) const WORDS: usize = 16;
+pub(crate) const WORDS: usize = 32;
 /// The low bits of an input that its lane gives.
-pub(crate) const LANE_BITS: usize = 10;
+pub(crate) const LANE_BITS: usize = 11;
 /// Lanes in a row.
 pub(crate) const LANES: u64 = 1 << LANE_BITS;
+
+/// Words that are loaded, worked on and stored together: 256 bits.
+const VECTOR: usize = 4;
 
 /// A row of lanes.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -133,19 +136,41 @@ impl std::ops::Not for Row {
     }
 }
 
+/// Makes row `to` out of what it was and of the rows `from`, which are others, vector by vector. Each vector is stored as
+/// soon as it is made: so eight of them are independent, and no row is copied only because two rows might be the same.
+#[inline(always)]
+pub(crate) fn update<const N: usize>(rows: &mut [Row], to: usize, from: [usize; N], f: impl Fn(u64, [u64; N]) -> u64) {
+    let mut is_within = to < rows.len();
+    from.iter().for_each(|&row| is_within &= row < rows.len());
+    assert!(is_within, "rows of the run");
+    // Plain loops: what goes through closures of the library is not always inlined into the AVX2 variant.
+    for vector in 0..WORDS / VECTOR {
+        let start = vector * VECTOR;
+        let mut made = [0; VECTOR];
+        for (word, made) in made.iter_mut().enumerate() {
+            let mut operands = [0; N];
+            for (operand, &row) in operands.iter_mut().zip(&from) {
+                *operand = rows[row].0[start + word];
+            }
+            *made = f(rows[to].0[start + word], operands);
+        }
+        rows[to].0[start..start + VECTOR].copy_from_slice(&made);
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
 
     #[test]
     fn a_bit_row_holds_that_bit_of_each_input() {
-        for (block, at) in [(0, 0), (3, 5), (3, 6), (3, 9), (2, 10), (2, 11), (5, 12)] {
+        for (block, at) in [(0, 0), (3, 5), (3, 6), (3, 10), (2, 11), (2, 12), (5, 13)] {
             let row = Row::of_bit(at, block);
             for lane in 0..LANES {
                 assert_eq!(row.lane(lane as usize), (block * LANES + lane) >> at & 1 == 1, "bit {at} of lane {lane}");
             }
         }
         assert_eq!(Row::first_lanes(70).lanes().collect::<Vec<_>>(), (0..70).collect::<Vec<_>>());
-        assert_eq!((Row::first_lanes(1024), Row::first_lanes(0)), (Row::ONES, Row::ZEROS));
+        assert_eq!((Row::first_lanes(LANES), Row::first_lanes(0)), (Row::ONES, Row::ZEROS));
     }
 }

@@ -1,4 +1,4 @@
-//! Rows: the problem evaluated on 1024 inputs at a time, by the judge's own reading.
+//! Rows: the problem evaluated on 2048 inputs at a time, by the judge's own reading.
 //!
 //! [`count`] tries every bit string and counts the solutions; [`truth`] gives the whole truth table. The audit takes
 //! rows block by block. All of it is one thing: a tape of row operations, swept over the blocks of inputs in order, in
@@ -9,6 +9,7 @@ pub(crate) mod in_order;
 pub(crate) mod lanes;
 pub(crate) mod sweep;
 pub(crate) mod tape;
+pub(crate) mod wide;
 
 use std::ops::Range;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -26,7 +27,7 @@ use tape::Tape;
 pub const MAX_BITS: usize = 62;
 /// Blocks are handed to the threads in at most this many runs, each beginning at a multiple of its size.
 const RUNS: u64 = 256;
-/// Evaluated blocks between two looks at the budget: some milliseconds of work for large problems.
+/// Evaluated blocks between two looks at the budget: some ten milliseconds of work for large problems.
 const BLOCKS_A_LOOK: u64 = 1 << 12;
 
 /// What a sweep over all bit strings found.

@@ -1,15 +1,14 @@
 //! Running a tape over blocks of inputs.
 
-use crate::judge::rows::lanes::{LANE_BITS, Row, WORDS, wide_fn};
-use crate::judge::rows::tape::{Operand, Step, Tape};
+use crate::judge::rows::lanes::{LANE_BITS, Row, update, wide_fn};
+use crate::judge::rows::tape::{Bit, Kind, Step, Tape};
 
 /// A run of a tape: the rows as they are after the last block.
 #[derive(Clone, Debug)]
 pub(crate) struct Sweep<'a> {
     tape: &'a Tape,
+    /// The rows of the tape; the first are the lanes left after each level and all slower ones, by level.
     rows: Vec<Row>,
-    /// The lanes left after each level and all slower ones, by level; the entry after the last is all ones.
-    left: Vec<Row>,
     /// The block that the rows are for.
     block: Option<u64>,
     /// Blocks known to hold no solution: all those that share the slow bits of the last one.
@@ -20,10 +19,9 @@ impl<'a> Sweep<'a> {
     /// A run that has not begun.
     pub(crate) fn new(tape: &'a Tape) -> Self {
         let mut rows = vec![Row::ZEROS; tape.slots()];
-        for (at, row) in rows.iter_mut().enumerate().take(tape.places()) {
-            *row = Row::of_bit(at, 0);
-        }
-        Self { tape, rows, left: vec![Row::ONES; tape.top() + 2], block: None, dead: 0..0 }
+        rows[tape.top() + 1] = Row::ONES;
+        tape.bits().iter().for_each(|bit| rows[bit.row as usize] = row_of(bit, 0));
+        Self { tape, rows, block: None, dead: 0..0 }
     }
 
     /// The solutions among the inputs of a block; `None` where there is none. Cheap for blocks in increasing order.
@@ -38,7 +36,7 @@ impl<'a> Sweep<'a> {
             let highest = self.enter(block);
             self.run(block, highest);
         }
-        if self.dead.contains(&block) { None } else { Some(&self.left[0]) }
+        if self.dead.contains(&block) { None } else { Some(&self.rows[0]) }
     }
 
     /// The block after the last one that is known to hold no solution, given that `block` holds none.
@@ -53,11 +51,11 @@ impl<'a> Sweep<'a> {
             None => top,
             Some(before) => (63 - (before ^ block).leading_zeros() as usize).min(top),
         };
-        for bit in 0..=highest.min(top.saturating_sub(1)) {
-            if LANE_BITS + bit < self.tape.places() {
-                self.rows[LANE_BITS + bit] = Row::of_bit(LANE_BITS + bit, block);
-            }
-        }
+        // In the order of their places, so those of the lanes, which never change, come first.
+        let bits = self.tape.bits();
+        let slow = &bits[bits.partition_point(|bit| bit.place < LANE_BITS)..];
+        let changed = slow.partition_point(|bit| bit.place <= LANE_BITS + highest);
+        slow[..changed].iter().for_each(|bit| self.rows[bit.row as usize] = row_of(bit, block));
         self.block = Some(block);
         highest
     }
@@ -65,9 +63,7 @@ impl<'a> Sweep<'a> {
     fn run(&mut self, block: u64, highest: usize) {
         self.dead = 0..0;
         for level in (0..=highest).rev() {
-            let mut left = self.left[level + 1];
-            let some_left = run_level(self.tape.level(level), self.tape.pool(), &mut self.rows, &mut left);
-            self.left[level] = left;
+            let some_left = run_level(self.tape.level(level), &mut self.rows);
             if !some_left {
                 let start = block >> level << level;
                 // The top level depends on no bit of the block, so nothing holds anywhere.
@@ -79,64 +75,23 @@ impl<'a> Sweep<'a> {
     }
 }
 
+/// The row of a bit, or of its negation, in a block.
+fn row_of(bit: &Bit, block: u64) -> Row {
+    let row = Row::of_bit(bit.place, block);
+    if bit.negated { !row } else { row }
+}
+
 wide_fn! {
     /// Runs the steps of one level; false as soon as no lane is left.
-    fn run_level(steps: &[Step], pool: &[Operand], rows: &mut [Row], left: &mut Row) -> bool {
-        for &step in steps {
-            match step {
-                Step::And { to, a, b } => {
-                    let mut result = Row::ZEROS;
-                    let ((a, flip_a), (b, flip_b)) = (operand(rows, a), operand(rows, b));
-                    for word in 0..WORDS {
-                        result.0[word] = (a.0[word] ^ flip_a) & (b.0[word] ^ flip_b);
-                    }
-                    rows[to as usize] = result;
-                }
-                Step::Odd { to, a, b } => {
-                    let mut result = Row::ZEROS;
-                    let ((a, flip_a), (b, flip_b)) = (operand(rows, a), operand(rows, b));
-                    for word in 0..WORDS {
-                        result.0[word] = a.0[word] ^ b.0[word] ^ (flip_a ^ flip_b);
-                    }
-                    rows[to as usize] = result;
-                }
-                Step::All { to, start, end } => {
-                    let mut result = Row::ONES;
-                    for &signal in &pool[start as usize..end as usize] {
-                        let (row, flip) = operand(rows, signal);
-                        for word in 0..WORDS {
-                            result.0[word] &= row.0[word] ^ flip;
-                        }
-                    }
-                    rows[to as usize] = result;
-                }
-                Step::Most { to, start } => {
-                    let mut result = Row::ZEROS;
-                    let [(a, flip_a), (b, flip_b), (c, flip_c)] =
-                        [0, 1, 2].map(|at| operand(rows, pool[start as usize + at]));
-                    for word in 0..WORDS {
-                        let (a, b, c) = (a.0[word] ^ flip_a, b.0[word] ^ flip_b, c.0[word] ^ flip_c);
-                        result.0[word] = (a & b) | (c & (a | b));
-                    }
-                    rows[to as usize] = result;
-                }
-                Step::Require { start, end } => {
-                    let mut some = Row::ZEROS;
-                    for &signal in &pool[start as usize..end as usize] {
-                        let (row, flip) = operand(rows, signal);
-                        for word in 0..WORDS {
-                            some.0[word] |= row.0[word] ^ flip;
-                        }
-                    }
-                    for word in 0..WORDS {
-                        left.0[word] &= some.0[word];
-                    }
-                }
-                Step::Look => {
-                    if left.is_zero() {
-                        return false;
-                    }
-                }
+    fn run_level(steps: &[Step], rows: &mut [Row]) -> bool {
+        for step in steps {
+            match (step.kind, step.len) {
+                (Kind::Look, _) if rows[step.to as usize].is_zero() => return false,
+                (Kind::Look, _) => {}
+                (Kind::SetMost, _) => apply(rows, step, |_, [a, b, c]| (a & b) | (c & (a | b))),
+                (_, 1) => of_kind::<1>(rows, step),
+                (_, 2) => of_kind::<2>(rows, step),
+                (_, _) => of_kind::<3>(rows, step),
             }
         }
         true
@@ -144,6 +99,43 @@ wide_fn! {
 }
 
 #[inline(always)]
-fn operand(rows: &[Row], operand: Operand) -> (&Row, u64) {
-    (&rows[(operand >> 1) as usize], 0u64.wrapping_sub(u64::from(operand & 1)))
+fn of_kind<const N: usize>(rows: &mut [Row], step: &Step) {
+    match step.kind {
+        Kind::Set => apply::<N>(rows, step, |_, operands| all(operands)),
+        Kind::SetNot => apply::<N>(rows, step, |_, operands| !all(operands)),
+        Kind::Keep => apply::<N>(rows, step, |row, operands| row & all(operands)),
+        Kind::Clear => apply::<N>(rows, step, |row, operands| row & !all(operands)),
+        Kind::Flip => apply::<N>(rows, step, |row, operands| row ^ all(operands)),
+        Kind::SetOdd => apply::<N>(rows, step, |_, operands| odd(operands)),
+        Kind::FlipOdd => apply::<N>(rows, step, |row, operands| row ^ odd(operands)),
+        Kind::SetMost | Kind::Look => unreachable!("handled by the caller"),
+    }
+}
+
+#[inline(always)]
+fn all<const N: usize>(operands: [u64; N]) -> u64 {
+    let mut all = u64::MAX;
+    for operand in operands {
+        all &= operand;
+    }
+    all
+}
+
+#[inline(always)]
+fn odd<const N: usize>(operands: [u64; N]) -> u64 {
+    let mut odd = 0;
+    for operand in operands {
+        odd ^= operand;
+    }
+    odd
+}
+
+/// Makes a row out of what it was and of operands.
+#[inline(always)]
+fn apply<const N: usize>(rows: &mut [Row], step: &Step, f: impl Fn(u64, [u64; N]) -> u64) {
+    let mut from = [0; N];
+    for (row, &operand) in from.iter_mut().zip(&step.from) {
+        *row = operand as usize;
+    }
+    update(rows, step.to as usize, from, f);
 }

@@ -110,7 +110,11 @@ impl LowerError {
             }
             Self::OutOfTime => ("C004", "give more time with --time"),
         };
-        Diagnostic::error(Code(code), self.to_string()).help(help)
+        let expected = match self {
+            Self::OutOfTime => "more time",
+            _ => "a problem of which some bit strings are solutions and some are not",
+        };
+        Diagnostic::error(Code(code), self.to_string()).expected(expected).help(help)
     }
 
     /// Whether a budget was too small, rather than there being no circuit at all.

@@ -1,7 +1,8 @@
-// An angle that exact amplitudes do not hold.
+// An angle without exact amplitudes is judged in floating point.
 //! bits 1
 //! clause 1
-//! expect error A022
+//! expect differs
+//! got off by
 OPENQASM 3.0;
 include "stdgates.inc";
 qubit[1] search;

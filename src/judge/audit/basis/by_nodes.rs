@@ -39,7 +39,7 @@ impl Compared {
         }
     }
 
-    /// How many row operations a sweep over all inputs takes at most, one row being 1024 inputs.
+    /// How many row operations a sweep over all inputs takes at most, one row being 2048 inputs.
     pub(crate) fn work(&self) -> u64 {
         self.circuit.work().saturating_add(self.problem.work())
     }

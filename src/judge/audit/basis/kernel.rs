@@ -1,4 +1,4 @@
-//! Running a circuit on 1024 basis states at a time, gate by gate.
+//! Running a circuit on 2048 basis states at a time, gate by gate.
 //!
 //! Input: a circuit whose gates keep basis states. Output: a [`Program`], and a [`Machine`] that runs it. Every qubit is
 //! a row of lanes, one lane a basis state; the phase is three more rows, a number modulo 8 in each lane.
@@ -8,13 +8,13 @@
 //! more controls stand between runs of such pairs. Nothing else is simplified: every gate of the circuit is run. A
 //! Z is such a gate onto the phase, S and T are two and three of them. Repeated blocks are written out.
 //!
-//! The loop is compiled for the default target and for AVX2. A row is four vectors of 256 bits: four independent chains
+//! The loop is compiled for the default target and for AVX2. A row is eight vectors of 256 bits: eight independent chains
 //! hide the latency of a row that the gate before has just written.
 
 use crate::circuit::{Circuit, Gate, Op, QubitId};
 use crate::id::Id;
 use crate::judge::audit::oracle::{Trace, eighths};
-use crate::judge::rows::lanes::{Row, WORDS, wide_fn};
+use crate::judge::rows::lanes::{Row, WORDS, update, wide_fn};
 
 /// A row or its complement: `row << 1 | negated`.
 type Operand = u32;
@@ -308,12 +308,8 @@ fn mask(operand: Operand) -> u64 {
 fn run_pairs(pairs: &[Pair], rows: &mut [Row]) {
     for &Pair { a, b, to } in pairs {
         let (mask_a, mask_b) = (mask(a), mask(b));
-        let (a, b) = (&rows[(a >> 1) as usize], &rows[(b >> 1) as usize]);
-        let mut result = rows[to as usize];
-        for word in 0..WORDS {
-            result.0[word] ^= (a.0[word] ^ mask_a) & (b.0[word] ^ mask_b);
-        }
-        rows[to as usize] = result;
+        let from = [(a >> 1) as usize, (b >> 1) as usize];
+        update(rows, to as usize, from, |row, [a, b]| row ^ (a ^ mask_a) & (b ^ mask_b));
     }
 }
 

@@ -8,7 +8,7 @@
 //! caller: widely for finding equal nodes, not at all for evaluating each node once. For finding equal nodes, what must hold
 //! in any case is also taken out of the alternatives of others: `u` and `u -> r` become `u` and `r`.
 
-use rustc_hash::FxHashSet;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 use crate::id::Id;
 use crate::judge::reading::graph::{Graph, Node, Signal};
@@ -19,7 +19,9 @@ use crate::problem::Problem;
 const SHARED_WIDTH: usize = 16;
 /// The most rounds of taking conjuncts out of others.
 const MAX_ROUNDS: usize = 64;
-/// The most terms of an exclusive or that is taken into another one.
+/// The most pairs of alternatives that are compared: a second at most.
+const MAX_COMPARISONS: u64 = 1 << 24;
+/// The most terms of an exclusive or with several users that is taken into another one.
 const MAX_TERMS: usize = 64;
 
 /// What a function is the conjunction of, with every node evaluated once.
@@ -91,7 +93,29 @@ fn settled(graph: &mut Graph, mut conjuncts: Vec<Signal>) -> Vec<Signal> {
             break;
         }
     }
-    conjuncts
+    unsubsumed(graph, conjuncts)
+}
+
+/// Leaves out the alternatives that others imply: those with all the factors of another one.
+fn unsubsumed(graph: &Graph, conjuncts: Vec<Signal>) -> Vec<Signal> {
+    let factors = |signal: Signal| if signal.is_negated() { graph.factors(signal.node()) } else { &[] };
+    // Each alternative stands at its first factor; one that it implies has this factor too.
+    let mut at_first: FxHashMap<Signal, Vec<&[Signal]>> = FxHashMap::default();
+    for &conjunct in &conjuncts {
+        if let [first, ..] = factors(conjunct) {
+            at_first.entry(*first).or_default().push(factors(conjunct));
+        }
+    }
+    let mut comparisons = 0;
+    let mut is_implied = |conjunct: Signal| {
+        let own = factors(conjunct);
+        own.iter().filter_map(|factor| at_first.get(factor)).flatten().any(|other| {
+            comparisons += 1;
+            let is_part = || other.iter().all(|factor| own.binary_search(factor).is_ok());
+            comparisons < MAX_COMPARISONS && other.len() < own.len() && is_part()
+        })
+    };
+    conjuncts.iter().copied().filter(|&conjunct| !is_implied(conjunct)).collect()
 }
 
 /// In order, each once; "never" alone where it is one of them, or where one negates another.
@@ -110,22 +134,34 @@ struct Normal<'a> {
     needed: Vec<bool>,
     /// How many needed nodes use each node.
     users: Vec<u32>,
+    /// Exclusive ors that only another one uses: their terms are that one's, however many there are.
+    absorbed: Vec<bool>,
     shared_width: usize,
 }
 
 impl<'a> Normal<'a> {
     fn new(from: &'a Graph, roots: impl IntoIterator<Item = Signal>, shared_width: usize) -> Self {
-        let needed = from.needed(roots);
+        let roots: Vec<Signal> = roots.into_iter().collect();
+        let needed = from.needed(roots.iter().copied());
         let mut users = vec![0; needed.len()];
         for node in (0..needed.len()).filter(|&node| needed[node]) {
             from.operands(node).iter().for_each(|operand| users[operand.node()] += 1);
         }
-        Self { from, needed, users, shared_width }
+        let mut absorbed = vec![false; needed.len()];
+        let is_odd = |node: usize| matches!(from.nodes()[node], Node::Odd { .. });
+        for node in (0..needed.len()).filter(|&node| needed[node] && is_odd(node)) {
+            let operands = from.operands(node).iter().map(|operand| operand.node());
+            operands
+                .filter(|&operand| is_odd(operand) && users[operand] == 1)
+                .for_each(|operand| absorbed[operand] = true);
+        }
+        roots.iter().for_each(|root| absorbed[root.node()] = false);
+        Self { from, needed, users, absorbed, shared_width }
     }
 
     fn conjuncts(&self, roots: &[Signal], into: &mut Graph) -> Vec<Signal> {
         let mut images = vec![Signal::NO; self.needed.len()];
-        for node in (0..self.needed.len()).filter(|&node| self.needed[node]) {
+        for node in (0..self.needed.len()).filter(|&node| self.needed[node] && !self.absorbed[node]) {
             images[node] = self.rebuild(node, &images, into);
         }
         let mut conjuncts = Vec::new();
@@ -143,9 +179,17 @@ impl<'a> Normal<'a> {
             Node::Bit(bit) => into.bit(bit as usize),
             Node::Most { .. } => into.most(image(&operands[0]), image(&operands[1]), image(&operands[2])),
             Node::Odd { .. } => {
-                let mut terms = Vec::new();
-                operands.iter().for_each(|operand| push_terms(into, image(operand), &mut terms));
-                odd_of(terms, into)
+                let (mut terms, mut flip) = (Vec::new(), false);
+                let mut open = operands.to_vec();
+                while let Some(operand) = open.pop() {
+                    if self.absorbed[operand.node()] {
+                        flip ^= operand.is_negated();
+                        open.extend_from_slice(self.from.operands(operand.node()));
+                    } else {
+                        push_terms(into, image(&operand), &mut terms);
+                    }
+                }
+                odd_of(terms, into) ^ flip
             }
             Node::All { .. } => {
                 let mut factors = Vec::with_capacity(operands.len());
@@ -233,6 +277,33 @@ mod tests {
         assert_eq!(meeting.function(&graph, one), meeting.function(&graph, other));
         let never = graph.all([a, implies_b, !b]);
         assert_eq!(meeting.function(&graph, never), [Signal::NO]);
+    }
+
+    #[test]
+    fn implied_alternatives_are_left_out() {
+        let mut graph = Graph::over(4);
+        let [a, b, c, d] = [0, 1, 2, 3].map(|bit| graph.bit(bit));
+        let (short, long, other) = (graph.any([a, !b]), graph.any([a, !b, c]), graph.any([a, b, d]));
+        let one = graph.all([short, long, other]);
+        let two = graph.all([short, other]);
+        let mut meeting = Meeting::over(4);
+        let found = meeting.function(&graph, one);
+        assert_eq!(found.len(), 2);
+        assert_eq!(found, meeting.function(&graph, two));
+        assert_ne!(found, meeting.function(&graph, long));
+    }
+
+    #[test]
+    fn long_exclusive_ors_meet_in_any_order() {
+        let bits = 3 * MAX_TERMS;
+        let mut graph = Graph::over(bits);
+        let all: Vec<Signal> = (0..bits).map(|bit| graph.bit(bit)).collect();
+        let up = all.iter().fold(Signal::NO, |sum, &bit| graph.odd(sum, bit));
+        let down = all.iter().rev().fold(Signal::YES, |sum, &bit| graph.odd(sum, bit));
+        let mut meeting = Meeting::over(bits);
+        assert_ne!(up, !down);
+        assert_eq!(meeting.function(&graph, up), meeting.function(&graph, !down));
+        assert_ne!(meeting.function(&graph, up), meeting.function(&graph, down));
     }
 
     #[test]

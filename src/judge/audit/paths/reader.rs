@@ -152,19 +152,17 @@ impl<'a> Reader<'a> {
         match gate.op() {
             Op::X => self.flip(gate, condition),
             Op::H if is_plain => self.mix(target),
+            Op::H => self.mix_if(gate, condition),
             Op::Ry => {
                 let quarters = multiples(angle, std::f64::consts::FRAC_PI_2).ok_or(Open::Gate(at))?;
-                if quarters % 2 == 1 && !is_plain {
-                    return Err(Open::Gate(at));
-                }
                 // A half turn is X Z, a quarter turn H Z.
                 for _ in 0..quarters / 2 {
                     self.turn(gate, condition.clone(), true, 4);
                     self.flip(gate, condition.clone());
                 }
                 if quarters % 2 == 1 {
-                    self.turn(gate, None, true, 4);
-                    self.mix(target);
+                    self.turn(gate, condition.clone(), true, 4);
+                    if is_plain { self.mix(target) } else { self.mix_if(gate, condition) }
                 }
             }
             Op::P => self.rotate(gate, condition, true, angle),
@@ -180,7 +178,7 @@ impl<'a> Reader<'a> {
                 self.measure(target).ok_or(Open::Outcome(at))?;
                 self.set(target, Form::default());
             }
-            Op::H | Op::Measure | Op::Reset => return Err(Open::Gate(at)),
+            Op::Measure | Op::Reset => return Err(Open::Gate(at)),
             op => self.turn(gate, condition, true, eighths(op).expect("a diagonal gate")),
         }
         Ok(())
@@ -236,6 +234,24 @@ impl<'a> Reader<'a> {
         self.work += both.terms.len() as u64;
         self.phase.add(&self.space, &both, 4);
         self.set(target, Form::term(path));
+    }
+
+    /// A Hadamard gate where controls and condition hold: H = V X V* with V = S H T, so only the X depends on them.
+    fn mix_if(&mut self, gate: &Gate, condition: Option<Form>) {
+        let target = gate.target().index();
+        self.turn_alone(target, 6);
+        self.mix(target);
+        self.turn_alone(target, 7);
+        self.flip(gate, condition);
+        self.turn_alone(target, 1);
+        self.mix(target);
+        self.turn_alone(target, 2);
+    }
+
+    /// A phase of a multiple of pi/4 where a qubit is 1.
+    fn turn_alone(&mut self, target: usize, eighths: u8) {
+        let value = self.values[target].clone();
+        self.phase.add(&self.space, &value, eighths);
     }
 
     /// The outcome of a measurement, `None` where it is not one free bit or a function of what is known.

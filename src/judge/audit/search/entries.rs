@@ -3,7 +3,7 @@
 //! There is one entry for each value of the search register (entry v stands for the basis state in which `search` is
 //! v, as long as no gate changes that), a real amplitude for each entry, and for every qubit a row of bits, one for each
 //! entry. Gates that permute basis states work on rows, 64 entries a word; gates that change signs work on a row of
-//! signs. A Hadamard gate on a qubit needs the entries in pairs that differ in that qubit and in nothing else; then it
+//! signs. A Hadamard gate or a rotation `ry` on a qubit needs the entries in pairs that differ in that qubit and in nothing else; then it
 //! mixes the two amplitudes. Where that does not hold, or for a gate with complex phases, this way ends
 //! ([`Lost`]) and the caller takes the general one.
 
@@ -83,7 +83,13 @@ impl Rows {
         match gate.op() {
             Op::X => self.flip(controls, gate.target()),
             Op::Z => self.sign(controls, gate.target()),
-            Op::H if controls.is_empty() => self.mix(gate.target())?,
+            Op::H if controls.is_empty() => {
+                self.mix(gate.target(), |a, b| ((a + b) * FRAC_1_SQRT_2, (a - b) * FRAC_1_SQRT_2))?;
+            }
+            Op::Ry if controls.is_empty() => {
+                let (sin, cos) = (circuit.angle(gate).expect("a gate with an angle") / 2.0).sin_cos();
+                self.mix(gate.target(), |a, b| (cos * a - sin * b, sin * a + cos * b))?;
+            }
             Op::Reset => self.reset(gate.target())?,
             _ => return Err(Lost),
         }
@@ -147,8 +153,8 @@ impl Rows {
         self.patterns[qubit]
     }
 
-    /// A Hadamard gate: the entries must be pairs that differ in the target only.
-    fn mix(&mut self, target: QubitId) -> Result<(), Lost> {
+    /// A gate that mixes the two values of a qubit: the entries must be pairs that differ in the target only.
+    fn mix(&mut self, target: QubitId, mixed: impl Fn(f64, f64) -> (f64, f64)) -> Result<(), Lost> {
         let Pattern::Input { index, negated } = self.look(target.index()) else { return Err(Lost) };
         for qubit in 0..self.patterns.len() {
             let agrees = match self.look(qubit) {
@@ -166,7 +172,7 @@ impl Rows {
             let (low, high) = block.split_at_mut(stride);
             let (zero, one) = if negated { (high, low) } else { (low, high) };
             for (a, b) in zero.iter_mut().zip(one) {
-                (*a, *b) = ((*a + *b) * FRAC_1_SQRT_2, (*a - *b) * FRAC_1_SQRT_2);
+                (*a, *b) = mixed(*a, *b);
             }
         }
         self.updates += self.amplitudes.len() as u64;

@@ -1,11 +1,15 @@
 //! Follows a whole search gate by gate from |0...0>, in the form that fits: [`Rows`] while it holds, and a sparse
 //! state in floating point from the first gate that it does not hold.
 
+use std::f64::consts::FRAC_PI_4;
+
 use super::entries::{Residue, Rows};
+use super::{MOST_TOLERANCE, ROUNDING, TOLERANCE};
 use crate::circuit::{Circuit, Gate, Op, QubitId};
 use crate::id::Id;
-use crate::judge::audit::state::amplitude::{Amplitude, Complex};
+use crate::judge::audit::state::amplitude::{Amplitude, Complex, multiples};
 use crate::judge::audit::state::{State, Stop};
+use crate::problem::Bits;
 use crate::random::SplitMix64;
 
 /// At most so many basis states in the general form.
@@ -13,7 +17,7 @@ pub(super) const MOST_ENTRIES: usize = 1 << 20;
 /// Amplitudes below this are taken for nothing where a register must be clean.
 const NOTHING: f64 = 1e-12;
 /// What measurement outcomes inside a search are drawn from.
-pub(super) const SEED: u64 = 1;
+const SEED: u64 = 1;
 
 /// The machine.
 pub(super) struct Machine<'c> {
@@ -23,8 +27,10 @@ pub(super) struct Machine<'c> {
     outcomes: Vec<bool>,
     random: SplitMix64,
     /// Measurements of which both outcomes could have come.
-    pub(super) drawn: u64,
+    drawn: u64,
     updates: u64,
+    /// Rotations by other angles than multiples of pi/4.
+    rotations: u64,
 }
 
 enum Form {
@@ -43,7 +49,57 @@ impl<'c> Machine<'c> {
             random: SplitMix64::new(SEED),
             drawn: 0,
             updates: 0,
+            rotations: 0,
         }
+    }
+
+    /// The same in the general form from the start.
+    pub(super) fn sparse(circuit: &'c Circuit, search: &[QubitId]) -> Self {
+        let zeros = (Bits::zeros(circuit.qubit_count()), Complex { re: 1.0, im: 0.0 });
+        let state = State::superposition(circuit.qubit_count(), &[zeros], MOST_ENTRIES);
+        Self {
+            circuit,
+            search: search.to_vec(),
+            form: Form::Sparse(state),
+            outcomes: vec![false; circuit.measured_count()],
+            random: SplitMix64::new(SEED),
+            drawn: 0,
+            updates: 0,
+            rotations: 0,
+        }
+    }
+
+    /// The state, in the general form.
+    pub(super) fn state(&self) -> Option<&State<Complex>> {
+        match &self.form {
+            Form::Rows(_) => None,
+            Form::Sparse(state) => Some(state),
+        }
+    }
+
+    /// How far an amplitude may be off: each rotation so far may have added to it.
+    pub(super) fn tolerance(&self) -> f64 {
+        (TOLERANCE + ROUNDING * self.rotations as f64).min(MOST_TOLERANCE)
+    }
+
+    /// What the verdict rests on.
+    pub(super) fn notes(&self) -> Vec<String> {
+        let drawn = (self.drawn > 0).then(|| {
+            let drawn = self.drawn;
+            format!(
+                "{drawn} measurement outcomes inside the search were drawn from seed {SEED}; others are not covered"
+            )
+        });
+        let tolerance = match self.rotations {
+            0 => format!("amplitudes agree within {TOLERANCE:e}"),
+            rotations => {
+                let tolerance = self.tolerance();
+                format!(
+                    "amplitudes agree within {tolerance:.1e}, the bound for {rotations} rotations of seven decimals"
+                )
+            }
+        };
+        drawn.into_iter().chain([tolerance]).collect()
     }
 
     /// Work so far: amplitudes, or words of 64 bits, that were computed.
@@ -53,6 +109,7 @@ impl<'c> Machine<'c> {
 
     /// Applies a gate.
     pub(super) fn apply(&mut self, gate: &Gate) -> Result<(), Stop> {
+        self.rotations += u64::from(is_rotation(self.circuit, gate));
         if let Form::Rows(rows) = &mut self.form {
             let before = rows.updates;
             if rows.apply(self.circuit, gate).is_ok() {
@@ -115,6 +172,21 @@ impl<'c> Machine<'c> {
             }
         }
     }
+}
+
+/// Whether a gate turns by another angle than a multiple of pi/4.
+fn is_rotation(circuit: &Circuit, gate: &Gate) -> bool {
+    circuit.angle(gate).is_some_and(|angle| multiples(angle, FRAC_PI_4).is_none())
+}
+
+/// Whether a circuit turns phases by other angles than multiples of pi/4.
+pub(super) fn has_phases(circuit: &Circuit) -> bool {
+    circuit.gates().iter().any(|gate| gate.op() != Op::Ry && is_rotation(circuit, gate))
+}
+
+/// Whether a circuit turns phases by angles.
+pub(super) fn has_angles(circuit: &Circuit) -> bool {
+    circuit.gates().iter().any(|gate| matches!(gate.op(), Op::P | Op::Rz))
 }
 
 /// Draws an outcome with its probability, and projects.

@@ -6,37 +6,50 @@
 //! (`profile`) up to one global phase, with every other qubit clean; and it must end by measuring
 //! `search[i]` into `found[i]`.
 //!
+//! A search with phases of its own (`phases`) and an estimation (`counting`) are judged by what they must be instead.
+//!
 //! One turn of a loop must be one iteration. What stands outside of loops may hold iterations too (a loop of one turn
 //! is written without a loop): their number is the least that explains the state.
-//!
-//! Where iterations turn by angles of their own, only the end of the search is judged (`tuned`).
 //!
 //! A loop with many turns need not be followed to its end. States between iterations lie in a plane (spanned by the
 //! uniform superpositions of the solutions and of the rest); two followed turns say what the body does to two
 //! independent vectors of it, so if the body is unitary, it does the same in every further turn.
 
+mod counting;
 mod entries;
 mod machine;
+mod phases;
+mod plane;
 mod profile;
-mod tuned;
+mod readout;
+mod schedule;
 
 use self::entries::Rows;
-use self::machine::{MOST_ENTRIES, Machine, SEED};
+use self::machine::{MOST_ENTRIES, Machine};
 use self::profile::{Fit, Profile};
+use self::readout::Readout;
 use super::state::Stop;
 use super::state::amplitude::Complex;
 use super::superposition::run::in_words;
 use super::{AuditError, Outcome};
 use crate::budget::Budget;
-use crate::circuit::{Circuit, FOUND, Gate, Op, QubitId, SEARCH};
-use crate::id::Id;
+use crate::circuit::{COUNTED, Circuit, GIVEN, Gate, QubitId, SEARCH};
 use crate::judge::restate::restate;
 use crate::judge::rows;
 use crate::places::Places;
 use crate::problem::Problem;
 
-/// The largest distance of an amplitude from what it must be.
+/// The largest distance of an amplitude from what it must be, where no rotation was followed.
 pub const TOLERANCE: f64 = 1e-9;
+/// How far each rotation that is followed may be off: half a unit of the seventh decimal of an angle, so that angles may be
+/// written with seven decimals. These errors add up, at most to [`MOST_TOLERANCE`].
+pub const ROUNDING: f64 = 5e-8;
+/// The largest tolerance, however many rotations are followed.
+pub const MOST_TOLERANCE: f64 = 1e-4;
+/// Gates between two looks at the budget.
+const GATES_A_LOOK: usize = 16;
+/// Turns that are followed of a loop that the input of the file ends.
+const GIVEN_TURNS: u64 = 2;
 /// At most so many bytes for a state, unless the budget says otherwise.
 const MEMORY: u64 = 1 << 30;
 /// The largest search register that is followed.
@@ -52,7 +65,7 @@ pub struct SearchVerdict {
     /// Iterations in the file.
     pub iterations: u64,
     /// Iterations with the highest success at the first peak, for as many solutions as the problem has; `None` where
-    /// the search is too large to count them, and where its iterations turn by angles of their own. A file with another number is a search for the problem all the same:
+    /// the search is too large to count them. A file with another number is a search for the problem all the same:
     /// the notes say so.
     pub planned: Option<u64>,
     /// Iterations that were followed gate by gate.
@@ -97,6 +110,12 @@ pub fn audit_search_against(
         return Ok(verdict);
     }
     let profile = Profile::new(truth, search.len(), &places.start);
+    if circuit.measured.iter().any(|register| register.name == COUNTED) {
+        return Ok(counting::audit_counting(circuit, &search, &profile, work_limit, budget));
+    }
+    if machine::has_phases(circuit) {
+        return Ok(phases::audit_phases(circuit, &search, &profile, work_limit, budget));
+    }
     let machine = Machine::new(circuit, &search);
     let mut follower = Follower {
         circuit,
@@ -107,21 +126,27 @@ pub fn audit_search_against(
         budget,
         verdict: open(),
         phase: Complex { re: 1.0, im: 0.0 },
-        is_tuned: tuned::is_tuned(circuit),
         unfollowed: false,
-        since_check: 0,
     };
     match follower.follow() {
         Ok(()) => {}
-        Err(end) => follower.end(&end),
+        Err(end) => end.tell(&mut follower.verdict),
+    }
+    if follower.verdict.outcome == Outcome::Differs && machine::has_angles(circuit) {
+        // No plain search; perhaps one whose phases are multiples of pi/4.
+        let verdict = phases::audit_phases(circuit, &follower.search, &follower.profile, work_limit, budget);
+        if verdict.outcome == Outcome::Equal {
+            return Ok(verdict);
+        }
     }
     let mut verdict = follower.verdict;
-    if follower.is_tuned {
-        return Ok(verdict);
-    }
     let planned = follower.profile.planned();
     verdict.planned = Some(planned);
-    if verdict.outcome == Outcome::Equal && verdict.iterations != planned {
+    if verdict.iterations == GIVEN {
+        verdict
+            .notes
+            .push("how many iterations are run is the input of the file; each turn of the loop is one".to_owned());
+    } else if verdict.outcome == Outcome::Equal && verdict.iterations != planned {
         let (iterations, marked) = (verdict.iterations, follower.profile.marked());
         let success = follower.profile.success(planned);
         let note =
@@ -171,6 +196,17 @@ enum End {
     Undecided(String),
 }
 
+impl End {
+    fn tell(self, verdict: &mut SearchVerdict) {
+        let (outcome, text) = match self {
+            Self::Differs(text) => (Outcome::Differs, text),
+            Self::Undecided(text) => (Outcome::Undecided, text),
+        };
+        verdict.outcome = outcome;
+        verdict.notes.push(text);
+    }
+}
+
 struct Follower<'c> {
     circuit: &'c Circuit,
     search: Vec<QubitId>,
@@ -181,20 +217,14 @@ struct Follower<'c> {
     verdict: SearchVerdict,
     /// The global phase at the last comparison.
     phase: Complex,
-    /// Whether iterations turn by angles of their own.
-    is_tuned: bool,
     /// Whether turns of a loop were not followed.
     unfollowed: bool,
-    since_check: u32,
 }
 
 impl<'c> Follower<'c> {
     fn follow(&mut self) -> Result<(), End> {
         let circuit = self.circuit;
-        let tail = self.check_measurement()?;
-        if self.is_tuned {
-            return self.follow_tuned(tail);
-        }
+        let tail = Readout::found(circuit, &self.search)?;
         for (at, block) in circuit.blocks().iter().enumerate() {
             let end = (block.gates.end as usize).min(tail);
             let gates = circuit.gates().get(block.gates.start as usize..end).unwrap_or(&[]);
@@ -210,56 +240,8 @@ impl<'c> Follower<'c> {
             }
         }
         self.verdict.outcome = Outcome::Equal;
-        if self.machine.drawn > 0 {
-            let note = format!(
-                "{} measurement outcomes inside the search were drawn from seed {SEED}; others are not covered",
-                self.machine.drawn
-            );
-            self.verdict.notes.push(note);
-        }
-        self.verdict.notes.push(format!("amplitudes agree within {TOLERANCE:e}"));
+        self.verdict.notes.extend(self.machine.notes());
         Ok(())
-    }
-
-    /// The place where the final measurement begins; it must take `search[i]` to `found[i]`.
-    fn check_measurement(&self) -> Result<usize, End> {
-        let gates = self.circuit.gates();
-        let is_last = |gate: &&Gate| gate.op() == Op::Measure && gate.condition().is_none();
-        let in_loop = self.circuit.blocks().last().filter(|block| block.repeat != 1);
-        let count = gates.iter().rev().take_while(is_last).count();
-        let start = match in_loop {
-            Some(_) => gates.len(),
-            None => gates.len() - count.min(self.last_block_len()),
-        };
-        let found = self.circuit.measured.iter().find(|register| register.name == FOUND);
-        let found = found.ok_or_else(|| End::Differs(format!("there is no register `{FOUND}` for the result")))?;
-        if found.len as usize != self.search.len() {
-            let text = format!("`{FOUND}` has {} bits, `{SEARCH}` has {}", found.len, self.search.len());
-            return Err(End::Differs(text));
-        }
-        // The first measurement that has to be a final one: those of work qubits before it belong to the search.
-        let mut from = vec![None; self.search.len()];
-        for gate in &gates[start..] {
-            let bit = gate.measured().expect("only measurements").index();
-            if let Some(at) = bit.checked_sub(found.start as usize).filter(|&at| at < from.len()) {
-                from[at] = Some(gate.target());
-            }
-        }
-        for (at, (&measured, &qubit)) in from.iter().zip(&self.search).enumerate() {
-            if measured != Some(qubit) {
-                let got =
-                    measured.map_or("never".to_owned(), |other| format!("from {}", self.circuit.qubit_name(other)));
-                let wanted = self.circuit.qubit_name(qubit);
-                return Err(End::Differs(format!(
-                    "{FOUND}[{at}] is to be measured from {wanted} at the end, and is measured {got}"
-                )));
-            }
-        }
-        Ok(start)
-    }
-
-    fn last_block_len(&self) -> usize {
-        self.circuit.blocks().last().map_or(0, |block| block.gates.len())
     }
 
     /// Gates outside of loops: the least number of iterations that explains the state after them.
@@ -277,7 +259,7 @@ impl<'c> Follower<'c> {
             }
             let fit = self.profile.fit(turns, &sums, at);
             nearest = nearest.min(fit.deviation);
-            if fit.deviation <= TOLERANCE {
+            if fit.deviation <= self.machine.tolerance() {
                 self.take(turns, &fit);
                 return Ok(());
             }
@@ -312,7 +294,7 @@ impl<'c> Follower<'c> {
             let sums = self.profile.sums(at);
             self.verdict.success = sums.success;
             let fit = self.profile.fit(first + turn, &sums, at);
-            if fit.deviation > TOLERANCE {
+            if fit.deviation > self.machine.tolerance() {
                 self.verdict.deviation = self.verdict.deviation.max(fit.deviation);
                 return Err(End::Differs(format!(
                     "the state after turn {turn} of the loop is not that after {} iterations",
@@ -322,11 +304,14 @@ impl<'c> Follower<'c> {
             let back = Complex { re: self.phase.re, im: -self.phase.im };
             steps.push(fit.phase.times(back));
             self.take(first + turn, &fit);
-            if turn < turns && self.machine.updates() + cost > self.work_limit {
-                self.verdict.iterations = first.saturating_add(turns);
+            let is_given = turns == GIVEN && turn == GIVEN_TURNS;
+            if turn < turns && (is_given || self.machine.updates() + cost > self.work_limit) {
+                self.verdict.iterations = first.saturating_add(turns); // GIVEN stays what it is
                 self.unfollowed = true;
-                let same = |a: &Complex, b: &Complex| (a.re - b.re).abs() + (a.im - b.im).abs() < 1e3 * TOLERANCE;
+                let tolerance = self.machine.tolerance();
+                let same = |a: &Complex, b: &Complex| (a.re - b.re).abs() + (a.im - b.im).abs() < 1e3 * tolerance;
                 if is_unitary && steps.len() >= needed && steps.iter().all(|step| same(step, &steps[0])) {
+                    let turns = if turns == GIVEN { "all".to_owned() } else { turns.to_string() };
                     let note = format!(
                         "{turn} of {turns} turns of the loop were followed; the others follow, since its body is unitary and does the same to two independent states"
                     );
@@ -342,25 +327,8 @@ impl<'c> Follower<'c> {
     }
 
     fn run(&mut self, gates: &[Gate]) -> Result<(), End> {
-        for gate in gates {
-            self.since_check += 1;
-            if self.since_check.is_multiple_of(16) {
-                self.budget.report("audit of the search", self.verdict.iterations_checked, None);
-                if self.budget.spent() {
-                    return Err(End::Undecided("the budget ran out".to_owned()));
-                }
-            }
-            self.machine.apply(gate).map_err(|stop| {
-                let gate = in_words(self.circuit, gate);
-                End::Undecided(match stop {
-                    Stop::Entries => {
-                        format!("at `{gate}` more than {MOST_ENTRIES} basis states would have to be followed")
-                    }
-                    Stop::Gate | Stop::Overflow => format!("`{gate}` is not followed"),
-                })
-            })?;
-        }
-        Ok(())
+        let follow = |(at, gate)| follow_gate(self.circuit, &mut self.machine, self.budget, at, gate);
+        gates.iter().enumerate().try_for_each(follow)
     }
 
     fn amplitudes(&mut self) -> Result<Vec<Complex>, End> {
@@ -370,13 +338,21 @@ impl<'c> Follower<'c> {
             End::Differs(format!("{name} is 1 between iterations where `{SEARCH}` is {}", residue.value))
         })
     }
+}
 
-    fn end(&mut self, end: &End) {
-        let (outcome, text) = match end {
-            End::Differs(text) => (Outcome::Differs, text),
-            End::Undecided(text) => (Outcome::Undecided, text),
-        };
-        self.verdict.outcome = outcome;
-        self.verdict.notes.push(text.clone());
+/// Applies a gate; `at` is its place, after some of which the budget is looked at.
+fn follow_gate(circuit: &Circuit, machine: &mut Machine, budget: &Budget, at: usize, gate: &Gate) -> Result<(), End> {
+    if at.is_multiple_of(GATES_A_LOOK) {
+        budget.report("audit of the search", machine.updates(), None);
+        if budget.spent() {
+            return Err(End::Undecided("the budget ran out".to_owned()));
+        }
     }
+    machine.apply(gate).map_err(|stop| {
+        let gate = in_words(circuit, gate);
+        End::Undecided(match stop {
+            Stop::Entries => format!("at `{gate}` more than {MOST_ENTRIES} basis states would have to be followed"),
+            Stop::Gate | Stop::Overflow => format!("`{gate}` is not followed"),
+        })
+    })
 }

@@ -55,7 +55,7 @@ impl<'t> Profile<'t> {
     }
 
     /// Whether the start state holds a string.
-    fn is_held(&self, value: usize) -> bool {
+    pub(super) fn is_held(&self, value: usize) -> bool {
         self.start.allows(|qubit| value >> qubit & 1 == 1)
     }
 
@@ -64,7 +64,7 @@ impl<'t> Profile<'t> {
     }
 
     /// The amplitudes of a marked string and of another one after `turns` iterations.
-    fn amplitudes(&self, turns: u64) -> (f64, f64) {
+    pub(super) fn amplitudes(&self, turns: u64) -> (f64, f64) {
         let (sin, cos) = ((2.0 * turns as f64 + 1.0) * self.theta).sin_cos();
         let others = self.all - self.marked;
         let per = |value: f64, number: f64| if number > 0.0 { value / number.sqrt() } else { 0.0 };
@@ -79,6 +79,11 @@ impl<'t> Profile<'t> {
     /// How many strings are marked.
     pub(super) fn marked(&self) -> u64 {
         self.marked as u64
+    }
+
+    /// How many strings of the start state are not.
+    pub(super) fn others(&self) -> u64 {
+        (self.all - self.marked) as u64
     }
 
     /// The least number of iterations with the highest success at the first peak: of the two whole numbers around
@@ -131,22 +136,6 @@ impl<'t> Profile<'t> {
             deviation = deviation.max(apart.norm());
         }
         Fit { deviation: deviation.sqrt(), phase }
-    }
-
-    /// How far a state with these sums is from one in which all marked strings are alike and all other start strings are.
-    pub(super) fn unlikeness(&self, sums: &Sums, amplitude: impl Fn(usize) -> Complex) -> f64 {
-        let mean = |sum: Complex, number: f64| sum.scaled(if number > 0.0 { 1.0 / number } else { 0.0 });
-        let (marked, other) = (mean(sums.marked, self.marked), mean(sums.other, self.all - self.marked));
-        let apart = |value: usize| {
-            let wanted = match (self.is_held(value), self.is_marked(value)) {
-                (false, _) => Complex { re: 0.0, im: 0.0 },
-                (true, true) => marked,
-                (true, false) => other,
-            };
-            let a = amplitude(value);
-            Complex { re: a.re - wanted.re, im: a.im - wanted.im }.norm()
-        };
-        (0..self.strings).map(apart).fold(0.0, f64::max).sqrt()
     }
 
     /// Whether the sums alone rule out `turns` iterations, whatever the phase: a cheap test before [`Profile::fit`].

@@ -179,6 +179,19 @@ impl Complex {
         Self { re: self.re * other.re - self.im * other.im, im: self.re * other.im + self.im * other.re }
     }
 
+    pub(in crate::judge::audit) fn plus(self, other: Self) -> Self {
+        Self { re: self.re + other.re, im: self.im + other.im }
+    }
+
+    pub(in crate::judge::audit) fn minus(self, other: Self) -> Self {
+        Self { re: self.re - other.re, im: self.im - other.im }
+    }
+
+    /// The angle, above -pi and at most pi.
+    pub(in crate::judge::audit) fn angle(self) -> f64 {
+        self.im.atan2(self.re)
+    }
+
     pub(in crate::judge::audit) fn scaled(self, factor: f64) -> Self {
         Self { re: self.re * factor, im: self.im * factor }
     }

@@ -4,7 +4,8 @@
 //! inputs (of `search`, and of `mark` in a bit oracle) in which every input carries a label that no gate touches: the
 //! operator acts on one half of a maximally entangled state. The result determines the whole operator, not only what
 //! it does to basis states one by one: relative phases between inputs, and anything about the input that stays behind
-//! in an ancilla or went out through a measurement. Amplitudes are exact (`state::amplitude`).
+//! in an ancilla or went out through a measurement. Amplitudes are exact (`state::amplitude`), or where an angle is no
+//! multiple of pi/4 in floating point with a stated tolerance (`floating`).
 //!
 //! A measurement, and a `reset` that is not of |0>, draws its outcome and projects. After each of them every input must
 //! have kept the same weight, else the outcome says something about the input. At the end each input must have one
@@ -14,10 +15,11 @@
 //! A circuit without free outcomes is covered by one run, and one with a few by all strings of outcomes; otherwise
 //! the verdict holds for the strings drawn, and its notes say which.
 
+mod floating;
 mod inputs;
 pub(in crate::judge::audit) mod run;
 
-use std::f64::consts::FRAC_PI_4;
+use std::f64::consts::{FRAC_PI_4, PI};
 
 use self::inputs::{Input, Inputs};
 use self::run::{Draw, End, Run};
@@ -54,8 +56,7 @@ pub fn audit_superposition(
     let most = (labels >> u32::from(has_mark)).clamp(16, 1 << ALL_BITS) as usize;
     let all_bits = ALL_BITS.min(options.exhaustive_bits as usize).min(most.ilog2() as usize);
     let inputs = Inputs::choose(problem, places, has_mark, options, all_bits, most);
-    let eighths = eighths_of(options)?;
-    Audit { places, circuit, options, budget, roles, inputs, eighths }.judge()
+    Audit { places, circuit, options, budget, roles, inputs, eighths: eighths_of(options) }.judge()
 }
 
 /// Judges a circuit on one input, and others beside it.
@@ -69,15 +70,12 @@ pub(super) fn audit_near(
 ) -> Result<Verdict, AuditError> {
     let roles = oracle::roles(problem, places, circuit)?;
     let inputs = Inputs::near(problem, roles.mark.is_some(), input, options.seed);
-    let eighths = eighths_of(options)?;
-    Audit { places, circuit, options, budget, roles, inputs, eighths }.judge()
+    Audit { places, circuit, options, budget, roles, inputs, eighths: eighths_of(options) }.judge()
 }
 
-/// The phase of what is marked, in multiples of pi/4.
-fn eighths_of(options: &Options) -> Result<u8, AuditError> {
-    let Some(angle) = options.angle else { return Ok(4) };
-    let gate = || format!("a phase of {angle} on what is marked, which is no multiple of pi/4");
-    multiples(angle, FRAC_PI_4).ok_or_else(|| AuditError::Gate { gate: gate() })
+/// The phase of what is marked, in multiples of pi/4, where it is one.
+fn eighths_of(options: &Options) -> Option<u8> {
+    options.angle.map_or(Some(4), |angle| multiples(angle, FRAC_PI_4))
 }
 
 struct Audit<'p> {
@@ -87,8 +85,8 @@ struct Audit<'p> {
     budget: &'p Budget,
     roles: Roles,
     inputs: Inputs,
-    /// The phase of what is marked, in multiples of pi/4.
-    eighths: u8,
+    /// The phase of what is marked, in multiples of pi/4, where it is one.
+    eighths: Option<u8>,
 }
 
 /// The constant by which all amplitudes agree with the oracle.
@@ -106,10 +104,22 @@ enum Finding {
 }
 
 impl Audit<'_> {
+    /// Judges exactly where that goes, else in floating point.
     fn judge(&self) -> Result<Verdict, AuditError> {
         let qubits = self.circuit.qubit_count();
         let starts: Vec<_> =
             self.inputs.list.iter().map(|input| input.start(self.places, &self.roles, qubits)).collect();
+        let exact = self.eighths.map(|eighths| self.judge_exactly(&starts, eighths));
+        match exact {
+            Some(Ok(verdict)) => Ok(verdict),
+            Some(Err(AuditError::Gate { .. } | AuditError::TooLarge { .. })) | None => {
+                floating::judge(self, &starts, self.options.angle.unwrap_or(PI))
+            }
+            Some(Err(error)) => Err(error),
+        }
+    }
+
+    fn judge_exactly(&self, starts: &[Bits], eighths: u8) -> Result<Verdict, AuditError> {
         let mut constants = Vec::new();
         // The number of free outcomes of the first run; whether every run had as many.
         let (mut free, mut even) = (0, true);
@@ -117,7 +127,7 @@ impl Audit<'_> {
         let mut at = 0;
         while at < strings {
             let draw = self.draw(at, free);
-            let mut run = Run::new(self.circuit, &starts, draw, self.options, self.budget);
+            let mut run = Run::new(self.circuit, starts, draw, self.options, self.budget);
             let end = run.follow()?;
             match end {
                 End::Reached => {}
@@ -136,7 +146,7 @@ impl Audit<'_> {
                 strings = if free < 64 && 1 << free <= STRINGS { 1 << free } else { STRINGS };
             }
             even &= run.free() == free;
-            match self.compare(&run) {
+            match self.compare(&run, eighths) {
                 Finding::Agrees(constant) => constants.push(constant),
                 differs @ Finding::Differs { .. } => return Ok(self.differs(&differs)),
             }
@@ -158,7 +168,7 @@ impl Audit<'_> {
     }
 
     /// Compares the state at the end of a run with what it must be.
-    fn compare(&self, run: &Run<'_>) -> Finding {
+    fn compare(&self, run: &Run<'_>, eighths: u8) -> Finding {
         let mut factors: Vec<Exact> = Vec::with_capacity(self.inputs.list.len());
         for (at, input) in self.inputs.list.iter().enumerate() {
             let mut entries = run.state().entries(at);
@@ -171,7 +181,7 @@ impl Audit<'_> {
                 return Finding::Differs { input: at, expected, got, clean };
             }
             let is_turned = input.holds && self.roles.mark.is_none();
-            factors.push(entry.amplitude.turned(if is_turned { 8 - self.eighths } else { 0 }));
+            factors.push(entry.amplitude.turned(if is_turned { 8 - eighths } else { 0 }));
         }
         let constant = majority(&factors);
         let kind = match constant {
@@ -186,7 +196,7 @@ impl Audit<'_> {
         });
         match wrong {
             None => Finding::Agrees(kind),
-            Some(input) => self.wrong_phase(input, factors[input], wanted),
+            Some(input) => self.wrong_phase(input, factors[input], wanted, eighths),
         }
     }
 
@@ -218,14 +228,14 @@ impl Audit<'_> {
         })
     }
 
-    fn wrong_phase(&self, input: usize, factor: Exact, wanted: Option<Exact>) -> Finding {
+    fn wrong_phase(&self, input: usize, factor: Exact, wanted: Option<Exact>, eighths: u8) -> Finding {
         let holds = self.inputs.list[input].holds && self.roles.mark.is_none();
         let said = |eighths: u8| match eighths {
             0 => "phase +1".to_owned(),
             4 => "phase -1".to_owned(),
             eighths => format!("phase e^({eighths} i pi/4)"),
         };
-        let owed = if holds { self.eighths } else { 0 };
+        let owed = if holds { eighths } else { 0 };
         let expected = said(owed);
         let against = if wanted.is_some() { ", against most other inputs" } else { "" };
         // The phase of the factor against the constant, where it is a multiple of pi/4.

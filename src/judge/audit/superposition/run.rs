@@ -28,7 +28,7 @@ impl Draw {
         Self::Drawn(SplitMix64::new(seed))
     }
 
-    fn next(&mut self, at: usize) -> bool {
+    pub(super) fn next(&mut self, at: usize) -> bool {
         match self {
             Self::Zeros => false,
             Self::Ones => true,

@@ -1,4 +1,4 @@
-//! The sweep of the inputs: where clauses define most variables from a few others, only those few are tried, 1024 rows
+//! The sweep of the inputs: where clauses define most variables from a few others, only those few are tried, 2048 rows
 //! at a time, and the rest is computed.
 //!
 //! Input:  a prepared formula in which every shown variable counts, and a limit of work. Output: the count, or nothing
@@ -36,7 +36,7 @@ pub(super) fn count(formula: &Prepared, work: u64, threads: usize, budget: &Budg
     Some(BigUint::from(swept.count) << formula.free)
 }
 
-/// A row operation is done for 2^10 inputs at once, and at least one operation a block is needed.
+/// A row operation is done for 2^11 inputs at once, and at least one operation a block is needed.
 const SPARE_BITS: usize = rows::lanes::LANE_BITS;
 
 #[cfg(test)]
