@@ -89,12 +89,15 @@ fn a_witness_is_told_in_the_terms_of_the_problem() {
     assert_eq!((&witness["expected"], &witness["got"]), (&"not marked".into(), &"marked".into()));
     let because = &witness["because"];
     assert_eq!((&because["holds"], &because["constraint"]["line"]), (&false.into(), &5.into()), "{object:#}");
-    assert_eq!(because["constraint"]["text"], "must a != b");
+    assert_eq!(because["constraint"]["text"], "must (a or b) and not (a and b)");
     let parting = &witness["parting"];
     assert_eq!(parting["gate"]["text"], "cz search[0], search[1]", "{object:#}");
     assert!(parting["qubit"].is_null() && parting["input"] == "0011");
     let text = desk.text(&["audit", "p.tally", "spoilt.qasm", "--against", "toffoli.qasm"]);
-    assert!(text.contains("constraint 0, line 5: must a != b fails") && text.contains("parts"), "{text}");
+    assert!(
+        text.contains("constraint 0, line 5: must (a or b) and not (a and b) fails") && text.contains("parts"),
+        "{text}"
+    );
     // A work qubit that is not erased is named, at the gate that is missing.
     without_last(&desk, "toffoli.qasm", "spoilt.qasm", "ccx");
     let (exit, object) = desk.json(&["audit", "p.tally", "spoilt.qasm", "--against", "toffoli.qasm"]);

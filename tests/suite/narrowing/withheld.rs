@@ -25,7 +25,7 @@ fn compiled(problem: &Problem, narrowing: Narrowing, qubits: Option<u64>) -> Str
 }
 
 fn assert_same(problem: &Problem, name: &str) {
-    for narrowing in [Narrowing::OneForOne, Narrowing::OneForMany, Narrowing::Off] {
+    for narrowing in [Narrowing::OneForOne, Narrowing::OneForMany] {
         // Limits of qubits take long where there are many gates.
         let limit = Some(problem.bit_count() as u64 + 6).filter(|&qubits| qubits < 20);
         for qubits in [None, limit] {
