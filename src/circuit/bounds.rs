@@ -70,9 +70,9 @@ pub fn degree(mut table: Vec<u64>, bits: usize) -> u64 {
     monomials.map(|x| u64::from(x.count_ones())).max().unwrap_or(0)
 }
 
-/// The least degree that goes with so many marked strings of so many bits; 0 where none is marked.
+/// The least degree that goes with so many marked strings of so many bits; 0 where none or every one is marked.
 pub fn degree_from_marked(bits: u64, marked: &BigUint) -> u64 {
-    marked.trailing_zeros().map_or(0, |twos| bits.div_ceil(twos + 1))
+    marked.trailing_zeros().filter(|&twos| twos < bits).map_or(0, |twos| bits.div_ceil(twos + 1))
 }
 
 #[cfg(test)]

@@ -19,7 +19,7 @@ use crate::id::Id;
 use crate::judge::audit::compare::parting;
 use crate::judge::audit::faults::self_test;
 use crate::judge::audit::{self, Outcome as Found};
-use crate::pipeline;
+use crate::pipeline::{self, Iterations};
 use crate::places::Places;
 use crate::problem::BitId;
 use crate::report::{self, json, story, summary};
@@ -92,8 +92,11 @@ pub(super) struct Options {
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let Some(path) = &options.circuit else { return alone::run(global, options) };
     let (mut loaded, mut sources) = input::load(global, &options.file)?;
-    let circuit = pipeline::read_circuit_given(path, options.iterations, &mut sources)
-        .map_err(|diagnostics| Failure::input(diagnostics, &sources))?;
+    let circuit = match options.iterations {
+        Some(number) => pipeline::read_circuit_with(path, Iterations::Given(number), &mut sources)
+            .map_err(|diagnostics| Failure::input(diagnostics, &sources))?,
+        None => alone::read(path, &mut sources)?,
+    };
     let circuit = assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?;
     let mut places = places(options, path, &mut loaded, &circuit, &sources)?;

@@ -29,30 +29,30 @@ pub(super) struct Options {
     /// How the oracle marks: phase or bit
     #[arg(long, default_value = "phase", value_parser = input::mark)]
     mark: Mark,
-    #[command(flatten)]
-    limits: limits::Options,
-    /// List all circuits found of which none is better than another; with -o a picture of them in SVG
-    #[arg(long, conflicts_with_all = ["whole", "qubits", "t_count", "depth"])]
-    front: bool,
     /// The whole search: prepare, iterate, measure
     #[arg(long)]
     whole: bool,
     /// The start state: strings (all of them), domains (of each variable its own values), groups (besides, exactly so many
-    /// of some), or cheapest (of these, by the T gates of the whole search)
-    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start)]
-    start: input::Wanted,
-    #[command(flatten)]
-    search: course::Options,
-    #[command(flatten)]
-    turns: turns::Options,
-    #[command(flatten)]
-    texts: texts::Options,
+    /// of some), or cheapest (of these, by the T gates of the whole search) [default: cheapest with --whole; strings for an oracle alone, and with --any]
+    #[arg(long, value_name = "NAME", value_parser = input::start)]
+    start: Option<input::Wanted>,
+    /// List all circuits found of which none is better than another; with -o a picture of them in SVG
+    #[arg(long, conflicts_with_all = ["whole", "qubits", "t_count", "depth"])]
+    front: bool,
     /// Compare the network before every pass with the one after it, by running inputs and by refutation
     #[arg(long)]
     check_passes: bool,
     /// Where the circuit goes; - is standard output. The places file is written beside it [default: -]
     #[arg(short, long, value_name = "FILE")]
     output: Option<String>,
+    #[command(flatten)]
+    limits: limits::Options,
+    #[command(flatten)]
+    turns: turns::Options,
+    #[command(flatten)]
+    texts: texts::Options,
+    #[command(flatten)]
+    search: course::Options,
 }
 
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
@@ -65,7 +65,9 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
     let stage = |error| Failure::stage(&error, &sources);
-    let places = input::places_from(global, &loaded, options.start, settings, &budget).map_err(stage)?;
+    let places =
+        input::places_from(global, &loaded, input::wanted(global, options.start, options.whole), settings, &budget)
+            .map_err(stage)?;
     if options.front {
         let front = pipeline::front(&loaded.problem, &places, settings, &budget).map_err(stage)?;
         drop(line);

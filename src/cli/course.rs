@@ -18,6 +18,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 #[group(skip)]
+#[command(next_help_heading = "The search, with --whole")]
 pub(super) struct Options {
     /// With --whole: the aim of the plan that the search carries out, as `plan` names them [default: highest-success]
     #[arg(long, value_name = "NAME", requires = "whole", value_parser = plan::aim)]

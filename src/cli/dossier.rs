@@ -26,12 +26,10 @@ pub(super) struct Options {
     /// How the oracle marks: phase or bit; the search always has a phase oracle
     #[arg(long, default_value = "phase", value_parser = input::mark)]
     mark: Mark,
-    #[command(flatten)]
-    limits: limits::Options,
     /// The start state: strings (all of them), domains (of each variable its own values), groups (besides, exactly so many
-    /// of some), or cheapest (of these, by the T gates of the whole search)
-    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start)]
-    start: input::Wanted,
+    /// of some), or cheapest (of these, by the T gates of the whole search) [default: cheapest; strings with --any]
+    #[arg(long, value_name = "NAME", value_parser = input::start)]
+    start: Option<input::Wanted>,
     /// The objective too: its best value with the proof, the thresholds with their tallies, and what a search for the best
     /// value takes
     #[arg(long)]
@@ -39,6 +37,8 @@ pub(super) struct Options {
     /// The folder to write [default: out/NAME]
     #[arg(short, long, value_name = "DIR")]
     output: Option<PathBuf>,
+    #[command(flatten)]
+    limits: limits::Options,
 }
 
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
@@ -48,11 +48,11 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, options.mark);
     let stage = |error| Failure::stage(&error, &sources);
-    let (places, starts) =
-        input::places_and_prices(global, &loaded, options.start, settings, &budget).map_err(stage)?;
+    let wanted = input::wanted(global, options.start, true);
+    let (places, starts) = input::places_and_prices(global, &loaded, wanted, settings, &budget).map_err(stage)?;
     let mut dossier =
         pipeline::dossier(&loaded, &places, starts, &folder, settings, &limits, &budget).map_err(stage)?;
-    dossier.advice.extend(start::advice(&dossier.starts, options.start.name()));
+    dossier.advice.extend(start::advice(&dossier.starts, wanted.name()));
     let ladder = match options.objective {
         true => Some(pipeline::ladder(&loaded.problem, &places, settings, &budget).map_err(stage)?),
         false => None,

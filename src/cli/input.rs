@@ -83,6 +83,12 @@ pub(super) fn start(name: &str) -> Result<Wanted, String> {
     found.ok_or_else(|| "expected strings, domains, groups or cheapest".to_owned())
 }
 
+/// What is wanted where nothing is said: the cheapest for a whole search. An oracle alone marks all strings, since whoever
+/// puts it after a layer of Hadamard gates would not see that the start was another; and `--any` is about strings.
+pub(super) fn wanted(global: &Global, asked: Option<Wanted>, is_search: bool) -> Wanted {
+    asked.unwrap_or(if is_search && !global.any { Wanted::Cheapest } else { Wanted::STRINGS })
+}
+
 /// The places of a search from the start state that is wanted. From all strings, bits that others determine are computed
 /// as the options want it; the other starts are made of the bits as given.
 pub(super) fn places_from(
@@ -108,11 +114,16 @@ pub(super) fn places_and_prices(
     budget: &Budget,
 ) -> Result<(Places, Vec<StartPrice>), pipeline::Error> {
     let strings = choose(global, loaded, settings, budget)?;
+    if strings.search_len() == 0 && wanted == Wanted::Cheapest {
+        return Ok((strings, Vec::new()));
+    }
     Ok(match wanted {
         Wanted::Cheapest => {
             let priced = match pipeline::priced(&loaded.problem, &strings, settings, PRECISION, budget) {
                 // Nothing to search for: whoever wants a circuit is told so, and all others have their answer.
                 Err(pipeline::Error::Lower(LowerError::EverythingMarked | LowerError::NothingMarked)) => Vec::new(),
+                // What is left to do without it says what the budget allowed.
+                Err(_) if budget.spent() => Vec::new(),
                 priced => priced?,
             };
             let prices = priced.iter().map(|one| one.price.clone()).collect();

@@ -9,6 +9,7 @@ use crate::make::lower::{Favour, Limits};
 
 #[derive(Args)]
 #[group(skip)]
+#[command(next_help_heading = "What a circuit may cost")]
 pub(super) struct Options {
     /// At most so many qubits; nodes are computed again where they do not fit
     #[arg(long, value_name = "NUMBER")]

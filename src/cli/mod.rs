@@ -54,6 +54,7 @@ struct Cli {
 
 /// Options of every command.
 #[derive(Args, Clone)]
+#[command(next_help_heading = "Options of every command")]
 struct Global {
     /// Print one JSON object instead of text
     #[arg(long, global = true)]

@@ -13,6 +13,7 @@ use crate::span::Sources;
 
 #[derive(Args, Clone)]
 #[group(skip)]
+#[command(next_help_heading = "To ask more of the problem")]
 pub(super) struct Options {
     /// Give a variable a value, and search the others; may be repeated
     #[arg(long, global = true, value_name = "NAME=VALUE", value_parser = super::setting)]

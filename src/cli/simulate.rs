@@ -12,7 +12,7 @@ use crate::cli::render::Failure;
 use crate::cli::{Global, Outcome, compile, course, input, plan, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::make::lower::Limits;
-use crate::pipeline;
+use crate::pipeline::{self, Iterations};
 use crate::places::Places;
 use crate::report::simulation::{self as report, Terms};
 use crate::report::{files, json};
@@ -30,9 +30,9 @@ pub(super) struct Options {
     /// The places file of the search [default: S.places.json beside S.qasm, else bit i is search[i]]
     #[arg(long, value_name = "FILE")]
     places: Option<PathBuf>,
-    /// With a problem: the start state, strings, domains, groups or cheapest
-    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start)]
-    start: input::Wanted,
+    /// With a problem: the start state, strings, domains, groups or cheapest [default: cheapest; strings with --any]
+    #[arg(long, value_name = "NAME", value_parser = input::start)]
+    start: Option<input::Wanted>,
     /// So many iterations instead of the planned number; in a search file, the value of its input
     #[arg(long, value_name = "NUMBER", value_parser = plan::number)]
     iterations: Option<BigUint>,
@@ -101,7 +101,8 @@ fn from_circuit(global: &Global, options: &Options) -> Result<Read, Box<Failure>
         }
     };
     let given = options.iterations.as_ref().and_then(|iterations| u64::try_from(iterations).ok());
-    let circuit = pipeline::read_circuit_given(Path::new(&options.file), given, &mut sources);
+    let given = given.map_or(Iterations::OfTheFile, Iterations::Given);
+    let circuit = pipeline::read_circuit_with(Path::new(&options.file), given, &mut sources);
     Ok((circuit.map_err(|messages| Failure::input(messages, &sources))?, terms, sources))
 }
 
@@ -112,7 +113,8 @@ fn from_problem(global: &Global, options: &Options, budget: &Budget) -> Result<R
     let settings = input::settings(global, options.level, Mark::Phase);
     let (places, product) = {
         let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
-        let places = input::places_from(global, &loaded, options.start, settings, budget).map_err(stage)?;
+        let places = input::places_from(global, &loaded, input::wanted(global, options.start, true), settings, budget)
+            .map_err(stage)?;
         let oracle = pipeline::oracle(&loaded.problem, &places, settings, budget).map_err(stage)?;
         let iterations = match &options.iterations {
             Some(iterations) => iterations.clone(),

@@ -14,6 +14,7 @@ use crate::span::Sources;
 
 #[derive(Args)]
 #[group(skip)]
+#[command(next_help_heading = "The text")]
 pub(super) struct Options {
     /// The version of OpenQASM: 3 or 2
     #[arg(long, value_name = "VERSION", default_value = "3", value_parser = ["2", "3"])]

@@ -11,6 +11,7 @@ use crate::make::lower::Turn;
 
 #[derive(Args)]
 #[group(skip)]
+#[command(next_help_heading = "The form of the oracle")]
 pub(super) struct Options {
     /// Multiply by e^(i ANGLE) in place of the sign: radians, or such as pi/4 or -3*pi/8
     #[arg(long, value_name = "ANGLE", allow_hyphen_values = true, value_parser = angle)]

@@ -62,15 +62,26 @@ pub(super) fn write_curve(
     }
 }
 
-/// Reads a circuit file.
-pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
-    read_circuit_given(path, None, sources)
+/// What to do where a file has its number of iterations as an input.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum Iterations {
+    /// Such a file is refused.
+    OfTheFile,
+    /// The input gets this value; a file without the input is refused.
+    Given(u64),
+    /// The input, where there is one, gets this value.
+    IfAsked(u64),
 }
 
-/// Reads a circuit file; where its number of iterations is an input, it gets this value.
-pub fn read_circuit_given(
+/// Reads a circuit file.
+pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
+    read_circuit_with(path, Iterations::OfTheFile, sources)
+}
+
+/// Reads a circuit file whose number of iterations may be an input.
+pub fn read_circuit_with(
     path: &Path,
-    iterations: Option<u64>,
+    iterations: Iterations,
     sources: &mut Sources,
 ) -> Result<Circuit, Vec<Diagnostic>> {
     let name = path.display().to_string();
@@ -81,8 +92,11 @@ pub fn read_circuit_given(
                 .expected("an OpenQASM file"),
         ]
     })?;
-    let given = iterations.and_then(|value| qasm::read::give(&text, ITERATIONS, value));
-    if iterations.is_some() && given.is_none() {
+    let given = match iterations {
+        Iterations::OfTheFile => None,
+        Iterations::Given(value) | Iterations::IfAsked(value) => qasm::read::give(&text, ITERATIONS, value),
+    };
+    if matches!(iterations, Iterations::Given(_)) && given.is_none() {
         let message = "the circuit has its number of iterations, which is no input of it";
         let diagnostic = Diagnostic::error(Code("U025"), message).in_file(&name).found("--iterations");
         return Err(vec![diagnostic.expected(format!("a file with `input int {ITERATIONS};`, or no --iterations"))]);

@@ -40,7 +40,7 @@ pub use certificate::{Certified, certify, check_certificate, draw, values};
 pub use choice::{Candidate, Narrowing, choose};
 pub use counting::count;
 pub use error::Error;
-pub use files::{read_circuit, read_circuit_given, write_certificate, write_json, write_obligations};
+pub use files::{Iterations, read_circuit, read_circuit_with, write_certificate, write_json, write_obligations};
 pub use objective::ladder;
 pub use oracle::{
     CheckedPass, check_passes, course, front, gates_of_iteration, oracle, oracle_within, search_from, turned,

@@ -234,7 +234,7 @@ def check_problem(task):
                 for whole in (False, True):
                     kind = "search" if whole else "oracle"
                     out = pathlib.Path(folder) / f"{level}-{mark}-{kind}.qasm"
-                    more = ["--whole"] if whole else []
+                    more = ["--whole", "--start", "strings"] if whole else []
                     try:
                         done += check_file(command, subject, path, level, mark, more, out)
                     except Exception as error:

@@ -15,7 +15,7 @@ fn codes(object: &Value) -> Vec<&str> {
 fn plans_say_what_a_search_costs_from_each_start() {
     let desk = Desk::new();
     let file = problem("buoy-payload.tally");
-    let (exit, plan) = desk.json(&["plan", &file]);
+    let (exit, plan) = desk.json(&["plan", &file, "--no-narrowing", "--start", "strings"]);
     let starts = plan["starts"].as_array().unwrap();
     let names: Vec<&str> = starts.iter().map(|start| start["start"].as_str().unwrap()).collect();
     assert_eq!((exit, names), (0, vec!["groups", "strings"]), "{plan:#}");
@@ -24,11 +24,11 @@ fn plans_say_what_a_search_costs_from_each_start() {
     assert!((1.3..1.5).contains(&(cost(1) / cost(0))), "{plan:#}");
     assert_eq!(starts[0]["precision"], 1e-3);
     assert!(codes(&plan).contains(&"cheaper-start"), "{plan:#}");
-    let (_, cheapest) = desk.json(&["plan", &file, "--start", "cheapest"]);
+    let (_, cheapest) = desk.json(&["plan", &file, "--no-narrowing"]);
     assert!(!codes(&cheapest).contains(&"cheaper-start"));
     // sin^2 theta = 49 / 4096, so pi / (4 theta) = 7.17.
     assert_eq!((&cheapest["tally"]["space"], &cheapest["plan"]["iterations"]), (&"4096".into(), &"7".into()));
-    assert!(desk.text(&["plan", &file]).contains("start       groups: 4096 states, "));
+    assert!(desk.text(&["plan", &file, "--no-narrowing"]).contains("start       groups: 4096 states, "));
 }
 
 #[test]
@@ -36,7 +36,7 @@ fn a_dossier_from_another_start_is_right_within_it() {
     let desk = Desk::new();
     desk.file("numbers.tally", NUMBERS);
     for (start, space) in [("strings", "16"), ("domains", "9"), ("groups", "9")] {
-        let (exit, report) = desk.json(&["dossier", "numbers.tally", "-o", "out", "--start", start]);
+        let (exit, report) = desk.json(&["dossier", "numbers.tally", "-o", "out", "--start", start, "--no-narrowing"]);
         assert_eq!((exit, &report["tally"]["space"]), (0, &space.into()), "{start}: {report:#}");
         assert_eq!(report["tally"]["marked"], "3", "{start}");
         assert_eq!(
@@ -72,9 +72,9 @@ fn a_ledger_keeps_the_start_that_was_asked_for() {
     let desk = Desk::new();
     std::fs::create_dir(desk.path("all")).unwrap();
     desk.file("all/numbers.tally", NUMBERS);
-    let (_, plain) = desk.json(&["ledger", "update", "all"]);
+    let (_, plain) = desk.json(&["ledger", "update", "all", "--no-narrowing"]);
     assert_eq!(plain["problems"]["numbers.tally"]["space"], "16");
-    let (_, kept) = desk.json(&["ledger", "update", "all", "--start", "domains"]);
+    let (_, kept) = desk.json(&["ledger", "update", "all", "--no-narrowing", "--start", "domains"]);
     let entry = &kept["problems"]["numbers.tally"];
     assert_eq!(
         (&entry["space"], &entry["start"], &entry["verdict"]),
@@ -107,7 +107,9 @@ fn iterations_are_given_to_files_that_ask_for_them() {
     for command in [&["simulate"][..], &["audit", "numbers.tally"]] {
         let (exit, refused) = desk.json(&[command, &["plain.qasm", "--iterations", "2"]].concat());
         assert_eq!((exit, &refused["error"]["code"]), (2, &"U025".into()), "{refused:#}");
-        assert_eq!(desk.exit(&[command, &["open.qasm"]].concat()), 2);
+        // Without a number there is nothing to simulate; the audit judges what a turn of the loop does.
+        let exit = desk.exit(&[command, &["open.qasm"]].concat());
+        assert_eq!(exit, if command[0] == "audit" { 0 } else { 2 });
         let (exit, object) = desk.json(&[command, &["open.qasm", "--iterations", "1"]].concat());
         assert_eq!(exit, 0, "{object:#}");
     }

@@ -260,6 +260,12 @@ fn orders_layouts_and_places_of_results() {
     let places = std::fs::read_to_string(desk.path("p.places.json")).unwrap();
     let mut value: Value = serde_json::from_str(&places).unwrap();
     value["searched"].as_array_mut().unwrap().reverse();
+    for variable in value["variables"].as_array_mut().unwrap() {
+        for qubit in variable["qubits"].as_array_mut().unwrap() {
+            let at: usize = qubit.as_str().unwrap()["search[".len()..].trim_end_matches(']').parse().unwrap();
+            *qubit = format!("search[{}]", 2 - at).into();
+        }
+    }
     desk.file("turned.places.json", &value.to_string());
     assert_eq!(hits(&["--places", "turned.places.json"]), Some(95));
 }

@@ -10,7 +10,7 @@ use crate::diag::{Code, Diagnostic};
 use crate::judge::audit::alone::marks;
 use crate::judge::audit::compare::{CompareOptions, compare, parting};
 use crate::judge::audit::{self, AuditError};
-use crate::pipeline;
+use crate::pipeline::{self, Iterations};
 use crate::report::{alone, json, story};
 use crate::span::Sources;
 
@@ -31,7 +31,7 @@ const GIVEN_TURNS: u64 = 2;
 
 /// Reads a circuit file; where its number of iterations is an input, there are two.
 pub(super) fn read(path: &Path, sources: &mut Sources) -> Result<Circuit, Box<Failure>> {
-    pipeline::read_circuit_given(path, Some(GIVEN_TURNS), sources)
+    pipeline::read_circuit_with(path, Iterations::IfAsked(GIVEN_TURNS), sources)
         .map_err(|diagnostics| Failure::input(diagnostics, sources))
 }
 

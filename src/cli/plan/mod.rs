@@ -62,8 +62,9 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
     let (budget, line) = progress::budget(global);
     let settings = input::settings(global, options.level, Mark::Phase);
     let stage = |error: pipeline::Error| Failure::stage(&error, &sources);
+    let wanted = input::wanted(global, options.start, true);
     if options.objective {
-        let places = input::places_from(global, &loaded, options.start, settings, &budget).map_err(stage)?;
+        let places = input::places_from(global, &loaded, wanted, settings, &budget).map_err(stage)?;
         let ladder = pipeline::ladder(&loaded.problem, &places, settings, &budget).map_err(stage)?;
         drop(line);
         if !global.json {
@@ -72,8 +73,7 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
         object.insert("objective".to_owned(), objective::json(&ladder));
         return Ok((Exit::Done, json::print(object)));
     }
-    let (places, starts) =
-        input::places_and_prices(global, &loaded, options.start, settings, &budget).map_err(stage)?;
+    let (places, starts) = input::places_and_prices(global, &loaded, wanted, settings, &budget).map_err(stage)?;
     if !starts.is_empty() {
         object.insert("starts".to_owned(), start::json(&starts));
     }
@@ -107,7 +107,7 @@ fn for_problem(global: &Global, options: &Options, file: &str) -> Outcome {
         Err(why) => return Err(unanswered(&why, options, &ground, &sources)),
     };
     advice.append(&mut answer.outline.advice);
-    advice.extend(start::advice(&starts, options.start.name()));
+    advice.extend(start::advice(&starts, wanted.name()));
     answer.outline.advice.clone_from(&advice);
     let (exit, mut text) = print(global, Some(&loaded), object, Some(&answer), &advice, exit);
     if !global.json {

@@ -64,9 +64,9 @@ pub(in crate::cli) struct Options {
     /// Guess some bits where that is faster: so many machines run side by side
     #[arg(long, value_name = "NUMBER")]
     pub(super) machines: Option<std::num::NonZeroU64>,
-    /// With a problem: the start state, strings, domains, groups or cheapest
-    #[arg(long, value_name = "NAME", default_value = "strings", value_parser = input::start, conflicts_with = "space")]
-    pub(super) start: input::Wanted,
+    /// With a problem: the start state, strings, domains, groups or cheapest [default: cheapest; strings with --any]
+    #[arg(long, value_name = "NAME", value_parser = input::start, conflicts_with = "space")]
+    pub(super) start: Option<input::Wanted>,
     /// The objective of the problem: its best value with the proof, the thresholds with their tallies, and what a search for
     /// the best value takes
     #[arg(long, conflicts_with_all = ["space", "aim", "count", "low", "high"])]

@@ -13,6 +13,7 @@ use crate::judge::audit::basis::normal;
 use crate::judge::audit::compare::Shared;
 use crate::judge::audit::oracle::Roles;
 use crate::judge::audit::paths::{self, Read};
+use crate::judge::reading::graph::Signal;
 use crate::judge::rows;
 use crate::problem::BitId;
 
@@ -28,14 +29,60 @@ pub fn marked_values(circuit: &Circuit, angle: Option<f64>, threads: usize, budg
     let read = read.filter(Read::is_shown)?;
     // A sign on the whole is one on what is not marked, as far as gates can tell.
     let is_turned = angle.is_none() && read.global() == Some(4);
-    let (graph, root) = read.into_function();
-    let is_better_negated = normal::is_better_negated(&graph, root);
-    let reading = normal::for_evaluation(&graph, root ^ is_better_negated, bits);
-    let searched: Vec<BitId> = (0..bits).map(BitId::new).collect();
-    let mut set = rows::table(&rows::tape_of(&reading, &searched), bits, threads, budget)?;
-    if is_turned != is_better_negated {
-        let values = if bits < 6 { (1 << (1 << bits)) - 1 } else { u64::MAX };
-        set.iter_mut().for_each(|word| *word ^= values);
+    let (graph, root, others) = read.into_functions();
+    let values = |root: Signal| {
+        let is_better_negated = normal::is_better_negated(&graph, root);
+        let reading = normal::for_evaluation(&graph, root ^ is_better_negated, bits);
+        let searched: Vec<BitId> = (0..bits).map(BitId::new).collect();
+        let mut set = rows::table(&rows::tape_of(&reading, &searched), bits, threads, budget)?;
+        if is_better_negated {
+            complement(&mut set, bits);
+        }
+        Some(set)
+    };
+    let mut set = values(root)?;
+    if is_turned {
+        complement(&mut set, bits);
+    }
+    if !others.is_empty() {
+        let mut sum = Eighths { digits: [0; 3].map(|_| vec![0; set.len()]) };
+        for (root, eighths) in others {
+            sum.add(&values(root)?, eighths);
+        }
+        let half_turns = sum.half_turns()?;
+        set.iter_mut().zip(half_turns).for_each(|(word, more)| *word ^= more);
     }
     Some(set)
+}
+
+fn complement(set: &mut [u64], bits: usize) {
+    let all = if bits < 6 { (1 << (1 << bits)) - 1 } else { u64::MAX };
+    set.iter_mut().for_each(|word| *word ^= all);
+}
+
+/// A phase for every value, in multiples of pi/4: a sum modulo 8, digit by digit.
+struct Eighths {
+    digits: [Vec<u64>; 3],
+}
+
+impl Eighths {
+    /// Adds a phase on the values of a set.
+    fn add(&mut self, set: &[u64], eighths: u8) {
+        for first in (0..3).filter(|digit| eighths >> digit & 1 == 1) {
+            for (at, &word) in set.iter().enumerate() {
+                let mut carry = word;
+                for digit in &mut self.digits[first..] {
+                    let before = digit[at];
+                    digit[at] = before ^ carry;
+                    carry &= before;
+                }
+            }
+        }
+    }
+
+    /// The values with half a turn; `None` where a phase is neither that nor a whole number of turns.
+    fn half_turns(self) -> Option<Vec<u64>> {
+        let [ones, twos, fours] = self.digits;
+        ones.iter().chain(&twos).all(|&word| word == 0).then_some(fours)
+    }
 }

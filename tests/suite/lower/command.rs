@@ -99,7 +99,7 @@ fn openqasm_2_and_readable_text_are_judged_equal() {
     let readable = tallymark(folder.path(), &["compile", "a.cnf", "--level", "clifford-t", "--readable"]);
     let readable = String::from_utf8(readable.stdout).unwrap();
     assert!(readable.contains("\n// c0 clause ") && readable.contains("\ndef compute_c0(qubit search_"), "{readable}");
-    assert!(readable.contains("\ncompute_c0(search[") && readable.contains("\nundo_c0(search["), "{readable}");
+    assert!(readable.contains("\ncompute_c0(search[") && readable.contains("\nundo_c0("), "{readable}");
     let refused =
         json(folder.path(), &["compile", "a.cnf", "--level", "wide", "--dialect", "2", "--json", "-o", "x.qasm"], 2);
     assert_eq!(refused["error"]["code"], "C008");

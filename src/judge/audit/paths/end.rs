@@ -29,6 +29,9 @@ pub(in crate::judge::audit) struct Read {
     pub(super) graph: Graph,
     /// What is marked.
     pub(super) function: Form,
+    /// Phases in multiples of pi/4 on other functions of the inputs: where they do not add up to whole turns on every input,
+    /// the circuit is no oracle.
+    pub(super) others: Vec<(Form, u8)>,
     /// Functions that must be 0 on every input.
     pub(super) zeros: Vec<Form>,
     /// The phase besides that of the function, in multiples of pi/4; `None` where it depends on outcomes, or is none.
@@ -50,10 +53,11 @@ impl Read {
         Self { global: Some(0), ..self.clone() }
     }
 
-    /// The graph over the inputs, and what is marked as a node of it.
-    pub(in crate::judge::audit) fn into_function(mut self) -> (Graph, Signal) {
+    /// The graph over the inputs, what is marked as a node of it, and other nodes with phases in multiples of pi/4.
+    pub(in crate::judge::audit) fn into_functions(mut self) -> (Graph, Signal, Vec<(Signal, u8)>) {
         let root = self.function.signal(&mut self.graph);
-        (self.graph, root)
+        let others = self.others.iter().map(|(form, eighths)| (form.signal(&mut self.graph), *eighths)).collect();
+        (self.graph, root, others)
     }
 
     /// Whether everything but the function was shown.
@@ -88,8 +92,8 @@ pub(super) fn end(mut reader: Reader, roles: &Roles, angle: Option<f64>) -> Resu
     } else {
         function = phases.function(angle)?;
     }
-    let global = phases.global;
-    finished(reader, function, global)
+    let (global, others) = (phases.global, std::mem::take(&mut phases.others));
+    finished(reader, function, others, global)
 }
 
 /// Looks at the end of the second of two circuits on the same inputs: what must be 0 for the two to be the same.
@@ -118,7 +122,7 @@ pub(super) fn difference(mut reader: Reader, ours: &[Form], pairs: &[(QubitId, Q
     phases.add_angles()?;
     phases.none()?;
     let global = phases.global;
-    finished(reader, Form::default(), global)
+    finished(reader, Form::default(), Vec::new(), global)
 }
 
 /// The phase, as a sign where it is one.
@@ -135,14 +139,14 @@ fn settled(reader: &mut Reader) -> Polynomial {
     }
 }
 
-fn finished(reader: Reader, function: Form, global: Option<u8>) -> Result<Read, Open> {
+fn finished(reader: Reader, function: Form, others: Vec<(Form, u8)>, global: Option<u8>) -> Result<Read, Open> {
     let Reader { space, mut zeros, outcomes, paths, .. } = reader;
     if space.is_too_large() {
         return Err(Open::Limit);
     }
     zeros.sort_unstable();
     zeros.dedup();
-    Ok(Read { graph: space.graph, function, zeros, global, outcomes, paths })
+    Ok(Read { graph: space.graph, function, others, zeros, global, outcomes, paths })
 }
 
 /// By what a qubit ends otherwise than as this input, or as 0: a function of the inputs alone. What depends on outcomes
@@ -170,6 +174,8 @@ struct Phases<'r, 'a> {
     sign: Form,
     /// Other multiples of pi/4 on such functions.
     eighths: Vec<(Form, u8)>,
+    /// Those of them that no rule made part of the sign.
+    others: Vec<(Form, u8)>,
     /// Other angles on such functions.
     angles: Vec<(Form, f64)>,
 }
@@ -177,8 +183,14 @@ struct Phases<'r, 'a> {
 impl<'r, 'a> Phases<'r, 'a> {
     fn new(reader: &'r mut Reader<'a>, mut polynomial: Polynomial) -> Self {
         let constant = polynomial.constant;
-        let mut phases =
-            Self { reader, global: Some(constant), sign: Form::default(), eighths: Vec::new(), angles: Vec::new() };
+        let mut phases = Self {
+            reader,
+            global: Some(constant),
+            sign: Form::default(),
+            eighths: Vec::new(),
+            others: Vec::new(),
+            angles: Vec::new(),
+        };
         let mut with_outcomes = Form::default();
         for (form, coefficient) in polynomial.take_all() {
             match (phases.reader.space.is_pure(&form), coefficient) {
@@ -253,8 +265,13 @@ impl<'r, 'a> Phases<'r, 'a> {
     /// The function that has this phase.
     fn function(&mut self, angle: Option<f64>) -> Result<Form, Open> {
         let angle = angle.unwrap_or(std::f64::consts::PI);
+        let is_pure = self.eighths.iter().all(|(form, _)| self.reader.space.is_pure(form));
         match multiples(angle, FRAC_PI_4) {
-            Some(4) if self.eighths.is_empty() && self.angles.is_empty() => Ok(std::mem::take(&mut self.sign)),
+            // What the rules leave of a sign is one all the same if it is so on every input.
+            Some(4) if is_pure && self.angles.is_empty() => {
+                self.others = std::mem::take(&mut self.eighths);
+                Ok(std::mem::take(&mut self.sign))
+            }
             Some(eighths) if eighths != 4 && self.angles.is_empty() => self.of_eighths(eighths),
             None if self.eighths.is_empty() => self.of_angle(angle),
             _ => Err(Open::Phase),

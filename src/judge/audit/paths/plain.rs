@@ -1,7 +1,7 @@
 //! A circuit that keeps basis states, for one that was read as a sum over paths.
 //!
-//! It computes the nodes of the function and of what must be 0 into work qubits, marks, and undoes that. What must be 0
-//! is left in work qubits of its own. So it is an oracle just if the circuit that was read is one, and every way of
+//! It computes the nodes of the function and of what must be 0 into work qubits, marks, and undoes that; other phases are
+//! turned on a work qubit that holds their function for that time. What must be 0 is left in work qubits of its own. So it is an oracle just if the circuit that was read is one, and every way of
 //! judging circuits that keep basis states serves for both.
 
 use super::end::Read;
@@ -11,7 +11,8 @@ use crate::judge::reading::graph::{Node, Signal};
 
 /// Writes the circuit; the phase of the function is a sign.
 pub(in crate::judge::audit) fn plain_circuit(read: &Read, search: usize, has_mark: bool) -> Circuit {
-    let roots = read.zeros.iter().chain([&read.function]).flat_map(|form| form.terms.iter().copied());
+    let others = read.others.iter().map(|(form, _)| form);
+    let roots = read.zeros.iter().chain([&read.function]).chain(others).flat_map(|form| form.terms.iter().copied());
     let needed = read.graph.needed(roots);
     let nodes: Vec<usize> =
         (0..needed.len()).filter(|&node| needed[node] && !read.graph.operands(node).is_empty()).collect();
@@ -21,7 +22,8 @@ pub(in crate::judge::audit) fn plain_circuit(read: &Read, search: usize, has_mar
     inputs.extend(mark);
     let global = (read.global.unwrap_or(0) + if has_mark || !read.function.flip { 0 } else { 4 }) % 8;
     let zeros: Vec<&Form> = read.zeros.iter().filter(|zero| zero.as_constant() != Some(false)).collect();
-    let count = nodes.len() + zeros.len() + usize::from(global != 0);
+    let needs_one = global != 0 || !read.others.is_empty();
+    let count = nodes.len() + zeros.len() + usize::from(needs_one);
     let work = if count == 0 { Vec::new() } else { circuit.add_qubits(WORK, count) };
     let mut places = vec![None; needed.len()];
     inputs.iter().enumerate().for_each(|(at, &qubit)| places[at + 1] = Some(qubit));
@@ -35,10 +37,13 @@ pub(in crate::judge::audit) fn plain_circuit(read: &Read, search: usize, has_mar
         Some(mark) => writer.add(&read.function, mark),
         None => read.function.terms.iter().for_each(|&term| writer.circuit.push(Op::Z, &[], writer.qubit(term))),
     }
-    if let (true, Some(&one)) = (global != 0, work.last()) {
-        writer.circuit.push(Op::X, &[], one);
-        (0..global).for_each(|_| writer.circuit.push(Op::T, &[], one));
-        writer.circuit.push(Op::X, &[], one);
+    if let (true, Some(&one)) = (needs_one, work.last()) {
+        let constant = (Form::constant(true), global);
+        for (form, eighths) in read.others.iter().chain((global != 0).then_some(&constant)) {
+            writer.add(form, one);
+            (0..*eighths).for_each(|_| writer.circuit.push(Op::T, &[], one));
+            writer.add(form, one);
+        }
     }
     nodes.iter().rev().for_each(|&node| writer.node(node));
     writer.circuit
