@@ -12,7 +12,7 @@ use crate::id::Id;
 use crate::judge::audit::basis::normal;
 use crate::judge::audit::compare::Shared;
 use crate::judge::audit::oracle::Roles;
-use crate::judge::audit::paths::{self, Read};
+use crate::judge::audit::paths::{self, Functions};
 use crate::judge::reading::graph::Signal;
 use crate::judge::rows;
 use crate::problem::BitId;
@@ -25,11 +25,11 @@ pub fn marked_values(circuit: &Circuit, angle: Option<f64>, threads: usize, budg
     let search: Vec<QubitId> = circuit.register(SEARCH);
     let bits = search.len();
     let work = Shared::rest(circuit, &search);
-    let read = paths::read(circuit, &Roles { search, mark: None, work }, angle, budget).ok();
-    let read = read.filter(Read::is_shown)?;
+    let read = paths::read(circuit, &Roles { search, mark: None, work }, angle, budget).ok()?;
     // A sign on the whole is one on what is not marked, as far as gates can tell.
-    let is_turned = angle.is_none() && read.global() == Some(4);
-    let (graph, root, others) = read.into_functions();
+    let global = read.global().unwrap_or(0);
+    let is_turned = angle.is_none() && global == 4;
+    let Functions { graph, marked, zeros, others } = read.into_functions();
     let values = |root: Signal| {
         let is_better_negated = normal::is_better_negated(&graph, root);
         let reading = normal::for_evaluation(&graph, root ^ is_better_negated, bits);
@@ -40,7 +40,12 @@ pub fn marked_values(circuit: &Circuit, angle: Option<f64>, threads: usize, budg
         }
         Some(set)
     };
-    let mut set = values(root)?;
+    for zero in zeros {
+        if values(zero)?.iter().any(|&word| word != 0) {
+            return None;
+        }
+    }
+    let mut set = values(marked)?;
     if is_turned {
         complement(&mut set, bits);
     }
@@ -49,6 +54,13 @@ pub fn marked_values(circuit: &Circuit, angle: Option<f64>, threads: usize, budg
         for (root, eighths) in others {
             sum.add(&values(root)?, eighths);
         }
+        let mut all = vec![0; set.len()];
+        complement(&mut all, bits);
+        // Where the whole has a sign, it is in the set already.
+        sum.add(&all, if is_turned { 0 } else { global });
+        // A phase on the whole that is no sign can be left out.
+        let whole = sum.of_zero() % 4;
+        sum.add(&all, (8 - whole) % 8);
         let half_turns = sum.half_turns()?;
         set.iter_mut().zip(half_turns).for_each(|(word, more)| *word ^= more);
     }
@@ -78,6 +90,11 @@ impl Eighths {
                 }
             }
         }
+    }
+
+    /// The phase of the value 0.
+    fn of_zero(&self) -> u8 {
+        self.digits.iter().rev().fold(0, |phase, digit| phase << 1 | (digit[0] & 1) as u8)
     }
 
     /// The values with half a turn; `None` where a phase is neither that nor a whole number of turns.

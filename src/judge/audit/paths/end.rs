@@ -42,6 +42,17 @@ pub(in crate::judge::audit) struct Read {
     pub(super) paths: usize,
 }
 
+/// What was read, as nodes of a graph over the inputs.
+pub(in crate::judge::audit) struct Functions {
+    pub(in crate::judge::audit) graph: Graph,
+    /// What is marked.
+    pub(in crate::judge::audit) marked: Signal,
+    /// What must be 0 on every input, and does not show it by itself.
+    pub(in crate::judge::audit) zeros: Vec<Signal>,
+    /// Other phases, in multiples of pi/4.
+    pub(in crate::judge::audit) others: Vec<(Signal, u8)>,
+}
+
 impl Read {
     /// The phase besides that of the function, in multiples of pi/4; `None` where it depends on outcomes, or is none.
     pub(in crate::judge::audit) fn global(&self) -> Option<u8> {
@@ -53,11 +64,14 @@ impl Read {
         Self { global: Some(0), ..self.clone() }
     }
 
-    /// The graph over the inputs, what is marked as a node of it, and other nodes with phases in multiples of pi/4.
-    pub(in crate::judge::audit) fn into_functions(mut self) -> (Graph, Signal, Vec<(Signal, u8)>) {
-        let root = self.function.signal(&mut self.graph);
-        let others = self.others.iter().map(|(form, eighths)| (form.signal(&mut self.graph), *eighths)).collect();
-        (self.graph, root, others)
+    /// The graph over the inputs, and nodes of it.
+    pub(in crate::judge::audit) fn into_functions(mut self) -> Functions {
+        let graph = &mut self.graph;
+        let is_open = |zero: &&Form| zero.as_constant() != Some(false);
+        let marked = self.function.signal(graph);
+        let zeros = self.zeros.iter().filter(is_open).map(|zero| zero.signal(graph)).collect();
+        let others = self.others.iter().map(|(form, eighths)| (form.signal(graph), *eighths)).collect();
+        Functions { marked, zeros, others, graph: self.graph }
     }
 
     /// Whether everything but the function was shown.

@@ -22,7 +22,7 @@ mod rules;
 mod sign;
 mod space;
 
-pub(super) use self::end::Read;
+pub(super) use self::end::{Functions, Read};
 pub(super) use self::plain::plain_circuit;
 pub(super) use self::reader::Open;
 
