@@ -82,7 +82,8 @@ pub fn simplify<E>(
             if view::is_settled(&network) || budget.spent() {
                 return Ok(network);
             }
-            let Some(passed) = pass(View::new(&network, &read)) else { break };
+            let view = View::new(&network, &read);
+            let Some(passed) = pass(view).or_else(|| view.unchanged()) else { break };
             let after = passed.network.and_count();
             if after > before {
                 break;

@@ -32,7 +32,7 @@ pub(super) fn subsume(view: View<'_>) -> Option<Passed> {
         }
     }
     if !store.changed {
-        return view.unchanged();
+        return None;
     }
     let gone = store.gone;
     let mut copy = Copy::new(view.network);

@@ -34,7 +34,7 @@ pub(super) fn symmetric(view: View<'_>) -> Option<Passed> {
     let found = |clause: &Clause| if clause.lits.len() == 1 { values(network, clause.root) } else { None };
     let found: Vec<_> = view.clauses().iter().map(found).collect();
     if found.iter().all(Option::is_none) {
-        return view.unchanged();
+        return None;
     }
     let mut uses = Uses::new(network);
     let small = RefCell::new(Small::new());

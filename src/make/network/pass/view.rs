@@ -49,7 +49,7 @@ impl<'a> View<'a> {
         self.read.get_or_init(|| clauses(self.network))
     }
 
-    /// What a pass over clauses gives that found nothing. A small network is numbered anew in the order of its clauses:
+    /// What is taken where a pass found nothing. A small network is numbered anew in the order of its clauses:
     /// where two cuts save as much, a later pass takes the one that comes first, and this order is the better one.
     pub(super) fn unchanged(&self) -> Option<Passed> {
         if self.network.nodes().len() > MAX_RENUMBERED {

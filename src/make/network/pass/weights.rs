@@ -47,7 +47,7 @@ pub(super) fn weights(view: View<'_>) -> Option<Passed> {
         }
     }
     if groups.is_empty() {
-        return view.unchanged();
+        return None;
     }
     for (set, bounds) in &mut groups {
         let opposite: Vec<Lit> = set.iter().map(|&lit| !lit).collect();

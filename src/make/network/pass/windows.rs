@@ -44,7 +44,7 @@ pub(super) fn windows(view: View<'_>) -> Option<Passed> {
         }
     }
     if windows.is_empty() {
-        return view.unchanged();
+        return None;
     }
     let mut copy = Copy::new(network);
     let mut conjuncts = Conjuncts::default();
