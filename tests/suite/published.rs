@@ -1,6 +1,7 @@
 //! The planner against whole tables of published formulas, evaluated outside this program with forty digits.
 
 use num_bigint::BigUint;
+use tallymark::search::plan::certainty::certainty_with;
 use tallymark::search::plan::schedule::Schedule;
 use tallymark::search::plan::success::{success, theta};
 use tallymark::search::plan::{plan, plan_within};
@@ -86,5 +87,18 @@ fn the_schedule_keeps_to_the_lower_bound() {
         let expected = Schedule::new(&space).expected(&1u32.into()).unwrap();
         let bound = (0.382683432365090 * f64::from(1u32 << bits).sqrt()).floor();
         assert!(expected.iterations.to_f64() + expected.measurements >= bound, "{bits}");
+    }
+}
+
+/// An odd number L of states out of the next power of two, in one round: with `a = L / 2^n` the extra qubit is turned by
+/// `2 asin(sqrt(1 / (4 a)))`, so that a quarter is marked (R. Babbush and others, "Encoding electronic spectra in quantum
+/// circuits with linear T complexity", Physical Review X 8:041015, 2018, from memory; digits evaluated outside).
+#[test]
+fn one_round_is_exact_for_an_odd_number_of_states() {
+    for (odd, strings, angle) in
+        [(3u32, 4u32, 1.23095941734077), (5, 8, 1.36943840600457), (7, 8, 1.12788528272126), (25, 32, 1.20252843336)]
+    {
+        let found = certainty_with(&strings.into(), &odd.into(), &1u32.into()).unwrap();
+        assert!((2.0 * found.rotation_sine.asin() - angle).abs() < 1e-11, "{odd}: {found:?}");
     }
 }
