@@ -92,13 +92,13 @@ pub(super) struct Options {
 pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let Some(path) = &options.circuit else { return alone::run(global, options) };
     let (mut loaded, mut sources) = input::load(global, &options.file)?;
-    let circuit = match options.iterations {
+    let (circuit, given) = match options.iterations {
         Some(number) => pipeline::read_circuit_with(path, Iterations::Given(number), &mut sources)
             .map_err(|diagnostics| Failure::input(diagnostics, &sources))?,
         None => alone::read(path, &mut sources)?,
     };
     let circuit = assigned(options, path, circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
-    let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?;
+    let good = options.against.as_ref().map(|path| alone::read(path, &mut sources)).transpose()?.map(|(good, _)| good);
     let mut places = places(options, path, &mut loaded, &circuit, &sources)?;
     form::check(options, &circuit).map_err(|diagnostic| Failure::input(vec![*diagnostic], &sources))?;
     if options.control.is_some() {
@@ -116,8 +116,12 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     let (outcome, mut text) =
         if circuit.measured.iter().any(|register| [FOUND, COUNTED].contains(&register.name.as_str())) {
             places.check(&loaded.problem).map_err(|error| stage(error.into()))?;
-            let verdict = audit::audit_search(&loaded.problem, &places, &circuit, 1 << options.effort, &budget)
+            let mut verdict = audit::audit_search(&loaded.problem, &places, &circuit, 1 << options.effort, &budget)
                 .map_err(|error| stage(error.into()))?;
+            if let Some(number) = given {
+                let note = format!("how many iterations are run is an input of the file; it was judged with {number}");
+                verdict.notes.push(note);
+            }
             let mut value = json::search_json(&verdict);
             let mut text = summary::search_verdict(&verdict);
             if let Some(good) = &good {

@@ -103,7 +103,7 @@ fn from_circuit(global: &Global, options: &Options) -> Result<Read, Box<Failure>
     let given = options.iterations.as_ref().and_then(|iterations| u64::try_from(iterations).ok());
     let given = given.map_or(Iterations::OfTheFile, Iterations::Given);
     let circuit = pipeline::read_circuit_with(Path::new(&options.file), given, &mut sources);
-    Ok((circuit.map_err(|messages| Failure::input(messages, &sources))?, terms, sources))
+    Ok((circuit.map_err(|messages| Failure::input(messages, &sources))?.0, terms, sources))
 }
 
 /// The planned search of a problem, written as text and read back: what is followed is the file.

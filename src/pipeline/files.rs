@@ -75,15 +75,15 @@ pub enum Iterations {
 
 /// Reads a circuit file.
 pub fn read_circuit(path: &Path, sources: &mut Sources) -> Result<Circuit, Vec<Diagnostic>> {
-    read_circuit_with(path, Iterations::OfTheFile, sources)
+    Ok(read_circuit_with(path, Iterations::OfTheFile, sources)?.0)
 }
 
-/// Reads a circuit file whose number of iterations may be an input.
+/// Reads a circuit file whose number of iterations may be an input; with what the input got, where there is one.
 pub fn read_circuit_with(
     path: &Path,
     iterations: Iterations,
     sources: &mut Sources,
-) -> Result<Circuit, Vec<Diagnostic>> {
+) -> Result<(Circuit, Option<u64>), Vec<Diagnostic>> {
     let name = path.display().to_string();
     let text = std::fs::read_to_string(path).map_err(|error| {
         vec![
@@ -92,16 +92,18 @@ pub fn read_circuit_with(
                 .expected("an OpenQASM file"),
         ]
     })?;
-    let given = match iterations {
+    let value = match iterations {
         Iterations::OfTheFile => None,
-        Iterations::Given(value) | Iterations::IfAsked(value) => qasm::read::give(&text, ITERATIONS, value),
+        Iterations::Given(value) | Iterations::IfAsked(value) => Some(value),
     };
+    let given = value.and_then(|value| qasm::read::give(&text, ITERATIONS, value));
     if matches!(iterations, Iterations::Given(_)) && given.is_none() {
         let message = "the circuit has its number of iterations, which is no input of it";
         let diagnostic = Diagnostic::error(Code("U025"), message).in_file(&name).found("--iterations");
         return Err(vec![diagnostic.expected(format!("a file with `input int {ITERATIONS};`, or no --iterations"))]);
     }
-    qasm::read::read(given.as_ref().unwrap_or(&text), &name, sources)
+    let circuit = qasm::read::read(given.as_ref().unwrap_or(&text), &name, sources)?;
+    Ok((circuit, value.filter(|_| given.is_some())))
 }
 
 /// Writes a JSON value, whole or not at all.

@@ -8,20 +8,13 @@ use tallymark::judge::audit::search::{SearchVerdict, audit_search};
 use tallymark::judge::audit::{Outcome, faults};
 use tallymark::make::{lower, network};
 use tallymark::places::{Part, Places, Start};
-use tallymark::problem::{BitLit, Bits, Problem};
+use tallymark::problem::{Bits, Problem};
 use tallymark::search::course::{self, Course};
 use tallymark::search::plan::certainty::certainty;
 use tallymark::search::plan::fixed_point::FixedPoint;
 use tallymark::span::Sources;
 
-fn problem(bits: usize, clauses: &[&[i64]]) -> Problem {
-    let mut problem = Problem::new();
-    problem.add_numbered_vars(bits);
-    for clause in clauses {
-        problem.clauses.push(&clause.iter().map(|&number| BitLit::from_dimacs(number).unwrap()).collect::<Vec<_>>());
-    }
-    problem
-}
+use super::courses::problem;
 
 /// Two of eight, three of sixteen, one of thirty-two strings.
 fn problems() -> Vec<Problem> {

@@ -18,7 +18,7 @@ use tallymark::search::simulate::{Options, Simulation, Way, simulate};
 use tallymark::span::Sources;
 
 /// Bits of which the given clauses hold.
-fn problem(bits: usize, clauses: &[&[i64]]) -> Problem {
+pub(super) fn problem(bits: usize, clauses: &[&[i64]]) -> Problem {
     let mut problem = Problem::new();
     problem.add_numbered_vars(bits);
     for clause in clauses {

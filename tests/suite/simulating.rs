@@ -141,6 +141,11 @@ fn brute_force(circuit: &Circuit, value_of: impl Fn(usize) -> bool) -> f64 {
     state.iter().enumerate().filter(|(at, _)| value_of(*at)).map(|(_, a)| a * a).sum()
 }
 
+/// The text without one of its lines.
+fn without(lines: &[&str], at: usize) -> String {
+    lines.iter().enumerate().filter(|(other, _)| *other != at).map(|(_, line)| format!("{line}\n")).collect()
+}
+
 /// One gate of the file is changed, at every place in turn: what comes out is what the changed gates do, and for nearly all
 /// of them it is no longer the published curve. Nothing but the file could have told.
 #[test]
@@ -160,8 +165,7 @@ fn a_change_of_one_gate_changes_what_comes_out() {
         if !line.trim_start().starts_with(['x', 'h', 'c']) || !line.ends_with(';') {
             continue;
         }
-        let without: String =
-            lines.iter().enumerate().filter(|(other, _)| *other != at).map(|(_, line)| format!("{line}\n")).collect();
+        let without = without(&lines, at);
         let edited = through_text(&circuit, |_| format!("{}{without}", &text[..body]));
         let is_solution = |state: usize| {
             let bits = tallymark::problem::Bits::from_number(state as u128 & 15, 4);
@@ -200,12 +204,7 @@ fn a_change_of_one_gate_changes_what_comes_out_at_every_level() {
             if !is_gate || (lines.len() > 100 && at % 3 > 0) {
                 continue;
             }
-            let without: String = lines
-                .iter()
-                .enumerate()
-                .filter(|(other, _)| *other != at)
-                .map(|(_, line)| format!("{line}\n"))
-                .collect();
+            let without = without(&lines, at);
             tried += 1;
             let Ok(edited) = read::read(&format!("{}{without}", &text[..body]), "edited", &mut Sources::new()) else {
                 // A bit that is tested and no longer measured.

@@ -29,8 +29,8 @@ pub(super) fn no_circuit(file: &str) -> Diagnostic {
 /// Turns of a loop that the input of the file ends: two say what its body does to two different states.
 const GIVEN_TURNS: u64 = 2;
 
-/// Reads a circuit file; where its number of iterations is an input, there are two.
-pub(super) fn read(path: &Path, sources: &mut Sources) -> Result<Circuit, Box<Failure>> {
+/// Reads a circuit file; where its number of iterations is an input, there are two, and that is told.
+pub(super) fn read(path: &Path, sources: &mut Sources) -> Result<(Circuit, Option<u64>), Box<Failure>> {
     pipeline::read_circuit_with(path, Iterations::IfAsked(GIVEN_TURNS), sources)
         .map_err(|diagnostics| Failure::input(diagnostics, sources))
 }
@@ -46,8 +46,8 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         return Err(Failure::usage(diagnostic));
     }
     let mut sources = Sources::new();
-    let circuit = read(Path::new(&options.file), &mut sources)?;
-    let good = options.against.as_ref().map(|path| read(path, &mut sources)).transpose()?;
+    let (circuit, _) = read(Path::new(&options.file), &mut sources)?;
+    let good = options.against.as_ref().map(|path| read(path, &mut sources)).transpose()?.map(|(good, _)| good);
     let (budget, line) = progress::budget(global);
     let stage = |error: AuditError| Failure::stage(&error.into(), &sources);
     let settings = audit::Options {

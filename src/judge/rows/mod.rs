@@ -105,6 +105,17 @@ fn count_run(
     budget: &Budget,
 ) -> Option<(u64, Vec<u64>)> {
     let (mut count, mut numbers) = (0, Vec::new());
+    each_block(sweep, blocks, budget, |block, row| {
+        let row = *row & *lanes;
+        count += row.count();
+        let room = keep - numbers.len();
+        numbers.extend(row.lanes().take(room).map(|lane| block * LANES + lane));
+    })?;
+    Some((count, numbers))
+}
+
+/// Visits the blocks that are not passed over. `None` where the budget ran out.
+fn each_block(sweep: &mut Sweep, blocks: Range<u64>, budget: &Budget, mut visit: impl FnMut(u64, &Row)) -> Option<()> {
     let mut block = blocks.start;
     let mut steps: u64 = 0;
     while block < blocks.end {
@@ -116,13 +127,10 @@ fn count_run(
             block = sweep.dead_until(block);
             continue;
         };
-        let row = *row & *lanes;
-        count += row.count();
-        let room = keep - numbers.len();
-        numbers.extend(row.lanes().take(room).map(|lane| block * LANES + lane));
+        visit(block, row);
         block += 1;
     }
-    Some((count, numbers))
+    Some(())
 }
 
 /// The truth table over a search register: bit `x` of the table (bit `x % 64` of word `x / 64`) says whether the value
@@ -155,20 +163,10 @@ fn table_run(sweep: &mut Sweep, blocks: Range<u64>, bits: usize, budget: &Budget
     let lanes = Row::first_lanes(LANES.min(1 << bits));
     let words = WORDS.min((1usize << bits).div_ceil(64));
     let mut part = vec![0; words * (blocks.end - blocks.start) as usize];
-    let mut block = blocks.start;
-    let mut steps: u64 = 0;
-    while block < blocks.end {
-        if steps.is_multiple_of(BLOCKS_A_LOOK) && budget.spent() {
-            return None;
-        }
-        steps += 1;
-        let Some(row) = sweep.block(block) else {
-            block = sweep.dead_until(block);
-            continue;
-        };
-        let at = (block - blocks.start) as usize * words;
+    let first = blocks.start;
+    each_block(sweep, blocks, budget, |block, row| {
+        let at = (block - first) as usize * words;
         part[at..at + words].copy_from_slice(&(*row & lanes).0[..words]);
-        block += 1;
-    }
+    })?;
     Some(part)
 }
