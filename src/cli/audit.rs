@@ -2,27 +2,27 @@
 
 mod against;
 mod alone;
+mod case;
 mod form;
 
 use std::path::{Path, PathBuf};
-use std::time::Duration;
 
 use clap::Args;
 
+use self::case::{Case, Judged};
 use crate::circuit::registers::{self, Roles};
-use crate::circuit::{COUNTED, Circuit, FOUND, Level, Mark, SEARCH};
+use crate::circuit::{COUNTED, Circuit, FOUND, SEARCH};
 use crate::cli::exit::Exit;
 use crate::cli::render::{Failure, show};
 use crate::cli::{Global, Outcome, compile, input, progress};
 use crate::diag::{Code, Diagnostic};
 use crate::id::Id;
-use crate::judge::audit::compare::parting;
 use crate::judge::audit::faults::self_test;
 use crate::judge::audit::{self, Outcome as Found};
 use crate::pipeline::{self, Iterations};
 use crate::places::Places;
 use crate::problem::BitId;
-use crate::report::{self, json, story, summary};
+use crate::report::{self, json};
 use crate::source::Loaded;
 use crate::span::Sources;
 
@@ -113,74 +113,19 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
         seed: global.seed,
         ..audit::Options::default()
     };
-    let (outcome, mut text) =
-        if circuit.measured.iter().any(|register| [FOUND, COUNTED].contains(&register.name.as_str())) {
-            places.check(&loaded.problem).map_err(|error| stage(error.into()))?;
-            let mut verdict = audit::audit_search(&loaded.problem, &places, &circuit, 1 << options.effort, &budget)
-                .map_err(|error| stage(error.into()))?;
-            if let Some(number) = given {
-                let note = format!("how many iterations are run is an input of the file; it was judged with {number}");
-                verdict.notes.push(note);
-            }
-            let mut value = json::search_json(&verdict);
-            let mut text = summary::search_verdict(&verdict);
-            if let Some(good) = &good {
-                let compared = against::searches(good, &circuit, &budget).map_err(|error| stage(error.into()))?;
-                against::add_json(&mut value, &compared);
-                text += &against::text(&compared);
-            }
-            object.insert("audit".to_owned(), value);
-            (verdict.outcome, text)
-        } else {
-            let settings = input::settings(global, Level::Toffoli, Mark::Phase);
-            let sample = options.sample.unwrap_or(seeded.sample);
-            let mut judged = audit::Options { threads: settings.threads, sample, ..seeded.clone() };
-            if options.proof.is_some() {
-                (judged.way, judged.exhaustive_bits) = (audit::Way::Gates, 0);
-            }
-            let judge = |judged: &audit::Options| {
-                pipeline::audit(&loaded.problem, &places, &circuit, judged, &budget).map_err(stage)
-            };
-            let mut verdict = judge(&judged)?;
-            if verdict.outcome == Found::Undecided && loaded.problem.bit_count() > judged.exhaustive_bits as usize {
-                // Only a sample was affordable: a better one has the solutions in it.
-                let share = budget.time_left().map_or(MOST_COUNTING, |left| MOST_COUNTING.min(left / 8));
-                let counting = budget.clone().within(share);
-                let counted = pipeline::count(&loaded.problem, &places, settings, &counting).map_err(stage)?;
-                judged.known.clone_from(&counted.marks().solutions);
-                let second = if budget.spent() { verdict.clone() } else { judge(&judged)? };
-                // What ran out of time says less than what came before it.
-                if second.outcome != Found::Undecided || second.inputs >= verdict.inputs {
-                    verdict = second;
-                }
-            }
-            if let Some(folder) = options.proof.as_ref().filter(|_| !places.computed.is_empty()) {
-                let said = pipeline::write_obligations(folder, &loaded.problem, &places, &budget).map_err(stage)?;
-                verdict.notes.push(said);
-            }
-            let mut value = json::audit_json(&loaded.problem, &verdict);
-            value["form"] = form::json(options, &circuit);
-            let of_problem = |witness: &&audit::Witness| form::acts_on(options, &loaded.problem, witness);
-            let reason = verdict
-                .witness
-                .as_ref()
-                .filter(of_problem)
-                .map(|witness| story::reason(&loaded.problem, &sources, witness));
-            let parted = match (&good, &verdict.witness) {
-                (Some(good), Some(witness)) => {
-                    let search = places.searched.iter().map(|&bit| witness.bits.get(bit)).collect();
-                    parting(good, &circuit, &search, &budget).map_err(|error| stage(error.into()))?
-                }
-                _ => None,
-            };
-            if let (Some(folder), Some(certificate)) = (&options.proof, &verdict.certificate) {
-                pipeline::write_certificate(folder, certificate).map_err(stage)?;
-            }
-            story::add_json(&mut value, reason.as_ref(), parted.as_ref());
-            object.insert("audit".to_owned(), value);
-            let text = summary::verdict(&loaded.problem, &verdict) + &story::text(reason.as_ref(), parted.as_ref());
-            (verdict.outcome, text)
-        };
+    let case = Case {
+        global,
+        options,
+        loaded: &loaded,
+        sources: &sources,
+        places: &places,
+        circuit: &circuit,
+        good,
+        budget: &budget,
+    };
+    let is_search = circuit.measured.iter().any(|register| [FOUND, COUNTED].contains(&register.name.as_str()));
+    let Judged { outcome, value, mut text } = if is_search { case.search(given)? } else { case.oracle(&seeded)? };
+    object.insert("audit".to_owned(), value);
     let mut exit = exit_of(outcome);
     if let (Some(count), Found::Equal) = (options.self_test, outcome) {
         let test = self_test(&loaded.problem, &places, &circuit, count, &seeded, &budget)
@@ -197,9 +142,6 @@ pub(super) fn run(global: &Global, options: &Options) -> Outcome {
     object.insert("partial".to_owned(), (exit == Exit::Unfinished).into());
     Ok((exit, if global.json { json::print(object) } else { text }))
 }
-
-/// The longest that an audit looks for solutions to begin with.
-const MOST_COUNTING: Duration = Duration::from_secs(4);
 
 fn exit_of(outcome: Found) -> Exit {
     match outcome {
